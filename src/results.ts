@@ -1,0 +1,227 @@
+/**
+ * What analyze returns, report draws and --json prints: types only.
+ * Names are those of results.json, so they are snake_case. A number that is missing or infinite is null,
+ * with a key of the same name ending in `_reason` beside it.
+ */
+import type { LedgerStep } from './records/index.js'
+
+export interface Results {
+  readonly format: 'scarp-results/1'
+  readonly title: string
+  readonly version: string
+  readonly seed: number
+  /** ISO 8601, UTC. */
+  readonly started: string
+  readonly seconds: number
+  readonly inputs: readonly InputFile[]
+  readonly placement: PlacementSummary
+  readonly lines: readonly LineSummary[]
+  readonly outcomes: readonly OutcomeResult[]
+  readonly ledger: readonly LedgerStep[]
+}
+
+export interface InputFile {
+  readonly file: string
+  readonly sha256: string
+  readonly rows?: number
+  readonly features?: number
+}
+
+export interface PlacementSummary {
+  readonly read: number
+  readonly kept: number
+  readonly placed: number
+  readonly set_aside: Readonly<Record<string, number>>
+}
+
+export interface BySide<T = number> {
+  readonly untreated: T
+  readonly treated: T
+}
+
+export interface LineSummary {
+  readonly line: string
+  readonly label: string
+  readonly cutoff?: number
+  /** [untreated, treated] */
+  readonly zones?: readonly [string, string]
+  readonly piece?: number
+  readonly length_m?: number
+  readonly units: BySide
+}
+
+export interface Estimate {
+  readonly estimate: number
+  readonly standard_error: number
+  /** null under the normal reference. */
+  readonly degrees_of_freedom: number | null
+  readonly degrees_of_freedom_reason?: string
+  readonly low: number
+  readonly high: number
+  readonly p: number
+}
+
+export interface Jump {
+  readonly order: number
+  readonly kernel: string
+  readonly variance: string
+  /** Number of clusters, where the variance is clustered. */
+  readonly clusters?: number
+  readonly units_in_bandwidth: BySide
+  readonly bandwidth: BySide
+  readonly bias_bandwidth: BySide
+  /** Fitted means at x = 0. */
+  readonly at_line: BySide
+  readonly plain: Estimate
+  /** Bias-corrected, with its robust standard error. */
+  readonly corrected: Estimate
+  /** Cautions about this estimate, in words. */
+  readonly notes?: readonly string[]
+}
+
+export interface NotEstimated {
+  readonly not_estimated: string
+}
+
+export type LineJump = { readonly line: string } & (Jump | NotEstimated)
+export type PooledJump = (Jump & { readonly weights: Readonly<Record<string, number>> }) | NotEstimated
+
+export interface Interval {
+  readonly low: number
+  readonly high: number
+}
+
+export type Target =
+  | ({
+      readonly kind: string
+      readonly estimate: number
+      readonly standard_error: number
+      readonly p: number
+      readonly weights: Readonly<Record<string, number>>
+    } & Interval)
+  | NotEstimated
+
+export interface Contrast extends Interval {
+  readonly lines: readonly [string, string]
+  readonly estimate: number
+  readonly standard_error: number
+  readonly p: number
+  readonly p_holm: number
+}
+
+/** Comparison of lines by their corrected estimates; null parts carry a reason. */
+export interface Comparison {
+  readonly wald: { readonly statistic: number; readonly df: number; readonly p: number }
+  /** Cochran's Q, on wald.df degrees of freedom. */
+  readonly q: number
+  /** Percent. */
+  readonly i_squared: number
+  readonly tau_squared: { readonly dl: number; readonly reml: number; readonly pm: number }
+  readonly random_effects: { readonly estimate: number; readonly standard_error: number } & Interval
+  /** For the effect at a new line like these. */
+  readonly prediction: Interval | null
+  readonly prediction_reason?: string
+  readonly shrunken: readonly ({ readonly line: string; readonly estimate: number } & Interval)[]
+  /** Simultaneous intervals; the pairs of smallest p where there are more than `contrasts_of` lists. */
+  readonly contrasts: readonly Contrast[]
+  /** Number of pairs of lines. */
+  readonly contrasts_of: number
+}
+
+export interface CheckResult {
+  readonly check: string
+  readonly line?: string
+  readonly statistic?: number
+  readonly p?: number
+  readonly p_holm?: number
+  readonly verdict: 'fine' | 'doubt' | 'fail' | 'not possible'
+  readonly says: string
+}
+
+export interface OutcomeResult {
+  readonly outcome: string
+  readonly lines: readonly LineJump[]
+  readonly pooled: PooledJump
+  readonly target: Target
+  readonly comparison: Comparison | null
+  readonly comparison_reason?: string
+  readonly checks: readonly CheckResult[]
+}
+
+/* What the report draws beside the numbers. It carries no record, id or unit coordinate. */
+
+export interface Exhibits {
+  /** What x is measured in: "m", "km", or the name of the score. */
+  readonly xUnit: string
+  readonly isBorder: boolean
+  readonly outcomes: readonly OutcomeExhibit[]
+  readonly map?: MapExhibit
+}
+
+export interface OutcomeExhibit {
+  readonly outcome: string
+  readonly pooled?: ScatterExhibit
+  /** In the order of `lines`; null where the line has no estimate. */
+  readonly lines: readonly (ScatterExhibit | null)[]
+}
+
+/** Binned means near a line, and the plain fit on both sides. x is signed; y is in outcome units. */
+export interface ScatterExhibit {
+  readonly bins: readonly ScatterBin[]
+  readonly fit: BySide<{ readonly x: readonly number[]; readonly y: readonly number[] }>
+}
+
+export interface ScatterBin {
+  readonly side: 'untreated' | 'treated'
+  readonly low: number
+  readonly high: number
+  /** Mean x and mean outcome of the bin's units (weighted where the study has weights). */
+  readonly x: number
+  readonly mean: number
+  readonly standardError: number
+  readonly units: number
+}
+
+export interface MapExhibit {
+  readonly zones: readonly {
+    readonly name: string
+    readonly treated: boolean
+    /** GeoJSON MultiPolygon coordinates, WGS 84 degrees. */
+    readonly polygons: readonly (readonly (readonly (readonly number[])[])[])[]
+  }[]
+  readonly pieces: readonly {
+    /** Line id where the piece is used; null where it was set aside. */
+    readonly line: string | null
+    readonly zones: readonly [string, string]
+    readonly piece: number
+    readonly lengthMetres: number
+    /** Why it is not used. */
+    readonly setAside?: string
+    /** GeoJSON MultiLineString coordinates. */
+    readonly coordinates: readonly (readonly (readonly [number, number])[])[]
+  }[]
+  /** Barrier layers as drawn lines. */
+  readonly barriers: readonly { readonly name: string; readonly coordinates: readonly (readonly (readonly number[])[])[] }[]
+}
+
+/** One row of units.csv per placed entry; arrays run parallel. */
+export interface UnitRows {
+  /** Row of the table. */
+  readonly unit: Int32Array
+  readonly line: Int32Array
+  readonly treated: Uint8Array
+  readonly x: Float64Array
+  readonly ground?: {
+    readonly zone: Int32Array
+    readonly zoneNames: readonly string[]
+    readonly footLon: Float64Array
+    readonly footLat: Float64Array
+    readonly positionMetres: Float64Array
+  }
+}
+
+export interface Analysis {
+  readonly results: Results
+  readonly exhibits: Exhibits
+  readonly units: UnitRows
+}

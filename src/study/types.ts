@@ -1,0 +1,106 @@
+/** A study with every default filled in. Keys follow the study file, in camelCase. */
+
+export interface Study {
+  readonly title: string
+  readonly records: RecordsPart
+  readonly outcomes: readonly string[]
+  readonly line: ScoreLine | BorderLine | DistanceLine
+  readonly estimation: EstimationPart
+  readonly pooling: PoolingPart
+  readonly checks: 'none'
+  readonly disclosure: DisclosurePart
+  readonly seed: number
+}
+
+export interface RecordsPart {
+  /** Path as written in the study, relative to the study file. */
+  readonly file: string
+  readonly id?: string
+  /** [longitude column, latitude column]. */
+  readonly position?: readonly [string, string]
+  /** SQL condition over the file's columns. */
+  readonly keep?: string
+  readonly weight?: string
+  readonly cluster?: string
+}
+
+export type TreatedSide = 'at-or-above' | 'above' | 'at-or-below' | 'below'
+
+export type Cutoff =
+  | { readonly kind: 'value'; readonly value: number }
+  | { readonly kind: 'column'; readonly column: string }
+  | { readonly kind: 'schedule'; readonly file: string; readonly by: readonly string[]; readonly value: string }
+  | { readonly kind: 'ladder'; readonly steps: readonly number[] }
+
+export interface ScoreLine {
+  readonly kind: 'score'
+  readonly score: string
+  readonly cutoff: Cutoff
+  readonly treated: TreatedSide
+  /** Columns whose values tell lines apart; absent: the schedule's `by`, the ladder's steps, or the distinct cutoffs. */
+  readonly compareBy?: readonly string[]
+  readonly rescale: 'none' | 'spread'
+}
+
+export type LengthUnit = 'm' | 'km' | 'ft' | 'mi'
+
+export interface LayerNear {
+  readonly file: string
+  /** Metres. */
+  readonly within: number
+}
+
+export interface BorderLine {
+  readonly kind: 'border'
+  readonly zones: string
+  readonly zoneName: string
+  /** Names of treated zones, or a property and the value that marks them. */
+  readonly treated: readonly string[] | { readonly property: string; readonly equals: string | number | boolean }
+  readonly unit: LengthUnit
+  /** Metres. */
+  readonly snap: number
+  /** In `unit`. */
+  readonly piece: number
+  /** In `unit`; absent: no limit. */
+  readonly reach?: number
+  readonly barriers: readonly LayerNear[]
+}
+
+export interface DistanceLine {
+  readonly kind: 'distance'
+  /** Column of signed distances, positive where treated. */
+  readonly distance: string
+  /** Column that says which line. */
+  readonly name?: string
+}
+
+export type KernelName = 'triangular' | 'epanechnikov' | 'uniform'
+export type VarianceName = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters'
+
+/** How wide: a rule, or numbers in x units. `bias` is the bias bandwidth where the user gives one. */
+export type Bandwidth =
+  | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number }
+  | { readonly kind: 'fixed'; readonly untreated: number; readonly treated: number; readonly bias?: number }
+
+export interface EstimationPart {
+  readonly order: 0 | 1 | 2 | 3
+  readonly kernel: KernelName
+  readonly bandwidth: Bandwidth
+  readonly sides: 'common' | 'separate'
+  readonly interval: 'corrected'
+  /** Absent: `clusters` with records.cluster, else hc2 (and, pooled over border pieces, clustered by piece). */
+  readonly variance?: VarianceName
+  readonly reference: 't' | 'normal'
+  readonly donut: number
+  readonly level: number
+}
+
+export interface PoolingPart {
+  readonly fixedEffects: boolean
+  readonly target: 'units' | 'equal' | 'precision' | { readonly column: string }
+}
+
+export interface DisclosurePart {
+  readonly coordinates: boolean
+  readonly smallestCell: number
+}
