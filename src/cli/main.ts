@@ -1,0 +1,97 @@
+#!/usr/bin/env node
+/** The command line. Commands load their rooms when they are called, so that help and version come at once. */
+import { Command, CommanderError } from 'commander'
+import { type ExitCode, exitCodes } from './exitCodes.js'
+import { say, sayFault, sayProblems, systemProblem } from './say.js'
+import { packageVersion } from './version.js'
+
+process.exitCode = await main(process.argv.slice(2))
+
+async function main(words: readonly string[]): Promise<ExitCode> {
+  let code: ExitCode = exitCodes.done
+  const program = commands((result) => {
+    code = result
+  })
+  process.stdout.on('error', closedPipe)
+  process.stderr.on('error', closedPipe)
+  try {
+    await program.parseAsync(words, { from: 'user' })
+    return code
+  } catch (error) {
+    if (error instanceof CommanderError) return usage(error)
+    const problem = systemProblem(error, 'scarp')
+    if (problem !== undefined) {
+      sayProblems([problem])
+      return exitCodes.unusable
+    }
+    sayFault(error)
+    return exitCodes.fault
+  }
+}
+
+function commands(done: (code: ExitCode) => void): Command {
+  const program = new Command('scarp')
+    .description('Estimates what a rule that draws lines does: cutoffs on a score, borders on the ground.')
+    .version(packageVersion(), '-V, --version', 'print the version')
+    .helpOption('-h, --help', 'print this help')
+    .helpCommand('help [command]', 'print the help of a command')
+    .exitOverride()
+    .configureOutput({ outputError: () => {} })
+    .addHelpText(
+      'after',
+      '\nExit codes: 0 done, 1 a fault in the program, 2 the study, a table or a geometry can not be used, 3 nothing can be estimated.',
+    )
+  program
+    .command('run')
+    .description('the whole job: read, place, estimate, pool, compare, check, report')
+    .argument('<study>', 'study file (YAML or JSON)')
+    .option(
+      '--out <folder>',
+      'results folder (default: the name of the study, with -results, in the working directory)',
+    )
+    .option('--quiet', 'print nothing but problems')
+    .option('--json', 'print results.json and nothing else')
+    .action(async (study, options) => done(await (await import('./run.js')).run(study, options)))
+  program
+    .command('inspect')
+    .description('everything that can be known to be wrong or doubtful before estimating')
+    .argument('<study>', 'study file (YAML or JSON)')
+    .action(async (study) => done(await (await import('./inspect.js')).inspect(study)))
+  program
+    .command('measure')
+    .description('only the placement: zone, line, piece, signed distance and foot point of every unit')
+    .argument('<records>', 'table of units (csv, tsv, json lines, parquet, geojson points)')
+    .requiredOption('--zones <file>', 'zones (GeoJSON polygons)')
+    .option('--position <lon,lat>', 'the columns of longitude and latitude (GeoJSON points need none)')
+    .option('--zone-name <property>', 'property with the name of a zone', 'name')
+    .option('--treated <names>', 'names of the treated zones, with commas between')
+    .option('--dose <property>', 'not available yet')
+    .option('--unit <unit>', 'm, km, ft or mi', 'm')
+    .option('--id <column>', 'column that names a unit (default: its row, from 1)')
+    .requiredOption('--out <file>', 'table to write (.csv, .parquet or .geojson)')
+    .action(async (records, options) => done(await (await import('./measure.js')).measure(records, options)))
+  program
+    .command('plan', { hidden: true })
+    .argument('[study]')
+    .allowUnknownOption()
+    .allowExcessArguments()
+    .action(() => {
+      say('scarp: plan is not available yet; scarp --help lists what is')
+      done(exitCodes.unusable)
+    })
+  return program
+}
+
+/** Help and version end well; any other complaint of the parser is one line. */
+function usage(error: CommanderError): ExitCode {
+  if (error.exitCode === 0) return exitCodes.done
+  const message = error.code === 'commander.help' ? 'no command given' : error.message
+  say(`scarp: ${message.replace(/^error: /, '').replace(/\s*[\r\n]+\s*/g, ' ')}; scarp --help lists the commands`)
+  return exitCodes.unusable
+}
+
+/** A reader such as `head` that has seen enough is no fault. */
+function closedPipe(error: { code?: string }): void {
+  if (error.code !== 'EPIPE') throw error
+  process.exit()
+}
