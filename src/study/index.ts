@@ -1,0 +1,20 @@
+/** Door of the study room: the study file, from text to a Study with every default filled in, and back. */
+export { readStudy } from './read.js'
+export type {
+  Bandwidth,
+  BorderLine,
+  Cutoff,
+  DisclosurePart,
+  DistanceLine,
+  EstimationPart,
+  KernelName,
+  LayerNear,
+  LengthUnit,
+  PoolingPart,
+  RecordsPart,
+  ScoreLine,
+  Study,
+  TreatedSide,
+  VarianceName,
+} from './types.js'
+export { resolvedStudy } from './write.js'

@@ -1,0 +1,97 @@
+/** What is written, with every default filled in. All defaults are here. */
+import type { z } from 'zod'
+import type { borderLine, distanceLine, scoreLine, WrittenStudy } from './schema.js'
+import type { Bandwidth, BorderLine, Cutoff, DistanceLine, LengthUnit, ScoreLine, Study } from './types.js'
+
+/** Length of the unit in metres; the foot is the international one. */
+const METRES: Readonly<Record<LengthUnit, number>> = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 }
+
+/** `file` gives the title where the study has none: the name of its folder. */
+export function resolveStudy(written: WrittenStudy, file: string): Study {
+  const { records, estimation = {}, pooling = {}, disclosure = {} } = written
+  const line = resolveLine(written.line)
+  return {
+    title: written.title ?? folderOf(file) ?? 'Study',
+    records: given(records),
+    outcomes: written.outcomes,
+    line,
+    estimation: {
+      order: estimation.order ?? 1,
+      kernel: estimation.kernel ?? 'triangular',
+      bandwidth: resolveBandwidth(estimation.bandwidth ?? 'mse'),
+      sides: estimation.sides ?? 'common',
+      interval: 'corrected',
+      ...given({ variance: estimation.variance }),
+      reference: estimation.reference ?? 't',
+      donut: estimation.donut ?? 0,
+      level: estimation.level ?? 0.95,
+    },
+    pooling: { fixedEffects: pooling.fixed_effects ?? line.kind === 'border', target: pooling.target ?? 'units' },
+    checks: 'none',
+    disclosure: { coordinates: disclosure.coordinates ?? false, smallestCell: disclosure.smallest_cell ?? 10 },
+    seed: written.seed ?? 1,
+  }
+}
+
+function resolveLine(line: WrittenStudy['line']): Study['line'] {
+  if ('score' in line) return resolveScore(line)
+  return 'zones' in line ? resolveBorder(line) : resolveDistance(line)
+}
+
+function resolveScore(line: z.infer<typeof scoreLine>): ScoreLine {
+  return {
+    kind: 'score',
+    score: line.score,
+    cutoff: resolveCutoff(line.cutoff),
+    treated: line.treated,
+    ...given({ compareBy: typeof line.compare_by === 'string' ? [line.compare_by] : line.compare_by }),
+    rescale: line.rescale ?? 'none',
+  }
+}
+
+function resolveCutoff(cutoff: z.infer<typeof scoreLine>['cutoff']): Cutoff {
+  if (typeof cutoff === 'number') return { kind: 'value', value: cutoff }
+  if ('column' in cutoff) return { kind: 'column', column: cutoff.column }
+  if ('ladder' in cutoff) return { kind: 'ladder', steps: [...cutoff.ladder].sort((a, b) => a - b) }
+  const by = typeof cutoff.by === 'string' ? [cutoff.by] : cutoff.by
+  return { kind: 'schedule', file: cutoff.schedule, by, value: cutoff.value }
+}
+
+function resolveBorder(line: z.infer<typeof borderLine>): BorderLine {
+  const unit = line.unit ?? 'm'
+  return {
+    kind: 'border',
+    zones: line.zones,
+    zoneName: line.zone_name ?? 'name',
+    treated: line.treated,
+    unit,
+    snap: line.snap ?? 2,
+    piece: line.piece ?? 1000 / METRES[unit],
+    ...given({ reach: line.reach }),
+    barriers: line.barriers ?? [],
+  }
+}
+
+function resolveDistance(line: z.infer<typeof distanceLine>): DistanceLine {
+  return { kind: 'distance', distance: line.distance, ...given({ name: line.name }) }
+}
+
+function resolveBandwidth(written: NonNullable<NonNullable<WrittenStudy['estimation']>['bandwidth']>): Bandwidth {
+  if (typeof written === 'object' && 'untreated' in written)
+    return { kind: 'fixed', untreated: written.untreated, treated: written.treated, ...given({ bias: written.bias }) }
+  const main = typeof written === 'object' ? written.main : written
+  const bias = typeof written === 'object' ? { bias: written.bias } : {}
+  return typeof main === 'number'
+    ? { kind: 'fixed', untreated: main, treated: main, ...bias }
+    : { kind: 'rule', rule: main, ...bias }
+}
+
+/** Without the keys that were not given, so that equal studies have equal keys. */
+function given<T extends object>(part: T): T {
+  return Object.fromEntries(Object.entries(part).filter(([, value]) => value !== undefined)) as T
+}
+
+function folderOf(file: string): string | undefined {
+  const folder = file.split(/[\\/]/).at(-2)
+  return folder === undefined || /^\.*$/.test(folder) || folder.endsWith(':') ? undefined : folder
+}

@@ -1,0 +1,86 @@
+import { stringify } from 'yaml'
+import type { Bandwidth, Cutoff, Study } from './types.js'
+
+/**
+ * The study as YAML, keys in the order of the interface, every default filled in. Reading it back gives an equal study.
+ * Where a default is not one value (the variance, the reach, what tells lines apart) the key is left out.
+ */
+export function resolvedStudy(study: Study): string {
+  const { records, estimation, pooling, disclosure } = study
+  const written = {
+    title: study.title,
+    records: {
+      file: records.file,
+      id: records.id,
+      position: records.position,
+      keep: records.keep,
+      weight: records.weight,
+      cluster: records.cluster,
+    },
+    outcomes: study.outcomes,
+    line: writtenLine(study.line),
+    estimation: {
+      order: estimation.order,
+      kernel: estimation.kernel,
+      bandwidth: writtenBandwidth(estimation.bandwidth),
+      sides: estimation.sides,
+      interval: estimation.interval,
+      smoothness: 'rule',
+      variance: estimation.variance,
+      reference: estimation.reference,
+      donut: estimation.donut,
+      level: estimation.level,
+    },
+    pooling: { fixed_effects: pooling.fixedEffects, target: pooling.target },
+    checks: study.checks,
+    disclosure: { coordinates: disclosure.coordinates, smallest_cell: disclosure.smallestCell },
+    seed: study.seed,
+  }
+  return stringify(written, { lineWidth: 0, aliasDuplicateObjects: false })
+}
+
+function writtenLine(line: Study['line']): object {
+  if (line.kind === 'score')
+    return {
+      score: line.score,
+      cutoff: writtenCutoff(line.cutoff),
+      treated: line.treated,
+      compare_by: line.compareBy,
+      rescale: line.rescale,
+    }
+  if (line.kind === 'distance') return { distance: line.distance, name: line.name }
+  return {
+    zones: line.zones,
+    zone_name: line.zoneName,
+    treated: line.treated,
+    outside: 'set-aside',
+    unit: line.unit,
+    snap: line.snap,
+    piece: line.piece,
+    reach: line.reach,
+    barriers: line.barriers,
+    position_error: 0,
+  }
+}
+
+function writtenCutoff(cutoff: Cutoff): number | object {
+  switch (cutoff.kind) {
+    case 'value':
+      return cutoff.value
+    case 'column':
+      return { column: cutoff.column }
+    case 'schedule':
+      return { schedule: cutoff.file, by: cutoff.by, value: cutoff.value }
+    case 'ladder':
+      return { ladder: cutoff.steps }
+  }
+}
+
+function writtenBandwidth(bandwidth: Bandwidth): string | number | object {
+  if (bandwidth.kind === 'fixed' && bandwidth.untreated !== bandwidth.treated) {
+    const { kind: _, ...widths } = bandwidth
+    return widths
+  }
+  const main = bandwidth.kind === 'rule' ? bandwidth.rule : bandwidth.untreated
+  return bandwidth.bias === undefined ? main : { main, bias: bandwidth.bias }
+}
