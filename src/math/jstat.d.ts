@@ -1,6 +1,6 @@
 /** The few functions of jstat that the project calls; the package carries no types of its own. */
 declare module 'jstat' {
-  export const jStat: {
+  const jStat: {
     gammaln(x: number): number
     normal: {
       cdf(x: number, mean: number, sd: number): number
@@ -13,4 +13,5 @@ declare module 'jstat' {
     lowRegGamma(a: number, x: number): number
     ibeta(x: number, a: number, b: number): number
   }
+  export default jStat
 }
