@@ -201,7 +201,10 @@ export interface MapExhibit {
     readonly coordinates: readonly (readonly (readonly [number, number])[])[]
   }[]
   /** Barrier layers as drawn lines. */
-  readonly barriers: readonly { readonly name: string; readonly coordinates: readonly (readonly (readonly number[])[])[] }[]
+  readonly barriers: readonly {
+    readonly name: string
+    readonly coordinates: readonly (readonly (readonly number[])[])[]
+  }[]
 }
 
 /** One row of units.csv per placed entry; arrays run parallel. */

@@ -1,0 +1,80 @@
+/** The entries of a placement that one outcome can use, grouped by line once and shared by every estimate. */
+import type { Entries } from '../jump/index.js'
+import type { Placement } from '../placement.js'
+import { labelsOf, numbersOf, type Table } from '../records/index.js'
+import type { Study } from '../study/index.js'
+
+export interface OutcomeEntries {
+  /** Usable entries, ordered by line; within a line in the order of the rows. */
+  readonly all: Entries
+  /** First entry of each line in `all`, and the number of entries at the end. */
+  readonly start: Int32Array
+  /** Units placed that have the outcome, and that lack it. */
+  readonly units: number
+  readonly missing: number
+}
+
+/** Entries with a finite outcome. `group` is the line; `cluster` the study's cluster column where it has one. */
+export function entriesOf(study: Study, table: Table, placement: Placement, outcome: string): OutcomeEntries {
+  const y = numbersOf(table, outcome)
+  const weight = study.records.weight === undefined ? undefined : numbersOf(table, study.records.weight)
+  const cluster = study.records.cluster === undefined ? undefined : labelsOf(table, study.records.cluster).codes
+  const lineCount = placement.lines.length
+  const start = new Int32Array(lineCount + 1)
+  let units = 0
+  let missing = 0
+  let previous = -1
+  for (let e = 0; e < placement.unit.length; e++) {
+    const unit = placement.unit[e]
+    const isUsable = Number.isFinite(y[unit])
+    if (isUsable) start[placement.line[e] + 1]++
+    if (unit === previous) continue
+    previous = unit
+    if (isUsable) units++
+    else missing++
+  }
+  for (let line = 0; line < lineCount; line++) start[line + 1] += start[line]
+  const size = start[lineCount]
+  const next = start.slice(0, lineCount)
+  const x = new Float64Array(size)
+  const treated = new Uint8Array(size)
+  const unitOf = new Int32Array(size)
+  const group = new Int32Array(size)
+  const outcomes = new Float64Array(size)
+  const weights = weight && new Float64Array(size)
+  const clusters = cluster && new Int32Array(size)
+  for (let e = 0; e < placement.unit.length; e++) {
+    const unit = placement.unit[e]
+    if (!Number.isFinite(y[unit])) continue
+    const at = next[placement.line[e]]++
+    x[at] = placement.x[e]
+    treated[at] = placement.treated[e]
+    unitOf[at] = unit
+    group[at] = placement.line[e]
+    outcomes[at] = y[unit]
+    if (weights && weight) weights[at] = weight[unit]
+    if (clusters && cluster) clusters[at] = cluster[unit]
+  }
+  const repeats = size > units
+  return {
+    all: { x, treated, unit: unitOf, y: outcomes, w: weights, cluster: clusters, group, repeats },
+    start,
+    units,
+    missing,
+  }
+}
+
+/** The entries of one line, as views. */
+export function entriesOfLine(entries: OutcomeEntries, line: number): Entries {
+  const from = entries.start[line]
+  const to = entries.start[line + 1]
+  const { all } = entries
+  return {
+    x: all.x.subarray(from, to),
+    treated: all.treated.subarray(from, to),
+    unit: all.unit.subarray(from, to),
+    y: all.y.subarray(from, to),
+    w: all.w?.subarray(from, to),
+    cluster: all.cluster?.subarray(from, to),
+  }
+}

@@ -1,0 +1,158 @@
+/** All estimates of one outcome: every line, pooled, the target and the comparison of lines. */
+import {
+  bandwidthsFor,
+  buildSample,
+  covarianceMatrix,
+  type Entries,
+  type Influence,
+  type JumpFit,
+  type JumpOptions,
+  jumpAt,
+  type Sample,
+  type Variance,
+  varianceOf,
+} from '../jump/index.js'
+import { streamOf } from '../math/index.js'
+import type { Placement } from '../placement.js'
+import type { EstimationPart, Study } from '../study/index.js'
+import { compareLines, type LineEffects, poolLines, targetEffect } from '../thresholds/index.js'
+import { entriesOfLine, type OutcomeEntries } from './entries.js'
+
+export interface LineEstimate {
+  readonly jump: JumpFit
+  readonly sample: Sample
+}
+
+export type OrReason<T> = T | { readonly reason: string }
+
+export interface OutcomeEstimates {
+  /** In the order of the placement's lines. */
+  readonly lines: readonly OrReason<LineEstimate>[]
+  readonly pooled: OrReason<LineEstimate & { readonly weights: Float64Array; readonly withoutEffect: number }>
+  readonly lineVariance: Variance
+  readonly pooledVariance: Variance
+  /** Places of the lines that the target and the comparison use. */
+  readonly compared: readonly number[]
+  readonly target: ReturnType<typeof targetEffect>
+  readonly comparison: ReturnType<typeof compareLines>
+}
+
+export function hasReason<T extends object>(value: OrReason<T>): value is { readonly reason: string } {
+  return 'reason' in value
+}
+
+/** Estimates one outcome; `shares` are the target's weights by line where the study gives a column. */
+export function estimateOutcome(
+  study: Study,
+  placement: Placement,
+  entries: OutcomeEntries,
+  shares: Float64Array | undefined,
+  progress: (done: number) => void,
+): OutcomeEstimates {
+  const { lineVariance, pooledVariance } = variancesOf(study)
+  const lines = placement.lines.map((_, line) => {
+    const estimate = estimateLine(entriesOfLine(entries, line), study.estimation, lineVariance)
+    progress(line + 1)
+    return estimate
+  })
+  const pooled = estimatePooled(study, entries, lines, pooledVariance)
+  const ids = placement.lines.map((line) => line.id)
+  const { effects, index } = effectsOf(ids, lines)
+  const { level } = study.estimation
+  const comparison = compareLines(effects, { level, random: streamOf(study.seed, 1) })
+  const target = targetOf(study, effects, index, lines, shares)
+  return { lines, pooled, lineVariance, pooledVariance, compared: index, target, comparison }
+}
+
+/**
+ * What the variance is where the study does not say: clustered by the study's column where it has one; else hc2, and
+ * for pooled border pieces clustered by piece. `clusters` on a border without a column: pooled by piece, each piece hc2.
+ */
+function variancesOf(study: Study): { lineVariance: Variance; pooledVariance: Variance } {
+  const { variance } = study.estimation
+  const hasClusters = study.records.cluster !== undefined
+  const byPiece = study.line.kind === 'border' && !hasClusters
+  if (variance !== undefined && variance !== 'clusters') return { lineVariance: variance, pooledVariance: variance }
+  return {
+    lineVariance: hasClusters ? 'clusters' : 'hc2',
+    pooledVariance: hasClusters || byPiece ? 'clusters' : 'hc2',
+  }
+}
+
+function jumpOptions(estimation: EstimationPart, variance: Variance): JumpOptions {
+  const { order, kernel, reference, level } = estimation
+  return { order, kernel, variance, reference, level }
+}
+
+function estimateLine(entries: Entries, estimation: EstimationPart, variance: Variance): OrReason<LineEstimate> {
+  const sample = buildSample(entries, estimation.donut)
+  const clustered = variance === 'clusters'
+  const chosen = bandwidthsFor(sample, estimation.bandwidth, { ...estimation, clustered })
+  if (!chosen.ok) return { reason: chosen.reason }
+  const estimated = jumpAt(sample, chosen.bandwidths, jumpOptions(estimation, variance))
+  return estimated.ok ? { jump: estimated.jump, sample } : { reason: estimated.reason }
+}
+
+function estimatePooled(
+  study: Study,
+  entries: OutcomeEntries,
+  lines: readonly OrReason<LineEstimate>[],
+  variance: Variance,
+): OutcomeEstimates['pooled'] {
+  if (lines.length === 1) {
+    const only = lines[0]
+    return hasReason(only) ? only : { ...only, weights: Float64Array.of(1), withoutEffect: 0 }
+  }
+  const byPiece = variance === 'clusters' && study.records.cluster === undefined
+  const all = byPiece ? { ...entries.all, cluster: entries.all.group } : entries.all
+  const pooled = poolLines(buildSample(all, study.estimation.donut), lines.length, {
+    ...jumpOptions(study.estimation, variance),
+    bandwidth: study.estimation.bandwidth,
+    sides: study.estimation.sides,
+    clustered: variance === 'clusters',
+    fixedEffects: study.pooling.fixedEffects,
+  })
+  return pooled.ok ? pooled : { reason: pooled.reason }
+}
+
+/** The lines that can be compared: estimated, with a variance above 0; `index` gives their place among all lines. */
+function effectsOf(
+  ids: readonly string[],
+  lines: readonly OrReason<LineEstimate>[],
+): { effects: LineEffects; index: number[] } {
+  const index: number[] = []
+  const influences: Influence[] = []
+  const estimates: number[] = []
+  lines.forEach((line, i) => {
+    if (hasReason(line) || !(varianceOf(line.jump.influence) > 0)) return
+    index.push(i)
+    influences.push(line.jump.influence)
+    estimates.push(line.jump.corrected.estimate)
+  })
+  const { matrix, isDiagonal } = covarianceMatrix(influences)
+  return {
+    effects: { ids: index.map((i) => ids[i]), estimate: Float64Array.from(estimates), covariance: matrix, isDiagonal },
+    index,
+  }
+}
+
+function targetOf(
+  study: Study,
+  effects: LineEffects,
+  index: readonly number[],
+  lines: readonly OrReason<LineEstimate>[],
+  shares: Float64Array | undefined,
+): OutcomeEstimates['target'] {
+  const { target } = study.pooling
+  const { level } = study.estimation
+  if (typeof target === 'object') {
+    const used = Float64Array.from(index, (i) => (shares as Float64Array)[i])
+    return targetEffect(effects, { kind: 'shares', name: target.column, shares: used }, level)
+  }
+  if (target !== 'units') return targetEffect(effects, { kind: target }, level)
+  const units = Float64Array.from(index, (i) => {
+    const { untreated, treated } = (lines[i] as LineEstimate).jump.unitsInBandwidth
+    return untreated + treated
+  })
+  return targetEffect(effects, { kind: 'units', units }, level)
+}

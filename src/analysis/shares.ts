@@ -1,0 +1,61 @@
+/** Pooling shares: one number per line, from a column of the schedule or of the records. */
+import type { Placement } from '../placement.js'
+import type { Checked } from '../problem.js'
+import { labelsOf, numbersOf, type Table } from '../records/index.js'
+import type { Study } from '../study/index.js'
+import { scheduleKey } from '../thresholds/index.js'
+import type { AnalysisInputs } from './inputs.js'
+
+/** The share of each line; undefined where the target needs none. Lines whose units disagree, or have none, are problems. */
+export function sharesOfLines(
+  study: Study,
+  inputs: AnalysisInputs,
+  placement: Placement,
+): Checked<Float64Array | undefined> {
+  const { target } = study.pooling
+  if (typeof target !== 'object') return { ok: true, value: undefined }
+  const { schedule, table } = inputs
+  const fromSchedule = schedule?.columns.has(target.column) === true
+  const file = fromSchedule ? schedule.file : table.file
+  const values = fromSchedule ? scheduleValues(study, schedule, table, target.column) : numbersOf(table, target.column)
+  const shares = new Float64Array(placement.lines.length).fill(Number.NaN)
+  const second = new Map<number, number>()
+  for (let e = 0; e < placement.unit.length; e++) {
+    const line = placement.line[e]
+    const value = values[placement.unit[e]]
+    if (Number.isNaN(value)) continue
+    if (Number.isNaN(shares[line])) shares[line] = value
+    else if (value !== shares[line]) second.set(line, value)
+  }
+  const what = `pooling.target.column: ${target.column}`
+  const problems = [...second].map(([line, value]) => ({
+    file,
+    what,
+    found: `${shares[line]} and ${value} on line ${placement.lines[line].label}`,
+    todo: 'give one share for each line',
+  }))
+  placement.lines.forEach((line, i) => {
+    if (second.has(i) || shares[i] >= 0) return
+    const found = Number.isNaN(shares[i]) ? `no value on line ${line.label}` : `${shares[i]} on line ${line.label}`
+    problems.push({ file, what, found, todo: 'give every line a share of 0 or more' })
+  })
+  return problems.length > 0 ? { ok: false, problems } : { ok: true, value: shares }
+}
+
+/** The schedule's column carried to the records by their keys; NaN where a record's key is not in the schedule. */
+function scheduleValues(study: Study, schedule: Table, table: Table, column: string): Float64Array {
+  if (study.line.kind !== 'score' || study.line.cutoff.kind !== 'schedule') throw new Error('the study has no schedule')
+  const { by } = study.line.cutoff
+  const keyOf = (from: Table) => {
+    const keys = by.map((name) => labelsOf(from, name))
+    return (row: number) => scheduleKey(keys.map((key) => key.labels[key.codes[row]]))
+  }
+  const values = numbersOf(schedule, column)
+  const scheduled = keyOf(schedule)
+  const byKey = new Map<string, number>()
+  for (let row = 0; row < schedule.rows; row++) byKey.set(scheduled(row), values[row])
+  const recorded = keyOf(table)
+  const result = new Float64Array(table.rows)
+  for (let row = 0; row < table.rows; row++) result[row] = byKey.get(recorded(row)) ?? Number.NaN
+  return result
+}

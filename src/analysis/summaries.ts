@@ -1,0 +1,123 @@
+/** Estimates as they stand in results.json. */
+import type { Inference, JumpFit, Variance } from '../jump/index.js'
+import type { Line, Placement } from '../placement.js'
+import type { BySide, Estimate, Jump, LineSummary, OutcomeResult, PooledJump, Target } from '../results.js'
+import type { EstimationPart, Study } from '../study/index.js'
+import { hasReason, type OutcomeEstimates } from './estimating.js'
+
+export function outcomeResult(
+  study: Study,
+  outcome: string,
+  lines: readonly Line[],
+  estimates: OutcomeEstimates,
+): OutcomeResult {
+  const { estimation } = study
+  const { comparison } = estimates
+  return {
+    outcome,
+    lines: lines.map((line, i) => {
+      const estimate = estimates.lines[i]
+      return hasReason(estimate)
+        ? { line: line.id, not_estimated: estimate.reason }
+        : { line: line.id, ...jumpResult(estimate.jump, estimation, estimates.lineVariance) }
+    }),
+    pooled: pooledResult(estimates, estimation, lines),
+    target: targetResult(estimates, lines),
+    ...(comparison.ok
+      ? { comparison: comparison.comparison }
+      : { comparison: null, comparison_reason: comparison.reason }),
+    checks: [],
+  }
+}
+
+function pooledResult(estimates: OutcomeEstimates, estimation: EstimationPart, lines: readonly Line[]): PooledJump {
+  const { pooled } = estimates
+  if (hasReason(pooled)) return { not_estimated: pooled.reason }
+  const variance = lines.length === 1 ? estimates.lineVariance : estimates.pooledVariance
+  const jump = jumpResult(pooled.jump, estimation, variance)
+  const left = pooled.withoutEffect
+  const notes =
+    left > 0
+      ? [...(jump.notes ?? []), `${left} entries of lines without a unit within the bandwidth are left out`]
+      : jump.notes
+  return { ...jump, ...(notes ? { notes } : {}), weights: weightsByLine(lines, pooled.weights) }
+}
+
+function targetResult(estimates: OutcomeEstimates, lines: readonly Line[]): Target {
+  const { target } = estimates
+  if (!target.ok) return { not_estimated: target.reason }
+  const compared = estimates.compared.map((i) => lines[i])
+  return {
+    kind: target.kind,
+    estimate: target.estimate,
+    standard_error: target.standardError,
+    low: target.low,
+    high: target.high,
+    p: target.p,
+    weights: weightsByLine(compared, target.weights),
+  }
+}
+
+function weightsByLine(lines: readonly Line[], weights: Float64Array): Record<string, number> {
+  return Object.fromEntries(lines.map((line, i) => [line.id, weights[i]]))
+}
+
+export function jumpResult(jump: JumpFit, estimation: EstimationPart, variance: Variance): Jump {
+  const notes = notesOn(jump)
+  return {
+    order: estimation.order,
+    kernel: estimation.kernel,
+    variance,
+    ...(jump.clusters === undefined ? {} : { clusters: jump.clusters }),
+    units_in_bandwidth: jump.unitsInBandwidth,
+    bandwidth: jump.bandwidths.h,
+    bias_bandwidth: jump.bandwidths.b,
+    at_line: jump.atLine,
+    plain: estimateResult(jump.plain),
+    corrected: estimateResult(jump.corrected),
+    ...(notes.length > 0 ? { notes } : {}),
+  }
+}
+
+function estimateResult(inference: Inference): Estimate {
+  const { estimate, degreesOfFreedom, low, high, p } = inference
+  const isNormal = degreesOfFreedom === Number.POSITIVE_INFINITY
+  return {
+    estimate,
+    standard_error: inference.standardError,
+    degrees_of_freedom: isNormal ? null : degreesOfFreedom,
+    ...(isNormal ? { degrees_of_freedom_reason: 'normal reference' } : {}),
+    low,
+    high,
+    p,
+  }
+}
+
+function notesOn(jump: JumpFit): string[] {
+  const notes: string[] = []
+  for (const name of ['untreated', 'treated'] as const) {
+    if (jump.distinct[name] >= 10) continue
+    const values = `${jump.distinct[name]} distinct values within the bandwidth on the ${name} side`
+    notes.push(`only ${values}: the interval does not allow for what may happen between them`)
+  }
+  if (jump.clusters !== undefined && jump.clusters < 30) {
+    notes.push(`only ${jump.clusters} clusters near the line: a clustered standard error tends to be too small`)
+  }
+  return notes
+}
+
+export function lineSummaries(placement: Placement): LineSummary[] {
+  const counts = placement.lines.map(() => ({ untreated: 0, treated: 0 }))
+  for (let e = 0; e < placement.line.length; e++) {
+    counts[placement.line[e]][placement.treated[e] === 1 ? 'treated' : 'untreated']++
+  }
+  return placement.lines.map((line, i) => ({
+    line: line.id,
+    label: line.label,
+    ...(line.cutoff === undefined ? {} : { cutoff: line.cutoff }),
+    ...(line.zones === undefined ? {} : { zones: line.zones }),
+    ...(line.piece === undefined ? {} : { piece: line.piece }),
+    ...(line.lengthMetres === undefined ? {} : { length_m: line.lengthMetres }),
+    units: counts[i] as BySide,
+  }))
+}

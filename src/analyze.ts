@@ -1,0 +1,161 @@
+/**
+ * Study and columns in, results out: the table of contents of the whole job.
+ * Read it first. Places every unit against its line, estimates each outcome at every line and pooled, compares the
+ * lines, and keeps the ledger. Knows no file and no page; `cli` reads what comes in, `report` draws what goes out.
+ */
+import { entriesOf } from './analysis/entries.js'
+import { estimateOutcome, hasReason, type LineEstimate, type OutcomeEstimates } from './analysis/estimating.js'
+import { mapOf, scatterOf } from './analysis/exhibits.js'
+import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/inputs.js'
+import { type Placed, placeStudy } from './analysis/placing.js'
+import { sharesOfLines } from './analysis/shares.js'
+import { lineSummaries, outcomeResult } from './analysis/summaries.js'
+import { linesOfLayer, readLineLayer } from './borders/index.js'
+import type { Checked } from './problem.js'
+import { type LedgerStep, ledgerStep } from './records/index.js'
+import type { Analysis, Exhibits, InputFile, MapExhibit, OutcomeExhibit, OutcomeResult, UnitRows } from './results.js'
+import type { Study } from './study/index.js'
+
+export type { AnalysisInputs, LayerInput, Progress } from './analysis/inputs.js'
+export { positionColumns } from './analysis/inputs.js'
+export { metresPerUnit, type Placed } from './analysis/placing.js'
+export { placeStudy, wantedColumns }
+
+export interface AnalysisContext {
+  /** Version of the program, for the record. */
+  readonly version: string
+  /** Time of the run, ISO 8601, for the record. */
+  readonly started: string
+  readonly progress?: Progress
+}
+
+/**
+ * Runs the whole analysis. Problems of the study's schedule, zones or shares come back all at once; what the data
+ * can't answer is in the results with its reason. `results.seconds` is 0 for the caller to fill in.
+ */
+export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisContext): Checked<Analysis> {
+  const placed = placeStudy(study, inputs, context.progress)
+  if (!placed.ok) return placed
+  const { placement } = placed.value
+  const shares = sharesOfLines(study, inputs, placement)
+  if (!shares.ok) return shares
+  const ledger = [...placed.value.ledger]
+  const outcomes: OutcomeResult[] = []
+  const drawn: OutcomeExhibit[] = []
+  study.outcomes.forEach((outcome, i) => {
+    const entries = entriesOf(study, inputs.table, placement, outcome)
+    const total = study.outcomes.length * placement.lines.length
+    const estimates = estimateOutcome(study, placement, entries, shares.value, (done) =>
+      context.progress?.('estimating', i * placement.lines.length + done, total),
+    )
+    ledger.push(...outcomeSteps(outcome, placed.value.units, entries, estimates))
+    outcomes.push(outcomeResult(study, outcome, placement.lines, estimates))
+    drawn.push(outcomeExhibit(study, outcome, estimates))
+  })
+  return {
+    ok: true,
+    value: {
+      results: {
+        format: 'scarp-results/1',
+        title: study.title,
+        version: context.version,
+        seed: study.seed,
+        started: context.started,
+        seconds: 0,
+        inputs: inputFiles(inputs),
+        placement: {
+          read: inputs.table.rowsRead,
+          kept: inputs.table.rows,
+          placed: placed.value.units,
+          set_aside: Object.fromEntries([...placed.value.setAside].sort(([a], [b]) => (a < b ? -1 : 1))),
+        },
+        lines: lineSummaries(placement),
+        outcomes,
+        ledger,
+      },
+      exhibits: exhibitsOf(study, inputs, placed.value, drawn),
+      units: unitRows(placed.value),
+    },
+  }
+}
+
+/** Ledger of one outcome: units with the outcome, and units of positive weight in the pooled estimate. */
+function outcomeSteps(
+  outcome: string,
+  placedUnits: number,
+  entries: ReturnType<typeof entriesOf>,
+  { pooled }: OutcomeEstimates,
+): LedgerStep[] {
+  const withOutcome = ledgerStep(`${outcome}: outcome present`, placedUnits, { 'outcome missing': entries.missing })
+  if (hasReason(pooled)) return [withOutcome]
+  const used = new Set<number>()
+  for (const name of ['untreated', 'treated'] as const) {
+    const { unit } = pooled.sample[name]
+    for (let i = 0; i < pooled.jump.unitsInBandwidth[name]; i++) used.add(unit[i])
+  }
+  const outside = { 'outside the bandwidth': withOutcome.out - used.size }
+  return [withOutcome, ledgerStep(`${outcome}: within the pooled bandwidth`, withOutcome.out, outside)]
+}
+
+function outcomeExhibit(study: Study, outcome: string, { lines, pooled }: OutcomeEstimates): OutcomeExhibit {
+  const draw = (estimate: LineEstimate) => scatterOf(estimate, study.disclosure.smallestCell)
+  return {
+    outcome,
+    ...(hasReason(pooled) ? {} : { pooled: draw(pooled) }),
+    lines: lines.map((line) => (hasReason(line) ? null : draw(line))),
+  }
+}
+
+function exhibitsOf(study: Study, inputs: AnalysisInputs, placed: Placed, outcomes: OutcomeExhibit[]): Exhibits {
+  const { line } = study
+  const xUnit = line.kind === 'border' ? line.unit : line.kind === 'score' ? line.score : line.distance
+  const spread = line.kind === 'score' && line.rescale === 'spread'
+  const { border } = placed
+  const ids = placed.placement.lines.map(({ id }) => id)
+  return {
+    xUnit: spread ? `standard deviations of ${xUnit}` : xUnit,
+    isBorder: line.kind === 'border',
+    outcomes,
+    ...(border ? { map: mapOf(border, ids, barrierShapes(inputs)) } : {}),
+  }
+}
+
+function barrierShapes(inputs: AnalysisInputs): MapExhibit['barriers'] {
+  return (inputs.barriers ?? []).flatMap(({ content, file }) => {
+    const layer = readLineLayer(content, file)
+    return layer.ok ? [{ name: file, coordinates: linesOfLayer(layer.value) }] : []
+  })
+}
+
+function unitRows({ placement, ground, border }: Placed): UnitRows {
+  const { unit, line, treated, x } = placement
+  if (!ground || !border) return { unit, line, treated, x }
+  const pick = (values: Float64Array) => Float64Array.from(unit, (u) => values[u])
+  return {
+    unit,
+    line,
+    treated,
+    x,
+    ground: {
+      zone: Int32Array.from(unit, (u) => ground.zone[u]),
+      zoneNames: border.zones.names,
+      footLon: pick(ground.footLon),
+      footLat: pick(ground.footLat),
+      positionMetres: pick(ground.positionMetres),
+    },
+  }
+}
+
+function inputFiles({ table, schedule, zones, barriers = [] }: AnalysisInputs): InputFile[] {
+  const tables = [table, ...(schedule ? [schedule] : [])].map(({ file, sha256, rowsRead }) => ({
+    file,
+    sha256,
+    rows: rowsRead,
+  }))
+  const layers = [...(zones ? [zones] : []), ...barriers].map(({ file, sha256, content }) => ({
+    file,
+    sha256,
+    features: (content as { features?: unknown[] }).features?.length ?? 1,
+  }))
+  return [...tables, ...layers]
+}

@@ -1,0 +1,215 @@
+/**
+ * Plug-in bandwidths in stages: each minimises the estimated mean squared error of the number the next stage needs.
+ * Source: METHODS section 5; Imbens & Kalyanaraman 2012 (regularisation), Calonico, Cattaneo & Titiunik 2014 (stages),
+ * Calonico, Cattaneo & Farrell 2018, 2020 (coverage).
+ * Works in t = |x|: in every term the signs that odd powers take on the untreated side cancel.
+ */
+import { quantileOfSorted } from '../math/index.js'
+import { type Kernel, pilotConstant } from './kernel.js'
+import { addWeights, coefficientOf, fitLocal, functional, type LocalFit, responseOf } from './localPolynomial.js'
+import { neighbourResiduals } from './neighbours.js'
+import type { Sample, Side } from './sample.js'
+
+export interface BySide<T> {
+  readonly untreated: T
+  readonly treated: T
+}
+
+/** h for the estimate, b for its bias; in x units. */
+export interface Bandwidths {
+  readonly h: BySide<number>
+  readonly b: BySide<number>
+}
+
+/** A rule, or numbers in x units; without `bias`, b is the rule's, or equal to a fixed h. */
+export type BandwidthChoice =
+  | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number }
+  | { readonly kind: 'fixed'; readonly untreated: number; readonly treated: number; readonly bias?: number }
+
+export interface BandwidthOptions {
+  readonly order: number
+  readonly kernel: Kernel
+  readonly sides: 'common' | 'separate'
+  /** Sum σ̂² within clusters. */
+  readonly clustered: boolean
+}
+
+export type Chosen =
+  | { readonly ok: true; readonly bandwidths: Bandwidths }
+  | { readonly ok: false; readonly reason: string }
+
+/** Thrown inside a stage and turned into a reason at the door of this file. */
+class CannotFit extends Error {}
+
+/** Smallest and largest bandwidth the rule may answer with. */
+export interface Range {
+  readonly smallest: number
+  readonly largest: number
+}
+
+/** a_min: the larger over sides of the (20+p)-th smallest |x| (the last, on a shorter side) times 1 + 1e-9; a_max: max |x|. */
+export function bandwidthRange(sample: Sample, order: number): Range {
+  let smallest = 0
+  let largest = 0
+  for (const { t } of [sample.untreated, sample.treated]) {
+    if (t.length === 0) continue
+    smallest = Math.max(smallest, t[Math.min(20 + order, t.length) - 1])
+    largest = Math.max(largest, t[t.length - 1])
+  }
+  return { smallest: smallest * (1 + 1e-9), largest }
+}
+
+const clamp = (value: number, range: Range) =>
+  Math.min(Math.max(value, Math.min(range.smallest, range.largest)), range.largest)
+
+/** a0 = C·min(sd, IQR/1.349)·n^(−1/5) of the signed distances of both sides, kept in the range; sd alone where the IQR is 0. */
+export function pilotBandwidth(sample: Sample, kernel: Kernel, range: Range): number {
+  const signed = signedDistances(sample)
+  const n = signed.length
+  let mean = 0
+  for (let i = 0; i < n; i++) mean += signed[i] / n
+  let squares = 0
+  for (let i = 0; i < n; i++) squares += (signed[i] - mean) ** 2
+  const sd = Math.sqrt(squares / (n - 1))
+  const iqr = quantileOfSorted(signed, 0.75) - quantileOfSorted(signed, 0.25)
+  const spread = iqr > 0 ? Math.min(sd, iqr / 1.349) : sd
+  return clamp(pilotConstant[kernel] * spread * n ** -0.2, range)
+}
+
+function signedDistances({ untreated, treated }: Sample): Float64Array {
+  const left = untreated.t.length
+  const signed = new Float64Array(left + treated.t.length)
+  for (let i = 0; i < left; i++) signed[i] = -untreated.t[left - 1 - i]
+  signed.set(treated.t, left)
+  return signed
+}
+
+/** What one stage needs of one side. */
+interface Term {
+  readonly side: Side
+  readonly residuals: Float64Array
+  readonly sign: number
+}
+
+/** The bandwidths of a sample under a choice. */
+export function bandwidthsFor(sample: Sample, choice: BandwidthChoice, options: BandwidthOptions): Chosen {
+  const bias = choice.bias === undefined ? undefined : { untreated: choice.bias, treated: choice.bias }
+  if (choice.kind === 'fixed') {
+    const h = { untreated: choice.untreated, treated: choice.treated }
+    return { ok: true, bandwidths: { h, b: bias ?? h } }
+  }
+  if (sample.untreated.t.length === 0) return { ok: false, reason: 'untreated side: no units' }
+  if (sample.treated.t.length === 0) return { ok: false, reason: 'treated side: no units' }
+  const chosen = plugIn(sample, choice.rule, options)
+  return chosen.ok && bias ? { ok: true, bandwidths: { h: chosen.bandwidths.h, b: bias } } : chosen
+}
+
+/** Chooses h and b by the rule; a side that can't be fitted at some stage gives the reason. */
+function plugIn(sample: Sample, rule: 'mse' | 'coverage', options: BandwidthOptions): Chosen {
+  const terms: Term[] = [
+    { side: sample.untreated, residuals: neighbourResiduals(sample.untreated), sign: -1 },
+    { side: sample.treated, residuals: neighbourResiduals(sample.treated), sign: 1 },
+  ]
+  const range = bandwidthRange(sample, options.order)
+  const pilot = pilotBandwidth(sample, options.kernel, range)
+  const n = sample.untreated.t.length + sample.treated.t.length
+  try {
+    const pick = (used: readonly Term[]) => stages(used, pilot, range, n, rule, options)
+    if (options.sides === 'common') {
+      const { h, b } = pick(terms)
+      return { ok: true, bandwidths: { h: { untreated: h, treated: h }, b: { untreated: b, treated: b } } }
+    }
+    const [left, right] = terms.map((term) => pick([term]))
+    return {
+      ok: true,
+      bandwidths: { h: { untreated: left.h, treated: right.h }, b: { untreated: left.b, treated: right.b } },
+    }
+  } catch (error) {
+    if (error instanceof CannotFit) return { ok: false, reason: error.message }
+    throw error
+  }
+}
+
+function stages(
+  terms: readonly Term[],
+  pilot: number,
+  range: Range,
+  n: number,
+  rule: 'mse' | 'coverage',
+  options: BandwidthOptions,
+): { h: number; b: number } {
+  const { order: p, kernel, clustered } = options
+  const q = p + 1
+  const fitAt = (term: Term, order: number, h: number): LocalFit => {
+    const fitted = fitLocal(term.side, order, h, kernel)
+    if (fitted.ok) return fitted.fit
+    throw new CannotFit(`bandwidth rule, ${term.sign < 0 ? 'untreated' : 'treated'} side: ${fitted.reason}`)
+  }
+  const response = (term: Term, power: number, order: number, h: number) => {
+    const at = fitAt(term, order, h)
+    return responseOf(at, functional(at, power))
+  }
+  const coefficient = (term: Term, power: number, order: number, h: number) => {
+    const at = fitAt(term, order, h)
+    return { g: coefficientOf(at, power), v: spreadOf(term, at, power, clustered) }
+  }
+  const stage = (power: number, order: number, a: number, parts: readonly { g: number; v: number; s: number }[]) => {
+    let bias = 0
+    let regular = 0
+    let variance = 0
+    terms.forEach((term, i) => {
+      const at = fitAt(term, order, a)
+      const scaled = parts[i].s * responseOf(at, functional(at, power))
+      bias += term.sign * scaled * parts[i].g
+      regular += scaled * scaled * parts[i].v
+      variance += parts[i].s * parts[i].s * spreadOf(term, at, power, clustered)
+    })
+    const e = order + 1 - power
+    const numerator = (2 * power + 1) * variance * a ** (2 * power + 1)
+    const denominator = (2 * e * (bias * bias + 3 * regular)) / a ** (2 * e)
+    return clamp(denominator > 0 ? (numerator / denominator) ** (1 / (2 * order + 3)) : range.largest, range)
+  }
+  const first = terms.map((term) => response(term, 0, p, pilot))
+  const second = terms.map((term) => response(term, p + 1, q, pilot))
+  const whole = terms.map((term) => coefficient(term, q + 2, q + 2, Number.POSITIVE_INFINITY))
+  const d = stage(
+    q + 1,
+    q + 1,
+    pilot,
+    whole.map((part, i) => ({ ...part, s: first[i] * second[i] })),
+  )
+  const atD = terms.map((term) => coefficient(term, q + 1, q + 1, d))
+  const b = stage(
+    p + 1,
+    q,
+    pilot,
+    atD.map((part, i) => ({ ...part, s: first[i] })),
+  )
+  const atB = terms.map((term) => coefficient(term, p + 1, q, b))
+  const mse = stage(
+    0,
+    p,
+    pilot,
+    atB.map((part) => ({ ...part, s: 1 })),
+  )
+  const h = rule === 'mse' ? mse : clamp(mse * n ** (-p / ((2 * p + 3) * (p + 3))), range)
+  return { h, b }
+}
+
+/** Estimated variance of one coefficient of a fit: Σ a_i² σ̂²_i, or the sum of squared cluster sums Σ_g (Σ a_i r_i)². */
+function spreadOf(term: Term, fit: LocalFit, power: number, clustered: boolean): number {
+  const weights = new Float64Array(fit.count)
+  addWeights(weights, term.side, fit, functional(fit, power), 1)
+  let total = 0
+  if (!clustered || term.side.cluster === null) {
+    for (let i = 0; i < fit.count; i++) total += (weights[i] * term.residuals[i]) ** 2
+    return total
+  }
+  const sums = new Map<number, number>()
+  for (let i = 0; i < fit.count; i++) {
+    const g = term.side.cluster[i]
+    sums.set(g, (sums.get(g) ?? 0) + weights[i] * term.residuals[i])
+  }
+  for (const value of sums.values()) total += value * value
+  return total
+}

@@ -1,0 +1,19 @@
+/** Door of the jump room: the estimate at one line, on typed arrays. */
+export {
+  type BandwidthChoice,
+  type BandwidthOptions,
+  type Bandwidths,
+  type BySide,
+  bandwidthRange,
+  bandwidthsFor,
+  type Chosen,
+  pilotBandwidth,
+} from './bandwidth.js'
+export { type Estimated, type JumpFit, type JumpOptions, jumpAt } from './estimate.js'
+export { type Inference, infer, satterthwaite } from './inference.js'
+export { covarianceMatrix, type Influence, varianceOf } from './influence.js'
+export { countWithin, type Kernel, kernelValue } from './kernel.js'
+export { fitLocal, fittedAt, type LocalFit, weigher } from './localPolynomial.js'
+export { neighbourResiduals } from './neighbours.js'
+export { buildSample, type Entries, type Sample, type Side, withOutcomes } from './sample.js'
+export type { Variance } from './variance.js'

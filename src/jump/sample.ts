@@ -1,0 +1,123 @@
+/**
+ * The units of one estimate, split at the line and sorted by distance from it.
+ * Ties in distance are ordered by line, outcome, weight and cluster, so that the order of rows in a file
+ * cannot change a single bit of any sum.
+ */
+import { argsortBy } from '../math/index.js'
+
+/** One side of the line; arrays of equal length, by increasing t. */
+export interface Side {
+  /** |x| >= 0. */
+  readonly t: Float64Array
+  /** Outcome less the sample's `centre`. */
+  readonly y: Float64Array
+  /** Sampling weights > 0; null: all 1. */
+  readonly w: Float64Array | null
+  /** Row of the unit. */
+  readonly unit: Int32Array
+  /** Cluster code >= 0; null: not clustered. */
+  readonly cluster: Int32Array | null
+  /** Line of the entry, where several lines are pooled; null: one line. */
+  readonly group: Int32Array | null
+}
+
+export interface Sample {
+  readonly untreated: Side
+  readonly treated: Side
+  /** Mean outcome of all entries, taken out of y for accuracy. */
+  readonly centre: number
+  /** Whether a unit may have several entries (lines of a ladder pooled). */
+  readonly repeats: boolean
+}
+
+/** Entries of a placement with what an estimate needs of them; arrays of equal length. */
+export interface Entries {
+  readonly x: Float64Array
+  readonly treated: Uint8Array
+  readonly unit: Int32Array
+  readonly y: Float64Array
+  readonly w?: Float64Array
+  readonly cluster?: Int32Array
+  readonly group?: Int32Array
+  /** Whether a unit may appear more than once. */
+  readonly repeats?: boolean
+}
+
+/** Splits and sorts entries. y must be finite, w > 0, cluster codes >= 0; entries with |x| < donut are left out. */
+export function buildSample(entries: Entries, donut = 0): Sample {
+  const n = entries.x.length
+  if (entries.y.length !== n) throw new RangeError(`x has ${n} entries, y has ${entries.y.length}`)
+  const picks = [new Int32Array(n), new Int32Array(n)]
+  const counts = [0, 0]
+  let total = 0
+  for (let i = 0; i < n; i++) {
+    if (donut > 0 && Math.abs(entries.x[i]) < donut) continue
+    const side = entries.treated[i]
+    picks[side][counts[side]++] = i
+  }
+  const sides = picks.map((pick, side) => sortSide(entries, pick.subarray(0, counts[side])))
+  for (const side of sides) total += blockSum(side.y)
+  const centre = counts[0] + counts[1] > 0 ? total / (counts[0] + counts[1]) : 0
+  for (const side of sides) for (let i = 0; i < side.y.length; i++) side.y[i] -= centre
+  return { untreated: sides[0], treated: sides[1], centre, repeats: entries.repeats ?? false }
+}
+
+function sortSide(entries: Entries, pick: Int32Array): Side {
+  const t = new Float64Array(pick.length)
+  for (let i = 0; i < t.length; i++) t[i] = Math.abs(entries.x[pick[i]])
+  const keys = [t]
+  for (const values of [entries.group, entries.y, entries.w, entries.cluster]) {
+    if (values) keys.push(Float64Array.from(pick, (i) => values[i]))
+  }
+  const order = argsortBy(keys)
+  const sorted = new Int32Array(pick.length)
+  for (let i = 0; i < sorted.length; i++) sorted[i] = pick[order[i]]
+  const take = (values: Float64Array) => {
+    const out = new Float64Array(sorted.length)
+    for (let i = 0; i < out.length; i++) out[i] = values[sorted[i]]
+    return out
+  }
+  const takeCodes = (values: Int32Array) => {
+    const out = new Int32Array(sorted.length)
+    for (let i = 0; i < out.length; i++) out[i] = values[sorted[i]]
+    return out
+  }
+  const distances = new Float64Array(order.length)
+  for (let i = 0; i < distances.length; i++) distances[i] = t[order[i]]
+  return {
+    t: distances,
+    y: take(entries.y),
+    w: entries.w ? take(entries.w) : null,
+    unit: takeCodes(entries.unit),
+    cluster: entries.cluster ? takeCodes(entries.cluster) : null,
+    group: entries.group ? takeCodes(entries.group) : null,
+  }
+}
+
+/** Sum in blocks of 4,096, which keeps rounding near that of pairwise summation. */
+export function blockSum(values: Float64Array): number {
+  let total = 0
+  for (let start = 0; start < values.length; start += 4096) {
+    const end = Math.min(values.length, start + 4096)
+    let part = 0
+    for (let i = start; i < end; i++) part += values[i]
+    total += part
+  }
+  return total
+}
+
+/** The same sample with other outcomes (already centred), as after covariates or fixed effects are taken out. */
+export function withOutcomes(sample: Sample, untreated: Float64Array, treated: Float64Array): Sample {
+  return {
+    ...sample,
+    untreated: { ...sample.untreated, y: untreated },
+    treated: { ...sample.treated, y: treated },
+  }
+}
+
+/** Number of distinct values among the first `count` ascending values, counting no further than `enough`. */
+export function distinctWithin(t: Float64Array, count: number, enough = Number.POSITIVE_INFINITY): number {
+  let distinct = 0
+  for (let i = 0; i < count && distinct < enough; i++) if (i === 0 || t[i] !== t[i - 1]) distinct++
+  return distinct
+}
