@@ -34,7 +34,11 @@ function ours(data: Data, order: number, kernel: KernelName, rule: 'mse' | 'cove
     w: data.w && Float64Array.from(data.w),
     cluster: data.cluster && Int32Array.from(data.cluster),
   })
-  const chosen = bandwidthsFor(sample, { kind: 'rule', rule }, { order, kernel, sides, clustered: data.cluster !== undefined })
+  const chosen = bandwidthsFor(
+    sample,
+    { kind: 'rule', rule },
+    { order, kernel, sides, clustered: data.cluster !== undefined },
+  )
   if (!chosen.ok) throw new Error(chosen.reason)
   return chosen.bandwidths
 }

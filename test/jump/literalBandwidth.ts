@@ -73,7 +73,11 @@ function neighbourResiduals(x: number[], y: number[]): number[] {
 const dot = (a: number[], b: number[]) => a.reduce((sum, value, i) => sum + value * b[i], 0)
 
 function spread(side: SideData, a: number[]): number {
-  if (side.cluster === null) return dot(a.map((v) => v * v), side.sigma.map((v) => v * v))
+  if (side.cluster === null)
+    return dot(
+      a.map((v) => v * v),
+      side.sigma.map((v) => v * v),
+    )
   const sums = new Map<number, number>()
   a.forEach((v, i) => {
     const g = (side.cluster as number[])[i]
@@ -127,7 +131,10 @@ export function literalBandwidths(
   const a0 = keep(constant * (iqr > 0 ? Math.min(sd, iqr / 1.349) : sd) * n ** -0.2)
 
   const response = (side: SideData, nu: number, rho: number, a: number) =>
-    dot(weightsOf(side, nu, rho, a, kernel), side.x.map((x) => x ** (rho + 1)))
+    dot(
+      weightsOf(side, nu, rho, a, kernel),
+      side.x.map((x) => x ** (rho + 1)),
+    )
   const coefficient = (side: SideData, nu: number, order: number, a: number | null) => {
     const weights = weightsOf(side, nu, order, a, kernel)
     return { g: dot(weights, side.y), v: spread(side, weights) }
@@ -139,7 +146,10 @@ export function literalBandwidths(
       let V = 0
       for (const k of which) {
         const weights = weightsOf(sides[k], nu, rho, a, kernel)
-        const c = dot(weights, sides[k].x.map((x) => x ** (rho + 1)))
+        const c = dot(
+          weights,
+          sides[k].x.map((x) => x ** (rho + 1)),
+        )
         B += sgn[k] * s[k] * c * g[k]
         R += (s[k] * c) ** 2 * v[k]
         V += s[k] ** 2 * spread(sides[k], weights)
@@ -152,11 +162,32 @@ export function literalBandwidths(
     const cp = sides.map((side) => response(side, 0, p, a0))
     const cq = sides.map((side) => response(side, p + 1, q, a0))
     const first = sides.map((side) => coefficient(side, q + 2, q + 2, null))
-    const d = stage(q + 1, q + 1, a0, first.map(({ g }) => g), first.map(({ v }) => v), cp.map((c, k) => c * cq[k]))
+    const d = stage(
+      q + 1,
+      q + 1,
+      a0,
+      first.map(({ g }) => g),
+      first.map(({ v }) => v),
+      cp.map((c, k) => c * cq[k]),
+    )
     const second = sides.map((side) => coefficient(side, q + 1, q + 1, d))
-    const b = stage(p + 1, q, a0, second.map(({ g }) => g), second.map(({ v }) => v), cp)
+    const b = stage(
+      p + 1,
+      q,
+      a0,
+      second.map(({ g }) => g),
+      second.map(({ v }) => v),
+      cp,
+    )
     const third = sides.map((side) => coefficient(side, p + 1, q, b))
-    const h = stage(0, p, a0, third.map(({ g }) => g), third.map(({ v }) => v), [1, 1])
+    const h = stage(
+      0,
+      p,
+      a0,
+      third.map(({ g }) => g),
+      third.map(({ v }) => v),
+      [1, 1],
+    )
     return { h: rule === 'mse' ? h : keep(h * n ** (-p / ((2 * p + 3) * (p + 3)))), b }
   }
   const common = run([0, 1])
