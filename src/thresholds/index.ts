@@ -1,0 +1,11 @@
+/** Door of the thresholds room: units placed by score or by given distance, and lines compared. */
+export { type CompareOptions, type CompareOutcome, type ComparisonResult, compareLines } from './compare.js'
+export type { CutoffSource, MissingKey } from './cutoffs.js'
+export { type DistanceInput, placeByDistance } from './distance.js'
+export type { LineEffects } from './effects.js'
+export type { Labels } from './labels.js'
+export { placeByScore, type ScorePlacement, type ScorePlacementInput } from './placeByScore.js'
+export { type Pooled, type PoolOptions, poolLines } from './pool.js'
+export { readSchedule, type Schedule, type ScheduleRows, scheduleKey } from './schedule.js'
+export type { TreatedSide } from './side.js'
+export { type TargetEffect, type TargetKind, targetEffect } from './targets.js'
