@@ -5,7 +5,7 @@
 import { dirname, resolve } from 'node:path'
 import type { AnalysisInputs, LayerInput, Progress } from '../analyze.js'
 import type { Checked, Problem } from '../problem.js'
-import type { Table } from '../records/index.js'
+import type { Column, Table, WantedColumn } from '../records/index.js'
 import type { Study } from '../study/index.js'
 import { readJsonFile, readTextFile } from './textFile.js'
 
@@ -41,53 +41,94 @@ function namedFiles(study: Study): string[] {
   return files
 }
 
-/** Records, schedule, zones and barriers, side by side; the problems of all of them. */
+/** Records, schedule, zones and barriers; the problems of all of them. */
 export async function readInputs(from: StudyFile, progress?: Progress): Promise<Checked<AnalysisInputs>> {
   const { study } = from
-  const { line } = study
-  const { wantedColumns } = await import('../analyze.js')
-  const wanted = wantedColumns(study)
-  const at = (name: string) => resolve(dirname(from.file), name)
-  const { readTable } = await import('../records/files.js')
-
   progress?.('reading', 0, 1)
-  const table = readTable(at(study.records.file), {
-    wanted: wanted.records,
-    keep: study.records.keep,
-    keepAskedBy: 'records.keep',
-    shownAs: study.records.file,
-    positionFromGeometry: line.kind === 'border' && study.records.position === undefined,
-  })
-  const schedule =
-    line.kind === 'score' && line.cutoff.kind === 'schedule'
-      ? readTable(at(line.cutoff.file), { wanted: wanted.schedule ?? [], shownAs: line.cutoff.file })
-      : undefined
-  const zones = line.kind === 'border' ? readLayer(at(line.zones), line.zones, 'line.zones') : undefined
-  const barriers =
-    line.kind === 'border'
-      ? line.barriers.map((barrier, i) => readLayer(at(barrier.file), barrier.file, `line.barriers[${i}].file`))
-      : []
-
   const problems: Problem[] = []
-  const inputs = {
-    table: keep(await table, problems),
-    schedule: schedule && keep(await schedule, problems),
-    zones: zones && keep(await zones, problems),
-    barriers: (await Promise.all(barriers)).map((barrier) => keep(barrier, problems)),
-  }
+  const found = await readParts(from, problems)
   progress?.('reading', 1, 1)
-  if (problems.length > 0) return { ok: false, problems }
-  return { ok: true, value: inputs as { table: Table; schedule?: Table; zones?: LayerInput; barriers: LayerInput[] } }
+  if (problems.length === 0) return { ok: true, value: { ...found, table: found.table! } }
+  return { ok: false, problems: [...problems, ...(await otherProblems(study, found))] }
+}
+
+interface Parts {
+  readonly table?: Table
+  readonly schedule?: Table
+  readonly zones?: LayerInput
+  readonly barriers: readonly LayerInput[]
+}
+
+/** What could be read; the problems of the rest are added to `problems` in the order of the study. */
+async function readParts({ study, file }: StudyFile, problems: Problem[]): Promise<Parts> {
+  const { line, records } = study
+  const at = (name: string) => resolve(dirname(file), name)
+  const keep = <T>(checked: Checked<T>): T | undefined => {
+    if (checked.ok) return checked.value
+    problems.push(...checked.problems)
+    return undefined
+  }
+  const { wantedColumns } = await import('../analyze.js')
+  const { headerOf, readTable } = await import('../records/files.js')
+  const scheduleFile = line.kind === 'score' && line.cutoff.kind === 'schedule' ? line.cutoff.file : undefined
+  const header = scheduleFile === undefined ? undefined : await headerOf(at(scheduleFile), scheduleFile)
+  const wanted = wantedColumns(study, header?.ok ? header.value : [])
+  const table = keep(
+    await readTable(at(records.file), {
+      wanted: wanted.records,
+      keep: records.keep,
+      keepAskedBy: 'records.keep',
+      shownAs: records.file,
+      positionFromGeometry: line.kind === 'border' && records.position === undefined,
+    }),
+  )
+  const schedule =
+    scheduleFile === undefined || header === undefined
+      ? undefined
+      : keep(
+          header.ok
+            ? await readTable(at(scheduleFile), { wanted: wanted.schedule ?? [], shownAs: scheduleFile })
+            : header,
+        )
+  if (line.kind !== 'border') return { table, schedule, barriers: [] }
+  const zones = keep(await readLayer(at(line.zones), line.zones, 'line.zones'))
+  const barriers: LayerInput[] = []
+  for (const [i, barrier] of line.barriers.entries()) {
+    const layer = keep(await readLayer(at(barrier.file), barrier.file, `line.barriers[${i}].file`))
+    if (layer) barriers.push(layer)
+  }
+  return { table, zones, barriers }
+}
+
+/** Problems of the parts that could be read, where others could not: they are placed with no units at all. */
+async function otherProblems(study: Study, { schedule, zones, barriers }: Parts): Promise<readonly Problem[]> {
+  const { line } = study
+  const { placeStudy, wantedColumns } = await import('../analyze.js')
+  const table = emptyTable(study.records.file, wantedColumns(study).records)
+  if (line.kind === 'border' && zones !== undefined) {
+    const near = barriers.map((barrier) => line.barriers.find(({ file }) => file === barrier.file)!)
+    const placed = placeStudy({ ...study, line: { ...line, barriers: near } }, { table, zones, barriers })
+    return placed.ok ? [] : placed.problems
+  }
+  if (schedule !== undefined) {
+    const placed = placeStudy(study, { table, schedule })
+    return placed.ok ? [] : placed.problems
+  }
+  return []
+}
+
+function emptyTable(file: string, wanted: readonly WantedColumn[]): Table {
+  const columns = wanted.map(({ name, kind }): [string, Column] => [
+    name,
+    kind === 'number'
+      ? { kind, name, values: new Float64Array(0) }
+      : { kind, name, codes: new Int32Array(0), labels: [] },
+  ])
+  return { file, rowsRead: 0, rows: 0, lineOfRow: new Int32Array(0), columns: new Map(columns), sha256: '' }
 }
 
 export async function readLayer(path: string, shownAs: string, askedBy: string): Promise<Checked<LayerInput>> {
   const layer = await readJsonFile(path, { shownAs, askedBy, mostBytes: mostLayerBytes })
   if (!layer.ok) return layer
   return { ok: true, value: { file: shownAs, content: layer.value.content, sha256: layer.value.sha256 } }
-}
-
-function keep<T>(checked: Checked<T>, problems: Problem[]): T | undefined {
-  if (checked.ok) return checked.value
-  problems.push(...checked.problems)
-  return undefined
 }

@@ -36,7 +36,7 @@ function commands(done: (code: ExitCode) => void): Command {
     .helpOption('-h, --help', 'print this help')
     .helpCommand('help [command]', 'print the help of a command')
     .exitOverride()
-    .configureOutput({ outputError: () => {} })
+    .configureOutput({ writeErr: () => {}, outputError: () => {} })
     .addHelpText(
       'after',
       '\nExit codes: 0 done, 1 a fault in the program, 2 the study, a table or a geometry can not be used, 3 nothing can be estimated.',

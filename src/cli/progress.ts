@@ -15,13 +15,16 @@ export function progressLine(quiet: boolean): ProgressLine {
   const { stderr } = process
   if (quiet || !stderr.isTTY) return { clear: () => {} }
   let drawn = ''
+  let stageDrawn = ''
   let last = 0
   const progress: Progress = (stage, done, total) => {
     const now = Date.now()
+    if (stage === stageDrawn && done < total && now - last < millisecondsBetween) return
     const text = lineText(stage, done, total)
-    if (text === drawn || (now - last < millisecondsBetween && done < total)) return
+    if (text === drawn) return
     stderr.write(`\r\x1b[K${text}`)
     drawn = text
+    stageDrawn = stage
     last = now
   }
   const clear = () => {
