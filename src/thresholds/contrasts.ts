@@ -131,10 +131,11 @@ function drawnQuantile(
   random: Random,
   draws: number,
 ): number {
-  const count = effects.ids.length
-  const lineErrors = variancesOf(effects).map(Math.sqrt)
-  const factor = effects.isDiagonal ? undefined : factorOfCorrelation(effects.covariance, lineErrors)
-  const inverse = standardErrors.map((standardError) => (standardError > 0 ? 1 / standardError : 0))
+  const variance = variancesOf(effects)
+  const scale = variance.map(Math.sqrt)
+  const count = variance.length
+  const factor = effects.isDiagonal ? undefined : factorOfCorrelation(effects.covariance, scale)
+  const search = searchOf(standardErrors, variance)
   const normal = new Float64Array(count)
   const drawn = new Float64Array(count)
   const largest = new Float64Array(draws)
@@ -146,24 +147,75 @@ function drawnQuantile(
         value = 0
         for (let k = 0; k <= a; k++) value += factor[a * count + k] * normal[k]
       }
-      drawn[a] = value * lineErrors[a]
+      drawn[a] = value * scale[a]
     }
-    largest[draw] = largestOf(drawn, inverse)
+    largest[draw] = largestRatio(drawn, search)
   }
   largest.sort()
   return largest[Math.min(draws, Math.ceil(level * (draws + 1))) - 1]
 }
 
-/** The largest |difference| times its inverse standard error. */
-function largestOf(drawn: Float64Array, inverse: Float64Array): number {
-  let largest = 0
+interface RatioSearch {
+  /** L x L: one over the standard error of each difference, 0 where it has no variance of its own. */
+  readonly inverse: Float64Array
+  /** 1/v by line. */
+  readonly precision: Float64Array
+  /** The largest (v_a + v_b)/variance of the difference, over the contrasts; 1 for independent lines. */
+  readonly inflation: number
+  /** Scratch, by line. */
+  readonly squared: Float64Array
+}
+
+function searchOf(standardErrors: Float64Array, variance: Float64Array): RatioSearch {
+  const count = variance.length
+  const inverse = new Float64Array(count * count)
+  let inflation = 0
   let pair = 0
-  for (let a = 0; a < drawn.length; a++) {
-    const value = drawn[a]
-    for (let b = a + 1; b < drawn.length; b++) {
-      const ratio = Math.abs(value - drawn[b]) * inverse[pair++]
-      if (ratio > largest) largest = ratio
+  for (let a = 0; a < count; a++) {
+    for (let b = a + 1; b < count; b++) {
+      const standardError = standardErrors[pair++]
+      if (standardError === 0) continue
+      inverse[a * count + b] = inverse[b * count + a] = 1 / standardError
+      inflation = Math.max(inflation, (variance[a] + variance[b]) / standardError ** 2)
     }
+  }
+  return { inverse, precision: variance.map((value) => 1 / value), inflation, squared: new Float64Array(count) }
+}
+
+/**
+ * The largest |t| over the contrasts of one draw. With u_a the distance of line a from a common centre in standard errors of
+ * its own, t² of a pair is at most inflation · (u_a² + u_b²) by Cauchy and Schwarz. So once the line farthest out has
+ * been compared with all others, most lines need not be looked at.
+ */
+function largestRatio(drawn: Float64Array, { inverse, precision, inflation, squared }: RatioSearch): number {
+  const count = drawn.length
+  let weight = 0
+  let weighted = 0
+  for (let a = 0; a < count; a++) {
+    weight += precision[a]
+    weighted += precision[a] * drawn[a]
+  }
+  const centre = weighted / weight
+  let farthest = 0
+  for (let a = 0; a < count; a++) {
+    squared[a] = precision[a] * (drawn[a] - centre) ** 2
+    if (squared[a] > squared[farthest]) farthest = a
+  }
+  let largest = largestInRow(drawn, inverse, farthest, 0)
+  for (let a = 0; a < count; a++) {
+    if (inflation * (squared[a] + squared[farthest]) <= largest * largest) continue
+    largest = Math.max(largest, largestInRow(drawn, inverse, a, a + 1))
+  }
+  return largest
+}
+
+/** The largest |t| of line a against the lines from `from` on. */
+function largestInRow(drawn: Float64Array, inverse: Float64Array, a: number, from: number): number {
+  const count = drawn.length
+  let largest = 0
+  for (let b = from; b < count; b++) {
+    const ratio = Math.abs(drawn[a] - drawn[b]) * inverse[a * count + b]
+    if (ratio > largest) largest = ratio
   }
   return largest
 }

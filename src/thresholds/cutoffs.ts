@@ -127,9 +127,11 @@ function ofSchedule(schedule: Schedule, keys: readonly Labels[], fate: Uint8Arra
 
 function ofLadder(steps: Float64Array, score: Float64Array, treated: TreatedSide): CutoffsServed {
   const { unit, step } = ladderEntries(score, steps, treated)
+  const cutoff = new Float64Array(step.length)
+  for (let e = 0; e < step.length; e++) cutoff[e] = steps[step[e]]
   return {
     unit,
-    cutoff: Float64Array.from(step, (k) => steps[k]),
+    cutoff,
     groups: { ofRow: step, values: Array.from(steps, (value) => [String(value)]) },
     names: ['cutoff'],
     fixedCutoffs: steps,

@@ -1,6 +1,7 @@
 /** Are all lines' effects equal? */
-import { chiSquareUpper, choleskyInPlace, choleskySolveInPlace, quadraticFormPseudoInverse } from '../math/index.js'
+import { chiSquareUpper, choleskyInPlace, choleskySolveInPlace } from '../math/index.js'
 import { type LineEffects, variancesOf } from './effects.js'
+import { dot, quadraticFormByRank } from './rank.js'
 
 export interface WaldTest {
   readonly statistic: number
@@ -78,7 +79,7 @@ function waldByRank(centred: Float64Array, effects: LineEffects): Statistic {
       doublyCentred[a * count + b] = effects.covariance[a * count + b] - rowMean[a] - rowMean[b] + mean
     }
   }
-  const { statistic, rank } = quadraticFormPseudoInverse(doublyCentred, count, centred)
+  const { statistic, rank } = quadraticFormByRank(doublyCentred, centred)
   return { statistic, df: rank }
 }
 
@@ -98,10 +99,4 @@ function lessTheirMean(values: Float64Array): Float64Array {
   let mean = 0
   for (let a = 0; a < values.length; a++) mean += values[a] / values.length
   return values.map((value) => value - mean)
-}
-
-function dot(a: Float64Array, b: Float64Array): number {
-  let sum = 0
-  for (let k = 0; k < a.length; k++) sum += a[k] * b[k]
-  return sum
 }

@@ -1,6 +1,6 @@
 import { readFileSync } from 'node:fs'
 import { describe, expect, test } from 'vitest'
-import { seededRandom } from '../../src/math/index.js'
+import { choleskyInPlace, seededRandom } from '../../src/math/index.js'
 import { type Contrasts, contrastsOf, LARGEST_LIST } from '../../src/thresholds/contrasts.js'
 import type { LineEffects } from '../../src/thresholds/index.js'
 
@@ -86,6 +86,44 @@ describe('critical value of the largest |t|', () => {
     const critical = criticalOf(exchangeable(150, 0), 0.95)
     expect(critical).toBeGreaterThan(golden.critical.range150_95)
     expect(critical).toBeLessThan(golden.critical.range150_95 * 1.025)
+  })
+
+  test('the search for the largest |t| passes over no pair: the same draws, every pair looked at', () => {
+    const count = 12
+    const draws = 400
+    const variance = Array.from({ length: count }, (_, a) => 10 ** ((a % 5) - 2))
+    for (const shared of [0, 0.7]) {
+      const correlation = new Float64Array(count * count)
+      for (let a = 0; a < count; a++) {
+        for (let b = 0; b < count; b++) correlation[a * count + b] = a === b ? 1 : shared ** Math.abs(a - b)
+      }
+      const covariance = Array.from(correlation, (value, k) => {
+        return value * Math.sqrt(variance[Math.floor(k / count)] * variance[k % count])
+      })
+      const effects = effectsOf(new Array(count).fill(0), covariance, shared === 0)
+      choleskyInPlace(correlation, count)
+      const random = seededRandom(17)
+      const maxima = Array.from({ length: draws }, () => {
+        const normal = Array.from({ length: count }, () => random.normal())
+        const drawn = variance.map((v, a) => {
+          let value = 0
+          for (let k = 0; k <= a; k++) value += correlation[a * count + k] * normal[k]
+          return Math.sqrt(v) * value
+        })
+        let largest = 0
+        for (let a = 0; a < count; a++) {
+          for (let b = 0; b < a; b++) {
+            const error = Math.sqrt(variance[a] + variance[b] - 2 * covariance[a * count + b])
+            largest = Math.max(largest, Math.abs(drawn[a] - drawn[b]) / error)
+          }
+        }
+        return largest
+      })
+      maxima.sort((a, b) => a - b)
+      for (const level of [0.5, 0.9]) {
+        expect(criticalOf(effects, level, draws, 17)).toBeCloseTo(maxima[Math.ceil(level * (draws + 1)) - 1], 11)
+      }
+    }
   })
 
   test('the same seed gives the same value, another seed another', () => {
