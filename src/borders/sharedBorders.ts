@@ -1,0 +1,206 @@
+/**
+ * Shared borders of treated and untreated zones: the parts of each treated zone's boundary within the tolerance of an
+ * untreated zone's (METHODS section 10), as paths along the treated boundary. No vertex is ever moved.
+ */
+import { type Boundaries, pointOfEdge } from './boundaries.js'
+import { edgeLengthMetres } from './geodesy.js'
+import { EXACT, NEAR, type Nearness, nearestOfZone, SAME_SIDE, samePlaceMetres } from './nearness.js'
+
+/** One unbroken stretch of a treated zone's boundary, shared with one untreated zone. */
+export interface SharedPath {
+  readonly treated: number
+  readonly untreated: number
+  /** [longitude, latitude], at least two; first and last are equal where a whole ring is shared. */
+  readonly points: readonly (readonly [number, number])[]
+  /** For each step from a point to the next: do the two boundaries coincide there? */
+  readonly isExact: readonly boolean[]
+  /** A whole ring. */
+  readonly isClosed: boolean
+  /** Does another untreated zone's path take over at once at the start, and at the end? */
+  readonly isFollowed: readonly [start: boolean, end: boolean]
+}
+
+interface Claim {
+  readonly edge: number
+  readonly from: number
+  readonly to: number
+  readonly zone: number
+  readonly isExact: boolean
+}
+
+/**
+ * Every shared stretch, whiskers included. `isTreated` is by zone. A stretch near two untreated zones goes to the
+ * nearer, cut where they are equally near; a coincident boundary goes first.
+ */
+export function sharedPaths(
+  boundaries: Boundaries,
+  nearness: Nearness,
+  isTreated: Uint8Array,
+  metres: number,
+): SharedPath[] {
+  const { ringStart, zoneOfRing } = boundaries
+  const paths: SharedPath[] = []
+  for (let ring = 0; ring + 1 < ringStart.length; ring++) {
+    if (!isTreated[zoneOfRing[ring]]) continue
+    const claims: Claim[] = []
+    for (let e = ringStart[ring]; e < ringStart[ring + 1]; e++) {
+      claimsOfEdge(boundaries, nearness, isTreated, metres, e, claims)
+    }
+    paths.push(...pathsOfRing(boundaries, ring, claims))
+  }
+  return paths
+}
+
+/** Cuts one edge where claims begin and end, and gives each part to the zone with the best claim. */
+function claimsOfEdge(
+  boundaries: Boundaries,
+  nearness: Nearness,
+  isTreated: Uint8Array,
+  metres: number,
+  e: number,
+  claims: Claim[],
+): void {
+  const { edges } = boundaries
+  const [first, last] = [nearness.start[e], nearness.start[e + 1]]
+  const cuts: number[] = []
+  for (let i = first; i < last; i++) {
+    if (!isTreated[nearness.zone[i]]) cuts.push(nearness.from[i], nearness.to[i])
+  }
+  if (cuts.length === 0) return
+  cuts.sort((a, b) => a - b)
+  const length = edgeLengthMetres(edges.lon0[e], edges.lat0[e], edges.lon1[e], edges.lat1[e])
+  const slack = samePlaceMetres / length
+  const add = (from: number, to: number, zone: number, isExact: boolean) => {
+    const before = claims[claims.length - 1]
+    const isSame = before && before.edge === e && before.zone === zone && before.isExact === isExact
+    if (isSame && from <= before.to + slack) claims[claims.length - 1] = { ...before, to }
+    else claims.push({ edge: e, from, to, zone, isExact })
+  }
+  for (let c = 0; c + 1 < cuts.length; c++) {
+    const [from, to] = [cuts[c], cuts[c + 1]]
+    if (to - from <= slack) continue
+    const { exact, near } = claimants(nearness, isTreated, first, last, (from + to) / 2)
+    if (exact.length > 0) add(from, to, exact[0], true)
+    else if (near.length === 1) add(from, to, near[0], false)
+    else if (near.length > 1) {
+      for (const part of nearerParts(boundaries, near, e, from, to, length, metres)) {
+        add(part.from, part.to, part.zone, false)
+      }
+    }
+  }
+}
+
+/** Untreated zones with a claim at fraction t of an edge; nearness lists each zone's kinds together, NEAR first. */
+function claimants(nearness: Nearness, isTreated: Uint8Array, first: number, last: number, t: number) {
+  const exact: number[] = []
+  const near: number[] = []
+  const overlapping: number[] = []
+  for (let i = first; i < last; i++) {
+    const zone = nearness.zone[i]
+    if (isTreated[zone] || t < nearness.from[i] || t > nearness.to[i]) continue
+    if (nearness.kind[i] === NEAR) near.push(zone)
+    else if (nearness.kind[i] === EXACT) exact.push(zone)
+    else if (nearness.kind[i] === SAME_SIDE) overlapping.push(zone)
+  }
+  return {
+    exact: exact.filter((zone) => !overlapping.includes(zone)),
+    near: near.filter((zone) => !overlapping.includes(zone)),
+  }
+}
+
+interface Part {
+  from: number
+  to: number
+  zone: number
+}
+
+/**
+ * Splits a stretch of an edge between the zones near it: sampled every quarter of the tolerance (at most 64 samples),
+ * and where neighbouring samples disagree the change is found by bisection.
+ */
+function nearerParts(
+  boundaries: Boundaries,
+  zones: readonly number[],
+  e: number,
+  from: number,
+  to: number,
+  length: number,
+  metres: number,
+): Part[] {
+  const nearest = (t: number): number => {
+    const [lon, lat] = pointOfEdge(boundaries.edges, e, t)
+    let best = zones[0]
+    let least = Infinity
+    for (const zone of zones) {
+      const distance = nearestOfZone(boundaries, zone, lon, lat, 1.01 * metres)?.metres ?? Infinity
+      if (distance < least - samePlaceMetres) {
+        best = zone
+        least = distance
+      }
+    }
+    return best
+  }
+  const steps = Math.min(64, Math.max(1, Math.ceil(((to - from) * length) / (metres / 4))))
+  const inset = Math.min((to - from) / 4, 1e-4 / length)
+  const at = (i: number) => (i === 0 ? from + inset : i === steps ? to - inset : from + (i * (to - from)) / steps)
+  const parts: Part[] = [{ from, to, zone: nearest(at(0)) }]
+  for (let i = 1; i <= steps; i++) {
+    const current = parts[parts.length - 1]
+    const next = nearest(at(i))
+    if (next === current.zone) continue
+    let [low, high] = [at(i - 1), at(i)]
+    while ((high - low) * length > samePlaceMetres) {
+      const middle = (low + high) / 2
+      if (middle <= low || middle >= high) break
+      if (nearest(middle) === current.zone) low = middle
+      else high = middle
+    }
+    current.to = high
+    parts.push({ from: high, to, zone: next })
+  }
+  return parts
+}
+
+/** Joins the claims of a ring that run on into each other and go to the same zone. */
+function pathsOfRing(boundaries: Boundaries, ring: number, claims: readonly Claim[]): SharedPath[] {
+  const { ringStart } = boundaries
+  const [firstEdge, lastEdge] = [ringStart[ring], ringStart[ring + 1] - 1]
+  const meets = (a: Claim, b: Claim) => {
+    if (a.edge === b.edge && b.from >= a.to - 1e-9) return b.from - a.to < 1e-9
+    const isNext = b.edge === a.edge + 1 || (a.edge === lastEdge && b.edge === firstEdge)
+    return isNext && a.to === 1 && b.from === 0
+  }
+  const follows = (a: Claim, b: Claim) => a.zone === b.zone && meets(a, b)
+  const runs: Claim[][] = []
+  for (const claim of claims) {
+    const run = runs[runs.length - 1]
+    if (run && follows(run[run.length - 1], claim)) run.push(claim)
+    else runs.push([claim])
+  }
+  let isClosed = false
+  if (runs.length > 0) {
+    const [head, tail] = [runs[0], runs[runs.length - 1]]
+    if (follows(tail[tail.length - 1], head[0])) {
+      if (runs.length === 1) isClosed = true
+      else {
+        tail.push(...head)
+        runs.shift()
+      }
+    }
+  }
+  return runs.map((run, i) => {
+    const before = runs[(i + runs.length - 1) % runs.length]
+    const after = runs[(i + 1) % runs.length]
+    const points = run.map((claim) => pointOfEdge(boundaries.edges, claim.edge, claim.from))
+    const end = run[run.length - 1]
+    points.push(pointOfEdge(boundaries.edges, end.edge, end.to))
+    return {
+      treated: boundaries.zoneOfRing[ring],
+      untreated: run[0].zone,
+      points,
+      isExact: run.map((claim) => claim.isExact),
+      isClosed,
+      isFollowed: [meets(before[before.length - 1], run[0]), meets(end, after[0])] as const,
+    }
+  })
+}

@@ -1,0 +1,104 @@
+/**
+ * Whiskers: where a shared border ends, the boundary runs on away from the other zone and is still within the
+ * tolerance for a few metres. These metres are no border.
+ */
+import type { Boundaries } from './boundaries.js'
+import { edgeLengthMetres } from './geodesy.js'
+import { footOnSegment, localPlane } from './localPlane.js'
+import { nearestOfZone } from './nearness.js'
+import { turnsTo } from './rings.js'
+import type { SharedPath } from './sharedBorders.js'
+
+/** Stretches no longer than this many tolerances, coincident nowhere, are two zones meeting at a corner. */
+const cornerTolerances = 4
+const samplesPerEdge = 8
+
+/**
+ * The path without whiskers, or undefined where nothing else is left:
+ * 1. a path that coincides nowhere and is no longer than four tolerances is dropped (two zones meet at a corner);
+ * 2. beyond the last coincident stretch, an end along which the distance to the other zone only grows (by less than a
+ *    tenth of the tolerance back) is cut off;
+ * 3. an end that does not coincide is drawn back to the point of the path nearest to its foot on the other zone.
+ * Whole rings have no ends, and an end where another zone takes over is left as it is.
+ */
+export function withoutWhiskers(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath | undefined {
+  if (path.isClosed) return path
+  if (!path.isExact.includes(true) && pathMetres(path) <= cornerTolerances * metres) return undefined
+  const oneEnd = withoutWhisker(boundaries, path, metres)
+  const both = withoutWhisker(boundaries, reversed(oneEnd), metres)
+  return pathMetres(both) > 0.001 ? reversed(both) : undefined
+}
+
+/** Rules 2 and 3 at the end of the path. */
+function withoutWhisker(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
+  return path.isFollowed[1] ? path : drawnBack(boundaries, leavingCut(boundaries, path, metres), metres)
+}
+
+export function pathMetres({ points }: SharedPath): number {
+  let sum = 0
+  for (let i = 0; i + 1 < points.length; i++) {
+    sum += edgeLengthMetres(points[i][0], points[i][1], points[i + 1][0], points[i + 1][1])
+  }
+  return sum
+}
+
+export function reversed(path: SharedPath): SharedPath {
+  const [start, end] = path.isFollowed
+  return {
+    ...path,
+    points: [...path.points].reverse(),
+    isExact: [...path.isExact].reverse(),
+    isFollowed: [end, start],
+  }
+}
+
+/** Rule 2 at the end of the path. */
+function leavingCut(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
+  const lastExact = path.isExact.lastIndexOf(true)
+  if (lastExact < 0 || lastExact === path.isExact.length - 1) return path
+  let farthest = 0
+  for (let i = lastExact + 1; i < path.isExact.length; i++) {
+    const [[lon0, lat0], [lon1, lat1]] = [path.points[i], path.points[i + 1]]
+    for (let s = 1; s <= samplesPerEdge; s++) {
+      const t = s / samplesPerEdge
+      const place: [number, number] = [lon0 + t * (lon1 - lon0), lat0 + t * (lat1 - lat0)]
+      const distance = nearestOfZone(boundaries, path.untreated, place[0], place[1], 1.01 * metres)?.metres ?? metres
+      if (distance < farthest - metres / 10) return path
+      farthest = Math.max(farthest, distance)
+    }
+  }
+  return { ...path, points: path.points.slice(0, lastExact + 2), isExact: path.isExact.slice(0, lastExact + 1) }
+}
+
+/** Rule 3 at the end of the path, over at most eight tolerances of it. */
+function drawnBack(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
+  const { points, isExact } = path
+  if (isExact[isExact.length - 1]) return path
+  const [endLon, endLat] = points[points.length - 1]
+  const foot = nearestOfZone(boundaries, path.untreated, endLon, endLat, 1.01 * metres)
+  if (!foot) return path
+  const plane = localPlane(foot.lon, foot.lat)
+  const distance = new Float64Array(1)
+  const shift = turnsTo(endLon, foot.lon) - foot.lon
+  let best = { step: isExact.length - 1, fraction: 1, metres: foot.metres }
+  let walked = 0
+  for (let i = isExact.length - 1; i >= 0 && !isExact[i] && walked <= 2 * cornerTolerances * metres; i--) {
+    const [[lon0, lat0], [lon1, lat1]] = [points[i], points[i + 1]]
+    const fraction = footOnSegment(
+      (lon0 + shift) * plane.metresPerLon,
+      (lat0 - foot.lat) * plane.metresPerLat,
+      (lon1 + shift) * plane.metresPerLon,
+      (lat1 - foot.lat) * plane.metresPerLat,
+      distance,
+    )
+    if (distance[0] < best.metres - 1e-6) best = { step: i, fraction, metres: distance[0] }
+    walked += edgeLengthMetres(lon0, lat0, lon1, lat1)
+  }
+  if (best.fraction === 0) {
+    return { ...path, points: points.slice(0, best.step + 1), isExact: isExact.slice(0, best.step) }
+  }
+  const [[lon0, lat0], [lon1, lat1]] = [points[best.step], points[best.step + 1]]
+  const end: [number, number] =
+    best.fraction === 1 ? [lon1, lat1] : [lon0 + best.fraction * (lon1 - lon0), lat0 + best.fraction * (lat1 - lat0)]
+  return { ...path, points: [...points.slice(0, best.step + 1), end], isExact: isExact.slice(0, best.step + 1) }
+}
