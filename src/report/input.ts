@@ -1,0 +1,13 @@
+/** What the report is drawn from. */
+import type { Analysis } from '../results.js'
+
+export interface ReportInput {
+  readonly analysis: Analysis
+  /** The study with every default filled in, as YAML: printed whole, and asked for the choices that words depend on. */
+  readonly resolvedStudy: string
+  readonly disclosure: {
+    readonly coordinates: boolean
+    /** Counts of units above 0 and under this are withheld, and bins with fewer units are not drawn. */
+    readonly smallestCell: number
+  }
+}

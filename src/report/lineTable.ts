@@ -1,0 +1,153 @@
+/** Every line's estimate as rows: nine columns for a paper, all of them for the page. */
+import type { Jump } from '../results.js'
+import { cell, fixed, missing, type Places, p, percent, sharedPlaces } from './numbers.js'
+import type { TableRow, TextTable } from './tables.js'
+import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, reasonText, type View } from './view.js'
+
+/** Places shared by all estimates of an outcome's lines. */
+export function linePlaces(outcome: OutcomeView): Places {
+  const lines = estimatedLines(outcome.result)
+  return sharedPlaces(
+    lines.map((line) => line.corrected.standard_error),
+    lines.map((line) => line.corrected.estimate),
+  )
+}
+
+export function intervalText(interval: { readonly low: number; readonly high: number }, places: Places): string {
+  return `${fixed(interval.low, places)} to ${fixed(interval.high, places)}`
+}
+
+/** Places that the bandwidths of a column share. */
+export function widthPlaces(jumps: readonly Jump[]): Places {
+  return sharedPlaces(
+    [],
+    jumps.flatMap((jump) => [jump.bandwidth.untreated, jump.bandwidth.treated]),
+  )
+}
+
+export function widthCell(width: Jump['bandwidth'], places: Places): string {
+  const [left, right] = [fixed(width.untreated, places), fixed(width.treated, places)]
+  return width.untreated === width.treated ? left : `${left} / ${right}`
+}
+
+/** The table for a paper: nine columns. */
+export function paperLineTable(view: View, outcome: OutcomeView): TextTable {
+  const places = linePlaces(outcome)
+  const widths = widthPlaces(estimatedLines(outcome.result))
+  return {
+    caption: `${outcome.result.outcome}: jump at each ${view.words.line}`,
+    columns: [
+      { head: capital(view.words.line), isText: true },
+      { head: 'N untreated' },
+      { head: 'N treated' },
+      { head: bandwidthHead(view) },
+      { head: 'Untreated mean' },
+      { head: 'Estimate' },
+      { head: 'Standard error' },
+      { head: `${view.words.level} interval` },
+      { head: 'p' },
+    ],
+    rows: outcome.result.lines.map((line): TableRow => {
+      const head = labelOf(view, line.line)
+      if (!isEstimated<Jump>(line)) return { head, across: notEstimated(view, line.not_estimated) }
+      return [
+        head,
+        ...unitCells(view, line),
+        widthCell(line.bandwidth, widths),
+        fixed(line.at_line.untreated, places),
+        fixed(line.corrected.estimate, places),
+        fixed(line.corrected.standard_error, places),
+        intervalText(line.corrected, places),
+        p(line.corrected.p),
+      ]
+    }),
+    notes: lineNotes(view, outcome),
+  }
+}
+
+const rowsOnPage = 500
+
+/** The table for the page: the paper's columns and the plain estimate, the weight and the shrunken effect. */
+export function pageLineTable(view: View, outcome: OutcomeView): TextTable {
+  const places = linePlaces(outcome)
+  const widths = widthPlaces(estimatedLines(outcome.result))
+  const pooled = outcome.result.pooled
+  const weights = isEstimated(pooled) ? pooled.weights : {}
+  const shrunken = new Map(outcome.result.comparison?.shrunken.map((effect) => [effect.line, effect]))
+  const hidden = outcome.result.lines.length - rowsOnPage
+  return {
+    caption: `${outcome.result.outcome}: jump at each ${view.words.line}`,
+    columns: [
+      { head: capital(view.words.line), isText: true },
+      { head: view.words.isBorder ? 'Length, m' : 'Cutoff' },
+      { head: 'N untreated' },
+      { head: 'N treated' },
+      { head: bandwidthHead(view) },
+      { head: 'Pooled weight' },
+      { head: 'Untreated mean' },
+      { head: 'Plain' },
+      { head: 'Corrected' },
+      { head: 'Standard error' },
+      { head: `${view.words.level} interval` },
+      { head: 'p' },
+      { head: 'Shrunken' },
+    ],
+    rows: outcome.result.lines.slice(0, rowsOnPage).map((line): TableRow => {
+      const head = labelOf(view, line.line)
+      if (!isEstimated<Jump>(line)) return { head, across: notEstimated(view, line.not_estimated) }
+      const summary = view.lineOf.get(line.line)
+      const place = view.words.isBorder ? fixed(summary?.length_m, 0) : significantOrFull(summary?.cutoff)
+      return [
+        head,
+        place,
+        ...unitCells(view, line),
+        widthCell(line.bandwidth, widths),
+        percent(weights[line.line]),
+        fixed(line.at_line.untreated, places),
+        fixed(line.plain.estimate, places),
+        fixed(line.corrected.estimate, places),
+        fixed(line.corrected.standard_error, places),
+        intervalText(line.corrected, places),
+        p(line.corrected.p),
+        fixed(shrunken.get(line.line)?.estimate, places),
+      ]
+    }),
+    notes: [
+      ...lineNotes(view, outcome),
+      ...(hidden > 0 ? [`${hidden} more are in lines.csv, which has every ${view.words.line}.`] : []),
+    ],
+  }
+}
+
+function lineNotes(view: View, outcome: OutcomeView): string[] {
+  const first = estimatedLines(outcome.result)[0]
+  const fit = first
+    ? ` Local polynomial of order ${first.order}, ${first.kernel} kernel, variance ${first.variance}.`
+    : ''
+  return [
+    `N counts units within the bandwidth; the untreated mean is the plain fit at ${view.words.theLine}. Estimate, standard error, interval and p are corrected (bias-corrected, with the robust standard error).${fit} Lines estimated: ${estimatedLines(outcome.result).length} of ${howMany(view, outcome.result.lines.length)}.`,
+    ...(view.smallestCell > 1 ? [`Counts under ${view.smallestCell} are withheld.`] : []),
+  ]
+}
+
+function unitCells(view: View, jump: Jump): string[] {
+  const units = jump.units_in_bandwidth
+  return [cell(units.untreated, view.smallestCell), cell(units.treated, view.smallestCell)]
+}
+
+export function bandwidthHead(view: View): string {
+  return view.exhibits.isBorder ? `Bandwidth, ${view.exhibits.xUnit}` : 'Bandwidth'
+}
+
+function notEstimated(view: View, reason: string): string {
+  return `not estimated: ${reasonText(view, reason)}`
+}
+
+/** A cutoff is a fact, not an estimate: it is printed whole. */
+function significantOrFull(value: number | undefined): string {
+  return value === undefined ? missing : value.toLocaleString('en', { maximumFractionDigits: 20 }).replace('-', '−')
+}
+
+export function capital(text: string): string {
+  return text.charAt(0).toUpperCase() + text.slice(1)
+}

@@ -1,0 +1,94 @@
+/** The answer in words: sentences made of the results' own numbers. */
+import type { Comparison, Estimate, Jump, Target } from '../../results.js'
+import { intervalText } from '../lineTable.js'
+import { cell, count, fixed, type Places, pWords } from '../numbers.js'
+import { pooledPlaces, targetWords } from '../pooledTable.js'
+import { estimatedLines, howMany, isEstimated, type OutcomeView, reasonText, type View, widthText } from '../view.js'
+
+export interface Answer {
+  /** The pooled corrected estimate as a headline, with its sign; absent where there is none. */
+  readonly headline?: { readonly estimate: string; readonly interval: string; readonly p: string }
+  readonly sentences: readonly string[]
+  /** Terms and values: units, bandwidth, lines, weights. */
+  readonly facts: readonly (readonly [term: string, value: string])[]
+}
+
+export function answerOf(view: View, outcome: OutcomeView): Answer {
+  const { pooled, target, comparison, comparison_reason: reason } = outcome.result
+  const places = pooledPlaces(outcome)
+  const jump = isEstimated<Jump & { weights: unknown }>(pooled) ? pooled : undefined
+  return {
+    ...(jump ? { headline: headlineOf(view, jump.corrected, places) } : {}),
+    sentences: [
+      jump
+        ? pooledSentence(view, outcome, jump, places)
+        : `There is no pooled estimate: ${reasonText(view, 'not_estimated' in pooled ? pooled.not_estimated : '')}.`,
+      targetSentence(view, target, places),
+      comparison
+        ? differenceSentence(view, comparison, places)
+        : `The ${view.words.lines} were not compared: ${reasonText(view, reason ?? 'fewer than two have an estimate')}.`,
+    ],
+    facts: factsOf(view, outcome, jump),
+  }
+}
+
+function headlineOf(view: View, estimate: Estimate, places: Places) {
+  const sign = estimate.estimate > 0 ? '+' : ''
+  return {
+    estimate: `${sign}${fixed(estimate.estimate, places)}`,
+    interval: `${view.words.level} interval ${intervalText(estimate, places)}`,
+    p: pWords(estimate.p),
+  }
+}
+
+function pooledSentence(view: View, outcome: OutcomeView, jump: Jump, places: Places): string {
+  const { corrected } = jump
+  const size = fixed(Math.abs(corrected.estimate), places)
+  const way = corrected.estimate === 0 ? 'the same' : `${size} ${corrected.estimate > 0 ? 'higher' : 'lower'}`
+  const lines = howMany(view, estimatedLines(outcome.result).length)
+  const includesZero = corrected.low <= 0 && corrected.high >= 0
+  const verdict = includesZero
+    ? `The interval includes zero, so the data do not settle whether ${outcome.result.outcome} rises or falls there.`
+    : `The interval excludes zero.`
+  const means = `The fitted means there are ${fixed(jump.at_line.untreated, places)} untreated and ${fixed(jump.at_line.treated, places)} treated (plain fit).`
+  return `Taking ${lines} together, ${outcome.result.outcome} is ${way} just inside the treated side of ${view.words.theLine} than just outside it (corrected estimate; ${view.words.level} interval ${intervalText(corrected, places)}, ${pWords(corrected.p)}). ${verdict} ${means}`
+}
+
+function targetSentence(view: View, target: Target, places: Places): string {
+  if (!isEstimated(target)) return `The stated target has no estimate: ${reasonText(view, target.not_estimated)}.`
+  return `The stated target, the average of each ${view.words.line}’s own estimate ${targetWords(target.kind)}, is ${fixed(target.estimate, places)} (${intervalText(target, places)}, ${pWords(target.p)}).`
+}
+
+function differenceSentence(view: View, comparison: Comparison, places: Places): string {
+  const { wald } = comparison
+  const alpha = 1 - view.choices.level
+  const differ =
+    wald.p < alpha
+      ? `The ${view.words.lines} differ by more than chance alone would produce`
+      : `Nothing here shows that the ${view.words.lines} differ: their estimates vary no more than chance could produce`
+  const share = `${fixed(comparison.i_squared, 0)}% of the variation between estimates is beyond chance (I²)`
+  const prediction = comparison.prediction
+    ? ` At one more ${view.words.line} like these the effect would be expected between ${fixed(comparison.prediction.low, places)} and ${fixed(comparison.prediction.high, places)}.`
+    : ''
+  return `${differ} (Wald ${fixed(wald.statistic, 1)} on ${count(wald.df)} degrees of freedom, ${pWords(wald.p)}); ${share}.${prediction}`
+}
+
+function factsOf(view: View, outcome: OutcomeView, jump: Jump | undefined): [string, string][] {
+  const total = outcome.result.lines.length
+  const estimated = estimatedLines(outcome.result).length
+  const lines: [string, string] = [
+    view.words.lines,
+    estimated === total ? count(total) : `${count(estimated)} of ${count(total)} estimated`,
+  ]
+  if (!jump) return [lines]
+  const units = jump.units_in_bandwidth
+  return [
+    [
+      'units in bandwidth',
+      `${cell(units.untreated, view.smallestCell)} untreated, ${cell(units.treated, view.smallestCell)} treated`,
+    ],
+    ['bandwidth', widthText(view, jump.bandwidth)],
+    lines,
+    ...(jump.clusters === undefined ? [] : [['clusters', count(jump.clusters)] as [string, string]]),
+  ]
+}

@@ -1,0 +1,51 @@
+/** About a dozen plain lines for the terminal. */
+import type { Jump, Results } from '../results.js'
+import { intervalText } from './lineTable.js'
+import { count, fixed, pWords, sharedPlaces, significant } from './numbers.js'
+
+const mostOutcomes = 4
+
+/** Lines of text, without line ends; `folder` is the results folder as the user would type it. */
+export function summaryLines(results: Results, folder: string): string[] {
+  const { placement } = results
+  const aside = Object.entries(placement.set_aside)
+  const shown = results.outcomes.slice(0, mostOutcomes)
+  return [
+    results.title,
+    `${count(placement.read)} rows read, ${count(placement.kept)} kept, ${count(placement.placed)} placed against ${count(results.lines.length)} ${results.lines.length === 1 ? 'line' : 'lines'}`,
+    ...(aside.length > 0
+      ? [`set aside: ${aside.map(([reason, units]) => `${count(units)} ${reason}`).join(', ')}`]
+      : []),
+    ...shown.flatMap(outcomeLines),
+    ...(results.outcomes.length > mostOutcomes
+      ? [`and ${count(results.outcomes.length - mostOutcomes)} more outcomes in the report`]
+      : []),
+    `${results.seconds.toFixed(1)} s; report: ${folder}/report.html`,
+  ]
+}
+
+function outcomeLines(outcome: Results['outcomes'][number]): string[] {
+  const { pooled, target, comparison } = outcome
+  const jump: Jump | undefined = 'not_estimated' in pooled ? undefined : pooled
+  const aim = 'not_estimated' in target ? undefined : target
+  const places = sharedPlaces(
+    [jump?.corrected.standard_error, aim?.standard_error],
+    [jump?.corrected.estimate, aim?.estimate],
+  )
+  const estimated = outcome.lines.filter((line) => !('not_estimated' in line)).length
+  const text = (estimate: { estimate: number; low: number; high: number; p: number }) =>
+    `${fixed(estimate.estimate, places)} (${intervalText(estimate, places)}), ${pWords(estimate.p)}`
+  return [
+    outcome.outcome,
+    jump
+      ? `  pooled  ${text(jump.corrected)}`
+      : `  pooled  not estimated: ${'not_estimated' in pooled ? pooled.not_estimated : ''}`,
+    ...(aim ? [`  target  ${text(aim)}`] : []),
+    ...(jump
+      ? [
+          `  units   ${count(jump.units_in_bandwidth.untreated)} untreated, ${count(jump.units_in_bandwidth.treated)} treated within ${[...new Set([jump.bandwidth.untreated, jump.bandwidth.treated].map(significant))].join(' / ')}`,
+        ]
+      : []),
+    `  lines   ${count(estimated)} of ${count(outcome.lines.length)} estimated${comparison ? `; equal effects ${pWords(comparison.wald.p)}, I² ${fixed(comparison.i_squared, 0)}%` : ''}`,
+  ]
+}
