@@ -138,6 +138,9 @@ test('lines with the same estimate and units have no contrast', () => {
   expect(contrasts.of).toBe(2)
   // Both contrasts are the same one, so the critical value is a single normal's, up to the error of 500 draws.
   expect(contrasts.criticalValue).toBeLessThan(2.25)
+  // 0.1 + 0.2 is not 0.3: what is left of the variance is rounding.
+  const rounded = effectsOf([1, 1.5], [0.3, 0.3, 0.3, 0.1 + 0.2])
+  expect(contrastsOf(rounded, 0.95, seededRandom(1), 500).of).toBe(0)
   const none = contrastsOf(effectsOf([1, 1], [1, 1, 1, 1]), 0.95, seededRandom(1), 500)
   expect(none).toEqual({ listed: [], of: 0, criticalValue: expect.closeTo(1.959963984540054, 12) })
 })
