@@ -1,0 +1,115 @@
+import { earthCentred } from './geodesy.js'
+import { hilbertOrder } from './hilbert.js'
+import { chosenFoot, edgeFraction, type Foot, resolveNearest } from './nearestFar.js'
+import { closeMetres } from './nearestMeasure.js'
+import { searchNearest, searchRoom, tieMetres } from './nearestSearch.js'
+import type { SegmentTree } from './segmentTreeBuild.js'
+
+/** One element for each point. Without an answer (NaN or impossible coordinates, no edges): edge -1, the others NaN. */
+export interface Nearest {
+  readonly edge: Int32Array
+  /** Foot along the edge, 0 to 1, linear in longitude and latitude. */
+  readonly fraction: Float64Array
+  /** Geodesic metres from the point to the foot, never negative. */
+  readonly distanceMetres: Float64Array
+}
+
+const chunkSize = 131_072
+
+/**
+ * Nearest edge, foot and geodesic distance (WGS 84) of every point; METHODS section 10.
+ * Error against Karney's inverse over every point of every edge: below 1e-5 m to 200 km; beyond, the distance to the
+ * foot is his, to 15 nanometres, and the foot's choice costs less than 1e-6 of it (up to 19,900 km).
+ * Edges nearer than 1e-8 m to each other in distance are tied, and the smallest index wins: the answer for a point does
+ * not depend on the others or on their order. Points are searched along a Hilbert curve, each from its neighbour's
+ * answer, about as fast as log(edges). Throws RangeError where the arrays differ in length.
+ */
+export function nearestEdges(
+  tree: SegmentTree,
+  lonDegrees: Float64Array,
+  latDegrees: Float64Array,
+  progress?: (done: number) => void,
+): Nearest {
+  const count = lonDegrees.length
+  if (latDegrees.length !== count)
+    throw new RangeError(`lonDegrees has ${count} points, latDegrees has ${latDegrees.length}`)
+  const nearest = {
+    edge: new Int32Array(count).fill(-1),
+    fraction: new Float64Array(count).fill(Number.NaN),
+    distanceMetres: new Float64Array(count).fill(Number.NaN),
+  }
+  if (tree.pieceCount === 0) return nearest
+  for (let from = 0; from < count; from += chunkSize) {
+    const to = Math.min(count, from + chunkSize)
+    nearestOfChunk(tree, lonDegrees, latDegrees, from, to, nearest)
+    progress?.(to)
+  }
+  return nearest
+}
+
+function nearestOfChunk(
+  tree: SegmentTree,
+  lonDegrees: Float64Array,
+  latDegrees: Float64Array,
+  from: number,
+  to: number,
+  nearest: Nearest,
+): void {
+  const { origin, pieceEdge } = tree
+  const room = searchRoom(tree)
+  const { tiePiece, tieDistance, tieFoot } = room
+  const point = new Float64Array(3)
+  const order = hilbertOrder(lonDegrees.subarray(from, to), latDegrees.subarray(from, to))
+  let start = 0
+  let previous = -1
+  for (let k = 0; k < order.length; k++) {
+    const i = from + order[k]
+    const lon = lonDegrees[i]
+    const lat = latDegrees[i]
+    if (!(Math.abs(lat) <= 90 && Math.abs(lon) < Infinity)) continue
+    if (previous >= 0 && lonDegrees[previous] === lon && latDegrees[previous] === lat) {
+      nearest.edge[i] = nearest.edge[previous]
+      nearest.fraction[i] = nearest.fraction[previous]
+      nearest.distanceMetres[i] = nearest.distanceMetres[previous]
+      continue
+    }
+    previous = i
+    earthCentred(lon, lat, point, 0)
+    const x = point[0] - origin[0]
+    const y = point[1] - origin[1]
+    const z = point[2] - origin[2]
+    const ties = searchNearest(tree, room, x, y, z, start)
+    start = tiePiece[0]
+    if (ties === 1 && tieDistance[0] <= closeMetres) {
+      nearest.edge[i] = pieceEdge[start]
+      nearest.fraction[i] = edgeFraction(tree, start, tieFoot[0])
+      nearest.distanceMetres[i] = tieDistance[0]
+      continue
+    }
+    let rough = tieDistance[0]
+    for (let tie = 1; tie < ties; tie++) rough = Math.min(rough, tieDistance[tie])
+    const foot =
+      ties < 0 || rough > closeMetres
+        ? resolveNearest(tree, room, x, y, z, lon, lat, rough)
+        : tiedFoot(tree, tiePiece, tieDistance, tieFoot, ties, rough)
+    nearest.edge[i] = foot.edge
+    nearest.fraction[i] = foot.fraction
+    nearest.distanceMetres[i] = foot.distanceMetres
+  }
+}
+
+function tiedFoot(
+  tree: SegmentTree,
+  piece: Int32Array,
+  distance: Float64Array,
+  u: Float64Array,
+  ties: number,
+  rough: number,
+): Foot {
+  const feet: Foot[] = []
+  for (let k = 0; k < ties; k++) {
+    const fraction = edgeFraction(tree, piece[k], u[k])
+    feet.push({ edge: tree.pieceEdge[piece[k]], fraction, distanceMetres: distance[k] })
+  }
+  return chosenFoot(feet, tieMetres(rough))
+}
