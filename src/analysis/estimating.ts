@@ -8,6 +8,7 @@ import {
   type JumpFit,
   type JumpOptions,
   jumpAt,
+  neighbourResidualsOf,
   type Sample,
   type Variance,
   varianceOf,
@@ -87,9 +88,10 @@ function jumpOptions(estimation: EstimationPart, variance: Variance): JumpOption
 function estimateLine(entries: Entries, estimation: EstimationPart, variance: Variance): OrReason<LineEstimate> {
   const sample = buildSample(entries, estimation.donut)
   const clustered = variance === 'clusters'
-  const chosen = bandwidthsFor(sample, estimation.bandwidth, { ...estimation, clustered })
+  const neighbours = variance === 'neighbours' ? neighbourResidualsOf(sample) : undefined
+  const chosen = bandwidthsFor(sample, estimation.bandwidth, { ...estimation, clustered }, neighbours)
   if (!chosen.ok) return { reason: chosen.reason }
-  const estimated = jumpAt(sample, chosen.bandwidths, jumpOptions(estimation, variance))
+  const estimated = jumpAt(sample, chosen.bandwidths, jumpOptions(estimation, variance), neighbours)
   return estimated.ok ? { jump: estimated.jump, sample } : { reason: estimated.reason }
 }
 

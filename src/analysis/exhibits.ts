@@ -75,14 +75,13 @@ function meansOf(side: Side, from: number, to: number): { x: number; mean: numbe
 }
 
 function curveOf(fit: LocalFit, h: number, sign: number, centre: number): { x: number[]; y: number[] } {
-  const basis = new Float64Array(fit.order + 1)
   const end = Math.min(h, fit.scale)
   const x: number[] = []
   const y: number[] = []
   for (let i = 0; i < pointsOfCurve; i++) {
     const t = (end * i) / (pointsOfCurve - 1)
     x.push(sign * t || 0)
-    y.push(fittedAt(fit, t, basis) + centre)
+    y.push(fittedAt(fit, t) + centre)
   }
   return { x, y }
 }

@@ -5,15 +5,11 @@
  * Works in t = |x|: in every term the signs that odd powers take on the untreated side cancel.
  */
 import { quantileOfSorted } from '../math/index.js'
+import { influenceByKey, sumOfSquares, varianceOf } from './influence.js'
 import { type Kernel, pilotConstant } from './kernel.js'
 import { addWeights, coefficientOf, fitLocal, functional, type LocalFit, responseOf } from './localPolynomial.js'
-import { neighbourResiduals } from './neighbours.js'
-import type { Sample, Side } from './sample.js'
-
-export interface BySide<T> {
-  readonly untreated: T
-  readonly treated: T
-}
+import { neighbourResidualsOf } from './neighbours.js'
+import type { BySide, Sample, Side } from './sample.js'
 
 /** h for the estimate, b for its bias; in x units. */
 export interface Bandwidths {
@@ -91,8 +87,13 @@ interface Term {
   readonly sign: number
 }
 
-/** The bandwidths of a sample under a choice. */
-export function bandwidthsFor(sample: Sample, choice: BandwidthChoice, options: BandwidthOptions): Chosen {
+/** The bandwidths of a sample under a choice; `neighbours` are its neighbour residuals, where the caller has them. */
+export function bandwidthsFor(
+  sample: Sample,
+  choice: BandwidthChoice,
+  options: BandwidthOptions,
+  neighbours?: BySide<Float64Array>,
+): Chosen {
   const bias = choice.bias === undefined ? undefined : { untreated: choice.bias, treated: choice.bias }
   if (choice.kind === 'fixed') {
     const h = { untreated: choice.untreated, treated: choice.treated }
@@ -100,15 +101,20 @@ export function bandwidthsFor(sample: Sample, choice: BandwidthChoice, options: 
   }
   if (sample.untreated.t.length === 0) return { ok: false, reason: 'untreated side: no units' }
   if (sample.treated.t.length === 0) return { ok: false, reason: 'treated side: no units' }
-  const chosen = plugIn(sample, choice.rule, options)
+  const chosen = plugIn(sample, neighbours ?? neighbourResidualsOf(sample), choice.rule, options)
   return chosen.ok && bias ? { ok: true, bandwidths: { h: chosen.bandwidths.h, b: bias } } : chosen
 }
 
 /** Chooses h and b by the rule; a side that can't be fitted at some stage gives the reason. */
-function plugIn(sample: Sample, rule: 'mse' | 'coverage', options: BandwidthOptions): Chosen {
+function plugIn(
+  sample: Sample,
+  neighbours: BySide<Float64Array>,
+  rule: 'mse' | 'coverage',
+  options: BandwidthOptions,
+): Chosen {
   const terms: Term[] = [
-    { side: sample.untreated, residuals: neighbourResiduals(sample.untreated), sign: -1 },
-    { side: sample.treated, residuals: neighbourResiduals(sample.treated), sign: 1 },
+    { side: sample.untreated, residuals: neighbours.untreated, sign: -1 },
+    { side: sample.treated, residuals: neighbours.treated, sign: 1 },
   ]
   const range = bandwidthRange(sample, options.order)
   const pilot = pilotBandwidth(sample, options.kernel, range)
@@ -140,9 +146,16 @@ function stages(
 ): { h: number; b: number } {
   const { order: p, kernel, clustered } = options
   const q = p + 1
+  const made = new Map<string, LocalFit>()
   const fitAt = (term: Term, order: number, h: number): LocalFit => {
+    const key = `${term.sign} ${order} ${h}`
+    const before = made.get(key)
+    if (before) return before
     const fitted = fitLocal(term.side, order, h, kernel)
-    if (fitted.ok) return fitted.fit
+    if (fitted.ok) {
+      made.set(key, fitted.fit)
+      return fitted.fit
+    }
     throw new CannotFit(`bandwidth rule, ${term.sign < 0 ? 'untreated' : 'treated'} side: ${fitted.reason}`)
   }
   const response = (term: Term, power: number, order: number, h: number) => {
@@ -198,18 +211,9 @@ function stages(
 
 /** Estimated variance of one coefficient of a fit: Σ a_i² σ̂²_i, or the sum of squared cluster sums Σ_g (Σ a_i r_i)². */
 function spreadOf(term: Term, fit: LocalFit, power: number, clustered: boolean): number {
-  const weights = new Float64Array(fit.count)
-  addWeights(weights, term.side, fit, functional(fit, power), 1)
-  let total = 0
-  if (!clustered || term.side.cluster === null) {
-    for (let i = 0; i < fit.count; i++) total += (weights[i] * term.residuals[i]) ** 2
-    return total
-  }
-  const sums = new Map<number, number>()
-  for (let i = 0; i < fit.count; i++) {
-    const g = term.side.cluster[i]
-    sums.set(g, (sums.get(g) ?? 0) + weights[i] * term.residuals[i])
-  }
-  for (const value of sums.values()) total += value * value
-  return total
+  const psi = new Float64Array(fit.count)
+  addWeights(psi, term.side, fit, functional(fit, power), 1)
+  for (let i = 0; i < psi.length; i++) psi[i] *= term.residuals[i]
+  if (!clustered || term.side.cluster === null) return sumOfSquares(psi)
+  return varianceOf(influenceByKey([term.side.cluster], [psi]))
 }

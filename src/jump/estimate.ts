@@ -4,13 +4,13 @@
  * τ̂ = Σ l_i y_i, treated less untreated. plain: l = ±a_{0,i}(p,h). corrected: l = ±(a_{0,i}(p,h) − c·a_{p+1,i}(q,b)),
  * q = p+1, c = Σ a_{0,i} x_i^{p+1}. Residuals come from the order-p fit at h, and from the order-q fit at b.
  */
-import type { Bandwidths, BySide } from './bandwidth.js'
+import type { Bandwidths } from './bandwidth.js'
 import { type Inference, infer, satterthwaite } from './inference.js'
 import { type Influence, influenceByKey, influenceOfUnits, varianceOf } from './influence.js'
 import type { Kernel } from './kernel.js'
 import { addWeights, coefficientOf, fitLocal, functional, type LocalFit, responseOf } from './localPolynomial.js'
-import { neighbourResiduals } from './neighbours.js'
-import { distinctWithin, type Sample, type Side } from './sample.js'
+import { neighbourResidualsOf } from './neighbours.js'
+import { type BySide, distinctWithin, type Sample, type Side } from './sample.js'
 import { clusterFactor, countClusters, scaledResiduals, type Variance } from './variance.js'
 
 export interface JumpOptions {
@@ -42,18 +42,28 @@ export type Estimated = { readonly ok: true; readonly jump: JumpFit } | { readon
 
 interface SideFit {
   readonly side: Side
-  readonly sign: number
   readonly main: LocalFit
   readonly bias: LocalFit
   readonly plain: Float64Array
   readonly corrected: Float64Array
+  /** Set where the variance is from neighbours. */
+  readonly neighbours: Float64Array | undefined
 }
 
-/** Estimates at given bandwidths; what can't be estimated has a reason that names the side. */
-export function jumpAt(sample: Sample, bandwidths: Bandwidths, options: JumpOptions): Estimated {
+/**
+ * Estimates at given bandwidths; what can't be estimated has a reason that names the side. `neighbours` are the
+ * sample's neighbour residuals, where the caller has them.
+ */
+export function jumpAt(
+  sample: Sample,
+  bandwidths: Bandwidths,
+  options: JumpOptions,
+  neighbours?: BySide<Float64Array>,
+): Estimated {
   const sides: SideFit[] = []
+  const fromNeighbours = options.variance === 'neighbours' ? (neighbours ?? neighbourResidualsOf(sample)) : undefined
   for (const name of ['untreated', 'treated'] as const) {
-    const fitted = fitSide(sample[name], bandwidths.h[name], bandwidths.b[name], options, name === 'treated' ? 1 : -1)
+    const fitted = fitSide(sample, name, bandwidths, options, fromNeighbours?.[name])
     if (typeof fitted === 'string') return { ok: false, reason: `${name} side: ${fitted}` }
     sides.push(fitted)
   }
@@ -85,12 +95,20 @@ export function jumpAt(sample: Sample, bandwidths: Bandwidths, options: JumpOpti
   }
 }
 
-function fitSide(side: Side, h: number, b: number, options: JumpOptions, sign: number): SideFit | string {
+function fitSide(
+  sample: Sample,
+  name: 'untreated' | 'treated',
+  { h, b }: Bandwidths,
+  options: JumpOptions,
+  neighbours: Float64Array | undefined,
+): SideFit | string {
+  const side = sample[name]
+  const sign = name === 'treated' ? 1 : -1
   const p = options.order
   if (side.t.length === 0) return 'no units'
-  const main = fitLocal(side, p, h, options.kernel)
+  const main = fitLocal(side, p, h[name], options.kernel)
   if (!main.ok) return main.reason
-  const bias = fitLocal(side, p + 1, b, options.kernel)
+  const bias = fitLocal(side, p + 1, b[name], options.kernel)
   if (!bias.ok) return `bias fit: ${bias.reason}`
   const length = Math.max(main.fit.count, bias.fit.count)
   const level = functional(main.fit, 0)
@@ -98,7 +116,7 @@ function fitSide(side: Side, h: number, b: number, options: JumpOptions, sign: n
   addWeights(plain, side, main.fit, level, sign)
   const corrected = Float64Array.from(plain)
   addWeights(corrected, side, bias.fit, functional(bias.fit, p + 1), -sign * responseOf(main.fit, level))
-  return { side, sign, main: main.fit, bias: bias.fit, plain, corrected }
+  return { side, main: main.fit, bias: bias.fit, plain, corrected, neighbours }
 }
 
 function isConstant(sides: readonly SideFit[]): boolean {
@@ -123,9 +141,10 @@ function inferenceOf(
     const l = weights[s]
     for (let i = 0; i < l.length; i++) estimate += l[i] * part.side.y[i]
     const fit = which === 'plain' ? part.main : part.bias
-    const residuals =
-      variance === 'neighbours' ? neighbourResiduals(part.side) : scaledResiduals(part.side, fit, l.length, variance)
-    return l.map((value, i) => value * residuals[i])
+    const residuals = part.neighbours ?? scaledResiduals(part.side, fit, l.length, variance)
+    const values = new Float64Array(l.length)
+    for (let i = 0; i < l.length; i++) values[i] = l[i] * residuals[i]
+    return values
   })
   let degreesOfFreedom = satterthwaite(weights)
   let clusters: number | undefined

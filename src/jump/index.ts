@@ -3,7 +3,6 @@ export {
   type BandwidthChoice,
   type BandwidthOptions,
   type Bandwidths,
-  type BySide,
   bandwidthRange,
   bandwidthsFor,
   type Chosen,
@@ -13,7 +12,7 @@ export { type Estimated, type JumpFit, type JumpOptions, jumpAt } from './estima
 export { type Inference, infer, satterthwaite } from './inference.js'
 export { covarianceMatrix, type Influence, varianceOf } from './influence.js'
 export { countWithin, type Kernel, kernelValue } from './kernel.js'
-export { fitLocal, fittedAt, type LocalFit, weigher } from './localPolynomial.js'
-export { neighbourResiduals } from './neighbours.js'
-export { buildSample, type Entries, type Sample, type Side, withOutcomes } from './sample.js'
+export { fitLocal, fittedAt, kernelCurve, type LocalFit } from './localPolynomial.js'
+export { neighbourResidualsOf } from './neighbours.js'
+export { type BySide, buildSample, type Entries, type Sample, type Side, withOutcomes } from './sample.js'
 export type { Variance } from './variance.js'

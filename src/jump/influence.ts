@@ -56,8 +56,12 @@ function sumDensely(keys: readonly Int32Array[], psi: readonly Float64Array[], s
 
 /** Variance: the covariance of an estimate with itself. */
 export function varianceOf(influence: Influence): number {
+  return sumOfSquares(influence.psi)
+}
+
+/** Σ ψ², in blocks of 4,096. */
+export function sumOfSquares(psi: Float64Array): number {
   let total = 0
-  const { psi } = influence
   for (let start = 0; start < psi.length; start += 4096) {
     const end = Math.min(psi.length, start + 4096)
     let part = 0

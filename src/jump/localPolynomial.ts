@@ -1,14 +1,16 @@
 /**
  * Weighted local polynomial fit at the line, one side.
  * Source: Fan & Gijbels 1996, chapter 3; METHODS section 2.
- * The distance t = |x| is scaled to [0, 1] and the fit made in shifted Legendre polynomials of it, whose Gram matrix
- * is well conditioned; it is solved by Cholesky with a condition check. Every coefficient is linear in y:
- * coefficient ν of t^ν is Σ a_{ν,i} y_i with a_{ν,i} = k_i Σ_j c_j P_j(t_i), c from `functional`.
+ * The distance t = |x| is mapped to z = 2t/scale − 1 in [−1, 1]; one outward pass sums the moments Σ k z^j and Σ k z^j y.
+ * The fit is made in Legendre polynomials of z, whose Gram matrix is well conditioned, by Cholesky with a condition
+ * check. Every coefficient is linear in y: that of t^ν is Σ a_{ν,i} y_i with a_{ν,i} = k_i A(z_i), A a polynomial from
+ * `functional`. Polynomials in z are arrays of coefficients of 1, z, z², …
  * In t rather than x, odd coefficients of the untreated side have the opposite sign; every use here is even in that sign.
  */
-import { choleskyInPlace, choleskySolveInPlace, legendreShifted, legendreToMonomial } from '../math/index.js'
+import { choleskyInPlace, choleskySolveInPlace } from '../math/index.js'
 import { countWithin, type Kernel } from './kernel.js'
 import { distinctWithin, type Side } from './sample.js'
+import { evaluate, inLegendre, legendreInZ, powerOfT } from './zPolynomial.js'
 
 export interface LocalFit {
   readonly order: number
@@ -17,14 +19,14 @@ export interface LocalFit {
   readonly h: number
   /** Units of positive weight: the first `count` of the side. */
   readonly count: number
-  /** t / scale lies in [0, 1]. */
+  /** Largest t of the fit: z = 2t/scale − 1. */
   readonly scale: number
-  /** Cholesky factor of the Gram matrix Σ k P P'. */
+  /** Cholesky factor of the Gram matrix of Legendre polynomials, order+1 square, row-major. */
   readonly factor: Float64Array
-  /** Coefficients of the Legendre polynomials. */
-  readonly coefficients: Float64Array
-  /** Σ k P_j (t/scale)^(order+1): what the fit makes of the next power. */
-  readonly nextPower: Float64Array
+  /** The fitted polynomial in z. */
+  readonly polynomial: Float64Array
+  /** Σ k z^j, j = 0 … 2·order+1. */
+  readonly moments: Float64Array
 }
 
 export type Fitted = { readonly ok: true; readonly fit: LocalFit } | { readonly ok: false; readonly reason: string }
@@ -40,96 +42,120 @@ export function fitLocal(side: Side, order: number, h: number, kernel: Kernel): 
     return { ok: false, reason: `only ${distinct} distinct distances, a fit of order ${order} needs ${order + 2}` }
   }
   const scale = side.t[count - 1]
-  const { gram, right, nextPower } = accumulate(side, order, h, kernel, count, scale)
+  const { moments, cross } = momentsOf(side, order, h, kernel, count, scale)
+  const gram = gramMatrix(moments, order)
   if (!(choleskyInPlace(gram, order + 1) > smallestCondition)) {
     return { ok: false, reason: `distances too nearly equal for a fit of order ${order}` }
   }
-  choleskySolveInPlace(gram, order + 1, right)
-  return { ok: true, fit: { order, kernel, h, count, scale, factor: gram, coefficients: right, nextPower } }
+  const coefficients = inLegendre(cross, order)
+  choleskySolveInPlace(gram, order + 1, coefficients)
+  const polynomial = legendreInZ(coefficients)
+  return { ok: true, fit: { order, kernel, h, count, scale, factor: gram, polynomial, moments } }
 }
 
-interface Sums {
-  readonly gram: Float64Array
-  readonly right: Float64Array
-  readonly nextPower: Float64Array
+/** k(t) = 1 + linear·t + square·t², without the constant factors of the kernel and 1/h, which cancel in every estimate. */
+export interface KernelCurve {
+  readonly linear: number
+  readonly square: number
 }
 
-/** One outward pass in blocks of 4,096 units: Gram matrix, cross products with y and with the next power. */
-function accumulate(side: Side, order: number, h: number, kernel: Kernel, count: number, scale: number): Sums {
-  const size = order + 1
-  const gram = new Float64Array(size * size)
-  const right = new Float64Array(size)
-  const nextPower = new Float64Array(size)
-  const blockGram = new Float64Array(size * size)
-  const blockRight = new Float64Array(size)
-  const blockNext = new Float64Array(size)
-  const basis = new Float64Array(size)
-  const weigh = weigher(h, kernel)
+/** Kernel weight as a polynomial of t, for units known to lie within h. */
+export function kernelCurve(h: number, kernel: Kernel): KernelCurve {
+  if (kernel === 'uniform' || h === Number.POSITIVE_INFINITY) return { linear: 0, square: 0 }
+  return kernel === 'triangular' ? { linear: -1 / h, square: 0 } : { linear: 0, square: -1 / (h * h) }
+}
+
+/** One outward pass: Σ k z^j (j up to 2·order+1) and Σ k z^j y (j up to order), in blocks of 4,096 units. */
+function momentsOf(side: Side, order: number, h: number, kernel: Kernel, count: number, scale: number) {
+  const top = 2 * order + 2
+  const moments = new Float64Array(top)
+  const cross = new Float64Array(order + 1)
+  const blockMoments = new Float64Array(top)
+  const blockCross = new Float64Array(order + 1)
+  const { linear, square } = kernelCurve(h, kernel)
   const { t, y, w } = side
   for (let start = 0; start < count; start += 4096) {
     const end = Math.min(count, start + 4096)
-    blockGram.fill(0)
-    blockRight.fill(0)
-    blockNext.fill(0)
+    blockMoments.fill(0)
+    blockCross.fill(0)
     for (let i = start; i < end; i++) {
-      const u = t[i] / scale
-      const k = w === null ? weigh(t[i]) : weigh(t[i]) * w[i]
-      legendreShifted(order, u, basis)
-      let power = k
-      for (let j = 0; j < size; j++) power *= u
-      const ky = k * y[i]
-      for (let row = 0; row < size; row++) {
-        const b = basis[row]
-        const kb = k * b
-        for (let column = 0; column <= row; column++) blockGram[row * size + column] += kb * basis[column]
-        blockRight[row] += b * ky
-        blockNext[row] += b * power
+      const ti = t[i]
+      const yi = y[i]
+      const z = (2 * ti) / scale - 1
+      let power = 1 + ti * (linear + ti * square)
+      if (w !== null) power *= w[i]
+      for (let j = 0; j <= order; j++) {
+        blockMoments[j] += power
+        blockCross[j] += power * yi
+        power *= z
+      }
+      for (let j = order + 1; j < top; j++) {
+        blockMoments[j] += power
+        power *= z
       }
     }
-    for (let j = 0; j < size * size; j++) gram[j] += blockGram[j]
-    for (let j = 0; j < size; j++) {
-      right[j] += blockRight[j]
-      nextPower[j] += blockNext[j]
-    }
+    for (let j = 0; j < top; j++) moments[j] += blockMoments[j]
+    for (let j = 0; j <= order; j++) cross[j] += blockCross[j]
   }
-  return { gram, right, nextPower }
+  return { moments, cross }
 }
 
-/** Kernel weight as a function of t, for units known to lie within h. The factor 1/h of METHODS cancels in every estimate. */
-export function weigher(h: number, kernel: Kernel): (t: number) => number {
-  if (kernel === 'uniform' || h === Number.POSITIVE_INFINITY) return () => 1
-  if (kernel === 'triangular') return (t) => 1 - t / h
-  return (t) => 1 - (t / h) * (t / h)
+/** Gram matrix of the Legendre polynomials from the moments. */
+function gramMatrix(moments: Float64Array, order: number): Float64Array {
+  const size = order + 1
+  const gram = new Float64Array(size * size)
+  const shifted = new Float64Array(size)
+  const half = new Float64Array(size * size)
+  for (let power = 0; power < size; power++) {
+    for (let j = 0; j < size; j++) shifted[j] = moments[power + j]
+    half.set(inLegendre(shifted, order), power * size)
+  }
+  for (let row = 0; row < size; row++) {
+    for (let power = 0; power < size; power++) shifted[power] = half[power * size + row]
+    gram.set(inLegendre(shifted, order), row * size)
+  }
+  return gram
 }
 
-/** The combination c of the fit's polynomials with coefficient ν = Σ k_i (Σ_j c_j P_j(t_i)) y_i, in units of y / t^ν. */
+/** The polynomial A in z with coefficient ν of the fit = Σ k_i A(z_i) y_i, in units of y / t^ν. */
 export function functional(fit: LocalFit, power: number): Float64Array {
-  const size = fit.order + 1
-  const toPowers = legendreToMonomial(fit.order)
-  const c = new Float64Array(size)
-  const unscale = fit.scale ** -power
-  for (let j = 0; j < size; j++) c[j] = toPowers[j * size + power] * unscale
-  choleskySolveInPlace(fit.factor, size, c)
-  return c
+  const combination = powerOfT(power, fit.order, fit.scale)
+  choleskySolveInPlace(fit.factor, fit.order + 1, combination)
+  return legendreInZ(combination)
 }
 
 /** Coefficient of t^power. */
 export function coefficientOf(fit: LocalFit, power: number): number {
-  const size = fit.order + 1
-  const toPowers = legendreToMonomial(fit.order)
+  const { polynomial, scale } = fit
   let value = 0
-  for (let j = 0; j < size; j++) value += toPowers[j * size + power] * fit.coefficients[j]
-  return value * fit.scale ** -power
+  // z = 2t/scale − 1: the coefficient of t^ν in z^j is C(j, ν) (2/scale)^ν (−1)^(j−ν)
+  let choose = 1
+  for (let j = power; j < polynomial.length; j++) {
+    value += polynomial[j] * choose * ((j - power) % 2 === 0 ? 1 : -1)
+    choose = (choose * (j + 1)) / (j + 1 - power)
+  }
+  return value * (2 / scale) ** power
 }
 
-/** Response of coefficient `power` to t^(order+1): Σ a_{power,i} t_i^(order+1). */
+/** Σ a_i t_i^(order+1) for the polynomial A of a functional: its response to the next power. */
 export function responseOf(fit: LocalFit, combination: Float64Array): number {
+  const { moments, order, scale } = fit
+  // t = scale (1 + z)/2, so t^m = (scale/2)^m Σ C(m, l) z^l
+  const m = order + 1
   let value = 0
-  for (let j = 0; j <= fit.order; j++) value += combination[j] * fit.nextPower[j]
-  return value * fit.scale ** (fit.order + 1)
+  for (let j = 0; j <= order; j++) {
+    let choose = 1
+    let inner = 0
+    for (let l = 0; l <= m; l++) {
+      inner += choose * moments[j + l]
+      choose = (choose * (m - l)) / (l + 1)
+    }
+    value += combination[j] * inner
+  }
+  return value * (scale / 2) ** m
 }
 
-/** Adds factor · a_i to `weights` for the units of the fit, a_i = k_i Σ_j c_j P_j(t_i). */
+/** Adds factor · a_i to `weights` for the units of the fit, a_i = k_i A(z_i). */
 export function addWeights(
   weights: Float64Array,
   side: Side,
@@ -137,21 +163,20 @@ export function addWeights(
   combination: Float64Array,
   factor: number,
 ): void {
-  const basis = new Float64Array(fit.order + 1)
-  const weigh = weigher(fit.h, fit.kernel)
-  for (let i = 0; i < fit.count; i++) {
-    legendreShifted(fit.order, side.t[i] / fit.scale, basis)
-    let value = 0
-    for (let j = 0; j <= fit.order; j++) value += combination[j] * basis[j]
-    const k = side.w === null ? weigh(side.t[i]) : weigh(side.t[i]) * side.w[i]
-    weights[i] += factor * k * value
+  const { linear, square } = kernelCurve(fit.h, fit.kernel)
+  const { t, w } = side
+  const { count, scale, order } = fit
+  for (let i = 0; i < count; i++) {
+    const ti = t[i]
+    const z = (2 * ti) / scale - 1
+    let value = combination[order]
+    for (let j = order - 1; j >= 0; j--) value = value * z + combination[j]
+    const k = 1 + ti * (linear + ti * square)
+    weights[i] += w === null ? factor * k * value : factor * k * w[i] * value
   }
 }
 
 /** Fitted value at distance t (also beyond the fit's window). */
-export function fittedAt(fit: LocalFit, t: number, basis: Float64Array): number {
-  legendreShifted(fit.order, t / fit.scale, basis)
-  let value = 0
-  for (let j = 0; j <= fit.order; j++) value += fit.coefficients[j] * basis[j]
-  return value
+export function fittedAt(fit: LocalFit, t: number): number {
+  return evaluate(fit.polynomial, (2 * t) / fit.scale - 1)
 }

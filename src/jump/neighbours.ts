@@ -5,11 +5,15 @@
  * A side with fewer than three other units uses those it has; a lone unit has r = 0.
  * O(n) on sorted distances: units at one distance share their neighbours but for themselves.
  */
-import type { Side } from './sample.js'
+import type { BySide, Sample, Side } from './sample.js'
 
 const nearest = 3
 
-export function neighbourResiduals(side: Side): Float64Array {
+export function neighbourResidualsOf(sample: Sample): BySide<Float64Array> {
+  return { untreated: neighbourResiduals(sample.untreated), treated: neighbourResiduals(sample.treated) }
+}
+
+function neighbourResiduals(side: Side): Float64Array {
   const { t, y } = side
   const n = t.length
   const residuals = new Float64Array(n)

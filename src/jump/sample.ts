@@ -5,6 +5,11 @@
  */
 import { argsortBy } from '../math/index.js'
 
+export interface BySide<T> {
+  readonly untreated: T
+  readonly treated: T
+}
+
 /** One side of the line; arrays of equal length, by increasing t. */
 export interface Side {
   /** |x| >= 0. */
@@ -63,35 +68,33 @@ export function buildSample(entries: Entries, donut = 0): Sample {
 }
 
 function sortSide(entries: Entries, pick: Int32Array): Side {
-  const t = new Float64Array(pick.length)
-  for (let i = 0; i < t.length; i++) t[i] = Math.abs(entries.x[pick[i]])
-  const keys = [t]
+  const keys = [pickNumbers(entries.x, pick)]
+  for (let i = 0; i < pick.length; i++) keys[0][i] = Math.abs(keys[0][i])
   for (const values of [entries.group, entries.y, entries.w, entries.cluster]) {
-    if (values) keys.push(Float64Array.from(pick, (i) => values[i]))
+    if (values) keys.push(pickNumbers(values, pick))
   }
   const order = argsortBy(keys)
-  const sorted = new Int32Array(pick.length)
-  for (let i = 0; i < sorted.length; i++) sorted[i] = pick[order[i]]
-  const take = (values: Float64Array) => {
-    const out = new Float64Array(sorted.length)
-    for (let i = 0; i < out.length; i++) out[i] = values[sorted[i]]
-    return out
-  }
-  const takeCodes = (values: Int32Array) => {
-    const out = new Int32Array(sorted.length)
-    for (let i = 0; i < out.length; i++) out[i] = values[sorted[i]]
-    return out
-  }
-  const distances = new Float64Array(order.length)
-  for (let i = 0; i < distances.length; i++) distances[i] = t[order[i]]
+  const sorted = pickCodes(pick, order)
   return {
-    t: distances,
-    y: take(entries.y),
-    w: entries.w ? take(entries.w) : null,
-    unit: takeCodes(entries.unit),
-    cluster: entries.cluster ? takeCodes(entries.cluster) : null,
-    group: entries.group ? takeCodes(entries.group) : null,
+    t: pickNumbers(keys[0], order),
+    y: pickNumbers(entries.y, sorted),
+    w: entries.w ? pickNumbers(entries.w, sorted) : null,
+    unit: pickCodes(entries.unit, sorted),
+    cluster: entries.cluster ? pickCodes(entries.cluster, sorted) : null,
+    group: entries.group ? pickCodes(entries.group, sorted) : null,
   }
+}
+
+function pickNumbers(values: Float64Array | Int32Array, pick: Int32Array | Uint32Array): Float64Array {
+  const out = new Float64Array(pick.length)
+  for (let i = 0; i < out.length; i++) out[i] = values[pick[i]]
+  return out
+}
+
+function pickCodes(values: Int32Array, pick: Int32Array | Uint32Array): Int32Array {
+  const out = new Int32Array(pick.length)
+  for (let i = 0; i < out.length; i++) out[i] = values[pick[i]]
+  return out
 }
 
 /** Sum in blocks of 4,096, which keeps rounding near that of pairwise summation. */

@@ -4,9 +4,10 @@
  * Every variance is a sum of squares of influence values ψ_i (summed within clusters where clustered), and those
  * ψ carry whatever factor the variance has, so that covariances between estimates follow from the same numbers.
  */
-import { choleskySolveInPlace, legendreShifted } from '../math/index.js'
-import { fittedAt, type LocalFit, weigher } from './localPolynomial.js'
+import { choleskySolveInPlace } from '../math/index.js'
+import { kernelCurve, type LocalFit } from './localPolynomial.js'
 import type { Side } from './sample.js'
+import { evaluate, legendreInZ } from './zPolynomial.js'
 
 export type Variance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters'
 
@@ -17,29 +18,37 @@ export type Variance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters'
  */
 export function scaledResiduals(side: Side, fit: LocalFit, count: number, variance: Variance): Float64Array {
   const residuals = new Float64Array(count)
-  const size = fit.order + 1
-  const basis = new Float64Array(size)
-  const solved = new Float64Array(size)
-  const weigh = weigher(fit.h, fit.kernel)
-  const freedom = fit.count - size
-  const scale = variance === 'hc1' ? Math.sqrt(fit.count / freedom) : 1
+  const { t, y, w } = side
+  const { scale, polynomial } = fit
   const usesLeverage = variance === 'hc2' || variance === 'hc3'
-  for (let i = 0; i < count; i++) {
-    const residual = side.y[i] - fittedAt(fit, side.t[i], basis)
-    if (!usesLeverage || i >= fit.count) {
-      residuals[i] = residual * scale
-      continue
-    }
-    legendreShifted(fit.order, side.t[i] / fit.scale, basis)
-    solved.set(basis)
-    choleskySolveInPlace(fit.factor, size, solved)
-    let leverage = 0
-    for (let j = 0; j < size; j++) leverage += basis[j] * solved[j]
-    leverage *= side.w === null ? weigh(side.t[i]) : weigh(side.t[i]) * side.w[i]
-    const left = 1 - leverage
-    residuals[i] = variance === 'hc2' ? residual / Math.sqrt(left) : residual / left
+  const factor = variance === 'hc1' ? Math.sqrt(fit.count / (fit.count - fit.order - 1)) : 1
+  for (let i = 0; i < count; i++) residuals[i] = factor * (y[i] - evaluate(polynomial, (2 * t[i]) / scale - 1))
+  if (!usesLeverage) return residuals
+  const shape = leverageShape(fit)
+  const { linear, square } = kernelCurve(fit.h, fit.kernel)
+  const within = Math.min(count, fit.count)
+  for (let i = 0; i < within; i++) {
+    const k = (1 + t[i] * (linear + t[i] * square)) * (w === null ? 1 : w[i])
+    const left = 1 - k * evaluate(shape, (2 * t[i]) / scale - 1)
+    residuals[i] /= variance === 'hc2' ? Math.sqrt(left) : left
   }
   return residuals
+}
+
+/** The leverage of a unit is k_i H(z_i): H = P'G⁻¹P as a polynomial of degree 2·order in z. */
+function leverageShape(fit: LocalFit): Float64Array {
+  const size = fit.order + 1
+  const shape = new Float64Array(2 * fit.order + 1)
+  const unit = new Float64Array(size)
+  for (let row = 0; row < size; row++) {
+    unit.fill(0)
+    unit[row] = 1
+    const own = legendreInZ(unit)
+    choleskySolveInPlace(fit.factor, size, unit)
+    const solved = legendreInZ(unit)
+    for (let a = 0; a < size; a++) for (let b = 0; b < size; b++) shape[a + b] += own[a] * solved[b]
+  }
+  return shape
 }
 
 /** Number of clusters among the units of non-zero weight, and the number of those units. */

@@ -4,7 +4,7 @@
  * polynomials of order p at h plus one dummy per line. Demeaning within lines removes the dummies
  * (Frisch–Waugh–Lovell), so thousands of lines cost O(n).
  */
-import { type BySide, countWithin, type Kernel, type Sample, type Side, weigher } from '../jump/index.js'
+import { type BySide, countWithin, type Kernel, kernelCurve, type Sample, type Side } from '../jump/index.js'
 import { choleskyInPlace, choleskySolveInPlace, legendreShifted } from '../math/index.js'
 
 export type FixedEffects =
@@ -32,8 +32,11 @@ export function kernelWeightByLine(sample: Sample, h: BySide<number>, kernel: Ke
 /** k = w K(t/h)/h: the 1/h matters where the two sides have different bandwidths. */
 function eachWeight(side: Side, h: number, kernel: Kernel, visit: (i: number, k: number) => void): void {
   const count = countWithin(side.t, h, kernel)
-  const weigh = weigher(h, kernel)
-  for (let i = 0; i < count; i++) visit(i, (weigh(side.t[i]) * (side.w === null ? 1 : side.w[i])) / h)
+  const { linear, square } = kernelCurve(h, kernel)
+  for (let i = 0; i < count; i++) {
+    const k = 1 + side.t[i] * (linear + side.t[i] * square)
+    visit(i, (k * (side.w === null ? 1 : side.w[i])) / h)
+  }
 }
 
 /**

@@ -64,11 +64,11 @@ describe('kernels at an edge', () => {
     const bias = responseOf(fitted.fit, level)
     expect(coefficientOf(fitted.fit, 0)).toBe(0)
     let squares = 0
-    const basis = [1, 0, 0, 0]
+    const basis = [1, 0, 0]
     for (let i = 0; i < weights.length; i++) {
       const z = (2 * t[i]) / fitted.fit.scale - 1
       basis[1] = z
-      basis[2] = (3 * z * z - 1) / 2
+      basis[2] = z * z
       const k = kernel === 'triangular' ? 1 - t[i] : kernel === 'epanechnikov' ? 1 - t[i] * t[i] : 1
       const value = k * level.reduce((sum, c, j) => sum + c * basis[j], 0)
       squares += value * value * n
