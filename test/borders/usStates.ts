@@ -13,7 +13,7 @@ export const states = feature(atlas, atlas.objects.states) as FeatureCollection
 /** The border of two states by shared arcs: the route of topojson, nothing of ours. */
 export function sharedArcs(a: string, b: string): MultiLineString {
   return mesh(atlas, atlas.objects.states, (p, q) => {
-    const names = [p, q].map((state) => (state as { properties: { name: string } }).properties.name)
+    const names = [p, q].map((state) => (state as unknown as { properties: { name: string } }).properties.name)
     return names[0] !== names[1] && names.includes(a) && names.includes(b)
   }) as MultiLineString
 }
