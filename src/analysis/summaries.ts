@@ -100,9 +100,6 @@ function notesOn(jump: JumpFit): string[] {
     const values = `${jump.distinct[name]} distinct values within the bandwidth on the ${name} side`
     notes.push(`only ${values}: the interval does not allow for what may happen between them`)
   }
-  if (jump.clusters !== undefined && jump.clusters < 30) {
-    notes.push(`only ${jump.clusters} clusters near the line: a clustered standard error tends to be too small`)
-  }
   return notes
 }
 
