@@ -44,24 +44,13 @@ export function chiSquareQuantile(p: number, df: number): number {
   checkProbability(p)
   if (p === 0) return 0
   if (p === 1) return Number.POSITIVE_INFINITY
-  const a = df / 2
-  const fromBelow = p <= 0.5
-  const target = fromBelow ? p : 1 - p
-  let u = Math.log(chiSquareStart(p, df) / 2)
-  for (let step = 0; step < 200; step++) {
-    const x = Math.exp(u)
-    const { lower, upper, front } = incompleteGamma(a, x)
-    const tail = fromBelow ? lower : upper
-    if (tail === 0 || x === 0) {
-      if (x === 0) return 0
-      u -= 0.5
-      continue
-    }
-    const move = Math.log(tail / target) / (front / tail)
-    u += fromBelow ? -Math.min(move, 1000) : Math.min(move, 2)
-    if (Math.abs(move) <= 4 * Number.EPSILON * Math.max(1, Math.abs(u))) break
-  }
-  return 2 * Math.exp(u)
+  const start = chiSquareStart(p, df) / 2
+  const rises = p <= 0.5
+  const half = argumentOfTail(rises ? p : 1 - p, start, rises, (x) => {
+    const { lower, upper, front } = incompleteGamma(df / 2, x)
+    return { tail: rises ? lower : upper, front }
+  })
+  return 2 * half
 }
 
 /** Wilson & Hilferty (1931), or the first term of the lower series where that is not positive or the tail is small. */
@@ -163,33 +152,53 @@ function centreSeries(a: number, y: number): number {
   return total
 }
 
-/** |t| with P(|T| < |t|) = centre: the function is concave, so Newton steps from 0 rise to the root. */
+/** |t| with P(|T| < |t|) = centre: the function is concave, so Newton steps from below rise to the root. */
 function studentFromCentre(centre: number, df: number): number {
   let t = (centre * Math.sqrt(Math.PI * df)) / (2 * halfStepGammaRatio(df / 2))
   for (let step = 0; step < 100; step++) {
     const tails = studentTails(t, df)
-    const move = (centre - tails.centre) / (tails.front / t)
+    const move = ((centre - tails.centre) * t) / tails.front
     t += move
-    if (Math.abs(move) <= 2 * Number.EPSILON * t) break
+    if (Math.abs(move) <= 1e-9 * t) break
   }
   return t
 }
 
-/** |t| with P(|T| ≥ |t|) = both: log tail against log t is concave and bends to a line, from the normal quantile up. */
+/** |t| with P(|T| ≥ |t|) = both, from the normal quantile and the first terms of Fisher & Cornish (1960) where they hold. */
 function studentFromTail(both: number, df: number): number {
-  let u = Math.log(-normalQuantile(both / 2))
-  for (let step = 0; step < 100; step++) {
-    const tails = studentTails(Math.exp(u), df)
-    if (tails.both === 0) {
-      u -= 0.25
+  const z = -normalQuantile(both / 2)
+  const square = z * z
+  const expansion = (square + 1) / (4 * df) + ((5 * square + 16) * square + 3) / (96 * df * df)
+  const start = square < df ? z * (1 + expansion) : z
+  return argumentOfTail(both, start, false, (t) => {
+    const tails = studentTails(t, df)
+    return { tail: tails.both, front: tails.front }
+  })
+}
+
+/**
+ * The x > 0 where a tail probability reaches its target, by Newton steps on log tail against log x: a concave curve,
+ * steepening towards a line for power tails, so the steps end on one side of the root and close in. tailAt gives the
+ * tail at x and x times the density there; `rises` says whether the tail grows with x. 0 or Infinity beyond the doubles.
+ */
+function argumentOfTail(
+  target: number,
+  start: number,
+  rises: boolean,
+  tailAt: (x: number) => { tail: number; front: number },
+): number {
+  let x = start
+  for (let step = 0; step < 200; step++) {
+    const { tail, front } = tailAt(x)
+    if (tail === 0) {
+      x *= rises ? 1.25 : 0.8
       continue
     }
-    const move = Math.log(tails.both / both) / (tails.front / tails.both)
-    u += move
-    if (u > 709.7) return Number.POSITIVE_INFINITY
-    if (Math.abs(move) <= 2 * Number.EPSILON * Math.max(1, Math.abs(u))) break
+    const move = (Math.log(Math.min(tail / target, Number.MAX_VALUE)) * tail) / front
+    x *= Math.exp(rises ? -move : move)
+    if (!(x > 0 && x < Number.POSITIVE_INFINITY) || Math.abs(move) <= 1e-9) break
   }
-  return Math.exp(u)
+  return x
 }
 
 function checkDegrees(df: number): void {

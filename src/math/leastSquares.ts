@@ -36,14 +36,16 @@ export type LeastSquares =
 export function leastSquares(columns: readonly Float64Array[], y: Float64Array, weights?: Float64Array): LeastSquares {
   const p = columns.length
   checkShapes(columns, y, weights)
-  const roots = weights ? weights.map(Math.sqrt) : new Float64Array(y.length).fill(1)
+  const n = y.length
+  const roots = new Float64Array(n).fill(1)
+  if (weights) for (let i = 0; i < n; i++) roots[i] = Math.sqrt(weights[i])
   let used = 0
-  for (let i = 0; i < roots.length; i++) if (roots[i] > 0) used++
+  for (let i = 0; i < n; i++) if (roots[i] > 0) used++
   if (p === 0) return { ok: false, reason: 'there is no column to fit' }
   if (used < p) return { ok: false, reason: `${used} rows of positive weight cannot fit ${p} columns` }
 
   const scale = columns.map((column) => powerOfTwoScale(column, roots))
-  const q = reflectInPlace(columns.map((column, j) => column.map((value, i) => value * scale[j] * roots[i])))
+  const q = reflectInPlace(columns.map((column, j) => scaledColumn(column, scale[j], roots)))
   const tolerance = 8 * Number.EPSILON * p * Math.sqrt(used)
   for (let j = 0; j < p; j++) {
     if (!(Math.abs(q.diagonal[j]) > tolerance * columnLength(q, j))) {
@@ -51,18 +53,17 @@ export function leastSquares(columns: readonly Float64Array[], y: Float64Array, 
     }
   }
   const coefficients = refined(columns, y, roots, scale, q)
-  const residuals = new Float64Array(y.length)
-  const pair = new Float64Array(2)
-  for (let i = 0; i < y.length; i++) {
-    residualAt(columns, y, coefficients, i, pair)
-    residuals[i] = pair[0] + pair[1]
-  }
+  const residuals = new Float64Array(n)
+  const rest = new Float64Array(n)
+  residualsInto(columns, y, coefficients, residuals, rest)
+  for (let i = 0; i < n; i++) residuals[i] += rest[i]
   return { ok: true, coefficients, residuals, rank: p, crossInverse: crossInverse(q, scale) }
 }
 
 /**
  * Solves [I DX; X'D 0][s; β] = [Dy; 0], D = √W, from s = 0, β = 0: the first step is the plain QR solution, each later
- * one corrects both s and β by the same factors, until a correction no longer counts or no longer shrinks.
+ * one corrects both s and β by the same factors. A step of relative size ρ leaves an error near ρ², so the
+ * steps end below the root of the rounding unit, or where they no longer shrink.
  */
 function refined(
   columns: readonly Float64Array[],
@@ -76,17 +77,18 @@ function refined(
   const beta = new Float64Array(p)
   const s = new Float64Array(n)
   const f = new Float64Array(n)
-  const g = new Float64Array(p)
-  const pair = new Float64Array(2)
+  const high = new Float64Array(n)
+  const low = new Float64Array(n)
   let previous = Number.POSITIVE_INFINITY
   for (let step = 0; step < 8; step++) {
+    residualsInto(columns, y, beta, high, low)
     for (let i = 0; i < n; i++) {
-      residualAt(columns, y, beta, i, pair)
-      const product = pair[0] * roots[i]
-      const rest = productError(pair[0], roots[i], product) + pair[1] * roots[i]
-      f[i] = product - s[i] + rest
+      const product = high[i] * roots[i]
+      f[i] = product - s[i] + (productError(high[i], roots[i], product) + low[i] * roots[i])
     }
-    for (let j = 0; j < p; j++) g[j] = -scale[j] * weightedProduct(columns[j], roots, s, pair)
+    const g = Float64Array.from(columns, (column, j) =>
+      step === 0 ? 0 : -scale[j] * weightedProduct(column, roots, s),
+    )
     applyTransposed(q, f)
     solveUpperTransposed(q, g)
     const change = f.slice(0, p)
@@ -98,45 +100,51 @@ function refined(
       beta[j] += change[j] * scale[j]
       f[j] = g[j]
     }
+    if (size <= 1e-9) break
     applyForward(q, f)
     for (let i = 0; i < n; i++) s[i] += f[i]
-    if (size <= Number.EPSILON / 2) break
-    previous = size
+    if (step > 0) previous = size
   }
   return beta
 }
 
-/** y_i − Σ_j x_ij β_j into pair, as a sum of two doubles. */
-function residualAt(
+/** y − Xβ in twice the working precision, as high + low. */
+function residualsInto(
   columns: readonly Float64Array[],
   y: Float64Array,
   beta: Float64Array,
-  i: number,
-  pair: Float64Array,
+  high: Float64Array,
+  low: Float64Array,
 ): void {
-  pair[0] = y[i]
-  pair[1] = 0
-  for (let j = 0; j < columns.length; j++) addProduct(pair, columns[j][i], -beta[j])
+  high.set(y)
+  low.fill(0)
+  for (let j = 0; j < columns.length; j++) {
+    if (beta[j] === 0) continue
+    const x = columns[j]
+    for (let i = 0; i < x.length; i++) {
+      const product = -beta[j] * x[i]
+      const sum = high[i] + product
+      const part = sum - high[i]
+      low[i] += high[i] - (sum - part) + (product - part) + productError(-beta[j], x[i], product)
+      high[i] = sum
+    }
+  }
 }
 
 /** Σ_i x_i d_i s_i in twice the working precision. */
-function weightedProduct(x: Float64Array, d: Float64Array, s: Float64Array, pair: Float64Array): number {
-  pair[0] = 0
-  pair[1] = 0
+function weightedProduct(x: Float64Array, d: Float64Array, s: Float64Array): number {
+  let high = 0
+  let low = 0
   for (let i = 0; i < x.length; i++) {
-    const product = d[i] * s[i]
-    addProduct(pair, x[i], product)
-    pair[1] += x[i] * productError(d[i], s[i], product)
+    const weighted = d[i] * s[i]
+    const product = x[i] * weighted
+    const sum = high + product
+    const part = sum - high
+    low += high - (sum - part) + (product - part)
+    low += productError(x[i], weighted, product) + x[i] * productError(d[i], s[i], weighted)
+    high = sum
   }
-  return pair[0] + pair[1]
-}
-
-function addProduct(pair: Float64Array, a: number, b: number): void {
-  const product = a * b
-  const sum = pair[0] + product
-  const part = sum - pair[0]
-  pair[1] += pair[0] - (sum - part) + (product - part) + productError(a, b, product)
-  pair[0] = sum
+  return high + low
 }
 
 /** a·b − product exactly, product being a·b rounded (Dekker 1971; magnitudes under 1e300). */
@@ -160,6 +168,12 @@ function largestShare(change: Float64Array, beta: Float64Array, scale: readonly 
     if (change[j] !== 0) largest = Math.max(largest, size > 0 ? Math.abs(change[j]) / size : Number.MAX_VALUE)
   }
   return largest
+}
+
+function scaledColumn(column: Float64Array, scale: number, roots: Float64Array): Float64Array {
+  const scaled = new Float64Array(column.length)
+  for (let i = 0; i < column.length; i++) scaled[i] = column[i] * scale * roots[i]
+  return scaled
 }
 
 /** The power of two that brings the weighted column's length into [1, 2); 1 for a column of zeros. */
@@ -204,7 +218,10 @@ function crossInverse(q: Reflections, scale: readonly number[]): Float64Array {
 function checkShapes(columns: readonly Float64Array[], y: Float64Array, weights?: Float64Array): void {
   for (const values of [...columns, y, ...(weights ? [weights] : [])]) {
     if (values.length !== y.length) throw new RangeError(`a column has ${values.length} rows, y has ${y.length}`)
-    if (!values.every(Number.isFinite)) throw new RangeError('least squares needs finite numbers throughout')
+    for (let i = 0; i < values.length; i++) {
+      if (!Number.isFinite(values[i]))
+        throw new RangeError(`row ${i} holds ${values[i]}; least squares needs finite numbers`)
+    }
   }
-  if (weights?.some((weight) => weight < 0)) throw new RangeError('a weight is negative')
+  if (weights) for (const weight of weights) if (weight < 0) throw new RangeError(`a weight is ${weight}`)
 }

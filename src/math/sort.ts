@@ -1,29 +1,34 @@
 /**
  * Ascending orders of number columns. Ties keep their first order, −0 equals 0, infinities sort at the ends.
- * Work grows like n whatever the spread of the keys: the 64 bits of a double, made to order like a whole number, are
- * sorted eleven at a time from the last (least significant digit radix sort; Knuth, volume 3, section 5.2.5).
+ * Work grows like n whatever the spread of the keys: the upper 32 bits of each double, made to order like a whole number,
+ * are sorted eleven at a time from the last (radix sort; Knuth, The Art of Computer Programming, volume 3, section
+ * 5.2.5); runs alike in those bits (one part in a million) are then put in order by the rest.
  */
 
-const digitBits = 11
-const digitMask = (1 << digitBits) - 1
-const digitCount = 6
+const digits = [
+  { shift: 0, size: 2048 },
+  { shift: 11, size: 2048 },
+  { shift: 22, size: 1024 },
+]
+
+/** Runs up to this length are sorted by insertion, up to `mergeLength` by merging, longer ones by digits. */
+const insertionLength = 32
+const mergeLength = 512
 
 /** The order that sorts the keys: keys[order[0]] ≤ keys[order[1]] ≤ …. Throws RangeError where a key is NaN. */
 export function argsort(keys: Float64Array): Uint32Array {
   const n = keys.length
   const order = new Uint32Array(n)
-  let isSorted = true
   for (let i = 0; i < n; i++) {
     if (Number.isNaN(keys[i])) throw new RangeError(`key ${i} is not a number`)
-    if (i > 0 && keys[i] < keys[i - 1]) isSorted = false
     order[i] = i
   }
-  if (isSorted) return order
-  if (n <= 40) {
+  if (isAscending(order, 0, n, keys)) return order
+  if (n <= insertionLength) {
     insertionSort(order, 0, n, keys)
     return order
   }
-  return n <= 512 ? mergeSorted(order, keys) : radixSorted(order, keys)
+  return n <= mergeLength ? mergeSorted(order, keys) : radixSorted(order, keys)
 }
 
 /** The order by the first key, ties by the second, and so on; rows alike in every key keep their first order. */
@@ -47,7 +52,7 @@ function orderTies(order: Uint32Array, start: number, end: number, keys: readonl
   for (let i = start + 1; i <= end; i++) {
     if (i < end && key[order[i]] === key[order[first]]) continue
     if (i - first > 1) {
-      if (i - first <= 40) insertionSort(order, first, i, nextKey)
+      if (i - first <= insertionLength) insertionSort(order, first, i, nextKey)
       else sortSlice(order, first, i, nextKey)
       orderTies(order, first, i, keys, level + 1)
     }
@@ -57,7 +62,9 @@ function orderTies(order: Uint32Array, start: number, end: number, keys: readonl
 
 function sortSlice(order: Uint32Array, start: number, end: number, key: Float64Array): void {
   const rows = order.slice(start, end)
-  const inner = argsort(Float64Array.from(rows, (row) => key[row]))
+  const values = new Float64Array(rows.length)
+  for (let i = 0; i < rows.length; i++) values[i] = key[rows[i]]
+  const inner = argsort(values)
   for (let i = 0; i < inner.length; i++) order[start + i] = rows[inner[i]]
 }
 
@@ -99,76 +106,95 @@ function mergeSorted(order: Uint32Array, keys: Float64Array): Uint32Array {
 }
 
 function radixSorted(order: Uint32Array, keys: Float64Array): Uint32Array {
-  const n = order.length
-  let low = new Uint32Array(n)
-  let high = new Uint32Array(n)
-  orderedBits(keys, low, high)
-  const counts = digitCounts(low, high)
-  let from: Uint32Array = order
-  let to: Uint32Array = new Uint32Array(n)
-  let nextLow = new Uint32Array(n)
-  let nextHigh = new Uint32Array(n)
-  for (let digit = 0; digit < digitCount; digit++) {
-    const start = counts.subarray(digit << digitBits, (digit + 1) << digitBits)
-    if (start[digitOf(low[0], high[0], digit)] === n) continue
-    let total = 0
-    for (let value = 0; value <= digitMask; value++) {
-      const count = start[value]
-      start[value] = total
-      total += count
-    }
-    for (let i = 0; i < n; i++) {
-      const place = start[digitOf(low[i], high[i], digit)]++
-      to[place] = from[i]
-      nextLow[place] = low[i]
-      nextHigh[place] = high[i]
-    }
+  const sorted = sortByWord(order, orderedHighWords(keys))
+  const high = sorted.word
+  for (let first = 0; first < high.length; ) {
+    let end = first + 1
+    while (end < high.length && high[end] === high[first]) end++
+    if (end - first > 1) sortAlikeHigh(sorted.order, first, end, keys)
+    first = end
+  }
+  return sorted.order
+}
+
+/** Sorts order[start … end), whose keys share their upper 32 bits. */
+function sortAlikeHigh(order: Uint32Array, start: number, end: number, keys: Float64Array): void {
+  if (end - start <= insertionLength) {
+    insertionSort(order, start, end, keys)
+    return
+  }
+  if (isAscending(order, start, end, keys)) return
+  const rows = order.slice(start, end)
+  const words = new Uint32Array(keys.buffer, keys.byteOffset, 2 * keys.length)
+  const flip = keys[rows[0]] < 0 ? 0xffffffff : 0
+  const offset = 1 - highWord()
+  const low = new Uint32Array(rows.length)
+  for (let i = 0; i < rows.length; i++) low[i] = words[2 * rows[i] + offset] ^ flip
+  order.set(sortByWord(rows, low).order, start)
+}
+
+function isAscending(order: Uint32Array, start: number, end: number, keys: Float64Array): boolean {
+  for (let i = start + 1; i < end; i++) if (keys[order[i - 1]] > keys[order[i]]) return false
+  return true
+}
+
+/** The order rearranged so that its words ascend, and the words so rearranged; digits that never vary cost no pass. */
+function sortByWord(order: Uint32Array, word: Uint32Array): { order: Uint32Array; word: Uint32Array } {
+  let from: { order: Uint32Array; word: Uint32Array } = { order, word }
+  let to: typeof from = { order: new Uint32Array(order.length), word: new Uint32Array(order.length) }
+  for (const { shift, size } of digits) {
+    const start = digitStarts(from.word, shift, size)
+    if (start === undefined) continue
+    scatter(from.order, from.word, to.order, to.word, shift, size - 1, start)
     ;[from, to] = [to, from]
-    ;[low, nextLow] = [nextLow, low]
-    ;[high, nextHigh] = [nextHigh, high]
   }
   return from
 }
 
-/** The bits of each key, flipped so that whole-number order is number order; −0 becomes 0. */
-function orderedBits(keys: Float64Array, low: Uint32Array, high: Uint32Array): void {
-  const one = new Float64Array(1)
-  const words = new Uint32Array(one.buffer)
-  one[0] = 1
-  const highWord = words[1] === 0 ? 0 : 1
+/** Where each value of a digit begins in the sorted order; undefined where one value has every row. */
+function digitStarts(word: Uint32Array, shift: number, size: number): Uint32Array | undefined {
+  const start = new Uint32Array(size)
+  for (let i = 0; i < word.length; i++) start[(word[i] >>> shift) & (size - 1)]++
+  if (start[(word[0] >>> shift) & (size - 1)] === word.length) return undefined
+  let total = 0
+  for (let value = 0; value < size; value++) {
+    const count = start[value]
+    start[value] = total
+    total += count
+  }
+  return start
+}
+
+function scatter(
+  order: Uint32Array,
+  word: Uint32Array,
+  toOrder: Uint32Array,
+  toWord: Uint32Array,
+  shift: number,
+  mask: number,
+  start: Uint32Array,
+): void {
+  for (let i = 0; i < order.length; i++) {
+    const bits = word[i]
+    const place = start[(bits >>> shift) & mask]++
+    toOrder[place] = order[i]
+    toWord[place] = bits
+  }
+}
+
+/** The upper 32 bits of each key, flipped so that whole-number order is number order; those of −0 are those of 0. */
+function orderedHighWords(keys: Float64Array): Uint32Array {
+  const words = new Uint32Array(keys.buffer, keys.byteOffset, 2 * keys.length)
+  const high = new Uint32Array(keys.length)
+  const offset = highWord()
   for (let i = 0; i < keys.length; i++) {
-    one[0] = keys[i] + 0
-    const top = words[highWord]
-    const flip = top >>> 31 === 1 ? 0xffffffff : 0
-    low[i] = words[1 - highWord] ^ flip
-    high[i] = top ^ (flip | 0x80000000)
+    const bits = keys[i] === 0 ? 0 : words[2 * i + offset]
+    high[i] = bits ^ ((bits >> 31) | 0x80000000)
   }
+  return high
 }
 
-function digitCounts(low: Uint32Array, high: Uint32Array): Uint32Array {
-  const counts = new Uint32Array(digitCount << digitBits)
-  for (let i = 0; i < low.length; i++) {
-    for (let digit = 0; digit < digitCount; digit++) {
-      counts[(digit << digitBits) + digitOf(low[i], high[i], digit)]++
-    }
-  }
-  return counts
-}
-
-/** The digit-th eleven bits of the 64, counted from the last; the sixth has nine. */
-function digitOf(low: number, high: number, digit: number): number {
-  switch (digit) {
-    case 0:
-      return low & digitMask
-    case 1:
-      return (low >>> 11) & digitMask
-    case 2:
-      return ((low >>> 22) | (high << 10)) & digitMask
-    case 3:
-      return (high >>> 1) & digitMask
-    case 4:
-      return (high >>> 12) & digitMask
-    default:
-      return high >>> 23
-  }
+/** Which of a double's two 32-bit words holds its sign: 1 on most machines. */
+function highWord(): number {
+  return new Uint32Array(new Float64Array([1]).buffer)[1] === 0 ? 0 : 1
 }

@@ -121,7 +121,8 @@ export function betaFraction(a: number, b: number, x: number, y: number): number
   }
   const beta = (m: number): number => {
     const d = a + 2 * m - 1
-    return m + (m * (b - m) * x) / d + ((a + m) / (d + 2)) * (a * y - b * x + 1 + m * (1 + y))
+    const middle = m === 0 ? 0 : m + (m * (b - m) * x) / d
+    return middle + ((a + m) / (d + 2)) * (a * y - b * x + 1 + m * (1 + y))
   }
   return lentz(beta(0), alpha, beta)
 }
