@@ -47,9 +47,19 @@ export function numbersOf(table: Table, name: string): Float64Array {
   return column.values
 }
 
-/** A label column; throws if the caller asks for what was not read. */
+/** A label column, or the labels of a number column; throws if the caller asks for what was not read. */
 export function labelsOf(table: Table, name: string): LabelColumn {
   const column = table.columns.get(name)
-  if (column?.kind !== 'label') throw new Error(`column ${name} was not read as labels`)
-  return column
+  if (column === undefined) throw new Error(`column ${name} was not read`)
+  return column.kind === 'label' ? column : labelsOfNumbers(column)
+}
+
+/** Numbers as labels, each by its shortest text; NaN is missing. */
+function labelsOfNumbers({ name, values }: NumberColumn): LabelColumn {
+  const distinct = [...new Set(values)].filter((value) => !Number.isNaN(value))
+  const texts = new Map(distinct.map((value) => [value, String(value)]))
+  const labels = [...texts.values()].sort()
+  const ranks = new Map(labels.map((label, rank) => [label, rank]))
+  const codes = Int32Array.from(values, (value) => (Number.isNaN(value) ? -1 : ranks.get(texts.get(value)!)!))
+  return { kind: 'label', name, codes, labels }
 }
