@@ -43,7 +43,7 @@ function lineRecord(view: View, outcome: OutcomeView | undefined, index: number 
     ['shrunken_estimate', shrunken?.estimate],
     ['shrunken_low', shrunken?.low],
     ['shrunken_high', shrunken?.high],
-    ['notes', jump?.notes?.join('; ')],
+    ['notes', jump?.notes?.map((note) => reasonText(view, note)).join('; ')],
     ['not_estimated', row && 'not_estimated' in row ? reasonText(view, row.not_estimated) : undefined],
     ['counts_withheld_under', small ? view.smallestCell : undefined],
   ]

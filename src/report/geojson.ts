@@ -39,9 +39,14 @@ function pieceFeature(view: View, piece: Piece): Feature<MultiLineString> {
     },
     geometry: {
       type: 'MultiLineString',
-      coordinates: piece.coordinates.map((part) => part.map(([lon, lat]) => [lon, lat])),
+      coordinates: piece.coordinates.map((part) => part.map(([lon, lat]) => [rounded(lon), rounded(lat)])),
     },
   }
+}
+
+/** Nine places of a degree are a tenth of a millimetre. */
+function rounded(degrees: number): number {
+  return Math.round(degrees * 1e9) / 1e9
 }
 
 function estimateProperties(view: View, line: string): Record<string, number | string | null> {

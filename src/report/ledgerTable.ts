@@ -16,10 +16,10 @@ export function ledgerTable(view: View): TextTable {
     columns: [
       { head: 'Step', isText: true },
       { head: 'In' },
-      { head: 'Left' },
+      { head: 'Set aside' },
       { head: 'Out' },
       ...(onGround ? [{ head: 'Border, km' }, { head: 'Zone pairs' }] : []),
-      { head: 'Why they left', isText: true },
+      { head: 'Why', isText: true },
     ],
     rows: ledger.map((step) => [
       capital(step.step),
@@ -32,7 +32,7 @@ export function ledgerTable(view: View): TextTable {
         .join('; ') || missing,
     ]),
     notes: [
-      `${count(placement.read)} rows read, ${count(placement.placed)} units placed against a line. In each row, in − left = out.`,
+      `${count(placement.read)} rows read, ${count(placement.placed)} units placed against a line. In each row, in − set aside = out.`,
     ],
   }
 }

@@ -1,6 +1,6 @@
 /** Every line's estimate as rows: nine columns for a paper, all of them for the page. */
 import type { Jump } from '../results.js'
-import { cell, fixed, missing, type Places, p, percent, sharedPlaces } from './numbers.js'
+import { cell, fixed, missing, type Places, p, percent, sharedPlaces, wholeNumber } from './numbers.js'
 import type { TableRow, TextTable } from './tables.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, reasonText, type View } from './view.js'
 
@@ -14,6 +14,7 @@ export function linePlaces(outcome: OutcomeView): Places {
 }
 
 export function intervalText(interval: { readonly low: number; readonly high: number }, places: Places): string {
+  if (!Number.isFinite(interval.low) && !Number.isFinite(interval.high)) return missing
   return `${fixed(interval.low, places)} to ${fixed(interval.high, places)}`
 }
 
@@ -96,7 +97,7 @@ export function pageLineTable(view: View, outcome: OutcomeView): TextTable {
       const head = labelOf(view, line.line)
       if (!isEstimated<Jump>(line)) return { head, across: notEstimated(view, line.not_estimated) }
       const summary = view.lineOf.get(line.line)
-      const place = view.words.isBorder ? fixed(summary?.length_m, 0) : significantOrFull(summary?.cutoff)
+      const place = view.words.isBorder ? fixed(summary?.length_m, 0) : wholeNumber(summary?.cutoff)
       return [
         head,
         place,
@@ -141,11 +142,6 @@ export function bandwidthHead(view: View): string {
 
 function notEstimated(view: View, reason: string): string {
   return `not estimated: ${reasonText(view, reason)}`
-}
-
-/** A cutoff is a fact, not an estimate: it is printed whole. */
-function significantOrFull(value: number | undefined): string {
-  return value === undefined ? missing : value.toLocaleString('en', { maximumFractionDigits: 20 }).replace('-', '−')
 }
 
 export function capital(text: string): string {

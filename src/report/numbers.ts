@@ -26,7 +26,7 @@ export function significant(value: number | null | undefined): string {
   if (size === 0) return '0'
   if (size >= 1e12 || size < 1e-4) return format('.3e')(value)
   if (size >= 1000) return format(',.0f')(value)
-  return format('.4~r')(value)
+  return format(',.4~r')(value)
 }
 
 /**
@@ -54,6 +54,11 @@ export function fixed(value: number | null | undefined, places: Places): string 
   if (!isNumber(value)) return missing
   if (places === 'scientific') return format('.3e')(value)
   return format(`,.${places}f`)(value)
+}
+
+/** Every digit: for what is a fact and not an estimate, as a cutoff is. */
+export function wholeNumber(value: number | null | undefined): string {
+  return isNumber(value) ? value.toLocaleString('en', { maximumFractionDigits: 20 }).replace('-', '−') : missing
 }
 
 export function p(value: number | null | undefined): string {

@@ -3,7 +3,7 @@ import { extent, max, quantile } from 'd3-array'
 import { type ScaleLinear, scaleLinear } from 'd3-scale'
 import type { Interval, Jump, LineJump } from '../../results.js'
 import { intervalText, linePlaces } from '../lineTable.js'
-import { fixed, type Places } from '../numbers.js'
+import { fixed, type Places, wholeNumber } from '../numbers.js'
 import { inReadingOrder } from '../order.js'
 import { targetWords } from '../pooledTable.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View } from '../view.js'
@@ -71,10 +71,19 @@ function orderWords(view: View): string {
 }
 
 function lineRow(view: View, line: LineJump): Row {
-  const label = labelOf(view, line.line)
+  const label = labelWithCutoff(view, line.line)
   return isEstimated<Jump & { line: string }>(line)
     ? { label, mark: 'line', estimate: line.corrected }
     : { label, mark: 'line' }
+}
+
+/** The label, with the cutoff where it does not say it already. */
+function labelWithCutoff(view: View, line: string): string {
+  const label = labelOf(view, line)
+  const cutoff = view.lineOf.get(line)?.cutoff
+  if (cutoff === undefined) return label
+  const written = wholeNumber(cutoff)
+  return label.includes(String(cutoff)) || label.includes(written) ? label : `${label} (${written})`
 }
 
 function togetherRows(view: View, outcome: OutcomeView): Row[] {
@@ -161,6 +170,7 @@ function estimateMarks(
 ): string[] {
   const color: Ink = row.mark === 'line' ? 'ink' : 'treated'
   const marks: string[] = []
+  if (!Number.isFinite(estimate.estimate)) return marks
   if (row.prediction) marks.push(...intervalMarks(row.prediction, x, y, color, 1))
   marks.push(...intervalMarks(estimate, x, y, color, row.mark === 'line' ? (isLabelled ? 1.3 : 0.8) : 2.6))
   const at = x(estimate.estimate)
@@ -177,6 +187,7 @@ function estimateMarks(
 
 /** The bar, cut at the edges of the plot, with an arrow head where it was cut. */
 function intervalMarks(interval: Interval, x: Scale, y: number, color: Ink, thickness: number): string[] {
+  if (!Number.isFinite(interval.low) || !Number.isFinite(interval.high)) return []
   const [left, right] = x.range()
   const isCutLeft = !(x(interval.low) >= left)
   const isCutRight = !(x(interval.high) <= right)

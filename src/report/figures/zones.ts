@@ -15,6 +15,7 @@ export function zoneMarks(map: MapExhibit, frame: MapFrame, patternId: string): 
     [frame.width + 2, frame.height + 2],
   ])
   const path = geoPath(clip).digits(1)
+  const obstacles = map.barriers.flatMap((barrier) => barrier.coordinates.flatMap((part) => dotted(part, frame)))
   const fills: string[] = []
   const names: string[] = []
   for (const zone of map.zones) {
@@ -23,10 +24,23 @@ export function zoneMarks(map: MapExhibit, frame: MapFrame, patternId: string): 
     if (!d) continue
     fills.push(element('path', { d, class: 'f-land s-zone', fill: '#f3f1ec', stroke: '#a9a59b', 'stroke-width': 1 }))
     if (zone.treated) fills.push(element('path', { d, fill: `url(#${patternId})` }))
-    const place = placeForName(zone.name, shape, path.centroid(shape), frame)
+    const place = placeForName(zone.name, shape, path.centroid(shape), frame, obstacles)
     if (place) names.push(nameMark(zone.name, place))
   }
   return { fills, names }
+}
+
+/** Points along a barrier, close enough that none of its bends is missed. */
+function dotted(part: readonly (readonly number[])[], frame: MapFrame): Pixel[] {
+  const line = projectLine(part, frame.project)
+  return line.flatMap((pixel, index): Pixel[] => {
+    const before = line[Math.max(0, index - 1)]
+    const steps = Math.min(2000, Math.max(1, Math.ceil(Math.hypot(pixel[0] - before[0], pixel[1] - before[1]) / 4)))
+    return Array.from({ length: steps }, (_, step) => {
+      const share = (step + 1) / steps
+      return [before[0] + share * (pixel[0] - before[0]), before[1] + share * (pixel[1] - before[1])]
+    })
+  })
 }
 
 /** Rings in pixels, outer rings one way round and holes the other, as the clipping needs. */
@@ -60,16 +74,18 @@ export function hatchPattern(id: string): string {
   )
 }
 
-/** The middle of a box for the name that lies wholly inside the zone and the frame: the centroid if it does, else the nearest such point of a grid. */
+/** The middle of a box for the name that lies wholly inside the zone and the frame, clear of obstacles: the centroid, else the nearest such point of a grid. */
 function placeForName(
   name: string,
   shape: MultiPolygon,
   centroid: [number, number],
   frame: MapFrame,
+  obstacles: readonly Pixel[],
 ): Pixel | undefined {
   const wide = textWidth(name, labelSize) + 12
   const tall = labelSize + 12
   const fits = ([x, y]: Pixel) =>
+    !obstacles.some(([px, py]) => Math.abs(px - x) < wide / 2 && Math.abs(py - y) < tall / 2) &&
     [-1, -0.5, 0, 0.5, 1].every((across) =>
       [-1, 1].every((up) => {
         const [px, py] = [x + (across * wide) / 2, y + (up * tall) / 2]

@@ -45,13 +45,14 @@ function pooledSentence(view: View, outcome: OutcomeView, jump: Jump, places: Pl
   const { corrected } = jump
   const size = fixed(Math.abs(corrected.estimate), places)
   const way = corrected.estimate === 0 ? 'the same' : `${size} ${corrected.estimate > 0 ? 'higher' : 'lower'}`
-  const lines = howMany(view, estimatedLines(outcome.result).length)
+  const lines = estimatedLines(outcome.result).length
+  const start = lines === 1 ? `At the one ${view.words.line} estimated` : `Taking ${howMany(view, lines)} together`
   const includesZero = corrected.low <= 0 && corrected.high >= 0
   const verdict = includesZero
     ? `The interval includes zero, so the data do not settle whether ${outcome.result.outcome} rises or falls there.`
     : `The interval excludes zero.`
   const means = `The fitted means there are ${fixed(jump.at_line.untreated, places)} untreated and ${fixed(jump.at_line.treated, places)} treated (plain fit).`
-  return `Taking ${lines} together, ${outcome.result.outcome} is ${way} just inside the treated side of ${view.words.theLine} than just outside it (corrected estimate; ${view.words.level} interval ${intervalText(corrected, places)}, ${pWords(corrected.p)}). ${verdict} ${means}`
+  return `${start}, ${outcome.result.outcome} is ${way} just inside the treated side of ${view.words.theLine} than just outside it (corrected estimate; ${view.words.level} interval ${intervalText(corrected, places)}, ${pWords(corrected.p)}). ${verdict} ${means}`
 }
 
 function targetSentence(view: View, target: Target, places: Places): string {

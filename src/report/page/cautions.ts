@@ -1,7 +1,8 @@
 /** What a reader must know before using the numbers; each caution appears only where a fact of this study calls for it. */
 import type { Jump } from '../../results.js'
+import { capital } from '../lineTable.js'
 import { count, fixed, isSmall } from '../numbers.js'
-import { estimatedLines, howMany, isEstimated, type View } from '../view.js'
+import { estimatedLines, howMany, isEstimated, reasonText, type View } from '../view.js'
 
 export interface Caution {
   readonly head: string
@@ -110,23 +111,31 @@ function clustering(view: View): Caution[] {
   ]
 }
 
-/** What the estimator itself remarked, with how often. */
+/** What the estimator itself remarked: remarks that differ only in a number are given once, and clusters have a caution of their own. */
 function notes(view: View): Caution[] {
-  const places = new Map<string, Set<string>>()
-  for (const { result } of view.outcomes) {
-    const add = (jump: Jump, where: string) => {
-      for (const note of jump.notes ?? []) places.set(note, (places.get(note) ?? new Set()).add(where))
+  const alike = new Map<string, { note: string; lines: Set<string>; isPooled: boolean }>()
+  const add = (jump: Jump, line: string | undefined) => {
+    for (const note of jump.notes ?? []) {
+      if (/\bclusters\b/.test(note)) continue
+      const text = reasonText(view, note)
+      const key = text.replace(/\d[\d.,]*/g, '#')
+      const found = alike.get(key) ?? { note: text, lines: new Set<string>(), isPooled: false }
+      if (line === undefined) found.isPooled = true
+      else found.lines.add(line)
+      alike.set(key, found)
     }
-    for (const line of estimatedLines(result)) add(line, line.line)
-    if (isEstimated<Jump & { weights: Readonly<Record<string, number>> }>(result.pooled)) add(result.pooled, 'pooled')
   }
-  return [...places].map(([note, where]) => {
-    const lines = [...where].filter((place) => place !== 'pooled').length
-    const parts = [
-      ...(lines > 0 ? [`at ${howMany(view, lines)}`] : []),
-      ...(where.has('pooled') ? ['in the pooled estimate'] : []),
+  for (const { result } of view.outcomes) {
+    for (const line of estimatedLines(result)) add(line, line.line)
+    if (isEstimated<Jump & { weights: Readonly<Record<string, number>> }>(result.pooled)) add(result.pooled, undefined)
+  }
+  return [...alike.values()].map(({ note, lines, isPooled }) => {
+    const places = [
+      ...(lines.size > 0 ? [`at ${howMany(view, lines.size)}`] : []),
+      ...(isPooled ? ['in the pooled estimate'] : []),
     ]
-    return { head: 'A remark of the estimator', text: `${note} (${parts.join(' and ')}).` }
+    const like = lines.size + Number(isPooled) > 1 ? ', or the like,' : ''
+    return { head: 'A remark of the estimator', text: `${capital(note)}${like} ${places.join(' and ')}.` }
   })
 }
 

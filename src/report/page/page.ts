@@ -113,7 +113,7 @@ function answerHtml(view: View): string {
   const answers = view.outcomes.map((outcome) => {
     const answer = answerOf(view, outcome)
     const head = answer.headline
-      ? `<p class="head"><strong>${escapeHtml(answer.headline.estimate)}</strong> <span>${escapeHtml(answer.headline.interval)}, ${escapeHtml(answer.headline.p)}</span></p>`
+      ? `<p class="head"><strong>${escapeHtml(answer.headline.estimate)}</strong> <span>${escapeHtml(answer.headline.interval)}, ${tied(escapeHtml(answer.headline.p))}</span></p>`
       : ''
     const facts = answer.facts
       .map(([term, value]) => `<div><dt>${escapeHtml(term)}</dt><dd>${escapeHtml(value)}</dd></div>`)
@@ -121,12 +121,17 @@ function answerHtml(view: View): string {
     return `<div class="answer">
 <h3>Pooled jump in ${escapeHtml(outcome.result.outcome)}</h3>
 ${head}
-${answer.sentences.map((sentence) => `<p>${escapeHtml(sentence)}</p>`).join('\n')}
+${answer.sentences.map((sentence) => `<p>${tied(escapeHtml(sentence))}</p>`).join('\n')}
 <dl class="facts">${facts}</dl>
 </div>`
   })
   return `${answers.join('\n')}
 <p class="terms">A jump is the treated side minus the untreated side at ${view.words.theLine}. <b>Plain</b> is the difference of the two fitted curves there. <b>Corrected</b> takes out the plain fit’s estimated smoothing bias and widens the standard error for having estimated it; intervals and p-values quoted are corrected unless they say plain.</p>`
+}
+
+/** Keeps `p = 0.012` on one line. */
+function tied(html: string): string {
+  return html.replace(/\bp (=|&lt;|&gt;) /g, 'p\u00a0$1\u00a0')
 }
 
 function cautionsHtml(view: View): string {

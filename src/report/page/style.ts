@@ -21,7 +21,7 @@ html { scroll-behavior: smooth; -webkit-text-size-adjust: 100%; text-size-adjust
 body { margin: 0; background: var(--paper); color: var(--ink); font: 1.0625rem/1.6 var(--serif); overflow-wrap: break-word; }
 .skip { position: absolute; left: -100vw; top: 0; padding: .6rem 1rem; background: var(--ink); color: var(--paper); z-index: 2; }
 .skip:focus { left: 0; }
-.sheet { max-width: 92rem; margin: 0 auto; padding: 0 clamp(1rem, 4vw, 3rem) 4rem; }
+.sheet { max-width: 96rem; margin: 0 auto; padding: 0 clamp(1rem, 4vw, 3rem) 4rem; }
 .top { padding: 2.75rem 0 1.75rem; border-bottom: 1px solid var(--rule); }
 .kicker { margin: 0 0 .9rem; display: flex; align-items: center; gap: .7rem; font: 600 .8125rem/1.3 var(--sans); color: var(--muted); letter-spacing: .02em; }
 .kicker svg { flex: none; }
@@ -56,9 +56,9 @@ p { margin: 0 0 .9rem; max-width: 42em; }
 figure { margin: 1.5rem 0 2.25rem; }
 figcaption { font-size: .9375rem; line-height: 1.5; color: var(--muted); max-width: 46em; margin-top: .7rem; }
 figcaption b { color: var(--ink); font-weight: 600; }
-.drawing { overflow: auto; padding: 1rem; background: var(--raised); border: 1px solid var(--rule); }
+.drawing { overflow: auto; max-width: 62rem; padding: 1.1rem 1.4rem; background: var(--raised); border: 1px solid var(--rule); }
 .drawing.tall { max-height: 85vh; }
-.drawing svg { display: block; width: 100%; max-width: 54rem; min-width: 37rem; height: auto; margin: 0 auto; }
+.drawing svg { display: block; width: 100%; min-width: 37rem; height: auto; }
 .scroll { overflow: auto; border-top: 2px solid var(--ink); border-bottom: 2px solid var(--ink); margin: 1.5rem 0 .8rem; }
 .scroll.tall { max-height: 80vh; }
 table { border-collapse: collapse; width: 100%; font: .875rem/1.4 var(--sans); font-variant-numeric: tabular-nums lining-nums; }
@@ -75,8 +75,10 @@ tbody th { white-space: normal; min-width: 9.5em; }
 td.words:last-child { min-width: 15em; }
 td.words:nth-child(2), th.words:nth-child(2) { min-width: 13em; }
 .dense table { font-size: .8125rem; }
-.dense th, .dense td { padding-left: .95rem; }
-.dense tbody th { min-width: 13em; }
+.dense th, .dense td { padding-left: .75rem; }
+.dense th:first-child { padding-left: .2rem; }
+.dense tbody th { min-width: 14.5em; }
+.dense thead th { min-width: 4em; }
 .across td { color: var(--muted); font-style: italic; }
 .note { font-size: .875rem; line-height: 1.5; color: var(--muted); max-width: 58em; margin: 0 0 .4rem; }
 .methods { margin: 0; padding: 0; list-style: none; max-width: 46em; }
@@ -94,7 +96,7 @@ footer { margin-top: 3rem; padding-top: 1rem; border-top: 1px solid var(--rule);
 .s-treated { stroke: var(--treated); } .s-paper { stroke: var(--raised); } .s-hatch { stroke: var(--hatch); } .s-zone { stroke: var(--zone); }
 .s-barrier { stroke: var(--barrier); }
 @media (min-width: 72rem) {
-  .body { grid-template-columns: 11.5rem minmax(0, 1fr); column-gap: 3rem; }
+  .body { grid-template-columns: 10.5rem minmax(0, 1fr); column-gap: 3rem; }
   nav { border: 0; padding: 2.75rem 0 0; }
   nav ul { position: sticky; top: 1.5rem; flex-direction: column; border-left: 1px solid var(--rule); padding-left: 1rem; }
 }
