@@ -41,12 +41,19 @@ function namedFiles(study: Study): string[] {
   return files
 }
 
+export interface ReadOptions {
+  readonly progress?: Progress
+  /** Every column of the records, not the study's alone. */
+  readonly all?: boolean
+}
+
 /** Records, schedule, zones and barriers; the problems of all of them. */
-export async function readInputs(from: StudyFile, progress?: Progress): Promise<Checked<AnalysisInputs>> {
+export async function readInputs(from: StudyFile, options: ReadOptions): Promise<Checked<AnalysisInputs>> {
   const { study } = from
+  const { progress } = options
   progress?.('reading', 0, 1)
   const problems: Problem[] = []
-  const found = await readParts(from, problems)
+  const found = await readParts(from, options, problems)
   progress?.('reading', 1, 1)
   if (problems.length === 0) return { ok: true, value: { ...found, table: found.table! } }
   return { ok: false, problems: [...problems, ...(await otherProblems(study, found))] }
@@ -60,7 +67,7 @@ interface Parts {
 }
 
 /** What could be read; the problems of the rest are added to `problems` in the order of the study. */
-async function readParts({ study, file }: StudyFile, problems: Problem[]): Promise<Parts> {
+async function readParts({ study, file }: StudyFile, { all }: ReadOptions, problems: Problem[]): Promise<Parts> {
   const { line, records } = study
   const at = (name: string) => resolve(dirname(file), name)
   const keep = <T>(checked: Checked<T>): T | undefined => {
@@ -80,6 +87,7 @@ async function readParts({ study, file }: StudyFile, problems: Problem[]): Promi
       keepAskedBy: 'records.keep',
       shownAs: records.file,
       positionFromGeometry: line.kind === 'border' && records.position === undefined,
+      all,
     }),
   )
   const schedule =

@@ -18,7 +18,7 @@ export async function inspect(file: string): Promise<ExitCode> {
     return exitCodes.unusable
   }
   const { study } = studyFile.value
-  const inputs = await readInputs(studyFile.value, progress)
+  const inputs = await readInputs(studyFile.value, { progress })
   const { placeStudy } = await import('../analyze.js')
   const placed = inputs.ok ? placeStudy(study, inputs.value, progress) : inputs
   clear()

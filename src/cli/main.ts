@@ -67,7 +67,6 @@ function commands(done: (code: ExitCode) => void): Command {
     .option('--treated <names>', 'names of the treated zones, with commas between')
     .option('--dose <property>', 'not available yet')
     .option('--unit <unit>', 'm, km, ft or mi', 'm')
-    .option('--id <column>', 'column that names a unit (default: its row, from 1)')
     .requiredOption('--out <file>', 'table to write (.csv, .parquet or .geojson)')
     .action(async (records, options) => done(await (await import('./measure.js')).measure(records, options)))
   program

@@ -26,7 +26,7 @@ export async function run(file: string, options: RunOptions): Promise<ExitCode> 
   if (!studyFile.ok) return refuse(studyFile.problems)
   const { study, paths } = studyFile.value
   const outProblems = outFolderProblems(out, paths)
-  const inputs = await readInputs(studyFile.value, progress)
+  const inputs = await readInputs(studyFile.value, { progress })
   if (!inputs.ok || outProblems.length > 0) {
     clear()
     return refuse([...outProblems, ...(inputs.ok ? [] : inputs.problems)])

@@ -1,0 +1,38 @@
+/** The options of `scarp measure` as a study without outcomes, so that units are placed by the one way there is. */
+import type { Checked, Problem } from '../problem.js'
+import type { LengthUnit, Study } from '../study/index.js'
+import type { MeasureOptions } from './measure.js'
+
+const units: readonly string[] = ['m', 'km', 'ft', 'mi'] satisfies LengthUnit[]
+
+/** Names with commas between; a name that holds a comma stands in double quotation marks. */
+export function namesIn(text: string): string[] {
+  const names = text.match(/"(?:[^"]|"")*"|[^,]+/g) ?? []
+  return names
+    .map((name) => name.trim())
+    .map((name) => (name.startsWith('"') ? name.slice(1, -1).replaceAll('""', '"') : name))
+    .filter((name) => name !== '')
+}
+
+export async function measureStudy(records: string, options: MeasureOptions): Promise<Checked<Study>> {
+  const problems: Problem[] = []
+  const say = (what: string, found: string, todo: string) => problems.push({ file: 'scarp', what, found, todo })
+  const treated = namesIn(options.treated ?? '')
+  if (options.dose !== undefined) say('--dose', 'not available yet', 'name the treated zones with --treated')
+  else if (treated.length === 0) say('--treated', 'missing', 'name the treated zones: --treated Inner,Harbour')
+  if (!units.includes(options.unit)) say('--unit', `got ${options.unit}`, 'write m, km, ft or mi')
+  const position = options.position === undefined ? undefined : namesIn(options.position)
+  if (position === undefined && !/\.geojson$/i.test(records))
+    say('--position', 'missing', 'name the columns of longitude and latitude: --position lon,lat')
+  if (position !== undefined && position.length !== 2)
+    say('--position', `got ${options.position}`, 'name two columns, longitude first: --position lon,lat')
+  if (problems.length > 0) return { ok: false, problems }
+
+  const line = { zones: options.zones, zone_name: options.zoneName, treated, unit: options.unit }
+  const written = { records: { file: records, position }, outcomes: ['none'], line }
+  const { readStudy } = await import('../study/index.js')
+  const study = readStudy(JSON.stringify(written), 'scarp')
+  // No line of a file stands behind these problems: the line of the text above says nothing.
+  if (!study.ok) return { ok: false, problems: study.problems.map((problem) => ({ ...problem, line: undefined })) }
+  return { ok: true, value: { ...study.value, outcomes: [] } }
+}
