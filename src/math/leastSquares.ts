@@ -42,7 +42,8 @@ export function leastSquares(columns: readonly Float64Array[], y: Float64Array, 
   let used = 0
   for (let i = 0; i < n; i++) if (roots[i] > 0) used++
   if (p === 0) return { ok: false, reason: 'there is no column to fit' }
-  if (used < p) return { ok: false, reason: `${used} rows of positive weight cannot fit ${p} columns` }
+  if (used < p)
+    return { ok: false, reason: `${used} ${used === 1 ? 'row' : 'rows'} of positive weight cannot fit ${p} columns` }
 
   const scale = columns.map((column) => powerOfTwoScale(column, roots))
   const q = reflectInPlace(columns.map((column, j) => scaledColumn(column, scale[j], roots)))

@@ -53,7 +53,8 @@ function finalised(z: number): number {
   return z ^ (z >>> 15)
 }
 
-function generatorFrom(state: Uint32Array): Random {
+/** Generator from four state words, not all zero. */
+export function generatorFrom(state: Uint32Array): Random {
   let [a, b, c, d] = [state[0] | 0, state[1] | 0, state[2] | 0, state[3] | 0]
   const word = (): number => {
     const scrambled = Math.imul(b, 5)
