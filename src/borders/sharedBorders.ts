@@ -20,6 +20,9 @@ export interface SharedPath {
   readonly isFollowed: readonly [start: boolean, end: boolean]
 }
 
+/** Runs no longer than this many tolerances, coincident nowhere, are two zones meeting at a corner. */
+export const cornerTolerances = 4
+
 interface Claim {
   readonly edge: number
   readonly from: number
@@ -29,7 +32,7 @@ interface Claim {
 }
 
 /**
- * Every shared stretch, whiskers included. `isTreated` is by zone. A stretch near two untreated zones goes to the
+ * Every shared stretch, whiskers included, meetings at a corner left out. `isTreated` is by zone. A stretch near two untreated zones goes to the
  * nearer, cut where they are equally near; a coincident boundary goes first.
  */
 export function sharedPaths(
@@ -46,7 +49,7 @@ export function sharedPaths(
     for (let e = ringStart[ring]; e < ringStart[ring + 1]; e++) {
       claimsOfEdge(boundaries, nearness, isTreated, metres, e, claims)
     }
-    paths.push(...pathsOfRing(boundaries, ring, claims))
+    paths.push(...pathsOfRing(boundaries, ring, claims, metres))
   }
   return paths
 }
@@ -67,18 +70,17 @@ function claimsOfEdge(
     if (!isTreated[nearness.zone[i]]) cuts.push(nearness.from[i], nearness.to[i])
   }
   if (cuts.length === 0) return
-  cuts.sort((a, b) => a - b)
   const length = edgeLengthMetres(edges.lon0[e], edges.lat0[e], edges.lon1[e], edges.lat1[e])
   const slack = samePlaceMetres / length
   const add = (from: number, to: number, zone: number, isExact: boolean) => {
     const before = claims[claims.length - 1]
     const isSame = before && before.edge === e && before.zone === zone && before.isExact === isExact
-    if (isSame && from <= before.to + slack) claims[claims.length - 1] = { ...before, to }
+    if (isSame && from === before.to) claims[claims.length - 1] = { ...before, to }
     else claims.push({ edge: e, from, to, zone, isExact })
   }
-  for (let c = 0; c + 1 < cuts.length; c++) {
-    const [from, to] = [cuts[c], cuts[c + 1]]
-    if (to - from <= slack) continue
+  const places = distinctPlaces(cuts, slack)
+  for (let c = 0; c + 1 < places.length; c++) {
+    const [from, to] = [places[c], places[c + 1]]
     const { exact, near } = claimants(nearness, isTreated, first, last, (from + to) / 2)
     if (exact.length > 0) add(from, to, exact[0], true)
     else if (near.length === 1) add(from, to, near[0], false)
@@ -88,6 +90,17 @@ function claimsOfEdge(
       }
     }
   }
+}
+
+/** Sorted, one for all that lie within `slack` of each other; 1 where the edge's end is among them. */
+function distinctPlaces(cuts: number[], slack: number): number[] {
+  const places: number[] = []
+  for (const cut of cuts.sort((a, b) => a - b)) {
+    const last = places.length - 1
+    if (last < 0 || cut - places[last] > slack) places.push(cut)
+    else if (cut === 1) places[last] = 1
+  }
+  return places
 }
 
 /** Untreated zones with a claim at fraction t of an edge; nearness lists each zone's kinds together, NEAR first. */
@@ -161,8 +174,8 @@ function nearerParts(
   return parts
 }
 
-/** Joins the claims of a ring that run on into each other and go to the same zone. */
-function pathsOfRing(boundaries: Boundaries, ring: number, claims: readonly Claim[]): SharedPath[] {
+/** Joins the claims of a ring that run on into each other and go to the same zone; corners are left out. */
+function pathsOfRing(boundaries: Boundaries, ring: number, claims: readonly Claim[], metres: number): SharedPath[] {
   const { ringStart } = boundaries
   const [firstEdge, lastEdge] = [ringStart[ring], ringStart[ring + 1] - 1]
   const meets = (a: Claim, b: Claim) => {
@@ -188,9 +201,10 @@ function pathsOfRing(boundaries: Boundaries, ring: number, claims: readonly Clai
       }
     }
   }
-  return runs.map((run, i) => {
-    const before = runs[(i + runs.length - 1) % runs.length]
-    const after = runs[(i + 1) % runs.length]
+  const kept = runs.filter((run) => isClosed || !isCornerOnly(boundaries, run, metres))
+  return kept.map((run, i) => {
+    const before = kept[(i + kept.length - 1) % kept.length]
+    const after = kept[(i + 1) % kept.length]
     const points = run.map((claim) => pointOfEdge(boundaries.edges, claim.edge, claim.from))
     const end = run[run.length - 1]
     points.push(pointOfEdge(boundaries.edges, end.edge, end.to))
@@ -203,4 +217,16 @@ function pathsOfRing(boundaries: Boundaries, ring: number, claims: readonly Clai
       isFollowed: [meets(before[before.length - 1], run[0]), meets(end, after[0])] as const,
     }
   })
+}
+
+/** Does the run coincide nowhere, and is it no longer than four tolerances? Then two zones only meet at a corner. */
+function isCornerOnly({ edges }: Boundaries, run: readonly Claim[], metres: number): boolean {
+  if (run.some((claim) => claim.isExact)) return false
+  let length = 0
+  for (const { edge, from, to } of run) {
+    const [lon0, lat0] = pointOfEdge(edges, edge, from)
+    const [lon1, lat1] = pointOfEdge(edges, edge, to)
+    length += edgeLengthMetres(lon0, lat0, lon1, lat1)
+  }
+  return length <= cornerTolerances * metres
 }

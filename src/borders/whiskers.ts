@@ -7,34 +7,29 @@ import { edgeLengthMetres } from './geodesy.js'
 import { footOnSegment, localPlane } from './localPlane.js'
 import { nearestOfZone } from './nearness.js'
 import { turnsTo } from './rings.js'
-import type { SharedPath } from './sharedBorders.js'
+import { cornerTolerances, type SharedPath } from './sharedBorders.js'
 
-/** Stretches no longer than this many tolerances, coincident nowhere, are two zones meeting at a corner. */
-const cornerTolerances = 4
 const samplesPerEdge = 8
 
 /**
  * The path without whiskers, or undefined where nothing else is left:
- * 1. a path that coincides nowhere and is no longer than four tolerances is dropped (two zones meet at a corner);
- * 2. beyond the last coincident stretch, an end along which the distance to the other zone only grows (by less than a
- *    tenth of the tolerance back) is cut off;
- * 3. an end that does not coincide is drawn back to the point of the path nearest to its foot on the other zone.
+ * 1. beyond the last coincident stretch, an end along which the distance to the other zone only grows is cut off;
+ * 2. an end that does not coincide is drawn back to the point of the path nearest to its foot on the other zone.
  * Whole rings have no ends, and an end where another zone takes over is left as it is.
  */
 export function withoutWhiskers(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath | undefined {
   if (path.isClosed) return path
-  if (!path.isExact.includes(true) && pathMetres(path) <= cornerTolerances * metres) return undefined
   const oneEnd = withoutWhisker(boundaries, path, metres)
   const both = withoutWhisker(boundaries, reversed(oneEnd), metres)
   return pathMetres(both) > 0.001 ? reversed(both) : undefined
 }
 
-/** Rules 2 and 3 at the end of the path. */
+/** Rules 1 and 2 at the end of the path. */
 function withoutWhisker(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
   return path.isFollowed[1] ? path : drawnBack(boundaries, leavingCut(boundaries, path, metres), metres)
 }
 
-export function pathMetres({ points }: SharedPath): number {
+function pathMetres({ points }: SharedPath): number {
   let sum = 0
   for (let i = 0; i + 1 < points.length; i++) {
     sum += edgeLengthMetres(points[i][0], points[i][1], points[i + 1][0], points[i + 1][1])
@@ -42,7 +37,7 @@ export function pathMetres({ points }: SharedPath): number {
   return sum
 }
 
-export function reversed(path: SharedPath): SharedPath {
+function reversed(path: SharedPath): SharedPath {
   const [start, end] = path.isFollowed
   return {
     ...path,
@@ -52,25 +47,41 @@ export function reversed(path: SharedPath): SharedPath {
   }
 }
 
-/** Rule 2 at the end of the path. */
+/** Rule 1 at the end of the path. */
 function leavingCut(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
   const lastExact = path.isExact.lastIndexOf(true)
   if (lastExact < 0 || lastExact === path.isExact.length - 1) return path
-  let farthest = 0
+  const walked: number[] = [0]
+  const distances: number[] = [0]
   for (let i = lastExact + 1; i < path.isExact.length; i++) {
     const [[lon0, lat0], [lon1, lat1]] = [path.points[i], path.points[i + 1]]
+    const length = edgeLengthMetres(lon0, lat0, lon1, lat1)
+    const before = walked[walked.length - 1]
     for (let s = 1; s <= samplesPerEdge; s++) {
       const t = s / samplesPerEdge
-      const place: [number, number] = [lon0 + t * (lon1 - lon0), lat0 + t * (lat1 - lat0)]
-      const distance = nearestOfZone(boundaries, path.untreated, place[0], place[1], 1.01 * metres)?.metres ?? metres
-      if (distance < farthest - metres / 10) return path
-      farthest = Math.max(farthest, distance)
+      const place = [lon0 + t * (lon1 - lon0), lat0 + t * (lat1 - lat0)]
+      walked.push(before + t * length)
+      distances.push(nearestOfZone(boundaries, path.untreated, place[0], place[1], 1.01 * metres)?.metres ?? metres)
     }
   }
+  if (!onlyGrows(walked, distances)) return path
   return { ...path, points: path.points.slice(0, lastExact + 2), isExact: path.isExact.slice(0, lastExact + 1) }
 }
 
-/** Rule 3 at the end of the path, over at most eight tolerances of it. */
+/** Never back by more than a tenth of the last distance, and that much reached halfway: it leaves, it does not follow. */
+function onlyGrows(walked: readonly number[], distances: readonly number[]): boolean {
+  const last = distances.length - 1
+  const tenth = distances[last] / 10
+  let farthest = 0
+  for (let i = 0; i <= last; i++) {
+    if (distances[i] < farthest - tenth) return false
+    farthest = Math.max(farthest, distances[i])
+    if (farthest < tenth && walked[i] > walked[last] / 2) return false
+  }
+  return true
+}
+
+/** Rule 2 at the end of the path, over at most eight tolerances of it. */
 function drawnBack(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
   const { points, isExact } = path
   if (isExact[isExact.length - 1]) return path
