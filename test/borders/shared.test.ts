@@ -155,6 +155,56 @@ describe('shared borders of two zones', () => {
   })
 })
 
+describe('a town of 16 wards with rough boundaries', () => {
+  /** Sides of 2 km in 100 steps, each wobbling by 2 m; every ward draws them anew with `jitter` metres of error. */
+  function wards(jitter: number): ZoneFeature[] {
+    const random = seeded(11)
+    const sides = new Map<string, Point[]>()
+    const side = (from: Point, to: Point): Point[] => {
+      const isForward = from[0] + from[1] < to[0] + to[1]
+      const [a, b] = isForward ? [from, to] : [to, from]
+      const key = `${a} ${b}`
+      const wobble = (k: number) => (k % 100 === 0 ? 0 : 4 * random() - 2)
+      const drawn =
+        sides.get(key) ??
+        Array.from({ length: 101 }, (_, k): Point => {
+          const share = k / 100
+          return [a[0] + share * (b[0] - a[0]) + wobble(k), a[1] + share * (b[1] - a[1]) + wobble(k)]
+        })
+      sides.set(key, drawn)
+      return isForward ? drawn : [...drawn].reverse()
+    }
+    const errors = seeded(12)
+    const error = () => jitter * (2 * errors() - 1)
+    return Array.from({ length: 16 }, (_, w) => {
+      const [x, y] = [2000 * (w % 4), 2000 * Math.floor(w / 4)]
+      const corners: Point[] = [
+        [x, y],
+        [x + 2000, y],
+        [x + 2000, y + 2000],
+        [x, y + 2000],
+      ]
+      const ring = corners.flatMap((corner, k) => side(corner, corners[(k + 1) % 4]).slice(0, -1))
+      return zone(`w${w}`, closed(ring.map(([east, north]) => at(east + error(), north + error()))))
+    })
+  }
+  const treated = ['w0', 'w1', 'w6', 'w11', 'w15']
+
+  it('has the same border to the bit at every tolerance where vertices are identical', () => {
+    const [close, wide] = [0, 50].map((snapMetres) => borderOf(wards(0), treated, { snapMetres }))
+    expect(wide.pieces).toEqual(close.pieces)
+  })
+
+  it('has nearly the same border where every ward was drawn apart', () => {
+    const clean = lengths(borderOf(wards(0), treated, { snapMetres: 2 }))
+    for (const snapMetres of [6, 50]) {
+      const found = lengths(borderOf(wards(1), treated, { snapMetres }))
+      expect(Object.keys(found)).toEqual(Object.keys(clean))
+      for (const [pair, metres] of Object.entries(clean)) within1Percent(found[pair], metres)
+    }
+  })
+})
+
 describe('across the antimeridian', () => {
   it('joins zones on both sides, and shares nothing along a zone’s own cut', () => {
     const west = zone(
