@@ -88,13 +88,20 @@ function outcomeSteps(
 ): LedgerStep[] {
   const withOutcome = ledgerStep(`${outcome}: outcome present`, placedUnits, { 'outcome missing': entries.missing })
   if (hasReason(pooled)) return [withOutcome]
+  const { untreated, treated } = pooled.jump.unitsInBandwidth
+  const used = pooled.sample.repeats ? distinctUnits(pooled) : untreated + treated
+  const outside = { 'outside the bandwidth': withOutcome.out - used }
+  return [withOutcome, ledgerStep(`${outcome}: within the pooled bandwidth`, withOutcome.out, outside)]
+}
+
+/** Units within the bandwidth where a unit may have several entries. */
+function distinctUnits({ jump, sample }: LineEstimate): number {
   const used = new Set<number>()
   for (const name of ['untreated', 'treated'] as const) {
-    const { unit } = pooled.sample[name]
-    for (let i = 0; i < pooled.jump.unitsInBandwidth[name]; i++) used.add(unit[i])
+    const { unit } = sample[name]
+    for (let i = 0; i < jump.unitsInBandwidth[name]; i++) used.add(unit[i])
   }
-  const outside = { 'outside the bandwidth': withOutcome.out - used.size }
-  return [withOutcome, ledgerStep(`${outcome}: within the pooled bandwidth`, withOutcome.out, outside)]
+  return used.size
 }
 
 function outcomeExhibit(study: Study, outcome: string, { lines, pooled }: OutcomeEstimates): OutcomeExhibit {

@@ -50,10 +50,11 @@ export function placeStudy(study: Study, inputs: AnalysisInputs, progress?: Prog
     : undefined
   ledger.push(ledgerStep('placed against a line', table.rows, located.value.setAside, lines))
   const before = ledger[1].out
-  const { placement, setAside } = dropUnusable(study, table, located.value.placement)
-  if (study.records.weight !== undefined || study.records.cluster !== undefined) {
-    ledger.push(ledgerStep('with weight and cluster', before, setAside))
-  }
+  const mayDrop = study.records.weight !== undefined || study.records.cluster !== undefined
+  const { placement, setAside } = mayDrop
+    ? dropUnusable(study, table, located.value.placement)
+    : { placement: located.value.placement, setAside: new Map<string, number>() }
+  if (mayDrop) ledger.push(ledgerStep('with weight and cluster', before, setAside))
   const all = new Map(located.value.setAside)
   for (const [reason, count] of setAside) all.set(reason, (all.get(reason) ?? 0) + count)
   const units = ledger[ledger.length - 1].out

@@ -77,6 +77,7 @@ export function sumOfSquares(psi: Float64Array): number {
  */
 export function covarianceMatrix(influences: readonly Influence[]): { matrix: Float64Array; isDiagonal: boolean } {
   const count = influences.length
+  if (count === 1) return { matrix: Float64Array.of(varianceOf(influences[0])), isDiagonal: true }
   const matrix = new Float64Array(count * count)
   let largest = -1
   for (const { key } of influences) for (const k of key) if (k > largest) largest = k
