@@ -1,6 +1,6 @@
 /** Below the map: what the colours and strokes mean, a scale bar in the study's own system, and north. */
 import { range } from 'd3-array'
-import { fixed, type Places } from '../numbers.js'
+import { fixed, type Places, wholeNumber } from '../numbers.js'
 import type { ColorScale } from './map.js'
 import { element, filled, stroked, textAt, textWidth } from './svg.js'
 
@@ -74,7 +74,7 @@ export function scaleBar(metresPerPixel: number, xUnit: string, right: number, t
   const wide = (length * unit) / metresPerPixel
   const left = right - wide
   return [
-    textAt(right, top + 12, `${length} ${name}`, { anchor: 'end' }),
+    textAt(right, top + 12, `${wholeNumber(length)} ${name}`, { anchor: 'end' }),
     element('path', { d: `M${left.toFixed(2)} ${top + 20}v8H${right.toFixed(2)}v-8`, ...stroked('ink', 1.5) }),
   ]
 }
