@@ -34,12 +34,22 @@ export async function measure(records: string, options: MeasureOptions): Promise
   const { placeStudy } = await import('../analyze.js')
   const placed: Checked<Placed> = inputs.ok ? placeStudy(study.value, inputs.value, progress) : inputs
   clear()
-  if (!inputs.ok || !placed.ok) return refuse(placed.ok ? [] : placed.problems)
+  if (!inputs.ok || !placed.ok) return refuse(placed.ok ? [] : placed.problems.map(inOptions))
   const { table } = inputs.value
   await writeMeasured(options.out, study.value, table, placed.value)
   const reasons = [...placed.value.setAside].map(([reason, units]) => `, ${units} ${reason}`).join('')
   process.stdout.write(`${placed.value.units} of ${table.rows} units placed${reasons}: ${options.out}\n`)
   return exitCodes.done
+}
+
+/** The keys of a study under the names they have here. */
+function inOptions(problem: Problem): Problem {
+  const what = problem.what
+    .replace(/^records\.position/, '--position')
+    .replace(/^(line\.)?zones/, '--zones')
+    .replace(/^(line\.)?treated/, '--treated')
+    .replace(/^(line\.)?zone_name/, '--zone-name')
+  return { ...problem, what }
 }
 
 function refuse(problems: readonly Problem[]): ExitCode {
@@ -49,10 +59,11 @@ function refuse(problems: readonly Problem[]): ExitCode {
 
 /** Writes beside the target and renames, so that an earlier file stays whole until the new one is. */
 async function writeMeasured(out: string, study: Study, table: Table, placed: Placed): Promise<void> {
-  const { writeTable } = await import('../records/files.js')
+  const { headerOf, writeTable } = await import('../records/files.js')
   const { positionColumns } = await import('../analyze.js')
   const [lon, lat] = positionColumns(study)
-  const columns = await measuredColumns(table, placed, [lon, lat])
+  const header = await headerOf(study.records.file, study.records.file)
+  const columns = await measuredColumns(inOrder(table, header.ok ? header.value : []), placed, [lon, lat])
   const target = realPath(resolve(out))
   const name = `.${basename(target)}-${process.pid}-${randomBytes(4).toString('hex')}${extname(target)}`
   const stage = join(dirname(target), name)
@@ -67,6 +78,12 @@ async function writeMeasured(out: string, study: Study, table: Table, placed: Pl
     await rm(stage, { force: true })
     letGo()
   }
+}
+
+/** The table with its columns in the order of the file; positions read from geometry come first. */
+function inOrder(table: Table, header: readonly string[]): Table {
+  const columns = [...table.columns].sort(([a], [b]) => header.indexOf(a) - header.indexOf(b))
+  return { ...table, columns: new Map(columns) }
 }
 
 function outFileProblems(out: string, inputs: readonly string[]): Problem[] {

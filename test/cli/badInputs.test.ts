@@ -83,7 +83,7 @@ describe('bad input', () => {
       const said = await scarp(words ?? ['run', 'study.yaml', '--out', 'out'], { cwd: folder })
       outcomes.set(name, { said, before, after: bytesUnder(folder) })
     })
-  }, 240_000)
+  }, 600_000)
   afterAll(() => rmSync(room, { recursive: true, force: true }))
 
   it('is of at least thirty kinds, each with a name of its own', () => {
