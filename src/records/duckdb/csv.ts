@@ -156,14 +156,28 @@ async function locate(
         ],
       }
     return {
-      problems: [
-        { file, what: "can't be read as a table", found: reasonOf(outcome.failure), todo: 'save it again as CSV' },
-      ],
+      problems: [{ file, ...tableFailure(outcome.failure) }],
     }
   }
   if (grid.lineOfRow.length !== outcome.rows)
     throw new Error(`${file}: ${outcome.rows} rows read, ${grid.lineOfRow.length} rows walked`)
   return { lineOfRow: grid.lineOfRow }
+}
+
+/** DuckDB's reason: the message of a row that can't be read names its line first and says why further down. */
+function tableFailure(failure: unknown): Pick<Problem, 'line' | 'what' | 'found' | 'todo'> {
+  const message = failure instanceof Error ? failure.message : ''
+  const line = /CSV Error on Line: (\d+)/.exec(message)?.[1]
+  const why = /^.*exceeded.*$/m
+    .exec(message)?.[0]
+    .replace(/\. Actual Size.*$/, '')
+    .trim()
+  return {
+    line: line === undefined ? undefined : Number(line),
+    what: "can't be read as a table",
+    found: why ?? reasonOf(failure),
+    todo: 'check quotes in this line, or save the file again as CSV',
+  }
 }
 
 function gridProblem(file: string, fault: GridFault, columns: number): Problem {

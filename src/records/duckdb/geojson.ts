@@ -38,6 +38,8 @@ export async function geojsonSource(
     `SELECT * FROM (SELECT json -> '/properties' AS json FROM (${features})) WHERE json_type(json) = 'OBJECT'`,
   )
   if (!properties.ok) return refuse(file, "properties can't be read", properties.reason, 'write the file again')
+  const [[count]] = await rowsOf(connection, `SELECT count(*) FROM (${features})`)
+  if (Number(count) === 0) return refuse(file, 'the file is empty', 'no features', 'give a FeatureCollection of points')
   const names = hasPositions
     ? [...POSITION, ...properties.names.filter((name) => name !== 'lon' && name !== 'lat')]
     : properties.names

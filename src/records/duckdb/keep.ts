@@ -52,8 +52,9 @@ export async function readCondition(
   const parsed = await parse(connection, keep)
   if ('what' in parsed) return { ok: false, problems: [problem(parsed)] }
   const nodes = nodesOf(parsed.expression)
+  const refused = nodes.filter((node) => (node.class ?? '') in REFUSED).map(refusedFault)
+  if (refused.length > 0) return { ok: false, problems: refused.map(problem) }
   const faults = [
-    ...nodes.filter((node) => (node.class ?? '') in REFUSED).map(refusedFault),
     ...unknownColumns(nodes, names),
     ...nodes.flatMap(looseConstants),
     ...(await changingFunctions(connection, nodes)),

@@ -5,12 +5,16 @@ const SHORT_BYTES = 12
 /** Below this many labels the language's own sort is as quick. */
 const FEW = 20_000
 
+/** A row that the condition keeps. */
+export const KEPT = 1
+
 export interface LabelCoder {
   /**
    * Codes the next `count` rows. words: four a row, as `textWordsOf`; hashes: two a row, of the same texts;
    * textAt gives the text of a row, and is called once for each long text. Empty texts are missing (-1).
+   * verdicts: rows that are not KEPT are passed over.
    */
-  add(words: Uint32Array, hashes: Uint32Array, count: number, isKept: Uint8Array | undefined, textAt: TextAt): void
+  add(words: Uint32Array, hashes: Uint32Array, count: number, verdicts: Uint8Array | undefined, textAt: TextAt): void
   finish(): { readonly codes: Int32Array; readonly labels: readonly string[] }
 }
 
@@ -28,40 +32,44 @@ export function labelCoder(rowsExpected: number): LabelCoder {
   let distinct = 0
   const longTexts = new Map<number, string>()
 
-  function place(words: Uint32Array, at: number, w2: number, w3: number, textOfRow: () => string): number {
+  /** The entry of a key; a new one is added at the end. */
+  function entryOf(w0: number, w1: number, w2: number, w3: number): number {
     const mask = slots.length - 1
-    let slot = mix(words[at], words[at + 1], w2, w3) & mask
-    for (let entry = slots[slot]; entry !== 0; entry = slots[(slot = (slot + 1) & mask)]) {
+    let slot = mix(w0, w1, w2, w3) & mask
+    for (let entry = slots[slot]; entry !== 0; entry = slots[slot]) {
       const k = 4 * (entry - 1)
-      if (keys[k] === words[at] && keys[k + 1] === words[at + 1] && keys[k + 2] === w2 && keys[k + 3] === w3)
-        return entry - 1
+      if (keys[k] === w0 && keys[k + 1] === w1 && keys[k + 2] === w2 && keys[k + 3] === w3) return entry - 1
+      slot = (slot + 1) & mask
     }
-    keys = withRoom(keys, 4 * (distinct + 1))
-    keys.set([words[at], words[at + 1], w2, w3], 4 * distinct)
-    if (words[at] > SHORT_BYTES) longTexts.set(distinct, textOfRow())
+    const k = 4 * distinct
+    if (k === keys.length) keys = withRoom(keys, k + 4)
+    keys[k] = w0
+    keys[k + 1] = w1
+    keys[k + 2] = w2
+    keys[k + 3] = w3
     slots[slot] = ++distinct
     if (distinct * 2 > slots.length) slots = rehashed(keys, distinct, slots.length * 2)
     return distinct - 1
   }
 
   return {
-    add(words, hashes, count, isKept, textAt) {
+    add(words, hashes, count, verdicts, textAt) {
       codes = withRoom(codes, rows + count)
       for (let i = 0; i < count; i++) {
-        if (isKept !== undefined && isKept[i] !== 1) continue
+        if (verdicts !== undefined && verdicts[i] !== KEPT) continue
         const at = 4 * i
         const length = words[at]
+        if (length === 0) {
+          codes[rows++] = -1
+          continue
+        }
         const isShort = length <= SHORT_BYTES
-        codes[rows++] =
-          length === 0
-            ? -1
-            : place(
-                words,
-                at,
-                isShort ? words[at + 2] : hashes[2 * i],
-                isShort ? words[at + 3] : hashes[2 * i + 1],
-                () => textAt(i),
-              )
+        const before = distinct
+        const entry = isShort
+          ? entryOf(length, words[at + 1], words[at + 2], words[at + 3])
+          : entryOf(length, words[at + 1], hashes[2 * i], hashes[2 * i + 1])
+        if (entry === before && !isShort) longTexts.set(entry, textAt(i))
+        codes[rows++] = entry
       }
     },
     finish() {
@@ -119,17 +127,20 @@ function isAllAscii(keys: Uint32Array): boolean {
   return true
 }
 
-/** Least significant digit first: the length (it only settles texts that end in NUL), then the bytes from the last. */
+/**
+ * Least significant digit first, two bytes a digit: the length (it only settles texts that end in NUL), then the bytes
+ * from the last.
+ */
 function byteOrder(bytes: Buffer, count: number): Int32Array {
   let order = Int32Array.from({ length: count }, (_, entry) => entry)
   let next = new Int32Array(count)
-  const digits = [0, ...Array.from({ length: SHORT_BYTES }, (_, i) => 4 + SHORT_BYTES - 1 - i)]
-  for (const digit of digits) {
-    const starts = new Int32Array(257)
-    for (let entry = 0; entry < count; entry++) starts[bytes[16 * entry + digit] + 1]++
-    if (starts.includes(count)) continue
-    for (let value = 0; value < 256; value++) starts[value + 1] += starts[value]
-    for (let i = 0; i < count; i++) next[starts[bytes[16 * order[i] + digit]]++] = order[i]
+  const digitOf = (entry: number, start: number) => (bytes[16 * entry + start] << 8) | bytes[16 * entry + start + 1]
+  for (const start of [0, 14, 12, 10, 8, 6, 4]) {
+    const starts = new Int32Array((1 << 16) + 1)
+    for (let entry = 0; entry < count; entry++) starts[digitOf(entry, start) + 1]++
+    if (starts[digitOf(0, start) + 1] === count) continue
+    for (let value = 0; value < 1 << 16; value++) starts[value + 1] += starts[value]
+    for (let i = 0; i < count; i++) next[starts[digitOf(order[i], start)]++] = order[i]
     ;[order, next] = [next, order]
   }
   return order

@@ -7,7 +7,8 @@ export function nearestName(name: string, known: readonly string[]): string | un
   const sameLetters = known.find((other) => other.toLowerCase() === lower)
   if (sameLetters !== undefined) return sameLetters
   const nearest = closest(name, [...known])
-  return distance(name, nearest) <= Math.max(1, Math.floor(name.length / 3)) ? nearest : undefined
+  const slips = name.length < 2 ? 0 : Math.max(1, Math.floor(name.length / 3))
+  return distance(name, nearest) <= slips ? nearest : undefined
 }
 
 /** What to do about a name that isn't there: the nearest, or the list of what there is. */

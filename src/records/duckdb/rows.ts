@@ -3,16 +3,15 @@ import type { Column } from '../table.js'
 import { labelSql, numberSql, useOf } from './cells.js'
 import type { Chosen } from './choose.js'
 import { trimmed, withRoom } from './growing.js'
-import { labelCoder } from './labels.js'
+import { KEPT, labelCoder } from './labels.js'
 import { alias } from './source.js'
 import { bytesOf, doublesOf, textAt, textWordsOf, wordPairsOf } from './vectors.js'
 
 /** Room to begin with; it grows as rows come. */
 const ROWS_EXPECTED = 1 << 16
 
-/** What the condition says of a row: false, true, or that it can't be decided (a cell it looks at is missing). */
+/** What the condition says of a row: DROPPED, KEPT, or 2 where it can't be decided (a cell it looks at is missing). */
 const DROPPED = 0
-const KEPT = 1
 
 /** Cells of a number column that SQL read as no number, or as an infinite one: text that must be looked at. */
 export interface Suspects {
