@@ -33,7 +33,7 @@ export function symmetricEigen(a: Float64Array, n: number): { values: Float64Arr
  * statistic and its degrees of freedom. A is first scaled to unit diagonal, which changes neither for d in the range
  * and keeps very unequal variances from being taken for singularity. Eigenvalues of the scaled matrix up to
  * `tolerance` times the largest count as 0 (default 1e-10), and so do rows of zero variance; the part of d there is left out.
- * Cholesky where the scaled matrix is well conditioned, eigenvalues otherwise.
+ * Cholesky where no pivot of the scaled matrix is under the root of the tolerance, eigenvalues otherwise.
  */
 export function quadraticFormPseudoInverse(
   a: Float64Array,
@@ -55,7 +55,7 @@ export function quadraticFormPseudoInverse(
     for (let j = 0; j < size; j++) scaled[i * size + j] = a[kept[i] * n + kept[j]] * scale[i] * scale[j]
   }
   const factor = scaled.slice()
-  if (choleskyInPlace(factor, size) > Math.max(1e-6, tolerance * size)) {
+  if (choleskyInPlace(factor, size) > Math.max(1e-6, Math.sqrt(tolerance))) {
     const solution = vector.slice()
     choleskySolveInPlace(factor, size, solution)
     return { statistic: dot(vector, solution), rank: size }

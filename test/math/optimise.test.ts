@@ -57,7 +57,7 @@ describe('root', () => {
       rootBetween((x) => f(x) + 0 * calls++, 0, 1, 1e-14)
       return calls
     }
-    expect(callsFor((x) => Math.cos(x) - x)).toBeLessThanOrEqual(10)
+    expect(callsFor((x) => Math.cos(x) - x)).toBeLessThanOrEqual(8)
     expect(callsFor((x) => (x < 0.7 ? -1 : 1))).toBeLessThanOrEqual(150)
   })
   test('refuses functions without a change of sign', () => {

@@ -117,6 +117,25 @@ describe('quadratic forms', () => {
       expect(Math.abs(statistic - 5.25)).toBeLessThan(1e-11)
     }
   })
+  // Eigenvalues 2 − e and e of correlation 1 − e; d along the first.
+  test('a correlation closer to 1 than the tolerance is taken for 1', () => {
+    for (const [e, tolerance, rank] of [
+      [1e-12, undefined, 1],
+      [1e-8, undefined, 2],
+      [1e-8, 1e-6, 1],
+      [0.1, 0.06, 1],
+      [0.1, 0.05, 2],
+    ] as const) {
+      const form = quadraticFormPseudoInverse(
+        Float64Array.from([1, 1 - e, 1 - e, 1]),
+        2,
+        Float64Array.from([3, 3]),
+        tolerance,
+      )
+      expect(form.rank).toBe(rank)
+      expect(Math.abs(form.statistic - 18 / (2 - e))).toBeLessThan(1e-12 * (rank === 2 ? 2 / e : 1))
+    }
+  })
   test('rows of zero variance are left out; a variance that is none is refused', () => {
     const form = quadraticFormPseudoInverse(Float64Array.from([4, 0, 0, 0]), 2, Float64Array.from([6, 0]))
     expect(form).toEqual({ statistic: 9, rank: 1 })
