@@ -1,0 +1,8 @@
+/** All benchmarks: `npm run bench`. Quote ratios and exponents, not seconds: machines differ. */
+import { benchDistance } from './distance.js'
+import { benchEstimate } from './estimate.js'
+import { benchWholeRun } from './wholeRun.js'
+
+benchEstimate()
+await benchWholeRun()
+await benchDistance()
