@@ -1,8 +1,8 @@
 import { earthCentred } from './geodesy.js'
 import { hilbertOrder } from './hilbert.js'
-import { chosenFoot, edgeFraction, type Foot, resolveNearest } from './nearestFar.js'
+import { edgeFraction, resolveNearest } from './nearestFar.js'
 import { closeMetres } from './nearestMeasure.js'
-import { searchNearest, searchRoom, tieMetres } from './nearestSearch.js'
+import { type SearchRoom, searchNearest, searchRoom, tieMetres } from './nearestSearch.js'
 import type { SegmentTree } from './segmentTreeBuild.js'
 
 /** One element for each point. Without an answer (NaN or impossible coordinates, no edges): edge -1, the others NaN. */
@@ -14,7 +14,7 @@ export interface Nearest {
   readonly distanceMetres: Float64Array
 }
 
-const chunkSize = 131_072
+const chunkSize = 262_144
 
 /**
  * Nearest edge, foot and geodesic distance (WGS 84) of every point; METHODS section 10.
@@ -80,36 +80,37 @@ function nearestOfChunk(
     const z = point[2] - origin[2]
     const ties = searchNearest(tree, room, x, y, z, start)
     start = tiePiece[0]
-    if (ties === 1 && tieDistance[0] <= closeMetres) {
-      nearest.edge[i] = pieceEdge[start]
-      nearest.fraction[i] = edgeFraction(tree, start, tieFoot[0])
-      nearest.distanceMetres[i] = tieDistance[0]
+    let rough = tieDistance[0]
+    for (let tie = 1; tie < ties; tie++) if (tieDistance[tie] < rough) rough = tieDistance[tie]
+    if (ties < 0 || rough > closeMetres) {
+      const foot = resolveNearest(tree, room, x, y, z, lon, lat, rough)
+      nearest.edge[i] = foot.edge
+      nearest.fraction[i] = foot.fraction
+      nearest.distanceMetres[i] = foot.distanceMetres
       continue
     }
-    let rough = tieDistance[0]
-    for (let tie = 1; tie < ties; tie++) rough = Math.min(rough, tieDistance[tie])
-    const foot =
-      ties < 0 || rough > closeMetres
-        ? resolveNearest(tree, room, x, y, z, lon, lat, rough)
-        : tiedFoot(tree, tiePiece, tieDistance, tieFoot, ties, rough)
-    nearest.edge[i] = foot.edge
-    nearest.fraction[i] = foot.fraction
-    nearest.distanceMetres[i] = foot.distanceMetres
+    const chosen = ties === 1 ? 0 : chosenTie(tree, room, ties, rough)
+    nearest.edge[i] = pieceEdge[tiePiece[chosen]]
+    nearest.fraction[i] = edgeFraction(tree, tiePiece[chosen], tieFoot[chosen])
+    nearest.distanceMetres[i] = tieDistance[chosen]
   }
 }
 
-function tiedFoot(
-  tree: SegmentTree,
-  piece: Int32Array,
-  distance: Float64Array,
-  u: Float64Array,
-  ties: number,
-  rough: number,
-): Foot {
-  const feet: Foot[] = []
+/** Which of the ties is the answer: the rule of `chosenFoot`, without an object for each. */
+function chosenTie(tree: SegmentTree, room: SearchRoom, ties: number, nearestMetres: number): number {
+  const { tiePiece, tieDistance, tieFoot } = room
+  const limit = nearestMetres + tieMetres(nearestMetres)
+  let chosen = -1
   for (let k = 0; k < ties; k++) {
-    const fraction = edgeFraction(tree, piece[k], u[k])
-    feet.push({ edge: tree.pieceEdge[piece[k]], fraction, distanceMetres: distance[k] })
+    if (tieDistance[k] > limit) continue
+    if (chosen >= 0) {
+      const order =
+        tree.pieceEdge[tiePiece[k]] - tree.pieceEdge[tiePiece[chosen]] ||
+        tieDistance[k] - tieDistance[chosen] ||
+        edgeFraction(tree, tiePiece[k], tieFoot[k]) - edgeFraction(tree, tiePiece[chosen], tieFoot[chosen])
+      if (order >= 0) continue
+    }
+    chosen = k
   }
-  return chosenFoot(feet, tieMetres(rough))
+  return chosen
 }

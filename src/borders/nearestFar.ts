@@ -5,7 +5,7 @@ import { pieceSize, type SegmentTree } from './segmentTreeBuild.js'
 import { along, edgePoint } from './segmentTreeSplit.js'
 
 /** One answer: the edge, the foot's fraction of it, the distance. */
-export interface Foot {
+interface Foot {
   readonly edge: number
   readonly fraction: number
   readonly distanceMetres: number
@@ -17,7 +17,7 @@ export function edgeFraction(tree: SegmentTree, piece: number, u: number): numbe
 }
 
 /** Smallest edge among the feet within `tie` of the nearest; of one edge, the nearer foot, then the smaller fraction. */
-export function chosenFoot(feet: readonly Foot[], tie: number): Foot {
+function chosenFoot(feet: readonly Foot[], tie: number): Foot {
   let nearest = Infinity
   for (const foot of feet) if (foot.distanceMetres < nearest) nearest = foot.distanceMetres
   let chosen = feet[0]
@@ -55,7 +55,7 @@ export function resolveNearest(
   const isFar = roughMetres > closeMetres
   const limit = roughMetres + tieMetres(roughMetres) + (isFar ? 2 * measureErrorMetres(roughMetres) : 0)
   const candidates: number[] = []
-  collectPieces(tree, room, qx, qy, qz, longestChordMetres(limit) + 1e-8, candidates)
+  collectPieces(tree, room.stackNode, qx, qy, qz, longestChordMetres(limit) + 1e-8, candidates)
   const nearestOfEdge = new Map<number, { piece: number; fraction: number; distanceMetres: number }>()
   for (const piece of candidates) {
     const distanceMetres = pieceMetres(tree, piece, qx, qy, qz, room.foot)

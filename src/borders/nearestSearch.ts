@@ -20,10 +20,10 @@ export interface SearchRoom {
 }
 
 export function searchRoom(tree: SegmentTree): SearchRoom {
-  const levels = Math.ceil(Math.log2(tree.pieceCount + 1) / 2) + 2
+  const stackNode = nodeStack(tree)
   return {
-    stackNode: new Int32Array(fanOut * levels),
-    stackSquare: new Float64Array(fanOut * levels),
+    stackNode,
+    stackSquare: new Float64Array(stackNode.length),
     foot: new Float64Array(1),
     tiePiece: new Int32Array(tieRoom),
     tieDistance: new Float64Array(tieRoom),
@@ -128,10 +128,15 @@ export function searchNearest(
   return -1
 }
 
+/** Room for the nodes still to be visited. */
+export function nodeStack(tree: SegmentTree): Int32Array {
+  return new Int32Array(fanOut * (Math.ceil(Math.log2(tree.pieceCount + 1) / 2) + 2))
+}
+
 /** Appends to `out` all pieces whose boxed chord comes within `chordMetres` of q: a superset of those whose curve does. */
 export function collectPieces(
   tree: SegmentTree,
-  room: SearchRoom,
+  stack: Int32Array,
   qx: number,
   qy: number,
   qz: number,
@@ -139,7 +144,6 @@ export function collectPieces(
   out: number[],
 ): void {
   const { pieces, boxes, firstChild, childCount, firstLeaf, pieceCount, largestBulgeMetres } = tree
-  const stack = room.stackNode
   const boxSquare = chordMetres * chordMetres
   const chordSquare = (chordMetres + largestBulgeMetres) ** 2
   let depth = pieceCount > 0 ? 1 : 0

@@ -1,5 +1,5 @@
 import { earthCentred, equatorialMetres } from './geodesy.js'
-import { collectPieces, type SearchRoom, searchRoom } from './nearestSearch.js'
+import { collectPieces, nodeStack } from './nearestSearch.js'
 import type { SegmentTree } from './segmentTreeBuild.js'
 
 const metresPerDegree = (equatorialMetres * 1.004 * Math.PI) / 180
@@ -19,7 +19,7 @@ export function edgesNear(
   out: number[],
 ): void {
   const pieces: number[] = []
-  coverRectangle(tree, searchRoom(tree), lon0, lat0, lon1, lat1, metres, pieces)
+  coverRectangle(tree, nodeStack(tree), lon0, lat0, lon1, lat1, metres, pieces)
   distinctEdges(tree, pieces, out)
 }
 
@@ -34,7 +34,7 @@ export function edgesNearEdge(
   out: number[],
 ): void {
   const pieces: number[] = []
-  coverEdge(tree, searchRoom(tree), lon0, lat0, lon1, lat1, metres, pieces)
+  coverEdge(tree, nodeStack(tree), lon0, lat0, lon1, lat1, metres, pieces)
   distinctEdges(tree, pieces, out)
 }
 
@@ -48,7 +48,7 @@ function distinctEdges(tree: SegmentTree, pieces: number[], out: number[]): void
 /** Splits a long thin rectangle until it is at most twice as long as wide, or 1 km, or `metres`. */
 function coverRectangle(
   tree: SegmentTree,
-  room: SearchRoom,
+  stack: Int32Array,
   lon0: number,
   lat0: number,
   lon1: number,
@@ -62,21 +62,21 @@ function coverRectangle(
   const middleLon = (lon0 + lon1) / 2
   const middleLat = (lat0 + lat1) / 2
   if (Math.abs(lon1 - lon0) > 90 || (east > 2 * north && east > small)) {
-    coverRectangle(tree, room, lon0, lat0, middleLon, lat1, metres, pieces)
-    coverRectangle(tree, room, middleLon, lat0, lon1, lat1, metres, pieces)
+    coverRectangle(tree, stack, lon0, lat0, middleLon, lat1, metres, pieces)
+    coverRectangle(tree, stack, middleLon, lat0, lon1, lat1, metres, pieces)
   } else if (north > 2 * east && north > small) {
-    coverRectangle(tree, room, lon0, lat0, lon1, middleLat, metres, pieces)
-    coverRectangle(tree, room, lon0, middleLat, lon1, lat1, metres, pieces)
+    coverRectangle(tree, stack, lon0, lat0, lon1, middleLat, metres, pieces)
+    coverRectangle(tree, stack, lon0, middleLat, lon1, lat1, metres, pieces)
   } else {
     // the straight lon/lat way from the middle to any point is no longer than this
-    collectDisc(tree, room, middleLon, middleLat, Math.sqrt(north * north + east * east) / 2 + metres, pieces)
+    collectDisc(tree, stack, middleLon, middleLat, Math.sqrt(north * north + east * east) / 2 + metres, pieces)
   }
 }
 
 /** Splits the edge in two until a half is no longer than 500 m or `metres`. */
 function coverEdge(
   tree: SegmentTree,
-  room: SearchRoom,
+  stack: Int32Array,
   lon0: number,
   lat0: number,
   lon1: number,
@@ -90,9 +90,9 @@ function coverEdge(
   const middleLon = (lon0 + lon1) / 2
   const middleLat = (lat0 + lat1) / 2
   if (half > Math.max(500, metres)) {
-    coverEdge(tree, room, lon0, lat0, middleLon, middleLat, metres, pieces)
-    coverEdge(tree, room, middleLon, middleLat, lon1, lat1, metres, pieces)
-  } else collectDisc(tree, room, middleLon, middleLat, half + metres, pieces)
+    coverEdge(tree, stack, lon0, lat0, middleLon, middleLat, metres, pieces)
+    coverEdge(tree, stack, middleLon, middleLat, lon1, lat1, metres, pieces)
+  } else collectDisc(tree, stack, middleLon, middleLat, half + metres, pieces)
 }
 
 function cosineNearestEquator(lat0: number, lat1: number): number {
@@ -102,7 +102,7 @@ function cosineNearestEquator(lat0: number, lat1: number): number {
 
 function collectDisc(
   tree: SegmentTree,
-  room: SearchRoom,
+  stack: Int32Array,
   lon: number,
   lat: number,
   radiusMetres: number,
@@ -113,7 +113,7 @@ function collectDisc(
   const { origin } = tree
   collectPieces(
     tree,
-    room,
+    stack,
     point[0] - origin[0],
     point[1] - origin[1],
     point[2] - origin[2],

@@ -26,7 +26,9 @@ export function locateInZones(grid: ZoneGrid, lonDegrees: Float64Array, latDegre
       continue
     }
     let zone = noZone
-    const lastTurn = Math.abs(lon) < Infinity ? Math.floor((east - lon) / 360) : -Infinity
+    located[i] = noZone
+    if (!(Math.abs(lon) < Infinity)) continue
+    const lastTurn = Math.floor((east - lon) / 360)
     for (let turn = Math.ceil((west - lon) / 360); turn <= lastTurn; turn++) {
       const found = locateWritten(grid, lon + 360 * turn, lat)
       if (found !== noZone && found !== zone) zone = zone === noZone ? found : manyZones

@@ -8,7 +8,7 @@ import { buildZoneGrid, locateInZones } from '../../src/borders/zoneGrid.js'
  */
 
 /** mulberry32, from memory; good enough to scatter points. */
-function seededUniform(seed: number): () => number {
+export function seededUniform(seed: number): () => number {
   let state = seed
   return () => {
     state = (state + 0x6d2b79f5) | 0
