@@ -72,7 +72,7 @@ export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Bor
   const nearness = measureNearness(boundaries, metres)
   problems.push(...overlapProblems(boundaries, nearness, polygons, names, zones.file, metres))
   if (problems.length > 0) return { ok: false, problems }
-  const paths = sharedPaths(boundaries, nearness, isTreated, metres)
+  const paths = sharedPaths(boundaries, nearness, (own, other) => isTreated[own] > isTreated[other], metres)
     .map((path) => withoutWhiskers(boundaries, path, metres))
     .filter((path) => path !== undefined)
   if (paths.length === 0) return { ok: false, problems: [noBorder(zones.file, boundaries, isTreated, snapMetres)] }

@@ -1,10 +1,20 @@
 /**
- * Shared borders of treated and untreated zones: the parts of each treated zone's boundary within the tolerance of an
- * untreated zone's (METHODS section 10), as paths along the treated boundary. No vertex is ever moved.
+ * Shared borders of zones: the parts of the boundary of the zone on the treated side within the tolerance of the other
+ * zone's (METHODS section 10), as paths along the treated boundary. No vertex is ever moved.
  */
 import { type Boundaries, pointOfEdge } from './boundaries.js'
 import { edgeLengthMetres } from './geodesy.js'
 import { EXACT, NEAR, type Nearness, nearestOfZone, SAME_SIDE, samePlaceMetres } from './nearness.js'
+
+/** A stretch of one edge of the boundaries; `from` lies past `to` on a path read backwards. */
+export interface PathStep {
+  readonly edge: number
+  readonly from: number
+  readonly to: number
+}
+
+/** Is the border between two zones wanted, with the first on its treated side? By zone. */
+export type Relevance = (own: number, other: number) => boolean
 
 /** One unbroken stretch of a treated zone's boundary, shared with one untreated zone. */
 export interface SharedPath {
@@ -14,6 +24,8 @@ export interface SharedPath {
   readonly points: readonly (readonly [number, number])[]
   /** For each step from a point to the next: do the two boundaries coincide there? */
   readonly isExact: readonly boolean[]
+  /** Where on the boundary each step runs. */
+  readonly steps: readonly PathStep[]
   /** A whole ring. */
   readonly isClosed: boolean
   /** Does another untreated zone's path take over at once at the start, and at the end? */
@@ -23,31 +35,30 @@ export interface SharedPath {
 /** Runs no longer than this many tolerances, coincident nowhere, are two zones meeting at a corner. */
 export const cornerTolerances = 4
 
-interface Claim {
-  readonly edge: number
-  readonly from: number
-  readonly to: number
+interface Claim extends PathStep {
   readonly zone: number
   readonly isExact: boolean
 }
 
 /**
- * Every shared stretch, whiskers included, meetings at a corner left out. `isTreated` is by zone. A stretch near two untreated zones goes to the
- * nearer, cut where they are equally near; a coincident boundary goes first.
+ * Every shared stretch along the boundary of its treated side, whiskers included, meetings at a corner left out. A
+ * stretch near two zones on the other side goes to the nearer, cut where they are equally near; a coincident boundary
+ * goes first.
  */
 export function sharedPaths(
   boundaries: Boundaries,
   nearness: Nearness,
-  isTreated: Uint8Array,
+  isRelevant: Relevance,
   metres: number,
 ): SharedPath[] {
   const { ringStart, zoneOfRing } = boundaries
   const paths: SharedPath[] = []
   for (let ring = 0; ring + 1 < ringStart.length; ring++) {
-    if (!isTreated[zoneOfRing[ring]]) continue
+    const own = zoneOfRing[ring]
+    const isWanted = (zone: number) => isRelevant(own, zone)
     const claims: Claim[] = []
     for (let e = ringStart[ring]; e < ringStart[ring + 1]; e++) {
-      claimsOfEdge(boundaries, nearness, isTreated, metres, e, claims)
+      claimsOfEdge(boundaries, nearness, isWanted, metres, e, claims)
     }
     paths.push(...pathsOfRing(boundaries, ring, claims, metres))
   }
@@ -58,7 +69,7 @@ export function sharedPaths(
 function claimsOfEdge(
   boundaries: Boundaries,
   nearness: Nearness,
-  isTreated: Uint8Array,
+  isWanted: (zone: number) => boolean,
   metres: number,
   e: number,
   claims: Claim[],
@@ -67,7 +78,7 @@ function claimsOfEdge(
   const [first, last] = [nearness.start[e], nearness.start[e + 1]]
   const cuts: number[] = []
   for (let i = first; i < last; i++) {
-    if (!isTreated[nearness.zone[i]]) cuts.push(nearness.from[i], nearness.to[i])
+    if (isWanted(nearness.zone[i])) cuts.push(nearness.from[i], nearness.to[i])
   }
   if (cuts.length === 0) return
   const length = edgeLengthMetres(edges.lon0[e], edges.lat0[e], edges.lon1[e], edges.lat1[e])
@@ -81,7 +92,7 @@ function claimsOfEdge(
   const places = distinctPlaces(cuts, slack)
   for (let c = 0; c + 1 < places.length; c++) {
     const [from, to] = [places[c], places[c + 1]]
-    const { exact, near } = claimants(nearness, isTreated, first, last, (from + to) / 2)
+    const { exact, near } = claimants(nearness, isWanted, first, last, (from + to) / 2)
     if (exact.length > 0) add(from, to, exact[0], true)
     else if (near.length === 1) add(from, to, near[0], false)
     else if (near.length > 1) {
@@ -103,14 +114,14 @@ function distinctPlaces(cuts: number[], slack: number): number[] {
   return places
 }
 
-/** Untreated zones with a claim at fraction t of an edge; nearness lists each zone's kinds together, NEAR first. */
-function claimants(nearness: Nearness, isTreated: Uint8Array, first: number, last: number, t: number) {
+/** Wanted zones with a claim at fraction t of an edge; nearness lists each zone's kinds together, NEAR first. */
+function claimants(nearness: Nearness, isWanted: (zone: number) => boolean, first: number, last: number, t: number) {
   const exact: number[] = []
   const near: number[] = []
   const overlapping: number[] = []
   for (let i = first; i < last; i++) {
     const zone = nearness.zone[i]
-    if (isTreated[zone] || t < nearness.from[i] || t > nearness.to[i]) continue
+    if (!isWanted(zone) || t < nearness.from[i] || t > nearness.to[i]) continue
     if (nearness.kind[i] === NEAR) near.push(zone)
     else if (nearness.kind[i] === EXACT) exact.push(zone)
     else if (nearness.kind[i] === SAME_SIDE) overlapping.push(zone)
@@ -213,6 +224,7 @@ function pathsOfRing(boundaries: Boundaries, ring: number, claims: readonly Clai
       untreated: run[0].zone,
       points,
       isExact: run.map((claim) => claim.isExact),
+      steps: run.map(({ edge, from, to }) => ({ edge, from, to })),
       isClosed,
       isFollowed: [meets(before[before.length - 1], run[0]), meets(end, after[0])] as const,
     }

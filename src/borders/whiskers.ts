@@ -43,6 +43,7 @@ function reversed(path: SharedPath): SharedPath {
     ...path,
     points: [...path.points].reverse(),
     isExact: [...path.isExact].reverse(),
+    steps: [...path.steps].reverse().map(({ edge, from, to }) => ({ edge, from: to, to: from })),
     isFollowed: [end, start],
   }
 }
@@ -65,7 +66,17 @@ function leavingCut(boundaries: Boundaries, path: SharedPath, metres: number): S
     }
   }
   if (!onlyGrows(walked, distances)) return path
-  return { ...path, points: path.points.slice(0, lastExact + 2), isExact: path.isExact.slice(0, lastExact + 1) }
+  return firstSteps(path, lastExact + 1)
+}
+
+/** The path up to the end of a number of its steps. */
+function firstSteps(path: SharedPath, count: number): SharedPath {
+  return {
+    ...path,
+    points: path.points.slice(0, count + 1),
+    isExact: path.isExact.slice(0, count),
+    steps: path.steps.slice(0, count),
+  }
 }
 
 /** Never back by more than a tenth of the last distance, and that much reached halfway: it leaves, it does not follow. */
@@ -105,11 +116,18 @@ function drawnBack(boundaries: Boundaries, path: SharedPath, metres: number): Sh
     if (distance[0] < best.metres - 1e-6) best = { step: i, fraction, metres: distance[0] }
     walked += edgeLengthMetres(lon0, lat0, lon1, lat1)
   }
-  if (best.fraction === 0) {
-    return { ...path, points: points.slice(0, best.step + 1), isExact: isExact.slice(0, best.step) }
-  }
+  const before = firstSteps(path, best.step)
+  if (best.fraction === 0) return before
   const [[lon0, lat0], [lon1, lat1]] = [points[best.step], points[best.step + 1]]
-  const end: [number, number] =
-    best.fraction === 1 ? [lon1, lat1] : [lon0 + best.fraction * (lon1 - lon0), lat0 + best.fraction * (lat1 - lat0)]
-  return { ...path, points: [...points.slice(0, best.step + 1), end], isExact: isExact.slice(0, best.step + 1) }
+  const { edge, from, to } = path.steps[best.step]
+  const isWhole = best.fraction === 1
+  const end: readonly [number, number] = isWhole
+    ? [lon1, lat1]
+    : [lon0 + best.fraction * (lon1 - lon0), lat0 + best.fraction * (lat1 - lat0)]
+  return {
+    ...path,
+    points: [...before.points, end],
+    isExact: isExact.slice(0, best.step + 1),
+    steps: [...before.steps, { edge, from, to: isWhole ? to : from + best.fraction * (to - from) }],
+  }
 }
