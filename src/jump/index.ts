@@ -14,5 +14,15 @@ export { covarianceMatrix, type Influence, varianceOf } from './influence.js'
 export { countWithin, type Kernel, kernelValue } from './kernel.js'
 export { fitLocal, fittedAt, kernelCurve, type LocalFit } from './localPolynomial.js'
 export { neighbourResidualsOf } from './neighbours.js'
+export { type CarriedOver, planeBandwidth, planeBandwidthRule } from './planeBandwidth.js'
+export { buildPlaneSample, type PlaneEntries, type PlaneSample } from './planeSample.js'
 export { type BySide, buildSample, type Entries, type Sample, type Side, withOutcomes } from './sample.js'
+export {
+  jumpAtPoint,
+  type PlaneBandwidths,
+  type PlaneOptions,
+  type PlaneVariance,
+  type PointEstimated,
+  type PointJump,
+} from './twoCoordinates.js'
 export type { Variance } from './variance.js'

@@ -1,0 +1,203 @@
+/**
+ * The jump at one point of a border, from a fit in two coordinates on each side.
+ * Source: Imbens & Zajonc 2011; Keele & Titiunik 2015; Cattaneo, Titiunik & Yu 2025; METHODS sections 3, 4 and 10.
+ * τ̂ = level at the point on the treated side less that on the untreated side = Σ l_i y_i. A distance-only fit is off
+ * where the border bends, because the units at one distance then lie in other directions; a fit in both coordinates
+ * is exact for every plane, whatever the shape of the border.
+ * plain: l from the order-p fit at h. corrected: the estimated bias is taken off, l_bc = l − Σ_k c_k a_k(q, b), q = p+1,
+ * over the terms k of degree p+1: c_k is what the order-p level makes of term k, a_k(q, b) the weights of its
+ * coefficient in the order-q fit. With b = h the corrected estimate is the order-q level at h.
+ */
+
+import { choleskySolveInPlace } from '../math/index.js'
+import { type Inference, infer, satterthwaite } from './inference.js'
+import { type Influence, influenceByKey, influenceOfUnits, varianceOf } from './influence.js'
+import { countWithin, type Kernel, kernelValue } from './kernel.js'
+import {
+  addPlaneWeights,
+  fitPlane,
+  levelFunctional,
+  type PlaneFit,
+  planeResiduals,
+  planeResponse,
+  termCount,
+} from './planeFit.js'
+import { bothSides, type PlaneSample, type PlaneSide } from './planeSample.js'
+import type { BySide } from './sample.js'
+import { clusterFactor, countClusters } from './variance.js'
+
+export type PlaneVariance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'clusters'
+
+export interface PlaneOptions {
+  readonly order: number
+  readonly kernel: Kernel
+  readonly variance: PlaneVariance
+  readonly reference: 't' | 'normal'
+  readonly level: number
+  /** Units of positive weight that each side needs; 20 by default. */
+  readonly smallestSide?: number
+}
+
+/** In metres. */
+export interface PlaneBandwidths {
+  readonly h: BySide<number>
+  readonly b: BySide<number>
+}
+
+export interface PointJump {
+  readonly bandwidths: PlaneBandwidths
+  /** Units of positive kernel weight at h. */
+  readonly units: BySide<number>
+  /** Fitted levels at the point, order p at h. */
+  readonly atPoint: BySide<number>
+  readonly plain: Inference
+  readonly corrected: Inference
+  /** Of the corrected estimate; keys are units, or clusters where the variance is clustered. */
+  readonly influence: Influence
+  readonly clusters?: number
+  /** Σ w_i K(r_i/h)/h² over both sides: proportional to the density of units at the point. */
+  readonly density: number
+}
+
+export type PointEstimated =
+  | { readonly ok: true; readonly jump: PointJump }
+  | { readonly ok: false; readonly reason: string; readonly units: BySide<number> }
+
+interface SideFit {
+  readonly side: PlaneSide
+  readonly main: PlaneFit
+  readonly bias: PlaneFit
+  readonly plain: Float64Array
+  readonly corrected: Float64Array
+}
+
+const defaultSmallestSide = 20
+
+/** Estimates at given bandwidths; what can't be estimated has a reason that names the side. */
+export function jumpAtPoint(sample: PlaneSample, bandwidths: PlaneBandwidths, options: PlaneOptions): PointEstimated {
+  const { kernel, smallestSide = defaultSmallestSide } = options
+  const units = bothSides((name) => countWithin(sample[name].t, bandwidths.h[name], kernel))
+  const sides: SideFit[] = []
+  for (const name of ['untreated', 'treated'] as const) {
+    const few = units[name] < smallestSide
+    const fitted = few
+      ? `${units[name]} units within the bandwidth, fewer than ${smallestSide}`
+      : fitSide(sample, name, bandwidths, options)
+    if (typeof fitted === 'string') return { ok: false, reason: `${name} side: ${fitted}`, units }
+    sides.push(fitted)
+  }
+  const plain = inferenceOf(sides, 'plain', options)
+  const corrected = inferenceOf(sides, 'corrected', options)
+  if (typeof plain === 'string') return { ok: false, reason: plain, units }
+  if (typeof corrected === 'string') return { ok: false, reason: corrected, units }
+  const [left, right] = sides
+  return {
+    ok: true,
+    jump: {
+      bandwidths,
+      units,
+      atPoint: {
+        untreated: left.main.coefficients[0] + sample.centre,
+        treated: right.main.coefficients[0] + sample.centre,
+      },
+      plain: plain.inference,
+      corrected: corrected.inference,
+      influence: corrected.influence,
+      clusters: corrected.clusters,
+      density: densityOf(left) + densityOf(right),
+    },
+  }
+}
+
+function fitSide(
+  sample: PlaneSample,
+  name: 'untreated' | 'treated',
+  bandwidths: PlaneBandwidths,
+  options: PlaneOptions,
+): SideFit | string {
+  const side = sample[name]
+  const [h, b] = [bandwidths.h[name], bandwidths.b[name]]
+  const sign = name === 'treated' ? 1 : -1
+  const p = options.order
+  const main = fitPlane(side, p, h, options.kernel)
+  if (!main.ok) return main.reason
+  const bias = fitPlane(side, p + 1, b, options.kernel)
+  if (!bias.ok) return `bias fit: ${bias.reason}`
+  const length = Math.max(main.fit.count, bias.fit.count)
+  const plain = new Float64Array(length)
+  addPlaneWeights(plain, side, main.fit, levelFunctional(main.fit), sign)
+  const corrected = Float64Array.from(plain)
+  addPlaneWeights(corrected, side, bias.fit, biasFunctional(side, main.fit, bias.fit, plain), -1)
+  return { side, main: main.fit, bias: bias.fit, plain, corrected }
+}
+
+/** The polynomial of Σ_k c_k a_k(q, b), c from the signed weights of the level. Terms are in units of h there, of b here. */
+function biasFunctional(side: PlaneSide, main: PlaneFit, bias: PlaneFit, plain: Float64Array): Float64Array {
+  const response = planeResponse(side, main.order, main.h, plain)
+  const combination = new Float64Array(termCount(bias.order))
+  const first = termCount(main.order)
+  const rescale = (main.h / bias.h) ** bias.order
+  for (let j = 0; j < response.length; j++) combination[first + j] = response[j] * rescale
+  choleskySolveInPlace(bias.factor, combination.length, combination)
+  return combination
+}
+
+/** Residual factor of each unit, as in METHODS section 4: ψ_i = l_i · value. */
+function scaledPlaneResiduals(side: PlaneSide, fit: PlaneFit, count: number, variance: PlaneVariance): Float64Array {
+  const { residual, leverage } = planeResiduals(side, fit, count)
+  const factor = variance === 'hc1' ? Math.sqrt(fit.count / (fit.count - termCount(fit.order))) : 1
+  for (let i = 0; i < count; i++) {
+    const left = 1 - leverage[i]
+    residual[i] *= variance === 'hc2' ? 1 / Math.sqrt(left) : variance === 'hc3' ? 1 / left : factor
+  }
+  return residual
+}
+
+function inferenceOf(
+  sides: readonly SideFit[],
+  which: 'plain' | 'corrected',
+  { variance, order, reference, level }: PlaneOptions,
+): { inference: Inference; influence: Influence; clusters?: number } | string {
+  const weights = sides.map((part) => part[which])
+  let estimate = 0
+  const psi = sides.map((part, s) => {
+    const l = weights[s]
+    const values = scaledPlaneResiduals(part.side, which === 'plain' ? part.main : part.bias, l.length, variance)
+    for (let i = 0; i < l.length; i++) {
+      estimate += l[i] * part.side.y[i]
+      values[i] *= l[i]
+    }
+    return values
+  })
+  let degreesOfFreedom = satterthwaite(weights)
+  let clusters: number | undefined
+  if (variance === 'clusters') {
+    const counted = countClusters(
+      weights,
+      sides.map((part) => part.side),
+    )
+    clusters = counted.clusters
+    if (clusters < 2) return `only ${clusters} cluster near the point, a clustered variance needs 2`
+    // the factor counts the terms of both sides: those of one side, as if they were the terms of one polynomial
+    const terms = termCount(which === 'plain' ? order : order + 1)
+    const factor = clusterFactor(clusters, counted.units, terms - 1)
+    if (!(factor > 0)) return `only ${counted.units} units near the point, too few for a clustered variance`
+    for (const side of psi) for (let i = 0; i < side.length; i++) side[i] *= Math.sqrt(factor)
+    degreesOfFreedom = clusters - 1
+  }
+  const isClustered = variance === 'clusters'
+  const keys = sides.map(({ side }) => (isClustered ? (side.cluster as Int32Array) : side.unit))
+  const influence = isClustered ? influenceByKey(keys, psi) : influenceOfUnits(keys, psi)
+  const spread = varianceOf(influence)
+  if (!(spread > 0)) return 'the fit leaves no residual on either side'
+  const inference = infer(estimate, spread, reference === 't' ? degreesOfFreedom : Number.POSITIVE_INFINITY, level)
+  return { inference, influence, clusters }
+}
+
+function densityOf({ side, main }: SideFit): number {
+  let total = 0
+  for (let i = 0; i < main.count; i++) {
+    total += (side.w === null ? 1 : side.w[i]) * kernelValue(main.kernel, side.t[i] / main.h)
+  }
+  return total / (main.h * main.h)
+}
