@@ -1,7 +1,7 @@
 /** Differences between every two lines, with p-values and intervals that hold for all of them at once (METHODS section 9). */
-import { choleskyInPlace, normalQuantile, normalUpper, type Random } from '../math/index.js'
+import { normalQuantile, normalUpper, type Random } from '../math/index.js'
 import { type LineEffects, variancesOf } from './effects.js'
-import { correlationOf } from './wald.js'
+import { factorOfCorrelation, quantileOfDraws, sidakQuantile } from './maximum.js'
 
 export interface ContrastOfLines {
   /** Indices of the lines; the contrast is the first minus the second. */
@@ -56,12 +56,6 @@ export function contrastsOf(effects: LineEffects, level: number, random: Random,
     return { lines, estimate, standardError, low: estimate - reach, high: estimate + reach, p, pHolm }
   })
   return { listed, of, criticalValue }
-}
-
-/** Two-sided quantile at which `count` independent contrasts all hold with probability `level`. */
-function sidakQuantile(level: number, count: number): number {
-  const tail = -Math.expm1(Math.log(level) / count) / 2
-  return -normalQuantile(tail)
 }
 
 /** A difference with less than this share of its lines' variances is rounding: it has no variance of its own. */
@@ -138,8 +132,7 @@ function drawnQuantile(
   const search = searchOf(standardErrors, variance)
   const normal = new Float64Array(count)
   const drawn = new Float64Array(count)
-  const largest = new Float64Array(draws)
-  for (let draw = 0; draw < draws; draw++) {
+  return quantileOfDraws(level, draws, () => {
     for (let a = 0; a < count; a++) normal[a] = random.normal()
     for (let a = 0; a < count; a++) {
       let value = normal[a]
@@ -149,10 +142,8 @@ function drawnQuantile(
       }
       drawn[a] = value * scale[a]
     }
-    largest[draw] = largestRatio(drawn, search)
-  }
-  largest.sort()
-  return largest[Math.min(draws, Math.ceil(level * (draws + 1))) - 1]
+    return largestRatio(drawn, search)
+  })
 }
 
 interface RatioSearch {
@@ -218,18 +209,4 @@ function largestInRow(drawn: Float64Array, inverse: Float64Array, a: number, fro
     if (ratio > largest) largest = ratio
   }
   return largest
-}
-
-/**
- * Lower Cholesky factor of the correlation matrix. A singular one gets the least ridge, a power of ten from 1e-12, that
- * lets it be factored: the draws are then wider by a share of that size, far below their own error.
- */
-function factorOfCorrelation(covariance: Float64Array, lineErrors: Float64Array): Float64Array {
-  const count = lineErrors.length
-  for (let ridge = 0; ridge < 1; ridge = ridge === 0 ? 1e-12 : ridge * 10) {
-    const factor = correlationOf(covariance, lineErrors)
-    for (let a = 0; a < count; a++) factor[a * count + a] = 1 + ridge
-    if (choleskyInPlace(factor, count) > 0) return factor
-  }
-  throw new Error('the covariance of the estimates is not positive semidefinite')
 }

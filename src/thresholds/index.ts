@@ -1,4 +1,13 @@
 /** Door of the thresholds room: units placed by score or by given distance, and lines compared. */
+export {
+  type Along,
+  type AlongEstimate,
+  type AlongOptions,
+  type AlongPoint,
+  type AlongUnits,
+  estimateAlong,
+  type UnitsNearPoint,
+} from './along.js'
 export { type CompareOptions, type CompareOutcome, type ComparisonResult, compareLines } from './compare.js'
 export type { CutoffSource, MissingKey } from './cutoffs.js'
 export { type DistanceInput, placeByDistance } from './distance.js'
