@@ -1,5 +1,5 @@
 /** Small invented studies, written to a folder of their own, and the built command to run on them. */
-import { spawn } from 'node:child_process'
+import { type ChildProcess, spawn } from 'node:child_process'
 import { createHash } from 'node:crypto'
 import { existsSync, mkdirSync, mkdtempSync, readdirSync, readFileSync, realpathSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
@@ -16,9 +16,8 @@ export interface Said {
 export interface SpawnOptions {
   readonly cwd: string
   readonly env?: Record<string, string>
-  /** Killed (SIGKILL) after so many milliseconds. */
-  readonly killAfter?: number
-  readonly signal?: NodeJS.Signals
+  /** Given the running process; what it returns is called when the process has ended. */
+  readonly watch?: (child: ChildProcess) => () => void
 }
 
 /** Runs the built command as a user would. */
@@ -34,13 +33,10 @@ export function scarp(words: readonly string[], options: SpawnOptions): Promise<
     let stderr = ''
     child.stdout.setEncoding('utf8').on('data', (text) => (stdout += text))
     child.stderr.setEncoding('utf8').on('data', (text) => (stderr += text))
-    const timer =
-      options.killAfter === undefined
-        ? undefined
-        : setTimeout(() => child.kill(options.signal ?? 'SIGKILL'), options.killAfter)
+    const ended = options.watch?.(child)
     child.on('error', fail)
     child.on('close', (code) => {
-      clearTimeout(timer)
+      ended?.()
       done({ code, stdout, stderr })
     })
   })
