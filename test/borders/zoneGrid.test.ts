@@ -3,6 +3,7 @@ import { createRequire } from 'node:module'
 import { booleanPointInPolygon } from '@turf/turf'
 import { feature } from 'topojson-client'
 import { describe, expect, it } from 'vitest'
+import { crossesEast, crossesNorth } from '../../src/borders/zoneCrossing.js'
 import { buildZoneGrid, locateInZones } from '../../src/borders/zoneGrid.js'
 import { jaggedMap, scatteredPoints, seededUniform } from '../bench/distance.js'
 
@@ -299,5 +300,35 @@ describe('zone of a point, by hand', () => {
       ]),
     ).toThrow(RangeError)
     expect(() => locateInZones(buildZoneGrid([]), new Float64Array(2), new Float64Array(1))).toThrow(/2 points/)
+  })
+})
+
+describe('edges beside a point', () => {
+  it('are those beside the point moved by (ε, ε²), for every edge and point of a 5 x 5 lattice', () => {
+    // in the lattice no other sign changes within steps as small as these
+    const east = 1e-3
+    const north = 1e-7
+    const lattice = Array.from({ length: 25 }, (_, k): [number, number] => [k % 5, Math.floor(k / 5)])
+    for (const [x0, y0] of lattice) {
+      for (const [x1, y1] of lattice) {
+        if (y1 < y0 || (y1 === y0 && x1 <= x0)) continue
+        const edge = {
+          x0: Float64Array.of(x0),
+          y0: Float64Array.of(y0),
+          x1: Float64Array.of(x1),
+          y1: Float64Array.of(y1),
+        }
+        const wrong = lattice.filter(([latticeX, latticeY]) => {
+          const [x, y] = [latticeX + east, latticeY + north]
+          const isBeside = y0 < y && y < y1 && x < x0 + ((y - y0) / (y1 - y0)) * (x1 - x0)
+          const isBelow = Math.min(x0, x1) < x && x < Math.max(x0, x1) && y < y0 + ((x - x0) / (x1 - x0)) * (y1 - y0)
+          return (
+            crossesEast(edge, 0, latticeX, latticeY) !== isBeside ||
+            crossesNorth(edge, 0, latticeX, latticeY) !== isBelow
+          )
+        })
+        expect(wrong).toEqual([])
+      }
+    }
   })
 })
