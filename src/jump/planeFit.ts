@@ -89,6 +89,17 @@ function forEachUnit(
   }
 }
 
+/** Terms and, last, the kernel weight of each unit of the fit: count × (terms + 1), row-major. */
+export function planeRows(side: PlaneSide, fit: PlaneFit): Float64Array {
+  const width = termCount(fit.order) + 1
+  const rows = new Float64Array(fit.count * width)
+  forEachUnit(side, fit.order, fit.h, fit.kernel, fit.count, (i, k, row) => {
+    rows.set(row, i * width)
+    rows[i * width + width - 1] = k
+  })
+  return rows
+}
+
 /** The polynomial A of the level at the point: Σ k_i A(u_i, v_i) y_i is the fitted value there. */
 export function levelFunctional(fit: PlaneFit): Float64Array {
   const combination = new Float64Array(termCount(fit.order))

@@ -13,6 +13,7 @@ import { choleskySolveInPlace } from '../math/index.js'
 import { type Inference, infer, satterthwaite } from './inference.js'
 import { type Influence, influenceByKey, influenceOfUnits, varianceOf } from './influence.js'
 import { countWithin, type Kernel, kernelValue } from './kernel.js'
+import { biasReducedClusters } from './planeClusters.js'
 import {
   addPlaneWeights,
   fitPlane,
@@ -26,7 +27,8 @@ import { bothSides, type PlaneSample, type PlaneSide } from './planeSample.js'
 import type { BySide } from './sample.js'
 import { clusterFactor, countClusters } from './variance.js'
 
-export type PlaneVariance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'clusters'
+/** `few-clusters` sets b = h: the corrected estimate is then one regression of order q. */
+export type PlaneVariance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'clusters' | 'few-clusters'
 
 export interface PlaneOptions {
   readonly order: number
@@ -75,7 +77,8 @@ const defaultSmallestSide = 20
 
 /** Estimates at given bandwidths; what can't be estimated has a reason that names the side. */
 export function jumpAtPoint(sample: PlaneSample, bandwidths: PlaneBandwidths, options: PlaneOptions): PointEstimated {
-  const { kernel, smallestSide = defaultSmallestSide } = options
+  const { kernel, variance, smallestSide = defaultSmallestSide } = options
+  if (variance === 'few-clusters') bandwidths = { h: bandwidths.h, b: bandwidths.h }
   const units = bothSides((name) => countWithin(sample[name].t, bandwidths.h[name], kernel))
   const sides: SideFit[] = []
   for (const name of ['untreated', 'treated'] as const) {
@@ -153,45 +156,74 @@ function scaledPlaneResiduals(side: PlaneSide, fit: PlaneFit, count: number, var
   return residual
 }
 
+interface Spread {
+  readonly influence: Influence
+  readonly degreesOfFreedom: number
+  readonly clusters?: number
+}
+
 function inferenceOf(
   sides: readonly SideFit[],
   which: 'plain' | 'corrected',
-  { variance, order, reference, level }: PlaneOptions,
-): { inference: Inference; influence: Influence; clusters?: number } | string {
-  const weights = sides.map((part) => part[which])
+  options: PlaneOptions,
+): (Spread & { inference: Inference }) | string {
+  const { reference, level } = options
+  const spread = options.variance === 'few-clusters' ? reducedSpread(sides, which) : spreadOf(sides, which, options)
+  if (typeof spread === 'string') return spread
+  const variance = varianceOf(spread.influence)
+  if (!(variance > 0)) return 'the fit leaves no residual on either side'
   let estimate = 0
+  for (const part of sides) {
+    const l = part[which]
+    for (let i = 0; i < l.length; i++) estimate += l[i] * part.side.y[i]
+  }
+  const freedom = reference === 't' ? spread.degreesOfFreedom : Number.POSITIVE_INFINITY
+  return { ...spread, inference: infer(estimate, variance, freedom, level) }
+}
+
+/** hc0 to hc3, and the plain clustered variance. */
+function spreadOf(
+  sides: readonly SideFit[],
+  which: 'plain' | 'corrected',
+  { variance, order }: PlaneOptions,
+): Spread | string {
+  const weights = sides.map((part) => part[which])
   const psi = sides.map((part, s) => {
     const l = weights[s]
     const values = scaledPlaneResiduals(part.side, which === 'plain' ? part.main : part.bias, l.length, variance)
-    for (let i = 0; i < l.length; i++) {
-      estimate += l[i] * part.side.y[i]
-      values[i] *= l[i]
-    }
+    for (let i = 0; i < l.length; i++) values[i] *= l[i]
     return values
   })
-  let degreesOfFreedom = satterthwaite(weights)
-  let clusters: number | undefined
-  if (variance === 'clusters') {
-    const counted = countClusters(
-      weights,
-      sides.map((part) => part.side),
-    )
-    clusters = counted.clusters
-    if (clusters < 2) return `only ${clusters} cluster near the point, a clustered variance needs 2`
-    // the factor counts the terms of both sides: those of one side, as if they were the terms of one polynomial
-    const terms = termCount(which === 'plain' ? order : order + 1)
-    const factor = clusterFactor(clusters, counted.units, terms - 1)
-    if (!(factor > 0)) return `only ${counted.units} units near the point, too few for a clustered variance`
-    for (const side of psi) for (let i = 0; i < side.length; i++) side[i] *= Math.sqrt(factor)
-    degreesOfFreedom = clusters - 1
+  if (variance !== 'clusters') {
+    const units = sides.map(({ side }) => side.unit)
+    return { influence: influenceOfUnits(units, psi), degreesOfFreedom: satterthwaite(weights) }
   }
-  const isClustered = variance === 'clusters'
-  const keys = sides.map(({ side }) => (isClustered ? (side.cluster as Int32Array) : side.unit))
-  const influence = isClustered ? influenceByKey(keys, psi) : influenceOfUnits(keys, psi)
-  const spread = varianceOf(influence)
-  if (!(spread > 0)) return 'the fit leaves no residual on either side'
-  const inference = infer(estimate, spread, reference === 't' ? degreesOfFreedom : Number.POSITIVE_INFINITY, level)
-  return { inference, influence, clusters }
+  const counted = countClusters(
+    weights,
+    sides.map((part) => part.side),
+  )
+  const { clusters } = counted
+  if (clusters < 2) return oneCluster
+  // the factor counts the terms of both sides: those of one side, as if they were the terms of one polynomial
+  const terms = termCount(which === 'plain' ? order : order + 1)
+  const factor = clusterFactor(clusters, counted.units, terms - 1)
+  if (!(factor > 0)) return `only ${counted.units} units near the point, too few for a clustered variance`
+  for (const side of psi) for (let i = 0; i < side.length; i++) side[i] *= Math.sqrt(factor)
+  const codes = sides.map(({ side }) => side.cluster as Int32Array)
+  return { influence: influenceByKey(codes, psi), degreesOfFreedom: clusters - 1, clusters }
+}
+
+const oneCluster = 'only 1 cluster near the point, a clustered variance needs 2'
+
+function reducedSpread(sides: readonly SideFit[], which: 'plain' | 'corrected'): Spread | string {
+  const reduced = biasReducedClusters(
+    sides.map((part) => {
+      const fit = which === 'plain' ? part.main : part.bias
+      const { residual } = planeResiduals(part.side, fit, fit.count)
+      return { side: part.side, fit, weights: part[which], residual }
+    }),
+  )
+  return reduced.clusters < 2 ? oneCluster : reduced
 }
 
 function densityOf({ side, main }: SideFit): number {

@@ -81,6 +81,29 @@ describe('one point, against base R', () => {
   }
 })
 
+describe('few clusters, against the full matrices in base R', () => {
+  for (const { order, kernel, h, weighted, estimate, variance, dof, G } of golden.few) {
+    it(`${kernel}, order ${order}, h ${h}${weighted ? ', weighted' : ''}`, () => {
+      const entries = weighted ? { ...goldenEntries, w: Float64Array.from(golden.w) } : goldenEntries
+      const reduced = { kernel, variance: 'few-clusters' } as const
+      const results = []
+      if (order < 3) results.push(jumpOf(entries, h, h, { ...reduced, order }).plain)
+      // whatever b is asked for, the corrected estimate is the fit of the next order at h
+      const { corrected, influence, clusters } = jumpOf(entries, h, 0.8 * h, { ...reduced, order: order - 1 })
+      for (const result of [...results, corrected]) {
+        close(result.estimate, estimate)
+        close(result.standardError ** 2, variance)
+        close(result.degreesOfFreedom, dof)
+      }
+      expect(clusters).toBe(G)
+      close(
+        influence.psi.reduce((total, psi) => total + psi * psi, 0),
+        variance,
+      )
+    })
+  }
+})
+
 describe('properties', () => {
   const known = jumpOf(goldenEntries, 800)
   const rotated = (degrees: number): PlaneEntries => {

@@ -53,6 +53,36 @@ one <- function(order, kernel, h, b, wt) {
     untreated = units[1], treated = units[2], levelUntreated = at[1], levelTreated = at[2], density = density,
     plainVariance = var_of(l, resP, lev, fr, order), correctedVariance = var_of(lb, resB, levB, frB, q))
 }
+# Bias-reduced clustered variance (CR2) and Satterthwaite degrees of freedom, identity working covariance, of the joint
+# weighted regression of both sides at one bandwidth: every matrix in full.
+reduced <- function(order, kernel, h, wt) {
+  use <- r < h | (kernel == "uniform" & r == h)
+  i <- which(use); k <- (wt*kern[[kernel]](r/h)/h^2)[i]
+  X <- terms(i, order, h); X <- cbind(X*treated[i], X*(1 - treated[i]))
+  size <- ncol(X)/2
+  M <- solve(crossprod(X*sqrt(k)))
+  A <- M %*% t(X*k)
+  l <- A[1, ] - A[size + 1, ]
+  N <- diag(length(i)) - X %*% A
+  res <- as.vector(N %*% y[i])
+  P <- c(); V <- 0
+  for (cl in unique(g[i])) {
+    own <- which(g[i] == cl)
+    B <- tcrossprod(N[own, , drop = FALSE])
+    ev <- eigen(B, symmetric = TRUE)
+    root <- ifelse(ev$values > 1e-10, 1/sqrt(pmax(ev$values, 1e-300)), 0)
+    Ag <- ev$vectors %*% (root*t(ev$vectors))
+    u <- Ag %*% l[own]
+    V <- V + sum(u*res[own])^2
+    P <- cbind(P, t(N[own, , drop = FALSE]) %*% u)
+  }
+  G <- crossprod(P)
+  list(order = order, kernel = kernel, h = h, weighted = !all(wt == 1), estimate = sum(l*y[i]), variance = V,
+    dof = sum(diag(G))^2/sum(G^2), G = ncol(P))
+}
+few <- list()
+for (wt in list(rep(1, n), w)) for (order in 1:3) for (kernel in names(kern))
+  few[[length(few) + 1]] <- reduced(order, kernel, c(700, 900, 1000)[order], wt)
 cases <- list()
 for (wt in list(rep(1, n), w)) for (order in 0:2) for (kernel in names(kern)) for (b in c(900, 1000, 700))
   cases[[length(cases) + 1]] <- one(order, kernel, c(700, 900, 1000)[order + 1], max(b, 700 + 100*order), wt)
@@ -64,4 +94,5 @@ item <- function(v) {
   sprintf("%.17g", v)
 }
 cat("{\"tool\":\"base R 4.2.2\",\n\"east\":", num(e), ",\n\"north\":", num(v), ",\n\"treated\":", num(treated), ",\n\"y\":", num(y),
-    ",\n\"w\":", num(w), ",\n\"cluster\":", num(g), ",\n\"cases\":[\n", paste(sapply(cases, item), collapse = ",\n"), "]}\n", sep = "")
+    ",\n\"w\":", num(w), ",\n\"cluster\":", num(g), ",\n\"cases\":[\n", paste(sapply(cases, item), collapse = ",\n"),
+    "],\n\"few\":[\n", paste(sapply(few, item), collapse = ",\n"), "]}\n", sep = "")
