@@ -19,7 +19,7 @@ const chunkSize = 262_144
 /**
  * Nearest edge, foot and geodesic distance (WGS 84) of every point; METHODS section 10.
  * Error against Karney's inverse over every point of every edge: below 1e-5 m to 200 km; beyond, the distance to the
- * foot is his, to 15 nanometres, and the foot's choice costs less than 1e-6 of it (up to 19,900 km).
+ * foot is his, to 15 nanometres, and the foot's choice costs less than 1e-6 of it.
  * Edges nearer than 1e-8 m to each other in distance are tied, and the smallest index wins: the answer for a point does
  * not depend on the others or on their order. Points are searched along a Hilbert curve, each from its neighbour's
  * answer, about as fast as log(edges). Throws RangeError where the arrays differ in length.

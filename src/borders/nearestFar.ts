@@ -4,6 +4,9 @@ import { collectPieces, type SearchRoom, tieMetres } from './nearestSearch.js'
 import { pieceSize, type SegmentTree } from './segmentTreeBuild.js'
 import { along, edgePoint } from './segmentTreeSplit.js'
 
+/** Beyond this Lambert's formula is too rough to find a foot by. */
+const antipodalMetres = 1.2e7
+
 /** One answer: the edge, the foot's fraction of it, the distance. */
 interface Foot {
   readonly edge: number
@@ -40,7 +43,7 @@ function isBefore(a: Foot, b: Foot): boolean {
  * The slow road, for points far from every edge or with many edges equally near: gathers every piece that may hold
  * the nearest point, given the distance `roughMetres` found by the search and the error of its measure.
  * Beyond `closeMetres` each edge's foot is moved to the least distance and measured by the inverse geodesic problem.
- * Good to 1e-6 of the distance up to 19,900 km; nearer to the antipode the foot may be off by up to a piece's length.
+ * Good to 1e-6 of the distance, the antipode included.
  */
 export function resolveNearest(
   tree: SegmentTree,
@@ -69,6 +72,7 @@ export function resolveNearest(
   const feet: Foot[] = []
   for (const [edge, { piece, fraction, distanceMetres }] of nearestOfEdge) {
     if (!isFar) feet.push({ edge, fraction, distanceMetres })
+    else if (distanceMetres > antipodalMetres) feet.push(antipodalFoot(tree, edge, lonDegrees, latDegrees))
     else feet.push(measuredFoot(tree, edge, piece, fraction, lonDegrees, latDegrees))
   }
   // the inverse problem's own rounding is about 15 nanometres
@@ -112,7 +116,36 @@ function measuredFoot(
     distance = moved
     if (isSettled) break
   }
-  const lon = along(edges.lon0[edge], edges.lon1[edge], fraction)
-  const lat = along(edges.lat0[edge], edges.lat1[edge], fraction)
-  return { edge, fraction, distanceMetres: geodesicMetres(lonDegrees, latDegrees, lon, lat) }
+  return { edge, fraction, distanceMetres: inverseMetres(tree, edge, fraction, lonDegrees, latDegrees) }
+}
+
+function inverseMetres(tree: SegmentTree, edge: number, fraction: number, lon: number, lat: number): number {
+  const { lon0, lat0, lon1, lat1 } = tree.edges
+  return geodesicMetres(lon, lat, along(lon0[edge], lon1[edge], fraction), along(lat0[edge], lat1[edge], fraction))
+}
+
+/** The foot on one edge by the inverse problem alone: the best of 33 places, then golden section on both sides of it. */
+function antipodalFoot(tree: SegmentTree, edge: number, lonDegrees: number, latDegrees: number): Foot {
+  const places = 32
+  const footAt = (fraction: number): Foot => ({
+    edge,
+    fraction,
+    distanceMetres: inverseMetres(tree, edge, fraction, lonDegrees, latDegrees),
+  })
+  let best = footAt(0)
+  for (let k = 1; k <= places; k++) {
+    const foot = footAt(k / places)
+    if (foot.distanceMetres < best.distanceMetres) best = foot
+  }
+  const golden = (Math.sqrt(5) - 1) / 2
+  let from = Math.max(0, best.fraction - 1 / places)
+  let to = Math.min(1, best.fraction + 1 / places)
+  for (let step = 0; step < 40; step++) {
+    const left = footAt(to - golden * (to - from))
+    const right = footAt(from + golden * (to - from))
+    if (left.distanceMetres < right.distanceMetres) to = right.fraction
+    else from = left.fraction
+    for (const foot of [left, right]) if (foot.distanceMetres < best.distanceMetres) best = foot
+  }
+  return best
 }

@@ -265,6 +265,19 @@ describe('nearest edge in awkward places', () => {
     expect(top.distanceMetres[0]).toBeCloseTo(geodesicMetres(77, 89, 0, 90), 5)
     expect([...top.edge]).toEqual([0, 1])
   })
+  it('measures to the other side of the earth', () => {
+    const uniform = seededUniform(5)
+    const edges = lineOf(wigglyLine(20, 35, 4, uniform))
+    const points = Array.from({ length: 12 }, (_, k): [number, number] => [
+      200 + 20 ** (k % 3) * 0.2 * (uniform() - 0.5),
+      -35 + 8 ** (k % 3) * 0.2 * (uniform() - 0.5),
+    ])
+    const { distanceMetres } = nearestOf(edges, points)
+    points.forEach(([lon, lat], i) => {
+      // one part in 10^6 is 20 m; both use the inverse problem, so only the search for the foot could differ
+      expect(Math.abs(distanceMetres[i] - bruteForceMetres(edges, lon, lat, 40))).toBeLessThan(1e-3)
+    })
+  })
   it('takes longitudes a turn apart for the same place', () => {
     const points: [number, number][] = [
       [179.9, 10.3],
