@@ -16,6 +16,8 @@ export interface Line {
   /** Number of the piece along its pair's border, from 1. */
   readonly piece?: number
   readonly lengthMetres?: number
+  /** Dose on the treated side less dose on the other, where zones differ in dose. */
+  readonly dose?: number
 }
 
 /**

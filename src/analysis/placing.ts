@@ -1,12 +1,14 @@
 /** From tables and layers to a placement: the one step that knows whether a line is a cutoff or a border. */
 import {
   type Border,
-  type BorderOptions,
-  type Ground,
-  placeOnBorder,
+  type Eligible,
+  eligible,
+  type LineLayer,
+  measureUnits,
   prepareBorder,
   readLineLayer,
   readZones,
+  shareNear,
 } from '../borders/index.js'
 import type { Placement, SetAside } from '../placement.js'
 import type { Checked, Problem } from '../problem.js'
@@ -25,7 +27,9 @@ export interface Placed {
   /** Keys that records have and the schedule has not. */
   readonly missingKeys: readonly MissingKey[]
   readonly border?: Border
-  readonly ground?: Ground
+  readonly ground?: Eligible['ground']
+  /** Why each row of a border study was not placed against it, before weights and clusters are asked for. */
+  readonly reason?: Eligible['reason']
 }
 
 interface Located {
@@ -33,7 +37,8 @@ interface Located {
   readonly setAside: SetAside
   readonly missingKeys?: readonly MissingKey[]
   readonly border?: Border
-  readonly ground?: Ground
+  readonly ground?: Eligible['ground']
+  readonly reason?: Eligible['reason']
 }
 
 export const metresPerUnit = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 } as const
@@ -107,27 +112,29 @@ function locateOnBorder(
   const problems: Problem[] = []
   const readyZones = readZones(zones.content, zones.file, line.zoneName)
   if (!readyZones.ok) problems.push(...readyZones.problems)
-  const layers: BorderOptions['barriers'][number][] = []
+  const layers: { layer: LineLayer; within: number }[] = []
   line.barriers.forEach(({ within }, i) => {
     const layer = readLineLayer(barriers[i].content, barriers[i].file)
-    if (layer.ok) layers.push({ layer: layer.value, withinMetres: within })
+    if (layer.ok) layers.push({ layer: layer.value, within })
     else problems.push(...layer.problems)
   })
   if (!readyZones.ok || problems.length > 0) return { ok: false, problems }
   const perUnit = metresPerUnit[line.unit]
-  const border = prepareBorder(readyZones.value, {
+  const prepared = prepareBorder(readyZones.value, {
     treated: line.treated,
     snapMetres: line.snap,
     pieceMetres: line.piece * perUnit,
-    barriers: layers,
   })
-  if (!border.ok) return border
+  if (!prepared.ok) return prepared
+  const border = prepared.value
   const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
-  const reachMetres = line.reach === undefined ? undefined : line.reach * perUnit
-  const placed = placeOnBorder(border.value, lon, lat, { metresPerUnit: perUnit, reachMetres }, (done) =>
-    progress?.('placing', done, table.rows),
-  )
-  return { ok: true, value: { ...placed, border: border.value } }
+  const measured = measureUnits(border, lon, lat, (done) => progress?.('placing', done, table.rows))
+  const { placement, setAside, ground, reason, pieces } = eligible(border, measured, {
+    metresPerUnit: perUnit,
+    reachMetres: line.reach === undefined ? undefined : line.reach * perUnit,
+    barriers: layers.map(({ layer, within }) => ({ name: layer.file, share: shareNear(border, layer, within) })),
+  })
+  return { ok: true, value: { placement, setAside, ground, reason, border: { ...border, pieces } } }
 }
 
 function totalMetres(placement: Placement): number {

@@ -1,4 +1,4 @@
-/** Barriers: rivers, railways, motorways. Pieces of border that run along one are set aside (METHODS section 10). */
+/** Layers of lines beside the border (rivers, railways, other jurisdictions), and how much of each piece runs along one. */
 import { flattenEach, polygonToLine } from '@turf/turf'
 import type { Feature, FeatureCollection, LineString, MultiLineString, MultiPolygon, Polygon } from 'geojson'
 import type { Checked, Problem } from '../problem.js'
@@ -6,7 +6,7 @@ import { edgeArrays, setEdge } from './boundaries.js'
 import { edgeLengthMetres } from './geodesy.js'
 import { featuresOf, geometryOf, type RingCoords, shown } from './geojson.js'
 import { localPlane, withinOfSegment } from './localPlane.js'
-import type { Piece } from './pieces.js'
+import type { CutPiece } from './pieces.js'
 import { emptyExtent, rangeProblem } from './positions.js'
 import { turnsTo, unwrapped } from './rings.js'
 import { buildSegmentTree, type Edges, edgesNearEdge, type SegmentTree } from './segmentTree.js'
@@ -91,23 +91,24 @@ export function linesOfLayer(layer: LineLayer): readonly RingCoords[] {
   return layer.lines
 }
 
-/** Share of a piece's length that must run along a barrier for the piece to be set aside. */
-const mostAlong = 0.5
 /** Edges are measured in planes no longer than this. */
 const planeMetres = 1000
 
 /**
- * The pieces with those marked that have more than half their length within `withinMetres` of the layer: the exact
- * interval of every edge within each barrier edge, in planes of at most 1 km, merged. Pieces set aside before stay so.
+ * Share of each piece's length within `withinMetres` of the layer, in the order of the pieces: the exact interval of
+ * every edge within each edge of the layer, in planes of at most 1 km, merged. A layer without lines is near nothing.
+ * Throws RangeError where withinMetres is negative.
  */
-export function setAsideAlong(pieces: readonly Piece[], layer: LineLayer, withinMetres: number): Piece[] {
+export function shareNear(
+  { pieces }: { readonly pieces: readonly CutPiece[] },
+  layer: LineLayer,
+  withinMetres: number,
+): Float64Array {
+  if (!(withinMetres >= 0)) throw new RangeError(`withinMetres must be 0 or more: got ${withinMetres}`)
   const edges = edgesOfLines(layer.lines)
+  if (edges.lon0.length === 0) return new Float64Array(pieces.length)
   const tree = buildSegmentTree(edges)
-  return pieces.map((piece) => {
-    if (piece.setAside !== undefined) return piece
-    const isAlong = shareAlong(piece, edges, tree, withinMetres) > mostAlong
-    return isAlong ? { ...piece, setAside: `barrier ${layer.file}` } : piece
-  })
+  return Float64Array.from(pieces, (piece) => shareAlong(piece, edges, tree, withinMetres))
 }
 
 function edgesOfLines(lines: readonly RingCoords[]): Edges {
@@ -122,7 +123,7 @@ function edgesOfLines(lines: readonly RingCoords[]): Edges {
 }
 
 /** Share of a piece's length within `metres` of the edges. */
-export function shareAlong(piece: Piece, edges: Edges, tree: SegmentTree, metres: number): number {
+export function shareAlong(piece: CutPiece, edges: Edges, tree: SegmentTree, metres: number): number {
   let [near, total] = [0, 0]
   for (let i = 0; i + 1 < piece.coordinates.length; i++) {
     const [[lon0, lat0], [lon1, lat1]] = [piece.coordinates[i], piece.coordinates[i + 1]]

@@ -1,45 +1,57 @@
-/** From zones to the border between treated and untreated ones: shared stretches, pieces, barriers. */
-import { distance } from 'fastest-levenshtein'
+/** From zones to the border between treated and untreated ones, or between zones of different dose. */
 import type { Checked, Problem } from '../problem.js'
-import { type LineLayer, setAsideAlong } from './barriers.js'
 import { type Boundaries, boundariesOf, edgeArrays, setEdge } from './boundaries.js'
 import { joinPaths } from './chains.js'
-import { smallestGap } from './gap.js'
-import { listed, placeText, shown } from './geojson.js'
-import { coincidentMetres, measureNearness } from './nearness.js'
+import { type BorderEnd, type Corner, cornersAt } from './corners.js'
+import { dosesOf, splitsByDose } from './dose.js'
+import { coincidentMetres, measureNearness, type Nearness } from './nearness.js'
+import { noBorder } from './noBorder.js'
+import { outsidePaths } from './outside.js'
 import { overlapProblems } from './overlaps.js'
+import { factsOfPiece } from './pieceFacts.js'
 import { cutIntoPieces, type Piece, stepMetres } from './pieces.js'
 import { buildSegmentTree, type Edges, type SegmentTree } from './segmentTree.js'
-import { type SharedPath, sharedPaths } from './sharedBorders.js'
+import { type Relevance, type SharedPath, sharedPaths } from './sharedBorders.js'
+import { type Treated, treatedZones } from './treated.js'
 import { withoutWhiskers } from './whiskers.js'
 import { buildZoneGrid, type ZoneGrid } from './zoneGrid.js'
 import type { Zones } from './zones.js'
 
+/** Either `treated` or `dose`. */
 export interface BorderOptions {
   /** Names of the treated zones, or the property and value that mark them. */
-  readonly treated: readonly string[] | { readonly property: string; readonly equals: string | number | boolean }
+  readonly treated?: Treated
+  /** A numeric property: borders are those between zones where it differs, the higher dose being the treated side. */
+  readonly dose?: string
+  /** `untreated`: the land outside every zone is an untreated zone named `outside`. By default it is none. */
+  readonly outside?: 'set-aside' | 'untreated'
   /** Boundaries no farther apart than this are one border; at least a millimetre is used. */
   readonly snapMetres: number
   readonly pieceMetres: number
-  readonly barriers: readonly { readonly layer: LineLayer; readonly withinMetres: number }[]
 }
 
-/** What is left of the border after a step. */
-export interface BorderStep {
-  readonly step: string
-  readonly pieces: number
-  readonly km: number
-  /** Pairs of zones. */
-  readonly pairs: number
-}
+/** The name of the land outside every zone, where it is treated as one. */
+export const outsideName = 'outside'
 
-/** The border between treated and untreated zones. Edges run piece after piece, in the order of `pieces`. */
+/** The border, its geometry and facts; what counts of it is decided later (`eligible`). */
 export interface Border {
+  /** As read. */
   readonly zones: Zones
-  /** 1 for a treated zone; in the order of `zones`. */
+  /** Names of the zones in the order of `zones`; last among them `outside` where the land outside is one. */
+  readonly names: readonly string[]
+  /** Index of the zone that the land outside is, or -1. */
+  readonly outsideZone: number
+  /** By `names`: 1 for a treated zone; with doses, 1 for a dose above the lowest. */
   readonly treatedZone: Uint8Array
-  /** By pair of names, then along the pair's border; those set aside among them. */
+  /** By `names`, where the border is between zones of different dose. */
+  readonly doses?: Float64Array
+  /** By pair of zones, then along the pair's border. */
   readonly pieces: readonly Piece[]
+  /** Indices of each piece's two zones. */
+  readonly untreatedOfPiece: Int32Array
+  readonly treatedOfPiece: Int32Array
+  readonly corners: readonly Corner[]
+  /** Edges run piece after piece, in the order of `pieces`. */
   readonly edges: Edges
   readonly tree: SegmentTree
   readonly grid: ZoneGrid
@@ -48,14 +60,13 @@ export interface Border {
   readonly positionMetres: Float64Array
   /** Length of each edge. */
   readonly lengthMetres: Float64Array
-  readonly waterfall: readonly BorderStep[]
 }
 
 /**
  * Finds the border. Nothing in it depends on the order of features or rings, on where a ring starts or which way it
- * runs; only `treatedZone` follows the file. Problems: a treated name that is no zone, nothing treated or nothing
- * untreated, zones that overlap by more than snap, no shared border at all.
- * Throws RangeError where snap is negative or the piece length not positive.
+ * runs; only what is indexed by zone follows the file. Problems: a treated name that is no zone, nothing treated or
+ * nothing untreated, doses missing or all the same, zones that overlap by more than snap, no shared border at all.
+ * Throws RangeError where snap is negative, the piece length not positive, or not one of treated and dose is given.
  */
 export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Border> {
   const { snapMetres, pieceMetres } = options
@@ -63,106 +74,124 @@ export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Bor
   if (!(pieceMetres > 0)) throw new RangeError(`pieceMetres must be above 0: got ${pieceMetres}`)
   const metres = Math.max(snapMetres, coincidentMetres)
   const problems: Problem[] = []
-  const treatedZone = treatedZones(zones, options.treated, problems)
+  const roles = rolesOf(zones, options, problems)
   const order = zones.names.map((_, i) => i).sort((a, b) => (zones.names[a] < zones.names[b] ? -1 : 1))
   const polygons = order.map((zone) => zones.polygons[zone])
-  const names = order.map((zone) => zones.names[zone])
-  const isTreated = Uint8Array.from(order, (zone) => treatedZone[zone])
+  const sortedNames = order.map((zone) => zones.names[zone])
   const boundaries = boundariesOf(polygons)
   const nearness = measureNearness(boundaries, metres)
-  problems.push(...overlapProblems(boundaries, nearness, polygons, names, zones.file, metres))
+  problems.push(...overlapProblems(boundaries, nearness, polygons, sortedNames, zones.file, metres))
   if (problems.length > 0) return { ok: false, problems }
-  const paths = sharedPaths(boundaries, nearness, (own, other) => isTreated[own] > isTreated[other], metres)
-    .map((path) => withoutWhiskers(boundaries, path, metres))
-    .filter((path) => path !== undefined)
-  if (paths.length === 0) return { ok: false, problems: [noBorder(zones.file, boundaries, isTreated, snapMetres)] }
-  let pieces = piecesOfPairs(paths, names, pieceMetres)
-  const waterfall = [stepOf('shared borders', pieces)]
-  for (const { layer, withinMetres } of options.barriers) {
-    pieces = setAsideAlong(pieces, layer, withinMetres)
-    waterfall.push(stepOf(`barrier ${layer.file}`, pieces))
+  const paths = pairPaths(boundaries, nearness, sortedRoles(roles, order), roles.outsideZone, metres)
+  if (paths.length === 0) {
+    const splits = roles.doses ? splitsByDose(roles.doses) : [roles.treatedZone]
+    const who = roles.doses ? 'zones whose dose differs' : 'treated and untreated zones'
+    const sortedSplits = splits.map((split) => Uint8Array.from(order, (zone) => split[zone]))
+    return { ok: false, problems: [noBorder(zones.file, boundaries, who, sortedSplits, snapMetres)] }
   }
-  const grid = buildZoneGrid(zones.polygons)
-  return { ok: true, value: { zones, treatedZone, pieces, ...edgesOfPieces(pieces), grid, waterfall } }
+  const names = roles.outsideZone < 0 ? zones.names : [...zones.names, outsideName]
+  const zoneOf = [...order, roles.outsideZone]
+  const { pieces, ends } = piecesOfPairs(paths, names, zoneOf, roles.doses, pieceMetres, metres)
+  const index = new Map(names.map((name, zone) => [name, zone]))
+  const value = {
+    zones,
+    names,
+    ...roles,
+    pieces,
+    untreatedOfPiece: Int32Array.from(pieces, (piece) => index.get(piece.zones[0]) as number),
+    treatedOfPiece: Int32Array.from(pieces, (piece) => index.get(piece.zones[1]) as number),
+    corners: cornersAt(ends, names, metres),
+    ...edgesOfPieces(pieces),
+    grid: buildZoneGrid(zones.polygons),
+  }
+  return { ok: true, value }
 }
 
-/** Pieces by pair, pairs by untreated and then treated name. Zones are numbered in the order of their names. */
-function piecesOfPairs(paths: readonly SharedPath[], names: readonly string[], pieceMetres: number): Piece[] {
+type Roles = Pick<Border, 'treatedZone' | 'doses' | 'outsideZone'>
+
+function rolesOf(zones: Zones, options: BorderOptions, problems: Problem[]): Roles {
+  const { treated, dose } = options
+  const isOutsideUntreated = options.outside === 'untreated'
+  const { file, names } = zones
+  const outsideZone = isOutsideUntreated ? names.length : -1
+  if (isOutsideUntreated && names.includes(outsideName)) {
+    const found = `a zone named "${outsideName}"`
+    problems.push({ file, what: 'outside: untreated takes the name of a zone', found, todo: 'rename the zone' })
+  }
+  if (treated !== undefined && dose === undefined) {
+    const treatedZone = treatedZones(zones, treated, isOutsideUntreated, problems)
+    return { treatedZone: isOutsideUntreated ? Uint8Array.from([...treatedZone, 0]) : treatedZone, outsideZone }
+  }
+  if (treated !== undefined || dose === undefined) throw new RangeError('give either treated or dose')
+  if (isOutsideUntreated) {
+    const todo = 'leave outside out, or name treated zones instead of a dose'
+    problems.push({ file, what: 'outside: the land outside has no dose', found: 'untreated', todo })
+  }
+  const doses = dosesOf(zones, dose, problems)
+  const lowest = doses.reduce((least, next) => Math.min(least, next), Infinity)
+  return { treatedZone: Uint8Array.from(doses, (own) => (own > lowest ? 1 : 0)), doses, outsideZone }
+}
+
+/** Roles of the zones in the order of their names. */
+function sortedRoles({ treatedZone, doses }: Roles, order: readonly number[]) {
+  const isTreated = Uint8Array.from(order, (zone) => treatedZone[zone])
+  const sorted = doses && Float64Array.from(order, (zone) => doses[zone])
+  const isRelevant: Relevance = sorted
+    ? (own, other) => sorted[own] > sorted[other]
+    : (own, other) => isTreated[own] > isTreated[other]
+  return { isTreated, isRelevant }
+}
+
+/** A stretch of border of a pair of zones, numbered in the order of their names; the land outside comes last. */
+type PairPath = Pick<SharedPath, 'treated' | 'untreated' | 'points'>
+
+function pairPaths(
+  boundaries: Boundaries,
+  nearness: Nearness,
+  { isTreated, isRelevant }: ReturnType<typeof sortedRoles>,
+  outsideZone: number,
+  metres: number,
+): PairPath[] {
+  const pathsWhere = (isWanted: Relevance) =>
+    sharedPaths(boundaries, nearness, isWanted, metres)
+      .map((path) => withoutWhiskers(boundaries, path, metres))
+      .filter((path) => path !== undefined)
+  const paths = pathsWhere(isRelevant)
+  if (outsideZone < 0) return paths
+  const all = [...paths, ...pathsWhere((own) => isTreated[own] === 1)]
+  const outside = outsidePaths(boundaries, nearness, isTreated, all)
+  return [...paths, ...outside.map((path) => ({ ...path, untreated: outsideZone }))]
+}
+
+/** Pieces by pair, pairs by untreated and then treated name, and where the borders of pairs end. */
+function piecesOfPairs(
+  paths: readonly PairPath[],
+  names: readonly string[],
+  zoneOf: readonly number[],
+  doses: Float64Array | undefined,
+  pieceMetres: number,
+  metres: number,
+): { pieces: Piece[]; ends: BorderEnd[] } {
   const sorted = [...paths].sort((a, b) => a.untreated - b.untreated || a.treated - b.treated)
   const pieces: Piece[] = []
+  const ends: BorderEnd[] = []
   for (let from = 0, to = 0; from < sorted.length; from = to) {
     const { untreated, treated } = sorted[from]
     while (to < sorted.length && sorted[to].untreated === untreated && sorted[to].treated === treated) to++
     const chains = joinPaths(sorted.slice(from, to).map((path) => path.points))
-    pieces.push(...cutIntoPieces(chains, [names[untreated], names[treated]], pieceMetres))
-  }
-  return pieces
-}
-
-function stepOf(step: string, pieces: readonly Piece[]): BorderStep {
-  const left = pieces.filter((piece) => piece.setAside === undefined)
-  const km = left.reduce((sum, piece) => sum + piece.lengthMetres, 0) / 1000
-  return { step, pieces: left.length, km, pairs: new Set(left.map((piece) => JSON.stringify(piece.zones))).size }
-}
-
-function treatedZones(zones: Zones, treated: BorderOptions['treated'], problems: Problem[]): Uint8Array {
-  const { file, names, properties } = zones
-  const say = (what: string, found: string, todo: string) => problems.push({ file, what, found, todo })
-  let isTreated: Uint8Array
-  if ('property' in treated) {
-    const { property, equals } = treated
-    isTreated = Uint8Array.from(properties, (own) => (own[property] === equals ? 1 : 0))
-    const values = [...new Set(properties.map((own) => own[property]).filter((value) => value !== undefined))]
-    if (values.length === 0) {
-      const existing = listed([...new Set(properties.flatMap((own) => Object.keys(own)))])
-      say(`treated.property: no zone has ${shown(property)}`, 'nothing', `name one that exists: ${existing}`)
-      return isTreated
+    const zones = [zoneOf[untreated], zoneOf[treated]] as const
+    for (const { points } of chains) {
+      const [first, last] = [points[0], points[points.length - 1]]
+      if (first[0] === last[0] && first[1] === last[1]) continue
+      for (const [lon, lat] of [first, last]) ends.push({ lon, lat, zones })
     }
-    if (!isTreated.includes(1)) {
-      const todo = `name a value that exists: ${listed(values.map(shown))}`
-      say(`treated.equals: no zone has this ${property}`, shown(equals), todo)
-      return isTreated
-    }
-  } else {
-    const known = new Set(names)
-    for (const name of treated) {
-      if (known.has(name)) continue
-      const near = nearestName(name, names)
-      say('treated: no zone has this name', shown(name), near ? `did you mean ${shown(near)}?` : 'name a zone')
-    }
-    isTreated = Uint8Array.from(names, (name) => (treated.includes(name) ? 1 : 0))
-    if (problems.length > 0) return isTreated
-    if (!isTreated.includes(1)) say('treated: no zone is treated', 'an empty list', `name zones: ${listed(names)}`)
-  }
-  if (!isTreated.includes(0))
-    say('treated: every zone is treated', `${names.length} zones`, 'leave at least one zone untreated')
-  return isTreated
-}
-
-/** The zone name with the fewest letters to change, if that is less than half of them; case is no difference. */
-function nearestName(name: string, names: readonly string[]): string | undefined {
-  const wanted = name.toLowerCase()
-  let best: string | undefined
-  let least = Math.max(1, Math.ceil(name.length / 2))
-  for (const candidate of names) {
-    const changes = distance(wanted, candidate.toLowerCase())
-    if (changes < least) {
-      best = candidate
-      least = changes
+    const dose = doses && doses[zones[1]] - doses[zones[0]]
+    for (const piece of cutIntoPieces(chains, [names[zones[0]], names[zones[1]]], pieceMetres)) {
+      const facts = factsOfPiece(piece.coordinates, metres)
+      pieces.push(dose === undefined ? { ...piece, ...facts } : { ...piece, ...facts, dose })
     }
   }
-  return best
-}
-
-function noBorder(file: string, boundaries: Boundaries, isTreated: Uint8Array, snapMetres: number): Problem {
-  const gap = smallestGap(boundaries, isTreated)
-  const place = placeText(gap.lon, gap.lat)
-  const what = 'treated and untreated zones share no border'
-  if (gap.metres <= Math.max(snapMetres, coincidentMetres))
-    return { file, what, found: `they meet only at a corner, near ${place}`, todo: 'check which zones are treated' }
-  const metres = gap.metres >= 10 ? Math.ceil(gap.metres) : Number(gap.metres.toPrecision(2))
-  const todo = `if they are meant to touch, set snap above ${metres}; now it is ${snapMetres}`
-  return { file, what, found: `the smallest gap is ${metres} m, near ${place}`, todo }
+  return { pieces, ends }
 }
 
 /** Edges of the pieces, piece after piece, with a tree over them. */

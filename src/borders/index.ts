@@ -1,12 +1,27 @@
 /** Door of the borders room: GeoJSON zones to the border between treated and untreated ones, and units placed on it. */
 export { type BorderPoint, pointsAlong } from './alongPoints.js'
-export { type LineLayer, linesOfLayer, readLineLayer } from './barriers.js'
-export { type Border, type BorderOptions, type BorderStep, prepareBorder } from './border.js'
+export { type LineLayer, linesOfLayer, readLineLayer, shareNear } from './barriers.js'
+export { type Border, type BorderOptions, outsideName, prepareBorder } from './border.js'
+export type { Corner } from './corners.js'
+export {
+  type EligibilityRules,
+  type Eligible,
+  eligible,
+  type Ground,
+  type LayerShare,
+  type WaterfallStep,
+} from './eligible.js'
 export { edgeLengthMetres, geodesicMetres } from './geodesy.js'
 export type { MultiPolygonCoords } from './geojson.js'
+export { type LayersAlong, layersAlong } from './layersAlong.js'
 export { type LocalMetres, localMetres } from './localMetres.js'
+export { type Measured, measureUnits } from './measured.js'
+export { metresToCorner, type RunnerUps, runnerUps } from './neighbourhood.js'
+export type { PieceFacts } from './pieceFacts.js'
 export type { Piece } from './pieces.js'
-export { type BorderPlacement, type Ground, type PlaceOptions, placeOnBorder } from './place.js'
+export { type BorderPlacement, type PlaceOptions, placeOnBorder } from './place.js'
+export { beyondCap, centroidSuspicion, type RepeatedPoints, repeatedPoints } from './repeated.js'
 export { buildSegmentTree, type Edges, type Nearest, nearestEdges, type SegmentTree } from './segmentTree.js'
+export { type Conflict, type SideRule, zonesByRecord } from './sides.js'
 export { indexUnits, type NearUnits, type UnitIndex, unitsNear } from './unitsNear.js'
 export { readZones, type Zones } from './zones.js'

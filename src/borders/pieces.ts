@@ -1,11 +1,13 @@
 /** Pieces: each pair's border cut into equal parts, the units of fixed effects, clustering, comparison and the map. */
 import type { Chain } from './chains.js'
 import { edgeLengthMetres } from './geodesy.js'
+import type { PieceFacts } from './pieceFacts.js'
 
 /** A stretch of border between an untreated and a treated zone: one polyline, never across a gap. */
-export interface Piece {
+export interface CutPiece {
   /** `UNTREATED | TREATED, piece N`: the id of its line. */
   readonly label: string
+  /** Where zones differ in dose, the lower dose goes first. */
   readonly zones: readonly [untreated: string, treated: string]
   /** Along the pair's border, from 1. */
   readonly piece: number
@@ -14,7 +16,12 @@ export interface Piece {
   readonly coordinates: readonly (readonly [number, number])[]
   /** Where the piece begins along the pair's border, its chains end to end, in metres. */
   readonly startMetres: number
-  /** Why it is not used, e.g. `barrier rivers.geojson`. */
+}
+
+export interface Piece extends CutPiece, PieceFacts {
+  /** Dose on the treated side less dose on the other, where zones differ in dose. */
+  readonly dose?: number
+  /** Why it is not used, e.g. `barrier rivers.geojson`; only where rules were applied (`eligible`). */
   readonly setAside?: string
 }
 
@@ -28,8 +35,8 @@ export function cutIntoPieces(
   chains: readonly Chain[],
   zones: readonly [untreated: string, treated: string],
   pieceMetres: number,
-): Piece[] {
-  const pieces: Piece[] = []
+): CutPiece[] {
+  const pieces: CutPiece[] = []
   let startMetres = 0
   for (const { points } of chains) {
     const lengths = stepMetres(points)

@@ -63,7 +63,7 @@ async function writeMeasured(out: string, study: Study, table: Table, placed: Pl
   const { positionColumns } = await import('../analyze.js')
   const [lon, lat] = positionColumns(study)
   const header = await headerOf(study.records.file, study.records.file)
-  const columns = await measuredColumns(inOrder(table, header.ok ? header.value : []), placed, [lon, lat])
+  const columns = measuredColumns(inOrder(table, header.ok ? header.value : []), placed)
   const target = realPath(resolve(out))
   const name = `.${basename(target)}-${process.pid}-${randomBytes(4).toString('hex')}${extname(target)}`
   const stage = join(dirname(target), name)

@@ -1,40 +1,31 @@
 import { describe, expect, it } from 'vitest'
 import { shareAlong } from '../../src/borders/barriers.js'
-import { linesOfLayer, readLineLayer } from '../../src/borders/index.js'
+import { linesOfLayer, readLineLayer, shareNear } from '../../src/borders/index.js'
 import { buildSegmentTree } from '../../src/borders/segmentTree.js'
 import { problemText } from '../../src/problem.js'
-import { borderOf, box, metresAround, type Point, zone } from './makeZones.js'
+import { borderOf, box, layerOf, metresAround, zone } from './makeZones.js'
 
 const at = metresAround(-3, 52)
-
-function layerOf(...lines: Point[][]) {
-  const features = lines.map((coordinates) => ({
-    type: 'Feature',
-    properties: {},
-    geometry: { type: 'LineString', coordinates },
-  }))
-  const read = readLineLayer({ type: 'FeatureCollection', features }, 'rivers.geojson')
-  if (!read.ok) throw new Error(read.problems.map(problemText).join('\n'))
-  return read.value
-}
 
 const features = [zone('T', box(at, 0, 0, 5000, 4000)), zone('U', box(at, 5000, 0, 9000, 4000))]
 
 describe('barriers', () => {
-  it('set aside the pieces that run along them for more than half their length', () => {
+  it('are near a known share of each piece', () => {
     // 60 m off the border beside all of piece 1 and 40% of piece 2, crossing piece 4
-    const river = layerOf([at(5060, -500), at(5060, 1400), at(9000, 1400)], [at(0, 3500), at(9000, 3500)])
-    const options = { barriers: [{ layer: river, withinMetres: 70 }] }
-    const { pieces, waterfall } = borderOf(features, ['T'], options)
-    expect(pieces.map((piece) => piece.setAside)).toEqual(['barrier rivers.geojson', undefined, undefined, undefined])
-    expect(waterfall.map(({ step, pieces: left, pairs }) => [step, left, pairs])).toEqual([
-      ['shared borders', 4, 1],
-      ['barrier rivers.geojson', 3, 1],
-    ])
-    expect(waterfall[0].km).toBeCloseTo(4, 3)
-    expect(waterfall[1].km).toBeCloseTo(3, 3)
-    const narrow = borderOf(features, ['T'], { barriers: [{ layer: river, withinMetres: 50 }] })
-    expect(narrow.pieces.some((piece) => piece.setAside)).toBe(false)
+    const river = layerOf(
+      'rivers.geojson',
+      [at(5060, -500), at(5060, 1400), at(9000, 1400)],
+      [at(0, 3500), at(9000, 3500)],
+    )
+    const border = borderOf(features, ['T'])
+    const along = Math.sqrt(70 ** 2 - 60 ** 2)
+    const wanted = [1, 0.4 + along / 1000, 0, 0.14]
+    shareNear(border, river, 70).forEach((share, p) => {
+      expect(Math.abs(share - wanted[p])).toBeLessThan(1e-4)
+    })
+    expect([...shareNear(border, river, 50)].map((share) => Number(share.toFixed(4)))).toEqual([0, 0, 0, 0.1])
+    expect([...shareNear(border, { file: 'nothing.geojson', lines: [] }, 50)]).toEqual([0, 0, 0, 0])
+    expect(() => shareNear(border, river, Number.NaN)).toThrow(RangeError)
   })
 
   it('are measured exactly: a river 60 m off half of a piece is within 100 m of 80 m more', () => {

@@ -1,6 +1,14 @@
 /** Zones drawn in metres around a place, for tests. */
 import type { Feature, FeatureCollection, MultiPolygon, Polygon } from 'geojson'
-import { type Border, type BorderOptions, prepareBorder, readZones, type Zones } from '../../src/borders/index.js'
+import {
+  type Border,
+  type BorderOptions,
+  type LineLayer,
+  prepareBorder,
+  readLineLayer,
+  readZones,
+  type Zones,
+} from '../../src/borders/index.js'
 import { problemText } from '../../src/problem.js'
 
 export type Point = [number, number]
@@ -44,19 +52,53 @@ export function zonesOf(...features: ZoneFeature[]): Zones {
   return read.value
 }
 
-export function tryBorder(features: ZoneFeature[], treated: string[], options: Partial<BorderOptions> = {}) {
-  return prepareBorder(zonesOf(...features), { treated, snapMetres: 2, pieceMetres: 1000, barriers: [], ...options })
+export function tryBorder(
+  features: ZoneFeature[],
+  treated: string[] | undefined,
+  options: Partial<BorderOptions> = {},
+) {
+  return prepareBorder(zonesOf(...features), { treated, snapMetres: 2, pieceMetres: 1000, ...options })
 }
 
-export function borderOf(features: ZoneFeature[], treated: string[], options: Partial<BorderOptions> = {}): Border {
+export function borderOf(
+  features: ZoneFeature[],
+  treated: string[] | undefined,
+  options: Partial<BorderOptions> = {},
+): Border {
   const border = tryBorder(features, treated, options)
   if (!border.ok) throw new Error(border.problems.map(problemText).join('\n'))
   return border.value
 }
 
-export function problemsOf(features: ZoneFeature[], treated: string[], options: Partial<BorderOptions> = {}): string {
+export function problemsOf(
+  features: ZoneFeature[],
+  treated: string[] | undefined,
+  options: Partial<BorderOptions> = {},
+): string {
   const border = tryBorder(features, treated, options)
   return border.ok ? '' : border.problems.map(problemText).join('\n')
+}
+
+/** A zone with other properties beside its name. */
+export function withProperties(feature: ZoneFeature, properties: Record<string, unknown>): ZoneFeature {
+  return { ...feature, properties: { ...feature.properties, ...properties } }
+}
+
+/** Lines of a layer that must be readable. */
+export function layerOf(file: string, ...lines: Point[][]): LineLayer {
+  const features = lines.map((coordinates) => ({
+    type: 'Feature',
+    properties: {},
+    geometry: { type: 'LineString', coordinates },
+  }))
+  const read = readLineLayer({ type: 'FeatureCollection', features }, file)
+  if (!read.ok) throw new Error(read.problems.map(problemText).join('\n'))
+  return read.value
+}
+
+/** Longitudes and latitudes of points, as columns. */
+export function columns(points: readonly (readonly number[])[]): [lon: Float64Array, lat: Float64Array] {
+  return [Float64Array.from(points, (p) => p[0]), Float64Array.from(points, (p) => p[1])]
 }
 
 /** Metres of border by pair of zones. */

@@ -1,8 +1,9 @@
 import { describe, expect, it } from 'vitest'
 import { joinPaths } from '../../src/borders/chains.js'
 import { edgeLengthMetres } from '../../src/borders/index.js'
+import { factsOfPiece } from '../../src/borders/pieceFacts.js'
 import { cutIntoPieces } from '../../src/borders/pieces.js'
-import { borderOf, closed, type Point, zone } from './makeZones.js'
+import { borderOf, closed, metresAround, type Point, zone } from './makeZones.js'
 
 const pair = ['U', 'T'] as const
 
@@ -209,5 +210,59 @@ describe('chains', () => {
       [180, 1],
       [181, 1],
     ])
+  })
+})
+
+describe('how straight a piece is', () => {
+  const at = metresAround(3, 48)
+  const circle = (degrees: number) =>
+    Array.from({ length: 181 }, (_, i) => {
+      const angle = (((i / 180) * degrees - 90) * Math.PI) / 180
+      return at(1000 * Math.cos(angle), 1000 * Math.sin(angle))
+    })
+  /** 0.5 m to and fro every 2 m: the jagged edge of a raster. */
+  const jagged = Array.from({ length: 501 }, (_, i) => at(2 * i, i % 2 ? 0.5 : 0))
+
+  it.each([
+    ['a straight line', [at(0, 0), at(400, 300), at(800, 600)], 1, 0],
+    ['a right angle', [at(0, 0), at(600, 0), at(600, 400)], Math.sqrt(0.52), 90],
+    ['a right angle near the end', [at(0, 0), at(850, 0), at(850, 150)], Math.hypot(850, 150) / 1000, 90],
+    ['there and back again', [at(0, 0), at(500, 0), at(500, 20), at(0, 20)], 20 / 1020, 180],
+    // stretches at both ends turn by nine tenths of the arc
+    ['half a circle', circle(180), 2 / Math.PI, 162],
+    ['a quarter of a circle', circle(90), Math.sqrt(2) / (Math.PI / 2), 81],
+    ['a jagged line', jagged, 1000 / (500 * Math.hypot(2, 0.5)), 0],
+    ['an S of two quarter turns', [at(0, 0), at(400, 0), at(400, 300), at(800, 300)], Math.hypot(800, 300) / 1100, 90],
+    ['a bump undone within a tenth', [at(0, 0), at(480, 0), at(500, 10), at(520, 0), at(1000, 0)], 1000 / 1004.72, 0],
+  ])('%s', (_, points, straightness, turn) => {
+    const facts = factsOfPiece(points, 2)
+    expect(Math.abs(facts.straightness - straightness)).toBeLessThan(2e-4)
+    expect(Math.abs(facts.largestTurnDegrees - turn)).toBeLessThan(turn === 0 ? 12 : 1.5)
+  })
+
+  it('knows no direction of reading, and no turn of the map', () => {
+    const points = [at(0, 0), at(500, 20), at(700, 400), at(650, 900)]
+    const turned = points.map((_, i) => {
+      const [x, y] = [
+        [0, 0],
+        [500, 20],
+        [700, 400],
+        [650, 900],
+      ][i]
+      return at(x * 0.6 - y * 0.8, x * 0.8 + y * 0.6)
+    })
+    const given = factsOfPiece(points, 2)
+    for (const other of [[...points].reverse(), turned]) {
+      const facts = factsOfPiece(other, 2)
+      expect(facts.straightness).toBeCloseTo(given.straightness, 3)
+      expect(Math.abs(facts.largestTurnDegrees - given.largestTurnDegrees)).toBeLessThan(0.05)
+    }
+  })
+
+  it('takes stretches of two tolerances on short pieces, at most half of them', () => {
+    // 40 m with 4 m steps of 1 m: a drawing error at a tolerance of 5 m
+    const steps = Array.from({ length: 21 }, (_, i) => at(2 * i, Math.floor(i / 2) % 2))
+    expect(factsOfPiece(steps, 0).largestTurnDegrees).toBeGreaterThan(15)
+    expect(factsOfPiece(steps, 100).largestTurnDegrees).toBeLessThan(10)
   })
 })

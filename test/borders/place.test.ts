@@ -2,7 +2,7 @@ import { readFileSync } from 'node:fs'
 import { booleanPointInPolygon } from '@turf/turf'
 import type { Feature, Polygon } from 'geojson'
 import { describe, expect, it } from 'vitest'
-import { type Border, placeOnBorder, prepareBorder, readLineLayer, readZones } from '../../src/borders/index.js'
+import { type Border, placeOnBorder, prepareBorder, readZones } from '../../src/borders/index.js'
 import { bruteForceMetres, edgesOf } from './distanceBruteForce.js'
 import { borderOf, box, closed, metresAround, seeded, zone } from './makeZones.js'
 import { states } from './usStates.js'
@@ -26,21 +26,7 @@ function rows(name: string): Record<string, string>[] {
 
 describe('units on a border', () => {
   const features = [zone('T', box(at, 0, 0, 5000, 4000)), zone('U', box(at, 4998, 0, 9000, 4000))]
-  const river = readLineLayer(
-    {
-      type: 'FeatureCollection',
-      features: [
-        {
-          type: 'Feature',
-          properties: {},
-          geometry: { type: 'LineString', coordinates: [at(5050, 2990), at(5050, 4010)] },
-        },
-      ],
-    },
-    'river.geojson',
-  )
-  if (!river.ok) throw new Error('the river must be readable')
-  const border = borderOf(features, ['T'], { snapMetres: 3, barriers: [{ layer: river.value, withinMetres: 80 }] })
+  const border = borderOf(features, ['T'], { snapMetres: 3 })
 
   it('get a signed distance, a line and a foot, or one reason', () => {
     const points = [
@@ -51,7 +37,6 @@ describe('units on a border', () => {
       at(5000, 1700), // on the border
       at(-50, 1000), // outside
       at(4999, 1000), // in the overlap
-      at(4990, 3500), // nearest piece along the river
       at(3000, 500), // too far
       [12, 95],
     ]
@@ -61,7 +46,7 @@ describe('units on a border', () => {
     expect(placement.x[0]).toBeCloseTo(100, 1)
     expect(placement.x[1]).toBeCloseTo(-200, 1)
     expect([...placement.line].map((line) => placement.lines[line].id)).toEqual(['U | T, piece 2', 'U | T, piece 1'])
-    expect(placement.lines).toHaveLength(3)
+    expect(placement.lines).toHaveLength(4)
     expect(placement.lines[1]).toMatchObject({ label: 'U | T, piece 2', zones: ['U', 'T'], piece: 2 })
     expect(placement.lines[1].lengthMetres).toBeCloseTo(1000, 0)
     expect(Object.fromEntries(setAside)).toEqual({
@@ -69,15 +54,15 @@ describe('units on a border', () => {
       'exactly on the border': 1,
       'in no zone': 1,
       'in more than one zone': 1,
-      'nearest piece set aside: barrier': 1,
       'beyond reach': 1,
       'position out of range': 1,
     })
-    expect([...ground.zone]).toEqual([0, 1, -1, -1, expect.any(Number), -1, -1, 0, 0, -1])
-    expect([...ground.piece]).toEqual([1, 0, -1, -1, -1, -1, -1, -1, -1, -1])
+    expect([...ground.zone]).toEqual([0, 1, -1, -1, expect.any(Number), -1, -2, 0, -1])
+    expect([...ground.piece]).toEqual([1, 0, -1, -1, 1, expect.any(Number), 0, 0, -2])
     const foot = at(5000, 1500)
     expect(Math.abs(ground.footLon[0] - foot[0]) + Math.abs(ground.footLat[0] - foot[1])).toBeLessThan(1e-6)
     expect(ground.positionMetres[0]).toBeCloseTo(1500, 0)
+    expect(ground.positionMetres[7]).toBeCloseTo(500, 0)
     expect(Number.isNaN(ground.positionMetres[8])).toBe(true)
   })
 
@@ -148,7 +133,7 @@ describe('United States counties of 1980', () => {
   const treated = ['Maine', 'Minnesota', 'North Dakota', 'Oregon', 'Wisconsin']
   const read = readZones(states, 'states.geojson', 'name')
   if (!read.ok) throw new Error('states must be readable')
-  const made = prepareBorder(read.value, { treated, snapMetres: 10, pieceMetres: 50_000, barriers: [] })
+  const made = prepareBorder(read.value, { treated, snapMetres: 10, pieceMetres: 50_000 })
   if (!made.ok) throw new Error(made.problems[0].what)
   const border = made.value
   const counties = rows('turnout-1980/counties.csv').map(({ lon, lat }) => [Number(lon), Number(lat)])
@@ -216,7 +201,7 @@ describe('flats of Athens', () => {
   )
   const read = readZones(districts, 'districts.geojson', 'district')
   if (!read.ok) throw new Error('districts must be readable')
-  const made = prepareBorder(read.value, { treated: ['1', '3'], snapMetres: 2, pieceMetres: 500, barriers: [] })
+  const made = prepareBorder(read.value, { treated: ['1', '3'], snapMetres: 2, pieceMetres: 500 })
   if (!made.ok) throw new Error(made.problems[0].what)
   const flats = rows('athens-flats/flats.csv')
   const { placement, ground, setAside } = place(

@@ -377,7 +377,7 @@ describe('United States', () => {
     ['Louisiana', 'Mississippi'],
   ])('%s | %s is as long as the shared arcs', (untreated, treated) => {
     if (!read.ok) throw new Error('states must be readable')
-    const border = prepareBorder(read.value, { treated: [treated], snapMetres: 10, pieceMetres: 50_000, barriers: [] })
+    const border = prepareBorder(read.value, { treated: [treated], snapMetres: 10, pieceMetres: 50_000 })
     if (!border.ok) throw new Error(border.problems[0].what)
     const wanted = total(sharedArcs(untreated, treated).coordinates)
     expect(Math.abs(lengths(border.value)[`${untreated} | ${treated}`] - wanted)).toBeLessThan(0.001)
@@ -394,7 +394,7 @@ describe('treated zones', () => {
   it('can be marked by a property', () => {
     const zones = zonesOf(...pair)
     const marked = { ...zones, properties: [{ levy: 'new' }, { levy: 'old' }] }
-    const options = { snapMetres: 1, pieceMetres: 1e6, barriers: [] }
+    const options = { snapMetres: 1, pieceMetres: 1e6 }
     const border = prepareBorder(marked, { ...options, treated: { property: 'levy', equals: 'new' } })
     expect(border.ok && [...border.value.treatedZone]).toEqual([1, 0])
     const wrong = prepareBorder(marked, { ...options, treated: { property: 'levy', equals: 'nwe' } })
