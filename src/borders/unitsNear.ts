@@ -39,12 +39,13 @@ export function indexUnits(lonDegrees: Float64Array, latDegrees: Float64Array): 
 export function unitsNear({ lon, lat, tree }: UnitIndex, lon0: number, lat0: number, radiusMetres: number): NearUnits {
   if (!(radiusMetres > 0)) throw new RangeError(`radiusMetres must be above 0: got ${radiusMetres}`)
   const found = tree ? boxesAround(lon0, lat0, radiusMetres).flatMap((box) => tree.search(...box)) : []
-  const place = localMetres(
-    lon0,
-    lat0,
-    Float64Array.from(found, (i) => lon[i]),
-    Float64Array.from(found, (i) => lat[i]),
-  )
+  const foundLon = new Float64Array(found.length)
+  const foundLat = new Float64Array(found.length)
+  for (let i = 0; i < found.length; i++) {
+    foundLon[i] = lon[found[i]]
+    foundLat[i] = lat[found[i]]
+  }
+  const place = localMetres(lon0, lat0, foundLon, foundLat)
   const index = new Int32Array(found.length)
   let kept = 0
   for (let i = 0; i < found.length; i++) {

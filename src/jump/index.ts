@@ -16,7 +16,16 @@ export { fitLocal, fittedAt, kernelCurve, type LocalFit } from './localPolynomia
 export { neighbourResidualsOf } from './neighbours.js'
 export { type CarriedOver, planeBandwidth, planeBandwidthRule } from './planeBandwidth.js'
 export { buildPlaneSample, type PlaneEntries, type PlaneSample } from './planeSample.js'
-export { type BySide, buildSample, type Entries, type Sample, type Side, withOutcomes } from './sample.js'
+export {
+  type BySide,
+  buildSample,
+  type Entries,
+  pickCodes,
+  pickNumbers,
+  type Sample,
+  type Side,
+  withOutcomes,
+} from './sample.js'
 export {
   jumpAtPoint,
   type PlaneBandwidths,

@@ -6,11 +6,12 @@
  * H = XMX'W. With u_g = B_g^(−1/2) l_g, B_g = [(I−H)(I−H)']_gg, the influence of cluster g is ψ_g = u_g'e_g.
  * B_g = I + Z S Z' with Z = [X_g, W_g X_g] and S = [MQM, −M; −M, 0], Q = X'W²X, so its root costs n_g times the square of
  * the number of terms, however large the cluster.
- * ν = (Σ_g p_g'p_g)²/Σ_gh (p_g'p_h)², p_g the column (I−H)'u_g: from a_g = X_g'u_g and b_g = X_g'W_g u_g alone.
+ * ν = (Σ_g p_g'p_g)²/Σ_gh (p_g'p_h)², p_g the column (I−H)'u_g, with
+ * p_g'p_h = [g = h] u_g'u_g − b_g'M a_h − a_g'M b_h + a_g'MQM a_h from a_g = X_g'u_g and b_g = X_g'W_g u_g alone.
  */
 import { choleskyInverse, symmetricEigen } from '../math/index.js'
 import type { Influence } from './influence.js'
-import { type PlaneFit, planeRows, termCount } from './planeFit.js'
+import { type PlaneFit, termCount } from './planeFit.js'
 import type { PlaneSide } from './planeSample.js'
 
 /** One side: its fit, and by unit of positive weight l (signed) and the residual. */
@@ -38,51 +39,48 @@ export function biasReducedClusters(parts: readonly ClusterPart[]): BiasReduced 
   const members = clustersOf(parts)
   const key = Int32Array.from(members.keys()).sort()
   const psi = new Float64Array(key.length)
-  const sums: Float64Array[][] = []
+  const width = 2 * size
+  const sums: Float64Array[] = []
   const squares = new Float64Array(key.length)
   key.forEach((cluster, g) => {
-    const own = parts.map((part, s) => ownRows(part, sides[s].rows, (members.get(cluster) as number[][])[s], size))
+    const own = parts.map((part, s) => ownRows(part, sides[s], (members.get(cluster) as number[][])[s], size))
     const u = reducedWeights(own, sides, size)
-    sums.push(
-      own.map((side, s) => {
-        // a_g and b_g of this side, one after the other
-        const sum = new Float64Array(2 * size)
-        side.units.forEach((unit, i) => {
-          psi[g] += u[s][i] * parts[s].residual[unit]
-          squares[g] += u[s][i] ** 2
-          for (let a = 0; a < 2 * size; a++) sum[a] += u[s][i] * side.z[i * 2 * size + a]
-        })
-        return sum
-      }),
-    )
+    const sum = new Float64Array(parts.length * width)
+    own.forEach(({ units, z }, s) => {
+      for (let i = 0; i < units.length; i++) {
+        psi[g] += u[s][i] * parts[s].residual[units[i]]
+        squares[g] += u[s][i] ** 2
+        for (let a = 0; a < width; a++) sum[s * width + a] += u[s][i] * z[i * width + a]
+      }
+    })
+    sums.push(sum)
   })
   return { influence: { key, psi }, degreesOfFreedom: freedomOf(sums, squares, sides, size), clusters: key.length }
 }
 
 /** With kernel weights in units of the largest, which leaves B, u and ν as they are. */
 interface SideMatrices {
-  /** count × (terms, then the kernel weight). */
-  readonly rows: Float64Array
+  /** Kernel weights. */
+  readonly k: Float64Array
   /** M */
   readonly inverse: Float64Array
   /** MQM */
   readonly spread: Float64Array
 }
 
-function sideOf({ side, fit }: ClusterPart, size: number): SideMatrices {
-  const rows = planeRows(side, fit)
+function sideOf({ fit }: ClusterPart, size: number): SideMatrices {
   let largest = 0
-  for (let at = size; at < rows.length; at += size + 1) largest = Math.max(largest, rows[at])
-  for (let at = size; at < rows.length; at += size + 1) rows[at] /= largest
+  for (let i = 0; i < fit.count; i++) largest = Math.max(largest, fit.k[i])
+  const k = fit.k.map((value) => value / largest)
   const inverse = choleskyInverse(fit.factor, size).map((value) => value * largest)
   const middle = new Float64Array(size * size)
-  for (let i = 0; i < fit.count; i++) {
-    const at = i * (size + 1)
-    const square = rows[at + size] ** 2
-    for (let a = 0; a < size; a++)
-      for (let b = 0; b < size; b++) middle[a * size + b] += square * rows[at + a] * rows[at + b]
+  for (let i = 0, at = 0; i < fit.count; i++, at += size) {
+    for (let a = 0; a < size; a++) {
+      const weighted = k[i] * k[i] * fit.rows[at + a]
+      for (let b = 0; b < size; b++) middle[a * size + b] += weighted * fit.rows[at + b]
+    }
   }
-  return { rows, inverse, spread: product(inverse, product(middle, inverse, size), size) }
+  return { k, inverse, spread: product(inverse, product(middle, inverse, size), size) }
 }
 
 /** Units of each cluster, by side. */
@@ -110,16 +108,19 @@ interface OwnRows {
   readonly l: Float64Array
 }
 
-function ownRows({ weights }: ClusterPart, rows: Float64Array, units: readonly number[], size: number): OwnRows {
+function ownRows({ fit, weights }: ClusterPart, { k }: SideMatrices, units: readonly number[], size: number): OwnRows {
   const z = new Float64Array(units.length * 2 * size)
-  units.forEach((unit, i) => {
-    const k = rows[unit * (size + 1) + size]
+  const l = new Float64Array(units.length)
+  for (let i = 0; i < units.length; i++) {
+    const unit = units[i]
+    l[i] = weights[unit]
     for (let a = 0; a < size; a++) {
-      z[i * 2 * size + a] = rows[unit * (size + 1) + a]
-      z[i * 2 * size + size + a] = k * rows[unit * (size + 1) + a]
+      const term = fit.rows[unit * size + a]
+      z[i * 2 * size + a] = term
+      z[i * 2 * size + size + a] = k[unit] * term
     }
-  })
-  return { units, z, l: Float64Array.from(units, (unit) => weights[unit]) }
+  }
+  return { units, z, l }
 }
 
 /** u = B^(−1/2) l of one cluster. The sides share no term, so B has a block for each side. */
@@ -127,56 +128,92 @@ function reducedWeights(own: readonly OwnRows[], sides: readonly SideMatrices[],
   return own.map(({ z, l }, s) => {
     if (l.length === 0) return l
     const width = 2 * size
-    const { basis, rank, root } = orthonormal(z, l.length, width)
-    // B in the basis: I + root' S root, root = P Γ^(1/2)
-    const inner = new Float64Array(rank * rank)
-    const folded = foldedRoot(root, rank, sides[s], size)
-    for (let a = 0; a < rank; a++) {
-      for (let b = 0; b < rank; b++) {
-        let value = a === b ? 1 : 0
-        for (let c = 0; c < width; c++) value += root[c * rank + a] * folded[c * rank + b]
-        inner[a * rank + b] = value
+    const gram = new Float64Array(width * width)
+    const along = new Float64Array(width)
+    for (let i = 0, at = 0; i < l.length; i++, at += width) {
+      for (let a = 0; a < width; a++) {
+        along[a] += z[at + a] * l[i]
+        for (let b = 0; b <= a; b++) gram[a * width + b] += z[at + a] * z[at + b]
       }
     }
-    const { values, vectors } = symmetricEigen(inner, rank)
-    const part = new Float64Array(rank)
-    for (let i = 0; i < l.length; i++) for (let a = 0; a < rank; a++) part[a] += basis[i * rank + a] * l[i]
-    const change = new Float64Array(rank)
-    for (let k = 0; k < rank; k++) {
-      let along = 0
-      for (let a = 0; a < rank; a++) along += vectors[a * rank + k] * part[a]
-      const stretch = values[k] > smallestShare ? 1 / Math.sqrt(values[k]) - 1 : -1
-      for (let a = 0; a < rank; a++) change[a] += stretch * along * vectors[a * rank + k]
-    }
+    for (let a = 0; a < width; a++) for (let b = 0; b < a; b++) gram[b * width + a] = gram[a * width + b]
+    const change = bySeries(gram, along, sides[s], size) ?? byEigenvalues(gram, along, sides[s], size)
     return l.map((value, i) => {
       let added = 0
-      for (let a = 0; a < rank; a++) added += basis[i * rank + a] * change[a]
+      for (let a = 0; a < width; a++) added += z[i * width + a] * change[a]
       return value + added
     })
   })
 }
 
-/** Z = basis · root', the basis orthonormal (n × rank), root = P Γ^(1/2) from the eigenvalues Γ of Z'Z. */
-function orthonormal(z: Float64Array, n: number, width: number) {
-  const gram = new Float64Array(width * width)
-  for (let i = 0; i < n; i++) {
-    for (let a = 0; a < width; a++)
-      for (let b = 0; b <= a; b++) gram[a * width + b] += z[i * width + a] * z[i * width + b]
+const longestSeries = 150
+
+/**
+ * c with B^(−1/2) l = l + Z c, by (I + E)^(−1/2) = Σ binom(−1/2, j) E^j, E = Z S Z', so that every term is Z times a short
+ * vector: c_j = binom(−1/2, j) (SG)^(j−1) S Z'l, G = Z'Z. Ends at 1e-15 of the first term; undefined where a cluster
+ * decides so much of the fit that the series is long.
+ */
+function bySeries(gram: Float64Array, along: Float64Array, side: SideMatrices, size: number): Float64Array | undefined {
+  const width = 2 * size
+  let term = foldedRoot(along, 1, side, size)
+  const change = new Float64Array(width)
+  const image = new Float64Array(width)
+  let binomial = 1
+  let first = 0
+  for (let j = 1; j <= longestSeries; j++) {
+    binomial *= (0.5 - j) / j
+    let length = 0
+    for (let a = 0; a < width; a++) {
+      change[a] += binomial * term[a]
+      image[a] = 0
+      for (let b = 0; b < width; b++) image[a] += gram[a * width + b] * term[b]
+      length += term[a] * image[a]
+    }
+    if (j === 1) first = length
+    if (!(length > 1e-30 * first)) return change
+    term = foldedRoot(image, 1, side, size)
   }
-  const { values, vectors } = symmetricEigen(gram, width)
+  return undefined
+}
+
+/** The same by the eigenvalues of B in an orthonormal basis of Z; directions of eigenvalue 0 are taken out (pseudo-inverse). */
+function byEigenvalues(gram: Float64Array, along: Float64Array, side: SideMatrices, size: number): Float64Array {
+  const width = 2 * size
+  // Z = basis · root', basis = Z · toBasis orthonormal, from the eigenvalues Γ of Z'Z: root = P Γ^(1/2), toBasis = P Γ^(−1/2)
+  const ofGram = symmetricEigen(gram, width)
   const kept: number[] = []
-  for (let k = 0; k < width; k++) if (values[k] > smallestShare * values[width - 1]) kept.push(k)
+  for (let k = 0; k < width; k++) if (ofGram.values[k] > smallestShare * ofGram.values[width - 1]) kept.push(k)
   const rank = kept.length
   const root = new Float64Array(width * rank)
-  const basis = new Float64Array(n * rank)
+  const toBasis = new Float64Array(width * rank)
   kept.forEach((k, a) => {
-    const length = Math.sqrt(values[k])
-    for (let c = 0; c < width; c++) root[c * rank + a] = vectors[c * width + k] * length
-    for (let i = 0; i < n; i++) {
-      for (let c = 0; c < width; c++) basis[i * rank + a] += (z[i * width + c] * vectors[c * width + k]) / length
+    const length = Math.sqrt(ofGram.values[k])
+    for (let c = 0; c < width; c++) {
+      root[c * rank + a] = ofGram.vectors[c * width + k] * length
+      toBasis[c * rank + a] = ofGram.vectors[c * width + k] / length
     }
   })
-  return { basis, rank, root }
+  const folded = foldedRoot(root, rank, side, size)
+  const inner = new Float64Array(rank * rank)
+  const part = new Float64Array(rank)
+  for (let a = 0; a < rank; a++) {
+    inner[a * rank + a] = 1
+    for (let c = 0; c < width; c++) {
+      part[a] += toBasis[c * rank + a] * along[c]
+      for (let b = 0; b < rank; b++) inner[a * rank + b] += root[c * rank + a] * folded[c * rank + b]
+    }
+  }
+  const { values, vectors } = symmetricEigen(inner, rank)
+  const change = new Float64Array(width)
+  for (let k = 0; k < rank; k++) {
+    let projected = 0
+    for (let a = 0; a < rank; a++) projected += vectors[a * rank + k] * part[a]
+    const stretch = (values[k] > smallestShare ? 1 / Math.sqrt(values[k]) - 1 : -1) * projected
+    for (let a = 0; a < rank; a++) {
+      for (let c = 0; c < width; c++) change[c] += stretch * vectors[a * rank + k] * toBasis[c * rank + a]
+    }
+  }
+  return change
 }
 
 /** S · root, S = [MQM, −M; −M, 0]. */
@@ -194,26 +231,41 @@ function foldedRoot(root: Float64Array, rank: number, { inverse, spread }: SideM
   return folded
 }
 
-/** ν; p_g'p_h = [g = h] u_g'u_g − b_g'M a_h − b_h'M a_g + a_g'MQM a_h, summed over the sides. */
+/**
+ * ν. p_g'p_h = [g = h] u_g'u_g + x_gh, x_gh = v_g'S v_h with v_g = (a_g, b_g) of the sides one after the other, so the squares
+ * add up to Σ_g u_g'u_g (u_g'u_g + 2 x_gg) + tr(STST), T = Σ_g v_g v_g': no pairs of clusters.
+ */
 function freedomOf(
-  sums: readonly Float64Array[][],
+  sums: readonly Float64Array[],
   squares: Float64Array,
   sides: readonly SideMatrices[],
   size: number,
 ): number {
-  const folded = sums.map((bySide) => bySide.map((sum, s) => foldedRoot(sum, 1, sides[s], size)))
+  const block = 2 * size
+  const width = block * sides.length
+  const crossed = new Float64Array(width * width)
   let trace = 0
   let total = 0
   for (let g = 0; g < sums.length; g++) {
-    for (let h = 0; h <= g; h++) {
-      let value = g === h ? squares[g] : 0
-      for (let s = 0; s < sides.length; s++) {
-        for (let a = 0; a < 2 * size; a++) value += sums[g][s][a] * folded[h][s][a]
-      }
-      if (g === h) trace += value
-      total += g === h ? value * value : 2 * value * value
+    const sum = sums[g]
+    let own = 0
+    sides.forEach((side, s) => {
+      const folded = foldedRoot(sum.subarray(s * block, (s + 1) * block), 1, side, size)
+      for (let a = 0; a < block; a++) own += sum[s * block + a] * folded[a]
+    })
+    trace += squares[g] + own
+    total += squares[g] * (squares[g] + 2 * own)
+    for (let a = 0; a < width; a++) {
+      if (sum[a] === 0) continue
+      for (let b = 0; b < width; b++) crossed[a * width + b] += sum[a] * sum[b]
     }
   }
+  const folded = new Float64Array(width * width)
+  sides.forEach((side, s) => {
+    const from = s * block * width
+    folded.set(foldedRoot(crossed.subarray(from, from + block * width), width, side, size), from)
+  })
+  for (let a = 0; a < width; a++) for (let b = 0; b < width; b++) total += folded[a * width + b] * folded[b * width + a]
   return (trace * trace) / total
 }
 

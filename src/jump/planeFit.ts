@@ -17,6 +17,10 @@ export interface PlaneFit {
   readonly h: number
   /** Units of positive weight: the first `count` of the side. */
   readonly count: number
+  /** Terms of each unit of the fit, count × termCount(order), row-major. */
+  readonly rows: Float64Array
+  /** Kernel weight of each unit of the fit, without the constants that cancel. */
+  readonly k: Float64Array
   /** Cholesky factor of the moments of the terms, row-major. */
   readonly factor: Float64Array
   /** Of the terms, in outcome units. */
@@ -35,16 +39,16 @@ export function termCount(order: number): number {
   return ((order + 1) * (order + 2)) / 2
 }
 
-/** Writes the terms at (u, v) to `row`: 1, then for each degree d the products u^d, u^(d−1)v, …, v^d. */
-export function fillTerms(order: number, u: number, v: number, row: Float64Array): void {
-  row[0] = 1
-  let previous = 0
-  let at = 1
+/** Writes the terms at (u, v) to row[at …]: 1, then for each degree d the products u^d, u^(d−1)v, …, v^d. */
+export function fillTerms(order: number, u: number, v: number, row: Float64Array, at = 0): void {
+  row[at] = 1
+  let previous = at
+  let next = at + 1
   for (let degree = 1; degree <= order; degree++) {
-    for (let j = 0; j < degree; j++) row[at + j] = row[previous + j] * u
-    row[at + degree] = row[at - 1] * v
-    previous = at
-    at += degree + 1
+    for (let j = 0; j < degree; j++) row[next + j] = row[previous + j] * u
+    row[next + degree] = row[next - 1] * v
+    previous = next
+    next += degree + 1
   }
 }
 
@@ -54,50 +58,39 @@ export function fitPlane(side: PlaneSide, order: number, h: number, kernel: Kern
   const size = termCount(order)
   const count = countWithin(side.t, h, kernel)
   if (count <= size) return { ok: false, reason: `only ${count} units, a fit of ${size} terms needs ${size + 1}` }
+  const { rows, k } = weightedRows(side, order, h, kernel, count)
   const moments = new Float64Array(size * size)
   const coefficients = new Float64Array(size)
-  forEachUnit(side, order, h, kernel, count, (i, k, row) => {
+  for (let i = 0, at = 0; i < count; i++, at += size) {
     for (let a = 0; a < size; a++) {
-      const weighted = k * row[a]
+      const weighted = k[i] * rows[at + a]
       coefficients[a] += weighted * side.y[i]
-      for (let b = 0; b <= a; b++) moments[a * size + b] += weighted * row[b]
+      for (let b = 0; b <= a; b++) moments[a * size + b] += weighted * rows[at + b]
     }
-  })
+  }
   if (!(choleskyInPlace(moments, size) > smallestCondition)) {
     return { ok: false, reason: `units too nearly on a line for a fit of order ${order} in two coordinates` }
   }
   choleskySolveInPlace(moments, size, coefficients)
-  return { ok: true, fit: { order, kernel, h, count, factor: moments, coefficients } }
+  return { ok: true, fit: { order, kernel, h, count, rows, k, factor: moments, coefficients } }
 }
 
-/** Calls `visit` with each of the first `count` units, its kernel weight and its terms (one array, written anew). */
-function forEachUnit(
-  side: PlaneSide,
+function weightedRows(
+  { t, w, eastMetres, northMetres }: PlaneSide,
   order: number,
   h: number,
   kernel: Kernel,
   count: number,
-  visit: (i: number, k: number, row: Float64Array) => void,
-): void {
+) {
   const { linear, square } = kernelCurve(h, kernel)
-  const { t, w, eastMetres, northMetres } = side
-  const row = new Float64Array(termCount(order))
+  const size = termCount(order)
+  const rows = new Float64Array(count * size)
+  const k = new Float64Array(count)
   for (let i = 0; i < count; i++) {
-    fillTerms(order, eastMetres[i] / h, northMetres[i] / h, row)
-    const k = 1 + t[i] * (linear + t[i] * square)
-    visit(i, w === null ? k : k * w[i], row)
+    fillTerms(order, eastMetres[i] / h, northMetres[i] / h, rows, i * size)
+    k[i] = (1 + t[i] * (linear + t[i] * square)) * (w === null ? 1 : w[i])
   }
-}
-
-/** Terms and, last, the kernel weight of each unit of the fit: count × (terms + 1), row-major. */
-export function planeRows(side: PlaneSide, fit: PlaneFit): Float64Array {
-  const width = termCount(fit.order) + 1
-  const rows = new Float64Array(fit.count * width)
-  forEachUnit(side, fit.order, fit.h, fit.kernel, fit.count, (i, k, row) => {
-    rows.set(row, i * width)
-    rows[i * width + width - 1] = k
-  })
-  return rows
+  return { rows, k }
 }
 
 /** The polynomial A of the level at the point: Σ k_i A(u_i, v_i) y_i is the fitted value there. */
@@ -109,62 +102,64 @@ export function levelFunctional(fit: PlaneFit): Float64Array {
 }
 
 /** Adds factor · k_i A(u_i, v_i) to `weights` for the units of the fit. */
-export function addPlaneWeights(
-  weights: Float64Array,
-  side: PlaneSide,
-  fit: PlaneFit,
-  combination: Float64Array,
-  factor: number,
-): void {
-  forEachUnit(side, fit.order, fit.h, fit.kernel, fit.count, (i, k, row) => {
+export function addPlaneWeights(weights: Float64Array, fit: PlaneFit, combination: Float64Array, factor: number): void {
+  const { rows, k, count } = fit
+  const size = combination.length
+  for (let i = 0, at = 0; i < count; i++, at += size) {
     let value = 0
-    for (let a = 0; a < row.length; a++) value += combination[a] * row[a]
-    weights[i] += factor * k * value
-  })
+    for (let a = 0; a < size; a++) value += combination[a] * rows[at + a]
+    weights[i] += factor * k[i] * value
+  }
 }
 
 /**
  * Σ l_i times each term of total degree order+1 of (east/h, north/h): what a fit of this order makes of the next terms,
  * by the weights l of its level.
  */
-export function planeResponse(side: PlaneSide, order: number, h: number, weights: Float64Array): Float64Array {
+export function planeResponse(side: PlaneSide, fit: PlaneFit, weights: Float64Array): Float64Array {
+  const { order, h, count } = fit
   const first = termCount(order)
   const row = new Float64Array(termCount(order + 1))
   const response = new Float64Array(order + 2)
-  for (let i = 0; i < weights.length; i++) {
-    if (weights[i] === 0) continue
+  for (let i = 0; i < count; i++) {
     fillTerms(order + 1, side.eastMetres[i] / h, side.northMetres[i] / h, row)
     for (let j = 0; j < response.length; j++) response[j] += weights[i] * row[first + j]
   }
   return response
 }
 
-/**
- * Residuals and leverages of the first `count` units. Units outside the fit's window have leverage 0 and the residual
- * from the fit carried on to them.
- */
-export function planeResiduals(
-  side: PlaneSide,
-  fit: PlaneFit,
-  count: number,
-): { residual: Float64Array; leverage: Float64Array } {
-  const size = termCount(fit.order)
+/** Residuals of the first `count` units; those outside the fit's window have the residual from the fit carried on to them. */
+export function planeResiduals(side: PlaneSide, fit: PlaneFit, count: number): Float64Array {
+  const { order, h, rows, coefficients } = fit
+  const size = coefficients.length
   const residual = new Float64Array(count)
+  const row = new Float64Array(size)
+  for (let i = 0; i < count; i++) {
+    const isInside = i < fit.count
+    if (!isInside) fillTerms(order, side.eastMetres[i] / h, side.northMetres[i] / h, row)
+    const from = isInside ? rows : row
+    const at = isInside ? i * size : 0
+    let fitted = 0
+    for (let a = 0; a < size; a++) fitted += coefficients[a] * from[at + a]
+    residual[i] = side.y[i] - fitted
+  }
+  return residual
+}
+
+/** Leverage of each unit of the fit. */
+export function planeLeverages({ rows, k, factor, count, coefficients }: PlaneFit): Float64Array {
+  const size = coefficients.length
   const leverage = new Float64Array(count)
   const solved = new Float64Array(size)
-  forEachUnit(side, fit.order, fit.h, fit.kernel, count, (i, k, row) => {
-    let fitted = 0
-    for (let a = 0; a < size; a++) fitted += fit.coefficients[a] * row[a]
-    residual[i] = side.y[i] - fitted
-    if (i >= fit.count) return
+  for (let i = 0, at = 0; i < count; i++, at += size) {
     let length = 0
     for (let a = 0; a < size; a++) {
-      let value = row[a]
-      for (let b = 0; b < a; b++) value -= fit.factor[a * size + b] * solved[b]
-      solved[a] = value / fit.factor[a * size + a]
+      let value = rows[at + a]
+      for (let b = 0; b < a; b++) value -= factor[a * size + b] * solved[b]
+      solved[a] = value / factor[a * size + a]
       length += solved[a] * solved[a]
     }
-    leverage[i] = k * length
-  })
-  return { residual, leverage }
+    leverage[i] = k[i] * length
+  }
+  return leverage
 }

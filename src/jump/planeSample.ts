@@ -4,7 +4,7 @@
  * of rows in a file cannot change a single bit of any sum.
  */
 import { argsortBy } from '../math/index.js'
-import { type BySide, buildSample, type Side } from './sample.js'
+import { type BySide, blockSum, pickCodes, pickNumbers, type Side } from './sample.js'
 
 /** One side of the border near a point; t is the distance from the point in metres. */
 export interface PlaneSide extends Side {
@@ -32,31 +32,41 @@ export interface PlaneEntries {
 
 /** Splits and sorts entries. y must be finite, w > 0, cluster codes >= 0. */
 export function buildPlaneSample(entries: PlaneEntries): PlaneSample {
-  const { eastMetres, northMetres } = entries
+  const { eastMetres, treated, y } = entries
+  const n = eastMetres.length
   for (const [name, values] of Object.entries(entries) as [string, ArrayLike<number> | undefined][]) {
-    if (values === undefined || values.length === eastMetres.length) continue
-    throw new RangeError(`eastMetres has ${eastMetres.length} units, ${name} has ${values.length}`)
+    if (values === undefined || values.length === n) continue
+    throw new RangeError(`eastMetres has ${n} units, ${name} has ${values.length}`)
   }
-  const order = argsortBy([eastMetres, northMetres])
-  const numbers = (values: Float64Array) => Float64Array.from(order, (i) => values[i])
-  const codes = (values: Int32Array) => Int32Array.from(order, (i) => values[i])
-  const east = numbers(eastMetres)
-  const north = numbers(northMetres)
-  const sample = buildSample({
-    x: east.map((e, i) => Math.sqrt(e * e + north[i] * north[i])),
-    treated: Uint8Array.from(order, (i) => entries.treated[i]),
-    unit: Int32Array.from(order, (_, i) => i),
-    y: numbers(entries.y),
-    w: entries.w && numbers(entries.w),
-    cluster: entries.cluster && codes(entries.cluster),
-  })
-  const placed = (side: Side): PlaneSide => ({
-    ...side,
-    unit: Int32Array.from(side.unit, (i) => entries.unit[order[i]]),
-    eastMetres: Float64Array.from(side.unit, (i) => east[i]),
-    northMetres: Float64Array.from(side.unit, (i) => north[i]),
-  })
-  return { untreated: placed(sample.untreated), treated: placed(sample.treated), centre: sample.centre }
+  const picks = [new Int32Array(n), new Int32Array(n)]
+  const counts = [0, 0]
+  for (let i = 0; i < n; i++) picks[treated[i]][counts[treated[i]]++] = i
+  const [untreatedSide, treatedSide] = picks.map((pick, side) => sortSide(entries, pick.subarray(0, counts[side])))
+  const centre = n > 0 ? (blockSum(untreatedSide.y) + blockSum(treatedSide.y)) / n : 0
+  for (const side of [untreatedSide, treatedSide]) for (let i = 0; i < side.y.length; i++) side.y[i] -= centre
+  if (y.length > 0 && !Number.isFinite(centre)) throw new RangeError('an outcome is not finite')
+  return { untreated: untreatedSide, treated: treatedSide, centre }
+}
+
+function sortSide({ eastMetres, northMetres, y, w, cluster, unit }: PlaneEntries, pick: Int32Array): PlaneSide {
+  const east = pickNumbers(eastMetres, pick)
+  const north = pickNumbers(northMetres, pick)
+  const distance = new Float64Array(pick.length)
+  for (let i = 0; i < distance.length; i++) distance[i] = Math.sqrt(east[i] * east[i] + north[i] * north[i])
+  const keys = [distance, east, north]
+  for (const values of [y, w, cluster]) if (values) keys.push(pickNumbers(values, pick))
+  const order = argsortBy(keys)
+  const sorted = pickCodes(pick, order)
+  return {
+    t: pickNumbers(distance, order),
+    eastMetres: pickNumbers(east, order),
+    northMetres: pickNumbers(north, order),
+    y: pickNumbers(y, sorted),
+    w: w ? pickNumbers(w, sorted) : null,
+    unit: pickCodes(unit, sorted),
+    cluster: cluster ? pickCodes(cluster, sorted) : null,
+    group: null,
+  }
 }
 
 /** The same over both sides. */

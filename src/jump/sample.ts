@@ -85,13 +85,13 @@ function sortSide(entries: Entries, pick: Int32Array): Side {
   }
 }
 
-function pickNumbers(values: Float64Array | Int32Array, pick: Int32Array | Uint32Array): Float64Array {
+export function pickNumbers(values: Float64Array | Int32Array, pick: Int32Array | Uint32Array): Float64Array {
   const out = new Float64Array(pick.length)
   for (let i = 0; i < out.length; i++) out[i] = values[pick[i]]
   return out
 }
 
-function pickCodes(values: Int32Array, pick: Int32Array | Uint32Array): Int32Array {
+export function pickCodes(values: Int32Array, pick: Int32Array | Uint32Array): Int32Array {
   const out = new Int32Array(pick.length)
   for (let i = 0; i < out.length; i++) out[i] = values[pick[i]]
   return out

@@ -19,6 +19,7 @@ import {
   fitPlane,
   levelFunctional,
   type PlaneFit,
+  planeLeverages,
   planeResiduals,
   planeResponse,
   termCount,
@@ -128,15 +129,15 @@ function fitSide(
   if (!bias.ok) return `bias fit: ${bias.reason}`
   const length = Math.max(main.fit.count, bias.fit.count)
   const plain = new Float64Array(length)
-  addPlaneWeights(plain, side, main.fit, levelFunctional(main.fit), sign)
+  addPlaneWeights(plain, main.fit, levelFunctional(main.fit), sign)
   const corrected = Float64Array.from(plain)
-  addPlaneWeights(corrected, side, bias.fit, biasFunctional(side, main.fit, bias.fit, plain), -1)
+  addPlaneWeights(corrected, bias.fit, biasFunctional(side, main.fit, bias.fit, plain), -1)
   return { side, main: main.fit, bias: bias.fit, plain, corrected }
 }
 
 /** The polynomial of Σ_k c_k a_k(q, b), c from the signed weights of the level. Terms are in units of h there, of b here. */
 function biasFunctional(side: PlaneSide, main: PlaneFit, bias: PlaneFit, plain: Float64Array): Float64Array {
-  const response = planeResponse(side, main.order, main.h, plain)
+  const response = planeResponse(side, main, plain)
   const combination = new Float64Array(termCount(bias.order))
   const first = termCount(main.order)
   const rescale = (main.h / bias.h) ** bias.order
@@ -147,11 +148,16 @@ function biasFunctional(side: PlaneSide, main: PlaneFit, bias: PlaneFit, plain: 
 
 /** Residual factor of each unit, as in METHODS section 4: ψ_i = l_i · value. */
 function scaledPlaneResiduals(side: PlaneSide, fit: PlaneFit, count: number, variance: PlaneVariance): Float64Array {
-  const { residual, leverage } = planeResiduals(side, fit, count)
-  const factor = variance === 'hc1' ? Math.sqrt(fit.count / (fit.count - termCount(fit.order))) : 1
-  for (let i = 0; i < count; i++) {
+  const residual = planeResiduals(side, fit, count)
+  if (variance === 'hc1') {
+    const factor = Math.sqrt(fit.count / (fit.count - termCount(fit.order)))
+    for (let i = 0; i < count; i++) residual[i] *= factor
+  }
+  if (variance !== 'hc2' && variance !== 'hc3') return residual
+  const leverage = planeLeverages(fit)
+  for (let i = 0; i < Math.min(count, fit.count); i++) {
     const left = 1 - leverage[i]
-    residual[i] *= variance === 'hc2' ? 1 / Math.sqrt(left) : variance === 'hc3' ? 1 / left : factor
+    residual[i] /= variance === 'hc2' ? Math.sqrt(left) : left
   }
   return residual
 }
@@ -219,8 +225,7 @@ function reducedSpread(sides: readonly SideFit[], which: 'plain' | 'corrected'):
   const reduced = biasReducedClusters(
     sides.map((part) => {
       const fit = which === 'plain' ? part.main : part.bias
-      const { residual } = planeResiduals(part.side, fit, fit.count)
-      return { side: part.side, fit, weights: part[which], residual }
+      return { side: part.side, fit, weights: part[which], residual: planeResiduals(part.side, fit, fit.count) }
     }),
   )
   return reduced.clusters < 2 ? oneCluster : reduced

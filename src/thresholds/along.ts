@@ -14,6 +14,8 @@ import {
   type PlaneOptions,
   type PointEstimated,
   type PointJump,
+  pickCodes,
+  pickNumbers,
 } from '../jump/index.js'
 import { normalUpper, type Random, studentQuantile } from '../math/index.js'
 import { checkLevel, type LineEffects } from './effects.js'
@@ -126,25 +128,27 @@ export function estimateAlong(points: readonly AlongPoint[], units: AlongUnits, 
 /** The units near a point that count there, with their sides. */
 function entriesNear(units: AlongUnits, { zones, id }: AlongPoint, near: UnitsNearPoint): PlaneEntries {
   if (zones && !units.zone) throw new Error(`point ${id} names its zones, but the units have none`)
-  const kept: number[] = []
-  const sides: number[] = []
-  near.index.forEach((at, i) => {
-    if (!Number.isFinite(units.y[at])) return
-    const side = zones && units.zone ? zones.indexOf(units.zone[at]) : units.treated[at]
-    if (side < 0) return
-    kept.push(i)
-    sides.push(side)
-  })
-  const numbers = (values: Float64Array) => Float64Array.from(kept, (i) => values[near.index[i]])
-  const codes = (values: Int32Array) => Int32Array.from(kept, (i) => values[near.index[i]])
+  const { index } = near
+  const kept = new Int32Array(index.length)
+  const side = new Uint8Array(index.length)
+  let count = 0
+  for (let i = 0; i < index.length; i++) {
+    const at = index[i]
+    const sideOf = zones && units.zone ? zones.indexOf(units.zone[at]) : units.treated[at]
+    if (sideOf < 0 || !Number.isFinite(units.y[at])) continue
+    side[count] = sideOf
+    kept[count++] = i
+  }
+  const places = kept.subarray(0, count)
+  const rows = places.map((i) => index[i])
   return {
-    eastMetres: Float64Array.from(kept, (i) => near.eastMetres[i]),
-    northMetres: Float64Array.from(kept, (i) => near.northMetres[i]),
-    treated: Uint8Array.from(sides),
-    unit: codes(units.unit),
-    y: numbers(units.y),
-    w: units.w && numbers(units.w),
-    cluster: units.cluster && codes(units.cluster),
+    eastMetres: pickNumbers(near.eastMetres, places),
+    northMetres: pickNumbers(near.northMetres, places),
+    treated: side.subarray(0, count),
+    unit: pickCodes(units.unit, rows),
+    y: pickNumbers(units.y, rows),
+    w: units.w && pickNumbers(units.w, rows),
+    cluster: units.cluster && pickCodes(units.cluster, rows),
   }
 }
 

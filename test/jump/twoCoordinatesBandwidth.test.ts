@@ -29,7 +29,7 @@ function planeOnGrid(kernel: Kernel, order: number, steps: number) {
   const fitted = fitPlane(side, order, 1, kernel)
   if (!fitted.ok) throw new Error(fitted.reason)
   const l = new Float64Array(fitted.fit.count)
-  addPlaneWeights(l, side, fitted.fit, levelFunctional(fitted.fit), 1)
+  addPlaneWeights(l, fitted.fit, levelFunctional(fitted.fit), 1)
   let square = 0
   for (let a = 0; a <= order + 1; a++) {
     const c = order + 1 - a
