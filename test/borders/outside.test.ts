@@ -58,6 +58,46 @@ describe('the land outside as a zone', () => {
     expect(Math.abs(found['A | T'] + found['B | T'] - 3000)).toBeLessThan(25)
   })
 
+  it('begins and ends where a border drawn apart does, in the middle of an edge', () => {
+    const zones = [own, zone('U', box(at, 4010, 1000, 9000, 2000))]
+    const [shared, coast] = borderOf(zones, ['T'], { ...outside, snapMetres: 50, pieceMetres: 1e6 }).pieces
+    expect(Math.abs(shared.lengthMetres - 1000)).toBeLessThan(1)
+    expect(Math.abs(coast.lengthMetres / 13_000 - 1)).toBeLessThan(2e-4)
+    const ends = ({ coordinates }: typeof shared) => [coordinates[0], coordinates[coordinates.length - 1]]
+    const [south, north] = ends(shared).sort((p, q) => p[1] - q[1])
+    ends(coast)
+      .sort((p, q) => p[1] - q[1])
+      .forEach(([lon, lat], i) => {
+        expect(Math.abs(lon - [south, north][i][0]) + Math.abs(lat - [south, north][i][1])).toBeLessThan(1e-9)
+      })
+  })
+
+  it('is none where a third zone only comes near at a corner', () => {
+    const wedge = zone('C', closed([at(4005, 1480), at(9000, 1480), at(9000, 1510), at(4005, 1510)]))
+    const zones = [own, zone('A', box(at, 4000, 0, 9000, 1480)), wedge, zone('B', box(at, 4000, 1510, 9000, 3000))]
+    const border = borderOf(zones, ['T'], { ...outside, snapMetres: 20, pieceMetres: 1e6 })
+    expect(border.pieces.map(({ label }) => label)).toEqual([
+      'A | T, piece 1',
+      'B | T, piece 1',
+      'outside | T, piece 1',
+    ])
+    near(border.pieces[2].lengthMetres, 11_000)
+    expect(border.corners.map(({ zones: met }) => met.join())).toContain('A,B,T')
+  })
+
+  it('reaches the shared border though a vertex lies within the tolerance of it', () => {
+    // the south-western corner is drawn as a step of 5 by 10 m, within the tolerance of U
+    const stepped = zone('T', closed([at(0, 0), at(4000, 0), at(4000, 3000), at(0, 3000), at(-5, 10)]))
+    const border = borderOf([stepped, zone('U', box(at, 0, -3000, 4000, 0))], ['T'], {
+      ...outside,
+      snapMetres: 20,
+      pieceMetres: 1e6,
+    })
+    const [shared, coast] = border.pieces
+    expect(coast.coordinates[0]).toEqual(shared.coordinates[0])
+    expect(coast.coordinates.at(-1)).toEqual(shared.coordinates.at(-1))
+  })
+
   it('fills holes that no zone fills', () => {
     const lake = box(at, 1000, 1000, 1500, 1500)
     const island = box(at, 2000, 1000, 2500, 2000)
