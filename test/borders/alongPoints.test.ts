@@ -3,7 +3,7 @@ import geographic from 'geographiclib-geodesic'
 import { describe, expect, it } from 'vitest'
 import { geodesicMetres, indexUnits, localMetres, type Piece, pointsAlong, unitsNear } from '../../src/borders/index.js'
 import { seededRandom } from '../../src/math/index.js'
-import { borderOf, box, closed, metresAround, type Point, zone } from './makeZones.js'
+import { borderOf, box, closed, metresAround, multiZone, type Point, zone } from './makeZones.js'
 
 const wgs84 = geographic.Geodesic.WGS84
 
@@ -160,6 +160,17 @@ describe('points along the border', () => {
     expect(right[0].positionMetres).toBeCloseTo(4 * length + (3 * length) / 8, 6)
     const lengths = points.reduce((sum, point) => sum + point.lengthMetres, 0)
     expect(lengths).toBeCloseTo(9 * length, 5)
+  })
+
+  it('a border in two parts is spaced part by part, never across the gap', () => {
+    const parts = multiZone('East', [box(at, 0, 0, 4000, 3000)], [box(at, 0, 6000, 4000, 10_000)])
+    const points = pointsAlong(borderOf([west, parts], ['East'], { pieceMetres: 900 }), 2500)
+    expect(points).toHaveLength(3)
+    const places = points.map(({ lon, lat }) => localMetres(11, 47, [lon], [lat]).northMetres[0])
+    ;[1500, 7000, 9000].forEach((north, k) => {
+      expect(Math.abs(places[k] - north)).toBeLessThan(2)
+    })
+    expect(points.map(({ runStartMetres }) => Math.round(runStartMetres / 10))).toEqual([0, 300, 300])
   })
 
   it('a closed border, across 180°, and a long edge along a parallel', () => {
