@@ -1,5 +1,5 @@
 /** Coordinates that many units share: condominiums, or centroids of areas where addresses should be. */
-import { argsortBy, quantileOfSorted, type Random } from '../math/index.js'
+import { argsort, argsortBy, quantileOfSorted, type Random } from '../math/index.js'
 import { localPlane } from './localPlane.js'
 import { turnsTo } from './rings.js'
 
@@ -28,36 +28,42 @@ const mostSpacings = 1000
  */
 export function repeatedPoints(lon: Float64Array, lat: Float64Array): RepeatedPoints {
   if (lat.length !== lon.length) throw new RangeError(`lon has ${lon.length} units, lat has ${lat.length}`)
-  const point = new Int32Array(lon.length).fill(-1)
-  const rows: number[] = []
-  for (let i = 0; i < lon.length; i++) if (Math.abs(lon[i]) < Infinity && Math.abs(lat[i]) <= 90) rows.push(i)
-  const x = Float64Array.from(rows, (i) => lon[i] + turnsTo(lon[i], 0))
-  const y = Float64Array.from(rows, (i) => lat[i])
-  const sizes: number[] = []
-  const first: number[] = []
-  let before = -1
-  for (const k of argsortBy([x, y])) {
-    if (before < 0 || x[k] !== x[before] || y[k] !== y[before]) {
-      sizes.push(0)
-      first.push(k)
+  const count = lon.length
+  const point = new Int32Array(count).fill(-1)
+  const rows = new Int32Array(count)
+  const x = new Float64Array(count)
+  const y = new Float64Array(count)
+  let units = 0
+  for (let i = 0; i < count; i++) {
+    if (!(Math.abs(lon[i]) < Infinity && Math.abs(lat[i]) <= 90)) continue
+    rows[units] = i
+    x[units] = lon[i] + turnsTo(lon[i], 0)
+    y[units++] = lat[i]
+  }
+  // size and place of each distinct point, in order
+  const sizes = new Int32Array(units)
+  const pointLon = new Float64Array(units)
+  const pointLat = new Float64Array(units)
+  let distinct = 0
+  for (const k of argsortBy([x.subarray(0, units), y.subarray(0, units)])) {
+    if (distinct === 0 || x[k] !== pointLon[distinct - 1] || y[k] !== pointLat[distinct - 1]) {
+      pointLon[distinct] = x[k]
+      pointLat[distinct++] = y[k]
     }
-    sizes[sizes.length - 1]++
-    point[rows[k]] = sizes.length - 1
-    before = k
+    sizes[distinct - 1]++
+    point[rows[k]] = distinct - 1
   }
   const pointsOfSize = new Map<number, number>()
-  for (const size of sizes) if (size > 1) pointsOfSize.set(size, (pointsOfSize.get(size) ?? 0) + 1)
-  const most = [...pointsOfSize].map(([units, points]) => ({ units, points })).sort((a, b) => b.units - a.units)
+  for (const size of sizes.subarray(0, distinct))
+    if (size > 1) pointsOfSize.set(size, (pointsOfSize.get(size) ?? 0) + 1)
+  const most = [...pointsOfSize].map(([size, points]) => ({ units: size, points })).sort((a, b) => b.units - a.units)
   return {
-    units: rows.length,
-    distinct: sizes.length,
-    repeatedShare: most.reduce((sum, { units, points }) => sum + units * points, 0) / rows.length,
+    units,
+    distinct,
+    repeatedShare: most.reduce((sum, row) => sum + row.units * row.points, 0) / units,
     most: most.slice(0, 10),
     point,
-    spacingMetres: spacingOf(
-      Float64Array.from(first, (k) => x[k]),
-      Float64Array.from(first, (k) => y[k]),
-    ),
+    spacingMetres: spacingOf(pointLon.subarray(0, distinct), pointLat.subarray(0, distinct)),
   }
 }
 
@@ -65,7 +71,7 @@ export function repeatedPoints(lon: Float64Array, lat: Float64Array): RepeatedPo
 function spacingOf(lon: Float64Array, lat: Float64Array): number {
   const count = lon.length
   if (count < 2) return Number.NaN
-  const order = argsortBy([lat, lon])
+  const order = argsort(lat)
   const asked = Math.min(count, mostSpacings)
   const spacings = new Float64Array(asked)
   for (let s = 0; s < asked; s++) {
