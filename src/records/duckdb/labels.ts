@@ -4,6 +4,8 @@ import { trimmed, withRoom } from './growing.js'
 const SHORT_BYTES = 12
 /** Below this many labels the language's own sort is as quick. */
 const FEW = 20_000
+/** From this size on a table of slots grows more sparingly. */
+const MANY = 1 << 22
 
 /** A row that the condition keeps. */
 export const KEPT = 1
@@ -48,7 +50,7 @@ export function labelCoder(rowsExpected: number): LabelCoder {
     keys[k + 2] = w2
     keys[k + 3] = w3
     slots[slot] = ++distinct
-    if (distinct * 2 > slots.length) slots = rehashed(keys, distinct, slots.length * 2)
+    if (distinct * 2 > slots.length) slots = rehashed(keys, distinct, slots.length * (slots.length < MANY ? 4 : 2))
     return distinct - 1
   }
 
@@ -73,10 +75,12 @@ export function labelCoder(rowsExpected: number): LabelCoder {
       }
     },
     finish() {
+      slots = new Int32Array(0)
       const { labels, order } = sortedLabels(keys.subarray(0, 4 * distinct), longTexts)
       const rank = new Int32Array(distinct)
       for (let i = 0; i < distinct; i++) rank[order[i]] = i
       const ranked = trimmed(codes, rows)
+      codes = ranked
       for (let i = 0; i < rows; i++) if (ranked[i] >= 0) ranked[i] = rank[ranked[i]]
       return { codes: ranked, labels }
     },

@@ -108,6 +108,7 @@ function numberFiller(column: Chosen): Filler {
     finish() {
       const { name } = column
       const numbers = trimmed(values, length)
+      values = numbers
       const suspects = suspectRows.length > 0 ? { column, rows: suspectRows, places, values: numbers } : undefined
       return { column: { kind: 'number', name, values: numbers }, suspects }
     },
