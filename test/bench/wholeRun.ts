@@ -21,9 +21,9 @@ async function writeRecords(path: string, rows: number): Promise<void> {
       const outcome = Math.cos(score / 20_000) + (score < 21_000 ? 0.3 : 0) + 0.5 * random.next()
       text += `${i},${score.toFixed(3)},${outcome.toFixed(5)},${(0.5 + random.next()).toFixed(3)}\n`
     }
-    if (!out.write(text)) await new Promise((done) => out.once('drain', done))
+    if (!out.write(text)) await new Promise<void>((done) => out.once('drain', () => done()))
   }
-  await new Promise<void>((done) => out.end(done))
+  await new Promise<void>((done) => out.end(() => done()))
 }
 
 export async function benchWholeRun(sizes: readonly number[] = [1e5, 1e6]): Promise<void> {
