@@ -139,7 +139,7 @@ describe('labels of numbers', () => {
 
 describe('the label coder', () => {
   /** Codes texts as DuckDB would hand them over; hashes are a weak one, so that long texts share buckets. */
-  function coded(texts: readonly string[]) {
+  function coded(texts: readonly string[], rowsAtATime = texts.length) {
     const words = new Uint32Array(4 * texts.length)
     const bytes = Buffer.from(words.buffer)
     const hashes = new Uint32Array(2 * texts.length)
@@ -150,7 +150,16 @@ describe('the label coder', () => {
       hashes[2 * i] = [...text].reduce((sum, letter) => (Math.imul(sum, 31) + letter.codePointAt(0)!) | 0, 0)
     })
     const coder = labelCoder(16)
-    coder.add(words, hashes, texts.length, undefined, (row) => texts[row])
+    for (let first = 0; first < texts.length; first += rowsAtATime) {
+      const last = Math.min(first + rowsAtATime, texts.length)
+      coder.add(
+        words.subarray(4 * first, 4 * last),
+        hashes.subarray(2 * first),
+        last - first,
+        undefined,
+        (row) => texts[first + row],
+      )
+    }
     const { codes, labels: found } = coder.finish()
     expect(Array.from(codes, (code) => found[code] ?? '')).toEqual(texts)
     expect(found).toEqual([...new Set(texts)].filter((text) => text !== '').sort())
@@ -163,6 +172,17 @@ describe('the label coder', () => {
       Array.from({ length: 40_000 }, () =>
         Array.from({ length: next() % 13 }, () => letters[next() % letters.length]).join(''),
       ),
+    )
+  })
+
+  it('finds identifiers that come again after many that were new', () => {
+    coded(
+      Array.from({ length: 200_000 }, (_, i) => `L${String(i % 70_000).padStart(7, '0')}`),
+      5000,
+    )
+    coded(
+      Array.from({ length: 200_000 }, (_, i) => (i % 3 === 0 ? `a long identifier ${i % 90_000}` : `${i % 80_000}`)),
+      5000,
     )
   })
 
