@@ -29,7 +29,8 @@ export interface Nearness {
   readonly to: Float64Array
 }
 
-interface Stretch {
+/** A stretch of one edge near, or along, another zone; `from` and `to` are fractions of the edge. */
+export interface EdgeStretch {
   readonly zone: number
   readonly kind: number
   readonly from: number
@@ -49,9 +50,7 @@ export function measureNearness(boundaries: Boundaries, metres: number): Nearnes
   const from: number[] = []
   const to: number[] = []
   for (let e = 0; e < count; e++) {
-    const found: Stretch[] = []
-    const length = nearnessOfEdge(boundaries, e, metres, found)
-    for (const stretch of merged(found, samePlaceMetres / length)) {
+    for (const stretch of stretchesOfEdge(boundaries, e, metres)) {
       zone.push(stretch.zone)
       kind.push(stretch.kind)
       from.push(stretch.from)
@@ -68,14 +67,32 @@ export function measureNearness(boundaries: Boundaries, metres: number): Nearnes
   }
 }
 
+/** The stretches of one edge near other zones, or near the wanted ones: by zone, kind and place, disjoint within a kind. */
+export function stretchesOfEdge(
+  boundaries: Boundaries,
+  e: number,
+  metres: number,
+  isWanted: (zone: number) => boolean = () => true,
+): EdgeStretch[] {
+  const found: EdgeStretch[] = []
+  const length = nearnessOfEdge(boundaries, e, metres, isWanted, found)
+  return merged(found, samePlaceMetres / length)
+}
+
 /** Adds the stretches of one edge, unmerged, and returns the length of the edge. */
-function nearnessOfEdge(boundaries: Boundaries, e: number, metres: number, found: Stretch[]): number {
+function nearnessOfEdge(
+  boundaries: Boundaries,
+  e: number,
+  metres: number,
+  isWanted: (zone: number) => boolean,
+  found: EdgeStretch[],
+): number {
   const { edges, boxes, zoneOfEdge } = boundaries
   const { lon0, lat0, lon1, lat1 } = edges
   const length = edgeLengthMetres(lon0[e], lat0[e], lon1[e], lat1[e])
   const room = roomAround(metres, lat0[e], lat1[e])
   for (const f of edgesNearby(boxes, lon0[e], lat0[e], lon1[e], lat1[e], metres)) {
-    if (zoneOfEdge[f] === zoneOfEdge[e]) continue
+    if (zoneOfEdge[f] === zoneOfEdge[e] || !isWanted(zoneOfEdge[f])) continue
     const shift = turnsTo((lon0[f] + lon1[f]) / 2, (lon0[e] + lon1[e]) / 2)
     const way = sameEdge(edges, e, f, shift)
     if (way !== 0) {
@@ -125,7 +142,7 @@ function nearnessOfPart(
   f: number,
   shift: number,
   metres: number,
-  found: Stretch[],
+  found: EdgeStretch[],
 ): void {
   const { edges, zoneOfEdge } = boundaries
   const [lon0, lat0] = pointOfEdge(edges, e, t0)
@@ -149,9 +166,9 @@ function nearnessOfPart(
 }
 
 /** Sorted, with stretches of one zone and kind that touch or overlap made one, and ends at the edge's ends made exact. */
-function merged(found: readonly Stretch[], slack: number): Stretch[] {
+function merged(found: readonly EdgeStretch[], slack: number): EdgeStretch[] {
   const sorted = [...found].sort((a, b) => a.zone - b.zone || a.kind - b.kind || a.from - b.from || a.to - b.to)
-  const result: Stretch[] = []
+  const result: EdgeStretch[] = []
   for (const { zone, kind, from: rawFrom, to: rawTo } of sorted) {
     const from = rawFrom < slack ? 0 : rawFrom
     const to = rawTo > 1 - slack ? 1 : rawTo
@@ -167,6 +184,9 @@ export interface ZoneFoot {
   readonly lon: number
   readonly lat: number
   readonly metres: number
+  /** Of the boundaries, and where on it. */
+  readonly edge: number
+  readonly fraction: number
 }
 
 /** Nearest point of a zone's boundary to a place, or undefined where none is within `metres`. */
@@ -195,5 +215,5 @@ export function nearestOfZone(
   }
   if (!(best.metres <= metres)) return undefined
   const [footLon, footLat] = pointOfEdge(edges, best.edge, best.fraction)
-  return { lon: footLon, lat: footLat, metres: best.metres }
+  return { lon: footLon, lat: footLat, ...best }
 }

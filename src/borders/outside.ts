@@ -119,7 +119,7 @@ function pointsOf({ edges, ringStart }: Boundaries, ring: number, [from, to]: In
 }
 
 /** Stretches of a ring along another edge of its own zone, or at a pole. */
-function seamsOfRing({ edges, boxes, ringStart, zoneOfEdge }: Boundaries, ring: number): Interval[] {
+export function seamsOfRing({ edges, boxes, ringStart, zoneOfEdge }: Boundaries, ring: number): Interval[] {
   const { lon0, lat0, lon1, lat1 } = edges
   const seams: Interval[] = []
   const overlap = new Float64Array(2)
