@@ -134,6 +134,28 @@ describe('formats', () => {
     expect([...table.lineOfRow]).toEqual([2, 4, 6])
   })
 
+  it('finds the features among other members, whatever their texts hold', async () => {
+    const odd = ']},{"é\\u00e9\u{1f6f6}'
+    const features = Array.from({ length: 30_000 }, (_, a) => ({
+      type: 'Feature',
+      properties: { a, t: `${odd} ${a % 3}`, inside: { deep: [{ a: 1 }, [{}]] } },
+      geometry: { type: 'Point', coordinates: [a / 1000, 0] },
+    }))
+    const content = JSON.stringify({
+      about: [{ a: 1 }, { a: 2 }],
+      type: 'FeatureCollection',
+      crs: { type: 'name', properties: [{ a: 5 }] },
+      features,
+      after: [{ a: 3 }],
+    })
+    const wanted = [...numbers('a', 'lon'), ...labels('t')]
+    const table = await room.table('many.geojson', content, { wanted, positionFromGeometry: true, keep: 'a >= 10' })
+    expect(valuesOf(table, 'a')).toEqual(features.slice(10).map(({ properties }) => properties.a))
+    expect(valuesOf(table, 'lon')).toEqual(features.slice(10).map(({ properties }) => properties.a / 1000))
+    expect(table.lineOfRow[0]).toBe(10)
+    expect(textsOf(table, 't')[5]).toBe(`${odd} 0`)
+  })
+
   it('reads a null geometry as a missing position, and properties where the geometry is not asked for', async () => {
     const features = [
       { type: 'Feature', properties: { a: 1, lon: 9 }, geometry: null },

@@ -284,6 +284,37 @@ const cases: readonly Case[] = [
     says: ['a.geojson: must be a GeoJSON FeatureCollection: type Feature; export the points again as GeoJSON'],
   },
   {
+    name: 'GeoJSON cut short',
+    file: 'a.geojson',
+    content: '{"type":"FeatureCollection","features":[{"type":"Feature","properties":{"a":1},"geometry":null},',
+    says: [
+      'a.geojson: must be a GeoJSON FeatureCollection: broken JSON (Unexpected end of JSON input); export the points again as GeoJSON',
+    ],
+  },
+  {
+    name: 'features that are broken',
+    file: 'a.geojson',
+    content: `{"type":"FeatureCollection","features":[{"type":"Feature"},{"type":}]}`,
+    says: [
+      `a.geojson: feature 1: each member of features must be a Feature: broken JSON (Unexpected token '}', "{"type":}" is not valid JSON); mend or delete it`,
+    ],
+  },
+  {
+    name: 'members that are no objects',
+    file: 'a.geojson',
+    content: '{"type":"FeatureCollection","features":[{"type":"Feature"},null,"x"]}',
+    says: [
+      'a.geojson: feature 1: each member of features must be a Feature: null; mend or delete it',
+      'a.geojson: feature 2: each member of features must be a Feature: "x"; mend or delete it',
+    ],
+  },
+  {
+    name: 'no array of features',
+    file: 'a.geojson',
+    content: '{"type":"FeatureCollection"}',
+    says: ['a.geojson: must be a GeoJSON FeatureCollection: no array of features; export the points again as GeoJSON'],
+  },
+  {
     name: 'a collection of nothing',
     file: 'a.geojson',
     content: collection(),

@@ -1,9 +1,9 @@
-import { stat } from 'node:fs/promises'
 import type { DuckDBConnection } from '@duckdb/node-api'
 import type { Checked, Problem } from '../../problem.js'
 import { survey, type TextFile } from './bytes.js'
-import { literal, reasonOf, rowsOf } from './connection.js'
+import { rowsOf } from './connection.js'
 import { notUtf8 } from './csv.js'
+import { type Frame, loadFeatures, objectNumber } from './features.js'
 import { cellsQuery, keysOf, pointerPart, refuse } from './json.js'
 import { consecutive, PROBLEM_LIMIT, type Source } from './source.js'
 
@@ -22,24 +22,21 @@ export async function geojsonSource(
   hasPositions: boolean,
 ): Promise<Checked<Source>> {
   const text: TextFile = { path, isGzip: false }
-  const bytes = (await stat(path)).size
-  if (bytes === 0) return refuse(file, 'the file is empty', 'no features', 'give a FeatureCollection of points')
-  const whole = `maximum_object_size = ${Math.max(bytes + 1, 1 << 24)}, compression = 'uncompressed', format = 'unstructured'`
-  const collection = await collectionProblem(connection, file, path, whole)
-  if (collection !== undefined) {
+  const members = membersOf(await loadFeatures(connection, text), file)
+  if (!members.ok) {
     const { notUtf8Line } = await survey(text)
-    return { ok: false, problems: [notUtf8Line === undefined ? collection : notUtf8(file, notUtf8Line)] }
+    return notUtf8Line === undefined ? members : { ok: false, problems: [notUtf8(file, notUtf8Line)] }
   }
-  const features = `SELECT unnest(features) AS json FROM read_json(${literal(path)}, columns = {features: 'JSON[]'}, ${whole})`
+  const { first, count } = members.value
+  if (count === 0) return refuse(file, 'the file is empty', 'no features', 'give a FeatureCollection of points')
+  const features = `SELECT json FROM features WHERE rowid >= ${first} AND rowid < ${first + count}`
   const problems = await featureProblems(connection, file, features, hasPositions)
   if (problems.length > 0) return { ok: false, problems }
   const properties = await keysOf(
     connection,
-    `SELECT * FROM (SELECT json -> '/properties' AS json FROM (${features})) WHERE json_type(json) = 'OBJECT'`,
+    `SELECT json FROM (SELECT json_extract(json, '/properties') AS json FROM (${features})) WHERE json_type(json) = 'OBJECT'`,
   )
-  if (!properties.ok) return refuse(file, "properties can't be read", properties.reason, 'write the file again')
-  const [[count]] = await rowsOf(connection, `SELECT count(*) FROM (${features})`)
-  if (Number(count) === 0) return refuse(file, 'the file is empty', 'no features', 'give a FeatureCollection of points')
+  if (!properties.ok) throw new Error(properties.reason)
   const names = hasPositions
     ? [...POSITION, ...properties.names.filter((name) => name !== 'lon' && name !== 'lat')]
     : properties.names
@@ -55,7 +52,8 @@ export async function geojsonSource(
       query: (positions) => cellsQuery(features, positions, pointer),
       survey: async () => {
         const { sha256, lines, notUtf8Line } = await survey(text)
-        return { sha256, lines, delimiters: 0, problems: notUtf8Line === undefined ? [] : [notUtf8(file, notUtf8Line)] }
+        const problems = notUtf8Line === undefined ? [] : [notUtf8(file, notUtf8Line)]
+        return { sha256, lines, delimiters: 0, problems }
       },
       locate: async (outcome) => {
         if ('failure' in outcome) throw outcome.failure
@@ -65,33 +63,39 @@ export async function geojsonSource(
   }
 }
 
-/** What keeps the file from being one FeatureCollection. */
-async function collectionProblem(
-  connection: DuckDBConnection,
-  file: string,
-  path: string,
-  whole: string,
-): Promise<Problem | undefined> {
-  const fault = (found: string): Problem => ({
-    file,
-    what: 'must be a GeoJSON FeatureCollection',
-    found,
-    todo: 'export the points again as GeoJSON',
-  })
+/** Where the features stand among the objects that were cut out, or why the file is no collection. */
+function membersOf({ text }: Frame, file: string): Checked<{ readonly first: number; readonly count: number }> {
+  const fault = (found: string) =>
+    refuse(file, 'must be a GeoJSON FeatureCollection', found, 'export the points again as GeoJSON')
+  if (text.trim() === '') return refuse(file, 'the file is empty', 'no features', 'give a FeatureCollection of points')
+  let collection: { readonly type?: unknown; readonly features?: unknown }
   try {
-    const rows = await rowsOf(
-      connection,
-      `SELECT json_extract_string(json, '/type'), json_type(json, '/features'), json_type(json)
-       FROM read_json_objects(${literal(path)}, ${whole})`,
-    )
-    if (rows.length !== 1) return fault(`${rows.length} JSON values`)
-    const [type, features, top] = rows[0]
-    if (top !== 'OBJECT') return fault(`a JSON ${String(top).toLowerCase()}`)
-    if (type !== 'FeatureCollection') return fault(type === null ? 'no "type"' : `type ${type}`)
-    return features === 'ARRAY' ? undefined : fault('no array of features')
+    collection = JSON.parse(text)
   } catch (error) {
-    return fault(reasonOf(error).replace(/ in file "[^"]*"/, ''))
+    return fault(`broken JSON (${withoutPlace((error as Error).message)})`)
   }
+  if (collection === null || typeof collection !== 'object' || Array.isArray(collection))
+    return fault('JSON that is no object')
+  if (collection.type !== 'FeatureCollection')
+    return fault(collection.type === undefined ? 'no "type"' : `type ${collection.type}`)
+  const { features } = collection
+  if (!Array.isArray(features)) return fault('no array of features')
+  const numbers = features.map(objectNumber)
+  const problems = numbers.flatMap((number, feature): Problem[] =>
+    number === undefined ? [noFeature(file, feature, JSON.stringify(features[feature]))] : [],
+  )
+  return problems.length > 0
+    ? { ok: false, problems: problems.slice(0, PROBLEM_LIMIT) }
+    : { ok: true, value: { first: numbers[0] ?? 0, count: numbers.length } }
+}
+
+/** What a parser says, without its place and without the text there: both are the frame's, not the file's. */
+function withoutPlace(message: string): string {
+  return message.split(/ in JSON at| at position|, "|, \.\.\."/)[0]
+}
+
+function noFeature(file: string, feature: number, found: string): Problem {
+  return { file, feature, what: 'each member of features must be a Feature', found, todo: 'mend or delete it' }
 }
 
 /** Features that are no features and, where positions are wanted, geometries that are no points. */
@@ -101,6 +105,15 @@ async function featureProblems(
   features: string,
   hasPositions: boolean,
 ): Promise<readonly Problem[]> {
+  const broken = await rowsOf(
+    connection,
+    `SELECT CAST(feature AS INTEGER), json FROM (SELECT json, row_number() OVER () - 1 AS feature FROM (${features}))
+     WHERE NOT json_valid(json) ORDER BY 1 LIMIT ${PROBLEM_LIMIT}`,
+  )
+  if (broken.length > 0)
+    return broken.map(([feature, json]) =>
+      noFeature(file, feature as number, `broken JSON (${parseFault(json as string)})`),
+    )
   const isFeature = `coalesce(json_extract_string(json, '/type') = 'Feature', false)`
   const isPoint = `coalesce(json_type(json, '/geometry') = 'NULL', false) OR (
     coalesce(json_extract_string(json, '/geometry/type') = 'Point', false) AND coalesce(json_type(json, '/geometry/coordinates/0')
@@ -113,13 +126,7 @@ async function featureProblems(
   )
   const problems = rows.map(([feature, type, geometry]): Problem => {
     const at = { file, feature: feature as number }
-    if (type !== 'Feature')
-      return {
-        ...at,
-        what: 'each member of features must be a Feature',
-        found: `${type ?? 'no type'}`,
-        todo: 'mend or delete it',
-      }
+    if (type !== 'Feature') return noFeature(file, at.feature, `${type ?? 'no type'}`)
     if (geometry === 'Point')
       return {
         ...at,
@@ -138,4 +145,13 @@ async function featureProblems(
   if (count > rows.length)
     problems.push({ file, what: 'more features like these', found: `${count - rows.length}`, todo: 'mend the file' })
   return problems
+}
+
+function parseFault(json: string): string {
+  try {
+    JSON.parse(json)
+    return 'not by RFC 8259'
+  } catch (error) {
+    return (error as Error).message.slice(0, 200)
+  }
 }
