@@ -8,13 +8,21 @@ import { footOnSegment, localPlane } from './localPlane.js'
 import { nearestOfZone } from './nearness.js'
 import { turnsTo } from './rings.js'
 import { cornerTolerances, type SharedPath } from './sharedBorders.js'
+import { bendsAlong, squareFoot } from './zoneFoot.js'
 
 const samplesPerEdge = 8
+/** Whiskers are no longer than this many tolerances. */
+const whiskerTolerances = 2 * cornerTolerances
+/** An end is drawn back again while that takes off more than this share of its distance to the other zone: it leaves. */
+const leavingShare = 0.1
+const mostRepeats = 200
 
 /**
  * The path without whiskers, or undefined where nothing else is left:
  * 1. beyond the last coincident stretch, an end along which the distance to the other zone only grows is cut off;
- * 2. an end that does not coincide is drawn back to the point of the path nearest to its foot on the other zone.
+ * 2. an end that does not coincide is cut off as far as the other zone does not lie over against it;
+ * 3. and it is drawn back to the point of the path nearest to its foot on the other zone, again and again while that
+ *    takes off more than a tenth of its distance to that zone and the distance is above a tenth of the tolerance.
  * Whole rings have no ends, and an end where another zone takes over is left as it is.
  */
 export function withoutWhiskers(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath | undefined {
@@ -24,9 +32,25 @@ export function withoutWhiskers(boundaries: Boundaries, path: SharedPath, metres
   return pathMetres(both) > 0.001 ? reversed(both) : undefined
 }
 
-/** Rules 1 and 2 at the end of the path. */
+/** Rules 1 to 3 at the end of the path. */
 function withoutWhisker(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
-  return path.isFollowed[1] ? path : drawnBack(boundaries, leavingCut(boundaries, path, metres), metres)
+  if (path.isFollowed[1]) return path
+  let drawn = drawnBack(boundaries, facingCut(boundaries, leavingCut(boundaries, path, metres), metres), metres)
+  for (let again = 0; again < mostRepeats; again++) {
+    const gap = endGap(boundaries, drawn, metres)
+    if (gap <= metres / 10) return drawn
+    const next = drawnBack(boundaries, drawn, metres)
+    const [from, to] = [drawn, next].map(({ points }) => points[points.length - 1])
+    if (edgeLengthMetres(...from, ...to) <= leavingShare * gap) return drawn
+    drawn = next
+  }
+  return drawn
+}
+
+/** Metres from the end of a path to the other zone. */
+function endGap(boundaries: Boundaries, { points, untreated }: SharedPath, metres: number): number {
+  const [lon, lat] = points[points.length - 1]
+  return nearestOfZone(boundaries, untreated, lon, lat, 1.01 * metres)?.metres ?? metres
 }
 
 function pathMetres({ points }: SharedPath): number {
@@ -93,6 +117,43 @@ function onlyGrows(walked: readonly number[], distances: readonly number[]): boo
 }
 
 /** Rule 2 at the end of the path, over at most eight tolerances of it. */
+function facingCut(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
+  let left = whiskerTolerances * metres
+  for (let i = path.isExact.length - 1; i >= 0; i--) {
+    if (path.isExact[i]) return firstSteps(path, i + 1)
+    const segment = [...path.points[i], ...path.points[i + 1]] as const
+    const { edge, from, to } = path.steps[i]
+    const length = edgeLengthMetres(...segment)
+    const bends = bendsAlong(boundaries, segment, path.untreated, 1.01 * metres)
+    for (let b = bends.length - 1, end = 1; end > 0; ) {
+      while (b > 0 && bends[b] >= end) b--
+      const start = Math.max(bends[b], end - metres / 4 / length)
+      const middle = from + ((start + end) / 2) * (to - from)
+      if (squareFoot(boundaries, edge, middle, path.untreated, 1.01 * metres)) return cutAt(path, i, end)
+      left -= (end - start) * length
+      if (left < 0) return path
+      end = start
+    }
+  }
+  return path
+}
+
+/** The path up to a fraction of one of its steps. */
+function cutAt(path: SharedPath, step: number, fraction: number): SharedPath {
+  if (fraction === 1) return firstSteps(path, step + 1)
+  const before = firstSteps(path, step)
+  if (fraction === 0) return before
+  const [[lon0, lat0], [lon1, lat1]] = [path.points[step], path.points[step + 1]]
+  const { edge, from, to } = path.steps[step]
+  return {
+    ...path,
+    points: [...before.points, [lon0 + fraction * (lon1 - lon0), lat0 + fraction * (lat1 - lat0)]],
+    isExact: path.isExact.slice(0, step + 1),
+    steps: [...before.steps, { edge, from, to: from + fraction * (to - from) }],
+  }
+}
+
+/** Rule 3 at the end of the path, over at most eight tolerances of it. */
 function drawnBack(boundaries: Boundaries, path: SharedPath, metres: number): SharedPath {
   const { points, isExact } = path
   if (isExact[isExact.length - 1]) return path
@@ -104,7 +165,7 @@ function drawnBack(boundaries: Boundaries, path: SharedPath, metres: number): Sh
   const shift = turnsTo(endLon, foot.lon) - foot.lon
   let best = { step: isExact.length - 1, fraction: 1, metres: foot.metres }
   let walked = 0
-  for (let i = isExact.length - 1; i >= 0 && !isExact[i] && walked <= 2 * cornerTolerances * metres; i--) {
+  for (let i = isExact.length - 1; i >= 0 && !isExact[i] && walked <= whiskerTolerances * metres; i--) {
     const [[lon0, lat0], [lon1, lat1]] = [points[i], points[i + 1]]
     const fraction = footOnSegment(
       (lon0 + shift) * plane.metresPerLon,
@@ -116,18 +177,5 @@ function drawnBack(boundaries: Boundaries, path: SharedPath, metres: number): Sh
     if (distance[0] < best.metres - 1e-6) best = { step: i, fraction, metres: distance[0] }
     walked += edgeLengthMetres(lon0, lat0, lon1, lat1)
   }
-  const before = firstSteps(path, best.step)
-  if (best.fraction === 0) return before
-  const [[lon0, lat0], [lon1, lat1]] = [points[best.step], points[best.step + 1]]
-  const { edge, from, to } = path.steps[best.step]
-  const isWhole = best.fraction === 1
-  const end: readonly [number, number] = isWhole
-    ? [lon1, lat1]
-    : [lon0 + best.fraction * (lon1 - lon0), lat0 + best.fraction * (lat1 - lat0)]
-  return {
-    ...path,
-    points: [...before.points, end],
-    isExact: isExact.slice(0, best.step + 1),
-    steps: [...before.steps, { edge, from, to: isWhole ? to : from + best.fraction * (to - from) }],
-  }
+  return cutAt(path, best.step, best.fraction)
 }

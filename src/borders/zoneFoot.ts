@@ -67,10 +67,11 @@ export function neighbourEdge({ ringOfEdge, ringStart }: Boundaries, e: number, 
 }
 
 /**
- * Does a zone's boundary lie over against the edge e at a place of it, across a gap or in an overlap: no farther than
- * `metres`, about square to the edge, and with no other edge between? Then its foot, else undefined.
+ * The nearest point of a zone's boundary to a place of the edge e where it lies over against the edge, across a gap or in
+ * an overlap: no farther than `metres`, and within 45 degrees of square to the edge; or, in an overlap, where its edge
+ * lies square to ours behind a nearer one at the overlap's end. Else undefined.
  */
-export function facingFoot(
+export function squareFoot(
   boundaries: Boundaries,
   e: number,
   fraction: number,
@@ -84,7 +85,31 @@ export function facingFoot(
   const [x, y] = wayTo(plane, foot.lon, foot.lat)
   const [normalX, normalY] = outwardNormal(boundaries, plane, e)
   const outward = (x * normalX + y * normalY) / Math.hypot(x, y)
-  if (outward * Math.sign(foot.signedMetres) < facingCosine) return undefined
+  if (outward * Math.sign(foot.signedMetres) >= facingCosine) return foot
+  const isOverAgainst = foot.signedMetres < 0 && crosses(boundaries, zone, plane, -normalX * metres, -normalY * metres)
+  return isOverAgainst ? foot : undefined
+}
+
+/** Does a zone's boundary cross the way from the plane's place to (x, y)? */
+function crosses({ edges, boxes, zoneOfEdge }: Boundaries, zone: number, plane: LocalPlane, x: number, y: number) {
+  const [lon, lat] = [plane.lon + x / plane.metresPerLon, plane.lat + y / plane.metresPerLat]
+  return edgesNearby(boxes, plane.lon, plane.lat, lon, lat, 0).some(
+    (f) => zoneOfEdge[f] === zone && crossingOf(plane, x, y, edges, f) !== undefined,
+  )
+}
+
+/** The same, where nothing lies between. */
+export function facingFoot(
+  boundaries: Boundaries,
+  e: number,
+  fraction: number,
+  zone: number,
+  metres: number,
+): SignedFoot | undefined {
+  const foot = squareFoot(boundaries, e, fraction, zone, metres)
+  if (!foot || foot.signedMetres === 0) return foot
+  const plane = localPlane(...pointOfEdge(boundaries.edges, e, fraction))
+  const [x, y] = wayTo(plane, foot.lon, foot.lat)
   return isOpenWay(boundaries, plane, x, y, [boundaries.zoneOfEdge[e], zone]) ? foot : undefined
 }
 
