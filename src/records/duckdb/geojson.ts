@@ -30,7 +30,7 @@ export async function geojsonSource(
   const { first, count } = members.value
   if (count === 0) return refuse(file, 'the file is empty', 'no features', 'give a FeatureCollection of points')
   const features = `SELECT json FROM features WHERE rowid >= ${first} AND rowid < ${first + count}`
-  const problems = await featureProblems(connection, file, features, hasPositions)
+  const problems = await featureProblems(connection, file, members.value, hasPositions)
   if (problems.length > 0) return { ok: false, problems }
   const properties = await keysOf(
     connection,
@@ -63,8 +63,14 @@ export async function geojsonSource(
   }
 }
 
+/** The features among the objects that were cut out: from `first` on. */
+interface Members {
+  readonly first: number
+  readonly count: number
+}
+
 /** Where the features stand among the objects that were cut out, or why the file is no collection. */
-function membersOf({ text }: Frame, file: string): Checked<{ readonly first: number; readonly count: number }> {
+function membersOf({ text }: Frame, file: string): Checked<Members> {
   const fault = (found: string) =>
     refuse(file, 'must be a GeoJSON FeatureCollection', found, 'export the points again as GeoJSON')
   if (text.trim() === '') return refuse(file, 'the file is empty', 'no features', 'give a FeatureCollection of points')
@@ -98,53 +104,60 @@ function noFeature(file: string, feature: number, found: string): Problem {
   return { file, feature, what: 'each member of features must be a Feature', found, todo: 'mend or delete it' }
 }
 
-/** Features that are no features and, where positions are wanted, geometries that are no points. */
+/** Features that are broken or no features and, where positions are wanted, geometries that are no points. */
 async function featureProblems(
   connection: DuckDBConnection,
   file: string,
-  features: string,
+  { first, count }: Members,
   hasPositions: boolean,
 ): Promise<readonly Problem[]> {
+  const within = `FROM features WHERE rowid >= ${first} AND rowid < ${first + count}`
   const broken = await rowsOf(
     connection,
-    `SELECT CAST(feature AS INTEGER), json FROM (SELECT json, row_number() OVER () - 1 AS feature FROM (${features}))
-     WHERE NOT json_valid(json) ORDER BY 1 LIMIT ${PROBLEM_LIMIT}`,
+    `SELECT CAST(rowid - ${first} AS INTEGER), json ${within} AND NOT json_valid(json) ORDER BY 1 LIMIT ${PROBLEM_LIMIT}`,
   )
   if (broken.length > 0)
     return broken.map(([feature, json]) =>
       noFeature(file, feature as number, `broken JSON (${parseFault(json as string)})`),
     )
-  const isFeature = `coalesce(json_extract_string(json, '/type') = 'Feature', false)`
-  const isPoint = `coalesce(json_type(json, '/geometry') = 'NULL', false) OR (
-    coalesce(json_extract_string(json, '/geometry/type') = 'Point', false) AND coalesce(json_type(json, '/geometry/coordinates/0')
-      IN ('DOUBLE', 'BIGINT', 'UBIGINT') AND json_type(json, '/geometry/coordinates/1') IN ('DOUBLE', 'BIGINT', 'UBIGINT'), false))`
-  const wrong = hasPositions ? `NOT ${isFeature} OR NOT (${isPoint})` : `NOT ${isFeature}`
+  const isNumber = (part: string) => `json_type(${part}) IN ('DOUBLE', 'BIGINT', 'UBIGINT')`
+  const isPoint = `coalesce(json_type(parts[2]) = 'NULL' OR
+    (parts[3] ->> '$') = 'Point' AND ${isNumber('parts[4]')} AND ${isNumber('parts[5]')}, false)`
+  const wrong = `NOT coalesce((parts[1] ->> '$') = 'Feature', false)${hasPositions ? ` OR NOT ${isPoint}` : ''}`
   const rows = await rowsOf(
     connection,
-    `SELECT CAST(feature AS INTEGER), json_extract_string(json, '/type'), json_extract_string(json, '/geometry/type'), count(*) OVER ()
-     FROM (SELECT json, row_number() OVER () - 1 AS feature FROM (${features})) WHERE ${wrong} ORDER BY 1 LIMIT ${PROBLEM_LIMIT}`,
+    `SELECT CAST(feature AS INTEGER), parts[1] ->> '$', parts[3] ->> '$' FROM (SELECT rowid - ${first} AS feature, json_extract(json,
+       ['/type', '/geometry', '/geometry/type', '/geometry/coordinates/0', '/geometry/coordinates/1']) AS parts ${within})
+     WHERE ${wrong} ORDER BY 1 LIMIT ${PROBLEM_LIMIT + 1}`,
   )
-  const problems = rows.map(([feature, type, geometry]): Problem => {
-    const at = { file, feature: feature as number }
-    if (type !== 'Feature') return noFeature(file, at.feature, `${type ?? 'no type'}`)
-    if (geometry === 'Point')
-      return {
-        ...at,
+  const problems = rows
+    .slice(0, PROBLEM_LIMIT)
+    .map(([feature, type, geometry]) =>
+      type === 'Feature'
+        ? noPoint(file, feature as number, geometry as string | null)
+        : noFeature(file, feature as number, `${type ?? 'no type'}`),
+    )
+  if (rows.length > PROBLEM_LIMIT)
+    problems.push({ file, what: 'more features like these', found: 'not listed', todo: 'mend the file' })
+  return problems
+}
+
+function noPoint(file: string, feature: number, geometry: string | null): Problem {
+  return geometry === 'Point'
+    ? {
+        file,
+        feature,
         what: 'geometry: must have two coordinates that are numbers',
         found: 'something else',
         todo: 'write [longitude, latitude]',
       }
-    return {
-      ...at,
-      what: 'geometry: must be a Point',
-      found: `${geometry ?? 'no geometry'}`,
-      todo: 'give points, or name position columns',
-    }
-  })
-  const count = Number(rows[0]?.[3] ?? 0)
-  if (count > rows.length)
-    problems.push({ file, what: 'more features like these', found: `${count - rows.length}`, todo: 'mend the file' })
-  return problems
+    : {
+        file,
+        feature,
+        what: 'geometry: must be a Point',
+        found: geometry ?? 'no geometry',
+        todo: 'give points, or name position columns',
+      }
 }
 
 function parseFault(json: string): string {
