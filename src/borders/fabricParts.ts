@@ -30,7 +30,7 @@ interface Candidate extends Part {
   readonly near: readonly number[]
   /** Metres to the zone that faces it, at its middle. */
   readonly gapMetres: number
-  /** Is a vertex the nearest there of the zone that faces it? */
+  /** Does it face no edge of that zone but only a vertex, or nothing of it, being a turn in a longer stretch? */
   readonly isAtVertex: boolean
 }
 
@@ -208,7 +208,7 @@ function bridged(boundaries: Boundaries, parts: readonly Candidate[], reachMetre
     const isBetween = run[0].other < 0 && other >= 0 && after.other === other && runs.length > 1
     if (!isBetween || (before.label === 'shared' && after.label === 'shared')) return run
     if (!run.every((part) => part.near.includes(other)) || runMetres(boundaries, run) > reachMetres / 4) return run
-    return run.map((part) => ({ ...part, label: 'beyond tolerance' as const, other }))
+    return run.map((part) => ({ ...part, label: 'beyond tolerance' as const, other, isAtVertex: true }))
   })
 }
 
