@@ -3,22 +3,25 @@
  * Read it first. Places every unit against its line, estimates each outcome at every line and pooled, compares the
  * lines, and keeps the ledger. Knows no file and no page; `cli` reads what comes in, `report` draws what goes out.
  */
+import { alongGround, alongResult } from './analysis/along.js'
+import type { BorderFacts } from './analysis/border.js'
 import { entriesOf } from './analysis/entries.js'
 import { estimateOutcome, hasReason, type LineEstimate, type OutcomeEstimates } from './analysis/estimating.js'
 import { mapOf, scatterOf } from './analysis/exhibits.js'
 import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/inputs.js'
 import { type Placed, placeStudy } from './analysis/placing.js'
 import { sharesOfLines } from './analysis/shares.js'
-import { lineSummaries, outcomeResult } from './analysis/summaries.js'
+import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
 import { linesOfLayer, readLineLayer } from './borders/index.js'
 import type { Checked } from './problem.js'
 import { type LedgerStep, ledgerStep } from './records/index.js'
 import type { Analysis, Exhibits, InputFile, MapExhibit, OutcomeExhibit, OutcomeResult, UnitRows } from './results.js'
 import type { Study } from './study/index.js'
 
+export { metresPerUnit } from './analysis/border.js'
 export type { AnalysisInputs, LayerInput, Progress } from './analysis/inputs.js'
 export { positionColumns } from './analysis/inputs.js'
-export { metresPerUnit, type Placed } from './analysis/placing.js'
+export type { Placed } from './analysis/placing.js'
 export { placeStudy, wantedColumns }
 
 export interface AnalysisContext {
@@ -39,19 +42,24 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
   const { placement } = placed.value
   const shares = sharesOfLines(study, inputs, placement)
   if (!shares.ok) return shares
+  const ground = alongGround(study, inputs, placed.value)
   const ledger = [...placed.value.ledger]
   const outcomes: OutcomeResult[] = []
   const drawn: OutcomeExhibit[] = []
   study.outcomes.forEach((outcome, i) => {
-    const entries = entriesOf(study, inputs.table, placement, outcome)
+    const entries = entriesOf(study, inputs.table, placed.value, outcome)
     const total = study.outcomes.length * placement.lines.length
-    const estimates = estimateOutcome(study, placement, entries, shares.value, (done) =>
+    const estimates = estimateOutcome(study, placed.value, entries, shares.value, (done) =>
       context.progress?.('estimating', i * placement.lines.length + done, total),
     )
     ledger.push(...outcomeSteps(outcome, placed.value.units, entries, estimates))
-    outcomes.push(outcomeResult(study, outcome, placement.lines, estimates))
+    const { pooled } = estimates
+    const along =
+      ground && !hasReason(pooled) ? alongResult(study, inputs, placed.value, ground, outcome, pooled.jump) : {}
+    outcomes.push({ ...outcomeResult(study, outcome, placement.lines, estimates), ...along })
     drawn.push(outcomeExhibit(study, outcome, estimates))
   })
+  const used = placed.value.border?.pieces.filter(({ setAside }) => setAside === undefined)
   return {
     ok: true,
     value: {
@@ -69,7 +77,8 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
           placed: placed.value.units,
           set_aside: Object.fromEntries([...placed.value.setAside].sort(([a], [b]) => (a < b ? -1 : 1))),
         },
-        lines: lineSummaries(placement),
+        lines: lineSummaries(placement, used),
+        ...(hasBorder(placed.value) ? { border: borderResult(placed.value) } : {}),
         outcomes,
         ledger,
       },
@@ -77,6 +86,10 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
       units: unitRows(placed.value),
     },
   }
+}
+
+function hasBorder(placed: Placed): placed is Placed & BorderFacts {
+  return placed.border !== undefined
 }
 
 /** Ledger of one outcome: units with the outcome, and units of positive weight in the pooled estimate. */
@@ -145,7 +158,7 @@ function unitRows({ placement, ground, border }: Placed): UnitRows {
     x,
     ground: {
       zone: Int32Array.from(unit, (u) => ground.zone[u]),
-      zoneNames: border.zones.names,
+      zoneNames: border.names,
       footLon: pick(ground.footLon),
       footLat: pick(ground.footLat),
       positionMetres: pick(ground.positionMetres),
@@ -153,13 +166,13 @@ function unitRows({ placement, ground, border }: Placed): UnitRows {
   }
 }
 
-function inputFiles({ table, schedule, zones, barriers = [] }: AnalysisInputs): InputFile[] {
+function inputFiles({ table, schedule, zones, barriers = [], overlaps = [] }: AnalysisInputs): InputFile[] {
   const tables = [table, ...(schedule ? [schedule] : [])].map(({ file, sha256, rowsRead }) => ({
     file,
     sha256,
     rows: rowsRead,
   }))
-  const layers = [...(zones ? [zones] : []), ...barriers].map(({ file, sha256, content }) => ({
+  const layers = [...(zones ? [zones] : []), ...barriers, ...overlaps].map(({ file, sha256, content }) => ({
     file,
     sha256,
     features: (content as { features?: unknown[] }).features?.length ?? 1,

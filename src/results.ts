@@ -16,6 +16,8 @@ export interface Results {
   readonly inputs: readonly InputFile[]
   readonly placement: PlacementSummary
   readonly lines: readonly LineSummary[]
+  /** Border studies. */
+  readonly border?: BorderResult
   readonly outcomes: readonly OutcomeResult[]
   readonly ledger: readonly LedgerStep[]
 }
@@ -47,7 +49,48 @@ export interface LineSummary {
   readonly zones?: readonly [string, string]
   readonly piece?: number
   readonly length_m?: number
+  /** Chord over length, 1 for a straight piece. */
+  readonly straightness?: number
+  /** Degrees: the largest angle between any two stretches of the piece. */
+  readonly largest_turn?: number
+  /** Treated less untreated. */
+  readonly dose?: number
   readonly units: BySide
+}
+
+/** What the rules of a border study cost and what they found. No coordinate is in it. */
+export interface BorderResult {
+  /** Rule by rule: what is left of the border, and the units placed on it. */
+  readonly waterfall: readonly {
+    readonly rule: string
+    readonly pieces: number
+    readonly km: number
+    readonly pairs: number
+    readonly units: number
+  }[]
+  /** What else changes here: share of the border in use along which each layer's own lines run. */
+  readonly what_else_changes?: {
+    readonly layers: readonly string[]
+    readonly whole: LayerShares
+    readonly pairs: readonly ({ readonly zones: readonly [string, string] } & LayerShares)[]
+  }
+  /** Units by the record's zone and the map's, where the two differ. */
+  readonly conflicts?: readonly { readonly record: string; readonly map: string; readonly units: number }[]
+  readonly repeated_points: {
+    readonly units: number
+    readonly distinct: number
+    /** Share of units that stand where another unit stands. */
+    readonly repeated_share: number | null
+    readonly repeated_share_reason?: string
+    /** `points` points have `units` units each. */
+    readonly most: readonly { readonly units: number; readonly points: number }[]
+  }
+}
+
+export interface LayerShares {
+  readonly km: number
+  /** In the order of `layers`; null where no border is left. */
+  readonly shares: readonly (number | null)[]
 }
 
 export interface Estimate {
@@ -138,8 +181,38 @@ export interface CheckResult {
   readonly says: string
 }
 
+/** A point of the border: pointwise interval, and the band that covers the whole curve. */
+export interface AlongResult {
+  readonly lon: number
+  readonly lat: number
+  /** Along its pair's border. */
+  readonly position_m: number
+  /** Id of its line. */
+  readonly piece: string
+  readonly estimate: number | null
+  readonly standard_error: number | null
+  readonly low: number | null
+  readonly high: number | null
+  readonly uniform_low: number | null
+  readonly uniform_high: number | null
+  /** Within the bandwidth of the point. */
+  readonly units: BySide
+  /** Why the point is blank. */
+  readonly reason?: string
+}
+
+export type AlongAverage =
+  | ({ readonly estimate: number; readonly standard_error: number; readonly p: number } & Interval)
+  | NotEstimated
+
 export interface OutcomeResult {
   readonly outcome: string
+  readonly along?: readonly AlongResult[]
+  /** Means over the points, by length of border and by density of units at it. */
+  readonly along_average?: { readonly length: AlongAverage; readonly density: AlongAverage }
+  readonly along_critical_value?: number
+  /** In the study's unit. */
+  readonly along_bandwidth?: { readonly rule: string } & BySide
   readonly lines: readonly LineJump[]
   readonly pooled: PooledJump
   readonly target: Target

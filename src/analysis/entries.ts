@@ -1,8 +1,8 @@
 /** The entries of a placement that one outcome can use, grouped by line once and shared by every estimate. */
 import type { Entries } from '../jump/index.js'
-import type { Placement } from '../placement.js'
-import { labelsOf, numbersOf, type Table } from '../records/index.js'
+import { numbersOf, type Table } from '../records/index.js'
 import type { Study } from '../study/index.js'
+import type { Placed } from './placing.js'
 
 export interface OutcomeEntries {
   /** Usable entries, ordered by line; within a line in the order of the rows. */
@@ -14,11 +14,11 @@ export interface OutcomeEntries {
   readonly missing: number
 }
 
-/** Entries with a finite outcome. `group` is the line; `cluster` the study's cluster column where it has one. */
-export function entriesOf(study: Study, table: Table, placement: Placement, outcome: string): OutcomeEntries {
+/** Entries with a finite outcome. `group` is the line; `cluster` that of the placed units, where they have one. */
+export function entriesOf(study: Study, table: Table, placed: Placed, outcome: string): OutcomeEntries {
+  const { placement, cluster } = placed
   const y = numbersOf(table, outcome)
   const weight = study.records.weight === undefined ? undefined : numbersOf(table, study.records.weight)
-  const cluster = study.records.cluster === undefined ? undefined : labelsOf(table, study.records.cluster).codes
   const lineCount = placement.lines.length
   const start = new Int32Array(lineCount + 1)
   let units = 0

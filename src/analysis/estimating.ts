@@ -1,4 +1,6 @@
 /** All estimates of one outcome: every line, pooled, the target and the comparison of lines. */
+
+import { centroidSuspicion } from '../borders/index.js'
 import {
   bandwidthsFor,
   buildSample,
@@ -14,10 +16,11 @@ import {
   varianceOf,
 } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
-import type { Placement } from '../placement.js'
 import type { EstimationPart, Study } from '../study/index.js'
 import { compareLines, type LineEffects, poolLines, targetEffect } from '../thresholds/index.js'
+import { metresPerUnit } from './border.js'
 import { entriesOfLine, type OutcomeEntries } from './entries.js'
+import type { Placed } from './placing.js'
 
 export interface LineEstimate {
   readonly jump: JumpFit
@@ -45,18 +48,21 @@ export function hasReason<T extends object>(value: OrReason<T>): value is { read
 /** Estimates one outcome; `shares` are the target's weights by line where the study gives a column. */
 export function estimateOutcome(
   study: Study,
-  placement: Placement,
+  placed: Placed,
   entries: OutcomeEntries,
   shares: Float64Array | undefined,
   progress: (done: number) => void,
 ): OutcomeEstimates {
-  const { lineVariance, pooledVariance } = variancesOf(study)
+  const { placement } = placed
+  const hasClusters = placed.cluster !== undefined
+  const { lineVariance, pooledVariance } = variancesOf(study, hasClusters)
+  const guard = bandwidthGuard(study, placed)
   const lines = placement.lines.map((_, line) => {
-    const estimate = estimateLine(entriesOfLine(entries, line), study.estimation, lineVariance)
+    const estimate = guard(estimateLine(entriesOfLine(entries, line), study.estimation, lineVariance))
     progress(line + 1)
     return estimate
   })
-  const pooled = estimatePooled(study, entries, lines, pooledVariance)
+  const pooled = guard(estimatePooled(study, entries, lines, pooledVariance, hasClusters))
   const ids = placement.lines.map((line) => line.id)
   const { effects, index } = effectsOf(ids, lines)
   const { level } = study.estimation
@@ -66,17 +72,37 @@ export function estimateOutcome(
 }
 
 /**
- * What the variance is where the study does not say: clustered by the study's column where it has one; else hc2, and
- * for pooled border pieces clustered by piece. `clusters` on a border without a column: pooled by piece, each piece hc2.
+ * What the variance is where the study does not say: clustered where the units have clusters; else hc2, and
+ * for pooled border pieces clustered by piece. `clusters` on a border without clusters: pooled by piece, each piece hc2.
  */
-function variancesOf(study: Study): { lineVariance: Variance; pooledVariance: Variance } {
+function variancesOf(study: Study, hasClusters: boolean): { lineVariance: Variance; pooledVariance: Variance } {
   const { variance } = study.estimation
-  const hasClusters = study.records.cluster !== undefined
   const byPiece = study.line.kind === 'border' && !hasClusters
   if (variance !== undefined && variance !== 'clusters') return { lineVariance: variance, pooledVariance: variance }
   return {
     lineVariance: hasClusters ? 'clusters' : 'hc2',
     pooledVariance: hasClusters || byPiece ? 'clusters' : 'hc2',
+  }
+}
+
+/** Withholds an estimate whose bandwidth is too narrow for what is known of the positions. */
+function bandwidthGuard(
+  study: Study,
+  { repeated }: Placed,
+): <T extends LineEstimate>(made: OrReason<T>) => OrReason<T> {
+  const { line } = study
+  if (line.kind !== 'border' || !repeated) return (made) => made
+  const perUnit = metresPerUnit[line.unit]
+  return (made) => {
+    if (hasReason(made)) return made
+    const { untreated, treated } = made.jump.bandwidths.h
+    const metres = Math.min(untreated, treated) * perUnit
+    if (metres < 2 * line.positionError) {
+      const width = Number(metres.toPrecision(4))
+      return { reason: `the bandwidth of ${width} m is under twice the position error of ${line.positionError} m` }
+    }
+    const suspicion = centroidSuspicion(repeated, metres)
+    return suspicion === undefined ? made : { reason: suspicion }
   }
 }
 
@@ -100,12 +126,13 @@ function estimatePooled(
   entries: OutcomeEntries,
   lines: readonly OrReason<LineEstimate>[],
   variance: Variance,
+  hasClusters: boolean,
 ): OutcomeEstimates['pooled'] {
   if (lines.length === 1) {
     const only = lines[0]
     return hasReason(only) ? only : { ...only, weights: Float64Array.of(1), withoutEffect: 0 }
   }
-  const byPiece = variance === 'clusters' && study.records.cluster === undefined
+  const byPiece = variance === 'clusters' && !hasClusters
   const all = byPiece ? { ...entries.all, cluster: entries.all.group } : entries.all
   const pooled = poolLines(buildSample(all, study.estimation.donut), lines.length, {
     ...jumpOptions(study.estimation, variance),

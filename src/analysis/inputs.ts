@@ -19,6 +19,8 @@ export interface AnalysisInputs {
   readonly zones?: LayerInput
   /** In the order of the study's barriers. */
   readonly barriers?: readonly LayerInput[]
+  /** In the order of the study's overlaps. */
+  readonly overlaps?: readonly LayerInput[]
 }
 
 /** Told how far a stage has come, for a progress bar. */
@@ -56,6 +58,7 @@ export function wantedColumns(
     const [lon, lat] = positionColumns(study)
     ask('number', lon, 'records.position')
     ask('number', lat, 'records.position')
+    ask('label', line.side, 'line.side')
   } else if (line.kind === 'distance') {
     ask('number', line.distance, 'line.distance')
     ask('label', line.name, 'line.name')

@@ -1,23 +1,16 @@
 /** From tables and layers to a placement: the one step that knows whether a line is a cutoff or a border. */
-import {
-  type Border,
-  type Eligible,
-  eligible,
-  type LineLayer,
-  measureUnits,
-  prepareBorder,
-  readLineLayer,
-  readZones,
-  shareNear,
-} from '../borders/index.js'
+import { beyondCap } from '../borders/index.js'
+import { streamOf } from '../math/index.js'
 import type { Placement, SetAside } from '../placement.js'
-import type { Checked, Problem } from '../problem.js'
+import type { Checked } from '../problem.js'
 import { type LedgerStep, labelsOf, ledgerStep, numbersOf, type Table } from '../records/index.js'
-import type { BorderLine, ScoreLine, Study } from '../study/index.js'
+import type { ScoreLine, Study } from '../study/index.js'
 import { type CutoffSource, type MissingKey, placeByDistance, placeByScore, readSchedule } from '../thresholds/index.js'
-import { type AnalysisInputs, type Progress, positionColumns } from './inputs.js'
+import { type BorderFacts, locateOnBorder } from './border.js'
+import type { AnalysisInputs, Progress } from './inputs.js'
 
-export interface Placed {
+/** Border studies have the facts of their border too. */
+export interface Placed extends Partial<BorderFacts> {
   readonly placement: Placement
   /** Rows kept that have no entry, by reason. */
   readonly setAside: SetAside
@@ -26,22 +19,15 @@ export interface Placed {
   readonly ledger: readonly LedgerStep[]
   /** Keys that records have and the schedule has not. */
   readonly missingKeys: readonly MissingKey[]
-  readonly border?: Border
-  readonly ground?: Eligible['ground']
-  /** Why each row of a border study was not placed against it, before weights and clusters are asked for. */
-  readonly reason?: Eligible['reason']
+  /** Cluster of each row, from 0, or -1: the study's column, or the position where repeated points are clustered. */
+  readonly cluster?: Int32Array
 }
 
-interface Located {
+interface Located extends Partial<BorderFacts> {
   readonly placement: Placement
   readonly setAside: SetAside
   readonly missingKeys?: readonly MissingKey[]
-  readonly border?: Border
-  readonly ground?: Eligible['ground']
-  readonly reason?: Eligible['reason']
 }
-
-export const metresPerUnit = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 } as const
 
 /** Places every row of the table; problems of schedule, zones and barriers are returned all at once. */
 export function placeStudy(study: Study, inputs: AnalysisInputs, progress?: Progress): Checked<Placed> {
@@ -55,17 +41,25 @@ export function placeStudy(study: Study, inputs: AnalysisInputs, progress?: Prog
     : undefined
   ledger.push(ledgerStep('placed against a line', table.rows, located.value.setAside, lines))
   const before = ledger[1].out
-  const mayDrop = study.records.weight !== undefined || study.records.cluster !== undefined
-  const { placement, setAside } = mayDrop
-    ? dropUnusable(study, table, located.value.placement)
+  const usable = usabilityOf(study, table, located.value)
+  const { placement, setAside } = usable
+    ? dropUnusable(located.value.placement, usable.reasonAgainst)
     : { placement: located.value.placement, setAside: new Map<string, number>() }
-  if (mayDrop) ledger.push(ledgerStep('with weight and cluster', before, setAside))
+  if (usable) ledger.push(ledgerStep('usable weight, cluster and position', before, setAside))
   const all = new Map(located.value.setAside)
   for (const [reason, count] of setAside) all.set(reason, (all.get(reason) ?? 0) + count)
   const units = ledger[ledger.length - 1].out
   return {
     ok: true,
-    value: { ...located.value, placement, setAside: all, units, ledger, missingKeys: located.value.missingKeys ?? [] },
+    value: {
+      ...located.value,
+      placement,
+      setAside: all,
+      units,
+      ledger,
+      missingKeys: located.value.missingKeys ?? [],
+      cluster: usable?.cluster,
+    },
   }
 }
 
@@ -102,41 +96,6 @@ function locateByScore(line: ScoreLine, { table, schedule }: AnalysisInputs): Ch
   return { ok: true, value: placeByScore({ score, treated: line.treated, cutoff, compareBy, rescale: line.rescale }) }
 }
 
-function locateOnBorder(
-  study: Study,
-  line: BorderLine,
-  { table, zones, barriers = [] }: AnalysisInputs,
-  progress?: Progress,
-): Checked<Located> {
-  if (!zones) throw new Error('the study has zones, but none were read')
-  const problems: Problem[] = []
-  const readyZones = readZones(zones.content, zones.file, line.zoneName)
-  if (!readyZones.ok) problems.push(...readyZones.problems)
-  const layers: { layer: LineLayer; within: number }[] = []
-  line.barriers.forEach(({ within }, i) => {
-    const layer = readLineLayer(barriers[i].content, barriers[i].file)
-    if (layer.ok) layers.push({ layer: layer.value, within })
-    else problems.push(...layer.problems)
-  })
-  if (!readyZones.ok || problems.length > 0) return { ok: false, problems }
-  const perUnit = metresPerUnit[line.unit]
-  const prepared = prepareBorder(readyZones.value, {
-    treated: line.treated,
-    snapMetres: line.snap,
-    pieceMetres: line.piece * perUnit,
-  })
-  if (!prepared.ok) return prepared
-  const border = prepared.value
-  const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
-  const measured = measureUnits(border, lon, lat, (done) => progress?.('placing', done, table.rows))
-  const { placement, setAside, ground, reason, pieces } = eligible(border, measured, {
-    metresPerUnit: perUnit,
-    reachMetres: line.reach === undefined ? undefined : line.reach * perUnit,
-    barriers: layers.map(({ layer, within }) => ({ name: layer.file, share: shareNear(border, layer, within) })),
-  })
-  return { ok: true, value: { placement, setAside, ground, reason, border: { ...border, pieces } } }
-}
-
 function totalMetres(placement: Placement): number {
   return placement.lines.reduce((sum, line) => sum + (line.lengthMetres ?? 0), 0)
 }
@@ -145,20 +104,42 @@ function pairsOf(placement: Placement): number {
   return new Set(placement.lines.map((line) => JSON.stringify(line.zones))).size
 }
 
-/** Takes out the entries of rows without a usable weight or a cluster. */
-function dropUnusable(
-  study: Study,
-  table: Table,
-  placement: Placement,
-): { placement: Placement; setAside: Map<string, number> } {
+interface Usability {
+  readonly cluster: Int32Array | undefined
+  readonly reasonAgainst: (row: number) => string | undefined
+}
+
+/** What may still stand against a row that has a line; undefined where the study asks for nothing of the kind. */
+function usabilityOf(study: Study, table: Table, located: Located): Usability | undefined {
   const weight = study.records.weight === undefined ? undefined : numbersOf(table, study.records.weight)
-  const cluster = study.records.cluster === undefined ? undefined : labelsOf(table, study.records.cluster).codes
+  const { repeated } = located
+  const points = study.line.kind === 'border' && repeated ? study.line.repeatedPoints : 'keep'
+  const byColumn = study.records.cluster === undefined ? undefined : labelsOf(table, study.records.cluster).codes
+  const cluster = byColumn ?? (points === 'cluster' ? repeated?.point : undefined)
+  const key = study.records.id === undefined ? undefined : labelsOf(table, study.records.id).codes
+  const beyond =
+    typeof points === 'object' && repeated ? beyondCap(repeated, points.cap, streamOf(study.seed, 3), key) : undefined
+  if (!weight && !cluster && !beyond) return undefined
+  return {
+    cluster,
+    reasonAgainst: (row) => {
+      if (beyond?.[row]) return 'repeated point beyond the cap'
+      return unusable(weight?.[row], cluster?.[row])
+    },
+  }
+}
+
+/** Takes out the entries of rows with a reason against them, counted by row. */
+function dropUnusable(
+  placement: Placement,
+  reasonAgainst: Usability['reasonAgainst'],
+): { placement: Placement; setAside: Map<string, number> } {
   const setAside = new Map<string, number>()
   const kept: number[] = []
   let previous = -1
   for (let e = 0; e < placement.unit.length; e++) {
     const unit = placement.unit[e]
-    const reason = unusable(weight?.[unit], cluster?.[unit])
+    const reason = reasonAgainst(unit)
     if (reason === undefined) kept.push(e)
     else if (unit !== previous) setAside.set(reason, (setAside.get(reason) ?? 0) + 1)
     previous = unit

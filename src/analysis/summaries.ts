@@ -1,8 +1,20 @@
 /** Estimates as they stand in results.json. */
+
+import type { Piece } from '../borders/index.js'
 import type { Inference, JumpFit, Variance } from '../jump/index.js'
 import type { Line, Placement } from '../placement.js'
-import type { BySide, Estimate, Jump, LineSummary, OutcomeResult, PooledJump, Target } from '../results.js'
+import type {
+  BorderResult,
+  BySide,
+  Estimate,
+  Jump,
+  LineSummary,
+  OutcomeResult,
+  PooledJump,
+  Target,
+} from '../results.js'
 import type { EstimationPart, Study } from '../study/index.js'
+import type { BorderFacts } from './border.js'
 import { hasReason, type OutcomeEstimates } from './estimating.js'
 
 export function outcomeResult(
@@ -103,7 +115,8 @@ function notesOn(jump: JumpFit): string[] {
   return notes
 }
 
-export function lineSummaries(placement: Placement): LineSummary[] {
+/** `pieces` are the border's pieces in use, in the order of the lines; none for scores. */
+export function lineSummaries(placement: Placement, pieces: readonly Piece[] = []): LineSummary[] {
   const counts = placement.lines.map(() => ({ untreated: 0, treated: 0 }))
   for (let e = 0; e < placement.line.length; e++) {
     counts[placement.line[e]][placement.treated[e] === 1 ? 'treated' : 'untreated']++
@@ -115,6 +128,37 @@ export function lineSummaries(placement: Placement): LineSummary[] {
     ...(line.zones === undefined ? {} : { zones: line.zones }),
     ...(line.piece === undefined ? {} : { piece: line.piece }),
     ...(line.lengthMetres === undefined ? {} : { length_m: line.lengthMetres }),
+    ...(pieces[i] ? { straightness: pieces[i].straightness, largest_turn: pieces[i].largestTurnDegrees } : {}),
+    ...(line.dose === undefined ? {} : { dose: line.dose }),
     units: counts[i] as BySide,
   }))
+}
+
+export function borderResult({ waterfall, layers, conflicts, repeated }: BorderFacts): BorderResult {
+  const { units, distinct, repeatedShare, most } = repeated
+  const sharesOf = ({ km, shares }: { km: number; shares: readonly number[] }) => ({
+    km,
+    shares: shares.map((share) => (Number.isNaN(share) ? null : share)),
+  })
+  return {
+    waterfall,
+    ...(layers
+      ? {
+          what_else_changes: {
+            layers: layers.layers,
+            whole: sharesOf(layers.whole),
+            pairs: layers.pairs.map((pair) => ({ zones: pair.zones, ...sharesOf(pair) })),
+          },
+        }
+      : {}),
+    ...(conflicts ? { conflicts } : {}),
+    repeated_points: {
+      units,
+      distinct,
+      ...(Number.isNaN(repeatedShare)
+        ? { repeated_share: null, repeated_share_reason: 'no unit has a position' }
+        : { repeated_share: repeatedShare }),
+      most,
+    },
+  }
 }

@@ -37,7 +37,7 @@ function namedFiles(study: Study): string[] {
   const files = [study.records.file]
   const { line } = study
   if (line.kind === 'score' && line.cutoff.kind === 'schedule') files.push(line.cutoff.file)
-  if (line.kind === 'border') files.push(line.zones, ...line.barriers.map((barrier) => barrier.file))
+  if (line.kind === 'border') files.push(line.zones, ...[...line.barriers, ...line.overlaps].map((layer) => layer.file))
   return files
 }
 
@@ -64,6 +64,7 @@ interface Parts {
   readonly schedule?: Table
   readonly zones?: LayerInput
   readonly barriers: readonly LayerInput[]
+  readonly overlaps: readonly LayerInput[]
 }
 
 /** What could be read; the problems of the rest are added to `problems` in the order of the study. */
@@ -98,24 +99,32 @@ async function readParts({ study, file }: StudyFile, { all }: ReadOptions, probl
             ? await readTable(at(scheduleFile), { wanted: wanted.schedule ?? [], shownAs: scheduleFile })
             : header,
         )
-  if (line.kind !== 'border') return { table, schedule, barriers: [] }
+  if (line.kind !== 'border') return { table, schedule, barriers: [], overlaps: [] }
   const zones = keep(await readLayer(at(line.zones), line.zones, 'line.zones'))
-  const barriers: LayerInput[] = []
-  for (const [i, barrier] of line.barriers.entries()) {
-    const layer = keep(await readLayer(at(barrier.file), barrier.file, `line.barriers[${i}].file`))
-    if (layer) barriers.push(layer)
+  const readAll = async (key: 'barriers' | 'overlaps') => {
+    const layers: LayerInput[] = []
+    for (const [i, { file }] of line[key].entries()) {
+      const layer = keep(await readLayer(at(file), file, `line.${key}[${i}].file`))
+      if (layer) layers.push(layer)
+    }
+    return layers
   }
-  return { table, zones, barriers }
+  return { table, zones, barriers: await readAll('barriers'), overlaps: await readAll('overlaps') }
 }
 
 /** Problems of the parts that could be read, where others could not: they are placed with no units at all. */
-async function otherProblems(study: Study, { schedule, zones, barriers }: Parts): Promise<readonly Problem[]> {
+async function otherProblems(
+  study: Study,
+  { schedule, zones, barriers, overlaps }: Parts,
+): Promise<readonly Problem[]> {
   const { line } = study
   const { placeStudy, wantedColumns } = await import('../analyze.js')
   const table = emptyTable(study.records.file, wantedColumns(study).records)
   if (line.kind === 'border' && zones !== undefined) {
-    const near = barriers.map((barrier) => line.barriers.find(({ file }) => file === barrier.file)!)
-    const placed = placeStudy({ ...study, line: { ...line, barriers: near } }, { table, zones, barriers })
+    const read = (key: 'barriers' | 'overlaps', layers: readonly LayerInput[]) =>
+      layers.map((layer) => line[key].find(({ file }) => file === layer.file)!)
+    const known = { barriers: read('barriers', barriers), overlaps: read('overlaps', overlaps) }
+    const placed = placeStudy({ ...study, line: { ...line, ...known } }, { table, zones, barriers, overlaps })
     return placed.ok ? [] : placed.problems
   }
   if (schedule !== undefined) {

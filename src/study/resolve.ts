@@ -63,12 +63,20 @@ function resolveBorder(line: z.infer<typeof borderLine>): BorderLine {
     kind: 'border',
     zones: line.zones,
     zoneName: line.zone_name ?? 'name',
-    treated: line.treated,
+    ...given({ treated: line.treated, dose: line.dose }),
+    outside: line.outside ?? 'set-aside',
     unit,
     snap: line.snap ?? 2,
     piece: line.piece ?? 1000 / METRES[unit],
     ...given({ reach: line.reach }),
     barriers: line.barriers ?? [],
+    overlaps: line.overlaps ?? [],
+    ...given({ along: line.along, side: line.side }),
+    onConflict: line.on_conflict ?? 'set-aside',
+    positionError: line.position_error ?? 0,
+    corner: line.corner ?? 0,
+    ...given({ largestTurn: line.largest_turn }),
+    repeatedPoints: line.repeated_points ?? 'keep',
   }
 }
 

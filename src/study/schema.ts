@@ -84,26 +84,34 @@ const zonesByProperty = keyed({
 
 const layerNear = keyed({ file: fileName, within: positive })
 
+const repeatedPoints = choose<'keep' | 'cluster' | { cap: number }>((value) =>
+  isRecord(value) ? keyed({ cap: wholeFrom1 }) : oneOf(['keep', 'cluster']),
+)
+const wholeFrom1 = numberWhere(
+  'must be a whole number, 1 or more',
+  'write how many units a point may have',
+  (value) => Number.isSafeInteger(value) && value >= 1,
+)
+
 export const borderLine = keyed({
   zones: fileName,
   zone_name: textFor('a property of the zones').optional(),
-  treated: treatedZones,
-  dose: notYet('leave it out and name the treated zones'),
-  outside: oneOf(['set-aside'], ['untreated']).optional(),
+  treated: treatedZones.optional(),
+  dose: textFor('a numeric property of the zones').optional(),
+  outside: oneOf(['set-aside', 'untreated']).optional(),
   unit: oneOf(['m', 'km', 'ft', 'mi']).optional(),
   snap: positive.optional(),
   piece: positive.optional(),
   reach: positive.optional(),
   barriers: z.array(layerNear).optional(),
-  overlaps: notYet(),
-  along: notYet(),
-  side: notYet(),
-  on_conflict: notYet(),
-  position_error: leaf<0>(
-    'must be 0',
-    { todo: 'write 0 or leave it out', wants: 'number', isLater: (value) => typeof value === 'number' && value > 0 },
-    (value) => value === 0,
-  ).optional(),
+  overlaps: z.array(layerNear).optional(),
+  along: positive.optional(),
+  side: columnName.optional(),
+  on_conflict: oneOf(['set-aside', 'map', 'record']).optional(),
+  position_error: notNegative.optional(),
+  corner: notNegative.optional(),
+  largest_turn: positive.optional(),
+  repeated_points: repeatedPoints.optional(),
 })
 
 export const distanceLine = keyed({ distance: columnName, name: columnName.optional() })
@@ -226,7 +234,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|outcomes\.\d+|records\.(id|weight|cluster|position\.\d+)|line\.(score|distance|name|zone_name|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
+  /^(title|outcomes\.\d+|records\.(id|weight|cluster|position\.\d+)|line\.(score|distance|name|zone_name|dose|side|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

@@ -25,7 +25,9 @@ export function togetherProblems(source: Source, file: string): Problem[] {
       'name the column in records.cluster',
     )
 
+  if (form === 'zones') borderProblems(line, say)
   const narrowest = Math.min(...fixedWidths(estimation.bandwidth))
+  errorProblem(line, narrowest, say)
   if (typeof estimation.donut === 'number' && estimation.donut >= narrowest)
     say(
       ['estimation', 'donut'],
@@ -61,6 +63,31 @@ export function togetherProblems(source: Source, file: string): Problem[] {
       'name the column that holds the cutoffs',
     )
   return problems
+}
+
+type Say = (path: Path, must: string, found: string, todo: string) => void
+
+const metres: Readonly<Record<string, number>> = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 }
+
+/** Rules about the keys of a border. */
+function borderProblems(line: Readonly<Record<string, unknown>>, say: Say): void {
+  if (line.treated === undefined && line.dose === undefined)
+    say(['line', 'treated'], '', 'missing', 'write [zone, zone] or {property: levy, equals: new}, or a dose')
+  if (line.treated !== undefined && line.dose !== undefined)
+    say(['line', 'dose'], ': does not go with treated', 'both are given', 'keep one of them')
+  if (line.dose !== undefined && line.outside === 'untreated')
+    say(['line', 'outside'], ': untreated does not go with dose', 'got "untreated"', 'leave it out')
+  if (line.on_conflict !== undefined && line.side === undefined)
+    say(['line', 'on_conflict'], ': needs the zone by the record', 'no line.side', 'name the column in line.side')
+}
+
+/** A fixed bandwidth must be at least twice the declared position error. */
+function errorProblem(line: Readonly<Record<string, unknown>>, narrowest: number, say: Say): void {
+  const perUnit = typeof line.unit === 'string' ? metres[line.unit] : 1
+  const error = line.position_error
+  if (!isPositive(error) || perUnit === undefined || !(narrowest * perUnit < 2 * error)) return
+  const found = `a bandwidth of ${Number((narrowest * perUnit).toPrecision(6))} m, and an error of ${error} m`
+  say(['line', 'position_error'], ': the bandwidth is under twice this', found, 'write a wider bandwidth')
 }
 
 function partsOf(data: unknown): Record<'records' | 'line' | 'estimation', Readonly<Record<string, unknown>>> {

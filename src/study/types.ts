@@ -54,8 +54,12 @@ export interface BorderLine {
   readonly kind: 'border'
   readonly zones: string
   readonly zoneName: string
-  /** Names of treated zones, or a property and the value that marks them. */
-  readonly treated: readonly string[] | { readonly property: string; readonly equals: string | number | boolean }
+  /** Names of treated zones, or a property and the value that marks them; absent where `dose` is given. */
+  readonly treated?: readonly string[] | { readonly property: string; readonly equals: string | number | boolean }
+  /** Numeric property of the zones: the border runs between zones that differ in it, the higher one treated. */
+  readonly dose?: string
+  /** What units in no zone are: set aside, or untreated. */
+  readonly outside: 'set-aside' | 'untreated'
   readonly unit: LengthUnit
   /** Metres. */
   readonly snap: number
@@ -64,6 +68,21 @@ export interface BorderLine {
   /** In `unit`; absent: no limit. */
   readonly reach?: number
   readonly barriers: readonly LayerNear[]
+  /** Borders of other jurisdictions. */
+  readonly overlaps: readonly LayerNear[]
+  /** Spacing of estimates along the border, in `unit`; absent: none. */
+  readonly along?: number
+  /** Column with the zone by the record. */
+  readonly side?: string
+  readonly onConflict: 'set-aside' | 'map' | 'record'
+  /** Metres; a bandwidth under twice this is refused, and units nearer to the border than this are set aside. */
+  readonly positionError: number
+  /** In `unit`: units whose foot is this near to a point where three zones meet are set aside; 0: none. */
+  readonly corner: number
+  /** Degrees: pieces that turn by more are set aside; absent: none. */
+  readonly largestTurn?: number
+  /** What to do about units that share one position. */
+  readonly repeatedPoints: 'keep' | 'cluster' | { readonly cap: number }
 }
 
 export interface DistanceLine {

@@ -53,13 +53,21 @@ function writtenLine(line: Study['line']): object {
     zones: line.zones,
     zone_name: line.zoneName,
     treated: line.treated,
-    outside: 'set-aside',
+    dose: line.dose,
+    outside: line.outside,
     unit: line.unit,
     snap: line.snap,
     piece: line.piece,
     reach: line.reach,
     barriers: line.barriers,
-    position_error: 0,
+    overlaps: line.overlaps,
+    along: line.along,
+    side: line.side,
+    on_conflict: line.side === undefined ? undefined : line.onConflict,
+    position_error: line.positionError,
+    corner: line.corner,
+    largest_turn: line.largestTurn,
+    repeated_points: line.repeatedPoints,
   }
 }
 

@@ -155,7 +155,14 @@ line:
   piece: 2
   reach: 3.5
   barriers: [{file: river.geojson, within: 100}, {file: rail.geojson, within: 50}]
-  position_error: 0
+  overlaps: [{file: councils.geojson, within: 20}]
+  along: 0.5
+  side: zone_on_record
+  on_conflict: map
+  position_error: 5
+  corner: 0.25
+  largest_turn: 60
+  repeated_points: {cap: 3}
 estimation: {variance: clusters}
 pooling: {fixed_effects: false}
 `,
@@ -173,10 +180,23 @@ pooling: {fixed_effects: false}
           { file: 'river.geojson', within: 100 },
           { file: 'rail.geojson', within: 50 },
         ],
+        overlaps: [{ file: 'councils.geojson', within: 20 }],
+        along: 0.5,
+        side: 'zone_on_record',
+        onConflict: 'map',
+        positionError: 5,
+        corner: 0.25,
+        largestTurn: 60,
+        repeatedPoints: { cap: 3 },
       },
       estimation: { variance: 'clusters' },
       pooling: { fixedEffects: false },
     },
+  },
+  {
+    name: 'a border between doses',
+    text: border.replace('treated: [Inner]', 'dose: levy_rate'),
+    gives: { line: { kind: 'border', dose: 'levy_rate', outside: 'set-aside' } },
   },
   {
     name: 'GeoJSON points need no position',
@@ -313,7 +333,7 @@ pooling:
     problems: [
       '1: records.position: missing; name the two columns: [lon, lat]',
       '4: line.zones: missing; write the path of a file',
-      '4: line.treated: missing; write [zone, zone] or {property: levy, equals: new}',
+      '4: line.treated: missing; write [zone, zone] or {property: levy, equals: new}, or a dose',
     ],
   },
   {
@@ -444,15 +464,25 @@ pooling:
     ],
   },
   {
-    name: 'keys and words whose method comes later',
+    name: 'keys of a border that do not go together',
     text: `${border}  dose: rate
   outside: untreated
-  overlaps: [{file: c.geojson, within: 20}]
-  along: 500
-  side: zone
   on_conflict: map
   position_error: 25
-take_up: pays
+  repeated_points: {cap: 0}
+estimation: {bandwidth: 40}
+`,
+    problems: [
+      '8: line.dose: does not go with treated: both are given; keep one of them',
+      '9: line.outside: untreated does not go with dose: got "untreated"; leave it out',
+      '10: line.on_conflict: needs the zone by the record: no line.side; name the column in line.side',
+      '11: line.position_error: the bandwidth is under twice this: a bandwidth of 40 m, and an error of 25 m; write a wider bandwidth',
+      '12: line.repeated_points.cap: must be a whole number, 1 or more: got 0; write how many units a point may have',
+    ],
+  },
+  {
+    name: 'keys and words whose method comes later',
+    text: `${border}take_up: pays
 covariates: [a]
 predetermined: [b]
 estimation:
@@ -465,22 +495,15 @@ variants:
   half: {estimation: {order: 2}}
 `,
     problems: [
-      '8: line.dose: not available yet; leave it out and name the treated zones',
-      '9: line.outside: untreated: not available yet; write set-aside',
-      '10: line.overlaps: not available yet; leave it out',
-      '11: line.along: not available yet; leave it out',
-      '12: line.side: not available yet; leave it out',
-      '13: line.on_conflict: not available yet; leave it out',
-      '14: line.position_error: 25: not available yet; write 0 or leave it out',
-      '15: take_up: not available yet; leave it out',
-      '16: covariates: not available yet; leave it out',
-      '17: predetermined: not available yet; leave it out',
-      '19: estimation.interval: bias-aware: not available yet; write corrected',
-      '20: estimation.smoothness: 0.2: not available yet; write rule or leave it out',
-      '21: estimation.variance: few-clusters: not available yet; write one of hc0, hc1, hc2, hc3, neighbours, clusters',
-      '22: estimation.spatial: not available yet; leave it out',
-      '23: checks: standard: not available yet; write none',
-      '24: variants: not available yet; leave it out and write one study for each',
+      '8: take_up: not available yet; leave it out',
+      '9: covariates: not available yet; leave it out',
+      '10: predetermined: not available yet; leave it out',
+      '12: estimation.interval: bias-aware: not available yet; write corrected',
+      '13: estimation.smoothness: 0.2: not available yet; write rule or leave it out',
+      '14: estimation.variance: few-clusters: not available yet; write one of hc0, hc1, hc2, hc3, neighbours, clusters',
+      '15: estimation.spatial: not available yet; leave it out',
+      '16: checks: standard: not available yet; write none',
+      '17: variants: not available yet; leave it out and write one study for each',
     ],
   },
   {

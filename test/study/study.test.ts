@@ -69,7 +69,10 @@ line:
   snap: 2
   piece: 1000
   barriers: []
+  overlaps: []
   position_error: 0
+  corner: 0
+  repeated_points: keep
 estimation:
   order: 1
   kernel: triangular

@@ -1,0 +1,119 @@
+/** A border study's rules put to work: zones and layers to a border, units measured once, rules deciding what counts. */
+import {
+  type Border,
+  type Conflict,
+  eligible,
+  type Ground,
+  type LayerShare,
+  type LayersAlong,
+  type LineLayer,
+  layersAlong,
+  measureUnits,
+  prepareBorder,
+  type RepeatedPoints,
+  readLineLayer,
+  readZones,
+  repeatedPoints,
+  shareNear,
+  type WaterfallStep,
+  zonesByRecord,
+} from '../borders/index.js'
+import type { Placement, SetAside } from '../placement.js'
+import type { Checked, Problem } from '../problem.js'
+import { labelsOf, numbersOf } from '../records/index.js'
+import type { BorderLine, LayerNear, Study } from '../study/index.js'
+import { type AnalysisInputs, type LayerInput, type Progress, positionColumns } from './inputs.js'
+
+export const metresPerUnit = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 } as const
+
+/** What is known of the ground beyond the placement. */
+export interface BorderFacts {
+  /** Its pieces carry what set them aside. */
+  readonly border: Border
+  readonly ground: Ground
+  /** Why each row was not placed: index into `labels`, -1 where it was. */
+  readonly reason: { readonly codes: Int32Array; readonly labels: readonly string[] }
+  readonly waterfall: readonly WaterfallStep[]
+  /** What else changes at the border; absent without barriers and overlaps. */
+  readonly layers?: LayersAlong
+  /** Units by record and map where the two differ; absent without `line.side`. */
+  readonly conflicts?: readonly Conflict[]
+  readonly repeated: RepeatedPoints
+}
+
+export interface LocatedOnBorder extends BorderFacts {
+  readonly placement: Placement
+  readonly setAside: SetAside
+}
+
+export function locateOnBorder(
+  study: Study,
+  line: BorderLine,
+  inputs: AnalysisInputs,
+  progress?: Progress,
+): Checked<LocatedOnBorder> {
+  const { table, zones } = inputs
+  if (!zones) throw new Error('the study has zones, but none were read')
+  const problems: Problem[] = []
+  const readyZones = readZones(zones.content, zones.file, line.zoneName)
+  if (!readyZones.ok) problems.push(...readyZones.problems)
+  const barriers = layersOf(line.barriers, inputs.barriers ?? [], problems)
+  const overlaps = layersOf(line.overlaps, inputs.overlaps ?? [], problems)
+  if (!readyZones.ok || problems.length > 0) return { ok: false, problems }
+  const perUnit = metresPerUnit[line.unit]
+  const prepared = prepareBorder(readyZones.value, {
+    treated: line.treated,
+    dose: line.dose,
+    outside: line.outside,
+    snapMetres: line.snap,
+    pieceMetres: line.piece * perUnit,
+  })
+  if (!prepared.ok) return prepared
+  const border = prepared.value
+  const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
+  const measured = measureUnits(border, lon, lat, (done) => progress?.('placing', done, table.rows))
+  const shares = (layers: readonly Layer[]): LayerShare[] =>
+    layers.map(({ layer, within }) => ({ name: layer.file, share: shareNear(border, layer, within) }))
+  const [nearBarriers, nearOverlaps] = [shares(barriers), shares(overlaps)]
+  const side = line.side === undefined ? undefined : zonesByRecord(border.names, labelsOf(table, line.side))
+  const result = eligible(border, measured, {
+    metresPerUnit: perUnit,
+    reachMetres: line.reach === undefined ? undefined : line.reach * perUnit,
+    barriers: nearBarriers,
+    overlaps: nearOverlaps,
+    largestTurnDegrees: line.largestTurn,
+    cornerMetres: line.corner * perUnit,
+    positionErrorMetres: line.positionError,
+    side: side && { recordZone: side.recordZone, onConflict: line.onConflict },
+  })
+  const { placement, setAside, ground, reason, pieces, waterfall, conflicts } = result
+  const all = [...nearBarriers, ...nearOverlaps]
+  return {
+    ok: true,
+    value: {
+      placement,
+      setAside,
+      ground,
+      reason,
+      border: { ...border, pieces },
+      waterfall,
+      conflicts,
+      layers: all.length > 0 ? layersAlong(pieces, all) : undefined,
+      repeated: repeatedPoints(lon, lat),
+    },
+  }
+}
+
+interface Layer {
+  readonly layer: LineLayer
+  readonly within: number
+}
+
+function layersOf(near: readonly LayerNear[], inputs: readonly LayerInput[], problems: Problem[]): Layer[] {
+  return near.flatMap(({ within }, i) => {
+    const layer = readLineLayer(inputs[i].content, inputs[i].file)
+    if (layer.ok) return [{ layer: layer.value, within }]
+    problems.push(...layer.problems)
+    return []
+  })
+}
