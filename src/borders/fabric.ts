@@ -84,7 +84,7 @@ export function fabricOf(zones: Zones, snapMetres: number): Fabric {
   const slivers: Sliver[] = []
   pathsByRing(boundaries, paths).forEach((shared, ring) => {
     const parts = partsOfRing(boundaries, ring, shared, reaches)
-    for (const run of runsOf(parts)) stretches.push(stretchOf(boundaries, run, names, reaches.reachMetres))
+    for (const run of runsOf(parts)) stretches.push(stretchOf(boundaries, run, names, reaches))
     slivers.push(...sliversOfRing(boundaries, parts, names, reaches))
   })
   slivers.sort((a, b) => b.widestMetres - a.widestMetres || b.squareMetres - a.squareMetres || a.lon - b.lon)
@@ -101,12 +101,7 @@ export function widestSlivers(
   return { listed: slivers.slice(0, most), others: { count: others.length, squareMetres } }
 }
 
-function stretchOf(
-  boundaries: Boundaries,
-  run: readonly Part[],
-  names: readonly string[],
-  reachMetres: number,
-): Stretch {
+function stretchOf(boundaries: Boundaries, run: readonly Part[], names: readonly string[], reaches: Reaches): Stretch {
   const [{ edge, label, other }] = run
   const points = run.map((part) => pointOfEdge(boundaries.edges, part.edge, part.from))
   const end = run[run.length - 1]
@@ -116,7 +111,7 @@ function stretchOf(
     lengths.reduce((sum, length, i) => (wanted(run[i]) ? sum + length : sum), 0)
   const stretch = { zone: names[boundaries.zoneOfEdge[edge]], label, lengthMetres: total(() => true), points }
   if (other < 0) return stretch
-  const { largestMetres, meanMetres } = gapOf(samplesAlong(boundaries, run, other, 1.01 * reachMetres), reachMetres)
+  const { largestMetres, meanMetres } = gapOf(samplesAlong(boundaries, run, other, reaches), reaches.reachMetres)
   const exactMetres = total((part) => part.isExact)
   return {
     ...stretch,
@@ -129,18 +124,17 @@ function sliversOfRing(
   boundaries: Boundaries,
   parts: readonly Part[],
   names: readonly string[],
-  { snapMetres, reachMetres }: Reaches,
+  reaches: Reaches,
 ): Sliver[] {
   const own = boundaries.zoneOfEdge[parts[0].edge]
-  const joined = parts.map((part): Part => (part.other > own ? { ...part, label: 'shared' } : { ...part, other: -1 }))
-  return runsOf(joined).flatMap((run) => {
+  return runsOf(parts, (a, b) => a.other === b.other).flatMap((run) => {
     const { other } = run[0]
-    if (other < 0 || run.every((part) => part.isExact)) return []
-    const samples = samplesAlong(boundaries, run, other, 1.01 * reachMetres)
-    return sliversAlong(boundaries, samples, own, other, 1.01 * reachMetres).map((shape) => ({
+    if (other <= own || run.every((part) => part.isExact)) return []
+    const samples = samplesAlong(boundaries, run, other, reaches)
+    return sliversAlong(boundaries, samples, own, other, reaches.reachMetres).map((shape) => ({
       ...shape,
       zones: [names[own], names[other]] as const,
-      isWithinSnap: shape.widestMetres <= 1.001 * snapMetres,
+      isWithinSnap: shape.widestMetres <= 1.001 * reaches.snapMetres,
     }))
   })
 }

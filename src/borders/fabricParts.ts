@@ -179,9 +179,11 @@ export function nearestFacing(
   return best
 }
 
-/** Neighbouring parts of one label and zone together, beginning so that no run goes over the end of the list. */
-export function runsOf<P extends Part>(parts: readonly P[]): P[][] {
-  const isSame = (a: Part, b: Part) => a.label === b.label && a.other === b.other
+/** Neighbouring parts of one kind together, beginning so that no run goes over the end of the list. */
+export function runsOf<P extends Part>(
+  parts: readonly P[],
+  isSame = (a: Part, b: Part) => a.label === b.label && a.other === b.other,
+): P[][] {
   const start = parts.findIndex((part, i) => !isSame(part, parts[(i + parts.length - 1) % parts.length]))
   if (start < 0) return [[...parts]]
   const runs: P[][] = []

@@ -1,6 +1,6 @@
 /** Places along a run of boundary with the distance to another zone's boundary, close enough that it has no bend between. */
 import type { Boundaries } from './boundaries.js'
-import type { Part } from './fabricParts.js'
+import type { Part, Reaches } from './fabricParts.js'
 import { edgeLengthMetres } from './geodesy.js'
 import { bendsAlong, type Segment, type SignedFoot, segmentOf, signedFoot } from './zoneFoot.js'
 
@@ -15,24 +15,25 @@ export interface Sample {
   readonly isExact: boolean
 }
 
+/** What is searched for within a distance is searched for within this much more, for rounding. */
+const searchRoom = 1.01
 /** Halvings of the way between two bends, where the distance is not straight there after all. */
 const mostHalvings = 14
 /** The distance halfway may differ by this from the mean of both ends: metres, and a share of them. */
 const straightMetres = 0.001
 const straightShare = 0.001
 
-/** Samples of parts that join end to end, from the first to the last end; of a part that coincides, only its ends. */
-export function samplesAlong(
-  boundaries: Boundaries,
-  parts: readonly Part[],
-  zone: number,
-  reachMetres: number,
-): Sample[] {
+/**
+ * Samples of parts that join end to end, from the first to the last end; of a part that coincides, only its ends. The
+ * zone is searched for within the tolerance beside what is shared, else within the reach.
+ */
+export function samplesAlong(boundaries: Boundaries, parts: readonly Part[], zone: number, reaches: Reaches): Sample[] {
   const samples: Sample[] = []
   let walked = 0
-  for (const { edge, from, to, isExact } of parts) {
+  for (const { edge, from, to, isExact, label } of parts) {
     const segment = segmentOf(boundaries, edge, from, to)
-    const feet = feetAlong(boundaries, segment, zone, reachMetres, isExact)
+    const metres = searchRoom * (label === 'shared' ? reaches.snapMetres : reaches.reachMetres)
+    const feet = feetAlong(boundaries, segment, zone, metres, isExact)
     for (const { lon, lat, foot } of samples.length === 0 ? feet : feet.slice(1)) {
       const walkedMetres = walked + edgeLengthMetres(segment[0], segment[1], lon, lat)
       samples.push({ lon, lat, foot, walkedMetres, isExact: isExact && samples.length > 0 })

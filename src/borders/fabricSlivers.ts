@@ -60,8 +60,13 @@ function addSliver(
   if (samples.length < 2 || !far?.foot) return
   const near: Point[] = samples.map(({ lon, lat }) => [lon, lat])
   const opposite = oppositeSide(boundaries, samples)
-  const across = opposite.map(([lon, lat]) => nearestOfZone(boundaries, own, lon, lat, reachMetres)?.metres ?? 0)
   const widths = samples.map(({ foot }) => foot?.metres ?? 0)
+  const wide = 1.1 * widths.reduce((most, width) => Math.max(most, width), 0) + coincidentMetres
+  const across = opposite.map(
+    ([lon, lat]) =>
+      (nearestOfZone(boundaries, own, lon, lat, wide) ?? nearestOfZone(boundaries, own, lon, lat, reachMetres))
+        ?.metres ?? 0,
+  )
   const turn = (point: Point): Point => [point[0] + turnsTo(point[0], near[0][0]), point[1]]
   const ring = [...near, ...opposite.map(turn).reverse(), near[0]]
   const middle = placeHalfway(near)
