@@ -1,5 +1,8 @@
 /** Door of the report room: results in, text files out. It computes no estimate, and no record, id or unit coordinate passes it. */
+
+import { conflictTable, waterfallTable, whatElseTable } from './borderTables.js'
 import { checksCsv, linesCsv, pooledCsv } from './csv.js'
+import { alongFigure } from './figures/along.js'
 import { forestFigure } from './figures/forest.js'
 import { mapFigure } from './figures/map.js'
 import { scatterFigure } from './figures/scatter.js'
@@ -26,11 +29,13 @@ export function drawReport(input: ReportInput): Map<string, string> {
     byOutcome: view.outcomes.map((outcome) => ({
       pooled: pooledFigure(view, outcome),
       forest: forestFigure(view, outcome, `figure-${outcome.slug}-forest`),
+      along: alongFigure(view, outcome, `figure-${outcome.slug}-along`),
     })),
     lineFigures: addLineFigures(view, files),
   }
   view.outcomes.forEach((outcome, index) => {
-    const { pooled, forest } = figures.byOutcome[index]
+    const { pooled, forest, along } = figures.byOutcome[index]
+    if (along) files.set(`figures/${outcome.slug}-along.svg`, along)
     if (pooled) files.set(`figures/${outcome.slug}-pooled.svg`, pooled)
     files.set(`figures/${outcome.slug}-forest.svg`, forest)
     addTable(files, `lines-${outcome.slug}`, paperLineTable(view, outcome))
@@ -38,6 +43,8 @@ export function drawReport(input: ReportInput): Map<string, string> {
   if (figures.map) files.set('figures/map.svg', figures.map)
   addTable(files, 'pooled', pooledTable(view))
   addTable(files, 'ledger', ledgerTable(view))
+  const borderTables = { waterfall: waterfallTable(view), 'what-else': whatElseTable(view), sides: conflictTable(view) }
+  for (const [name, table] of Object.entries(borderTables)) if (table) addTable(files, name, table)
   files.set('lines.csv', linesCsv(view))
   files.set('pooled.csv', pooledCsv(view))
   files.set('checks.csv', checksCsv(view))

@@ -1,11 +1,12 @@
 /** report.html: one page, no request, no script. The answer in words first, then what it rests on. */
+import { conflictTable, waterfallTable, whatElseTable } from '../borderTables.js'
 import { escapeHtml } from '../escape.js'
 import { checksTable, ledgerTable, setAsideTable } from '../ledgerTable.js'
 import { pageLineTable } from '../lineTable.js'
-import { count } from '../numbers.js'
+import { count, significant } from '../numbers.js'
 import { comparisonTable, contrastTable, pooledTable } from '../pooledTable.js'
 import { toHtml } from '../tables.js'
-import { estimatedLines, howMany, type OutcomeView, type View } from '../view.js'
+import { estimatedLines, howMany, type OutcomeView, type View, widthText } from '../view.js'
 import { answerOf } from './answer.js'
 import { cautionsOf } from './cautions.js'
 import { methodsOf } from './methods.js'
@@ -15,7 +16,11 @@ import { pageStyle } from './style.js'
 /** Figures of the page, as SVG. */
 export interface PageFigures {
   readonly map: string | undefined
-  readonly byOutcome: readonly { readonly pooled: string | undefined; readonly forest: string }[]
+  readonly byOutcome: readonly {
+    readonly pooled: string | undefined
+    readonly forest: string
+    readonly along: string | undefined
+  }[]
   /** Lines that have a figure of their own in the folder, and those left out. */
   readonly lineFigures: { readonly drawn: number; readonly leftOut: number }
 }
@@ -76,6 +81,7 @@ const emblem =
 function sectionsOf(view: View, figures: PageFigures): Section[] {
   const checks = checksTable(view)
   const setAside = setAsideTable(view)
+  const ground = [waterfallTable(view), whatElseTable(view), conflictTable(view)].filter((table) => table !== undefined)
   const hasComparison = view.results.lines.length > 1
   const contrasts = view.outcomes.flatMap((outcome) => contrastTable(view, outcome) ?? [])
   return [
@@ -96,6 +102,9 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
             body: [comparisonTable(view), ...contrasts].map((table) => toHtml(table)).join('\n'),
           },
         ]
+      : []),
+    ...(ground.length > 0
+      ? [{ id: 'ground', title: 'The border', body: ground.map((table) => toHtml(table)).join('\n') }]
       : []),
     ...(checks ? [{ id: 'checks', title: 'Checks', body: toHtml(checks) }] : []),
     {
@@ -146,7 +155,7 @@ function figuresHtml(view: View, figures: PageFigures): string {
   const figure = (svg: string, name: string, caption: string, isTall = false) =>
     `<figure><div class="drawing${isTall ? ' tall' : ''}" tabindex="0" role="region" aria-label="${escapeHtml(name)}">${svg}</div><figcaption><b>Figure ${++number}.</b> ${escapeHtml(caption)}</figcaption></figure>`
   const parts = view.outcomes.flatMap((outcome, index) => {
-    const { pooled, forest } = figures.byOutcome[index]
+    const { pooled, forest, along } = figures.byOutcome[index]
     const name = outcome.result.outcome
     return [
       ...(view.outcomes.length > 1 ? [`<h3>${escapeHtml(name)}</h3>`] : []),
@@ -157,6 +166,7 @@ function figuresHtml(view: View, figures: PageFigures): string {
         forestCaption(view, outcome),
         outcome.result.lines.length > tallForest,
       ),
+      ...(along ? [figure(along, `Figure: ${name}, along the border`, alongCaption(view, outcome))] : []),
     ]
   })
   const map = figures.map
@@ -182,6 +192,17 @@ function forestCaption(view: View, outcome: OutcomeView): string {
   const missingWords =
     missingLines === 0 ? '' : ` ${howMany(view, missingLines)} could not be estimated; the table says why.`
   return `Every ${view.words.line} with its own bandwidth, above three ways of taking them together: pooled in one fit, the stated target, and the random-effects mean.${missingWords}`
+}
+
+function alongCaption(view: View, { result }: OutcomeView): string {
+  const average = result.along_average?.length
+  const width = result.along_bandwidth
+  const mean =
+    average && 'estimate' in average
+      ? ` Weighted by length of border the points average ${significant(average.estimate)} (${significant(average.low)} to ${significant(average.high)}).`
+      : ''
+  const rule = width ? ` Bandwidth ${widthText(view, width)}: ${width.rule}.` : ''
+  return `The jump at points along the border, fitted in two coordinates, which bends of the border do not bias as they do distance alone.${mean}${rule}`
 }
 
 function lineTableHtml(view: View, outcome: OutcomeView): string {
