@@ -1,6 +1,6 @@
 /** All estimates of one outcome: every line, pooled, the target and the comparison of lines. */
 
-import { centroidSuspicion } from '../borders/index.js'
+import { centroidSuspicion, snapAgainstBandwidth } from '../borders/index.js'
 import {
   bandwidthsFor,
   buildSample,
@@ -35,6 +35,8 @@ export interface OutcomeEstimates {
   readonly pooled: OrReason<LineEstimate & { readonly weights: Float64Array; readonly withoutEffect: number }>
   readonly lineVariance: Variance
   readonly pooledVariance: Variance
+  /** Cautions about the pooled estimate that only the study knows of. */
+  readonly notes: readonly string[]
   /** Places of the lines that the target and the comparison use. */
   readonly compared: readonly number[]
   readonly target: ReturnType<typeof targetEffect>
@@ -68,7 +70,16 @@ export function estimateOutcome(
   const { level } = study.estimation
   const comparison = compareLines(effects, { level, random: streamOf(study.seed, 1) })
   const target = targetOf(study, effects, index, lines, shares)
-  return { lines, pooled, lineVariance, pooledVariance, compared: index, target, comparison }
+  return {
+    lines,
+    pooled,
+    lineVariance,
+    pooledVariance,
+    notes: snapNotes(study, [...lines, pooled]),
+    compared: index,
+    target,
+    comparison,
+  }
 }
 
 /**
@@ -104,6 +115,15 @@ function bandwidthGuard(
     const suspicion = centroidSuspicion(repeated, metres)
     return suspicion === undefined ? made : { reason: suspicion }
   }
+}
+
+/** A snap above a fifth of the smallest bandwidth moves the border by too much. */
+function snapNotes({ line }: Study, made: readonly OrReason<LineEstimate>[]): string[] {
+  if (line.kind !== 'border') return []
+  const widths = made.flatMap((one) => (hasReason(one) ? [] : Object.values(one.jump.bandwidths.h)))
+  const smallest = Math.min(...widths) * metresPerUnit[line.unit]
+  const doubt = smallest < Number.POSITIVE_INFINITY ? snapAgainstBandwidth(line.snap, smallest) : undefined
+  return doubt === undefined ? [] : [doubt.says]
 }
 
 function jumpOptions(estimation: EstimationPart, variance: Variance): JumpOptions {

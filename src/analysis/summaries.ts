@@ -48,10 +48,9 @@ function pooledResult(estimates: OutcomeEstimates, estimation: EstimationPart, l
   const variance = lines.length === 1 ? estimates.lineVariance : estimates.pooledVariance
   const jump = jumpResult(pooled.jump, estimation, variance)
   const left = pooled.withoutEffect
-  const notes =
-    left > 0
-      ? [...(jump.notes ?? []), `${left} entries of lines without a unit within the bandwidth are left out`]
-      : jump.notes
+  const without = left > 0 ? [`${left} entries of lines without a unit within the bandwidth are left out`] : []
+  const all = [...(jump.notes ?? []), ...without, ...estimates.notes]
+  const notes = all.length > 0 ? all : undefined
   return { ...jump, ...(notes ? { notes } : {}), weights: weightsByLine(lines, pooled.weights) }
 }
 

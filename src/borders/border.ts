@@ -4,6 +4,7 @@ import { type Boundaries, boundariesOf, edgeArrays, setEdge } from './boundaries
 import { joinPaths } from './chains.js'
 import { type BorderEnd, type Corner, cornersAt } from './corners.js'
 import { dosesOf, splitsByDose } from './dose.js'
+import { facingApartProblems } from './fabricApart.js'
 import { coincidentMetres, measureNearness, type Nearness } from './nearness.js'
 import { noBorder } from './noBorder.js'
 import { outsidePaths } from './outside.js'
@@ -65,7 +66,8 @@ export interface Border {
 /**
  * Finds the border. Nothing in it depends on the order of features or rings, on where a ring starts or which way it
  * runs; only what is indexed by zone follows the file. Problems: a treated name that is no zone, nothing treated or
- * nothing untreated, doses missing or all the same, zones that overlap by more than snap, no shared border at all.
+ * nothing untreated, doses missing or all the same, zones that overlap by more than snap, no shared border at all, a pair
+ * that faces each other a little beyond snap and shares none.
  * Throws RangeError where snap is negative, the piece length not positive, or not one of treated and dose is given.
  */
 export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Border> {
@@ -82,13 +84,16 @@ export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Bor
   const nearness = measureNearness(boundaries, metres)
   problems.push(...overlapProblems(boundaries, nearness, polygons, sortedNames, zones.file, metres))
   if (problems.length > 0) return { ok: false, problems }
-  const paths = pairPaths(boundaries, nearness, sortedRoles(roles, order), roles.outsideZone, metres)
+  const sorted = sortedRoles(roles, order)
+  const paths = pairPaths(boundaries, nearness, sorted, roles.outsideZone, metres)
   if (paths.length === 0) {
     const splits = roles.doses ? splitsByDose(roles.doses) : [roles.treatedZone]
     const who = roles.doses ? 'zones whose dose differs' : 'treated and untreated zones'
     const sortedSplits = splits.map((split) => Uint8Array.from(order, (zone) => split[zone]))
     return { ok: false, problems: [noBorder(zones.file, boundaries, who, sortedSplits, snapMetres)] }
   }
+  problems.push(...facingApartProblems(boundaries, sorted.isRelevant, paths, sortedNames, zones.file, metres))
+  if (problems.length > 0) return { ok: false, problems }
   const names = roles.outsideZone < 0 ? zones.names : [...zones.names, outsideName]
   const zoneOf = [...order, roles.outsideZone]
   const { pieces, ends } = piecesOfPairs(paths, names, zoneOf, roles.doses, pieceMetres, metres)

@@ -11,6 +11,16 @@ export {
   type LayerShare,
   type WaterfallStep,
 } from './eligible.js'
+export {
+  type Fabric,
+  fabricOf,
+  type Sliver,
+  type Stretch,
+  widestSlivers,
+  type ZoneBoundary,
+  type ZonePair,
+} from './fabric.js'
+export { borderFit, type PairFit, type SideChanges, unitsChangingSide } from './fabricBorder.js'
 export { edgeLengthMetres, geodesicMetres } from './geodesy.js'
 export type { MultiPolygonCoords } from './geojson.js'
 export { type LayersAlong, layersAlong } from './layersAlong.js'
@@ -23,5 +33,6 @@ export { type BorderPlacement, type PlaceOptions, placeOnBorder } from './place.
 export { beyondCap, centroidSuspicion, type RepeatedPoints, repeatedPoints } from './repeated.js'
 export { buildSegmentTree, type Edges, type Nearest, nearestEdges, type SegmentTree } from './segmentTree.js'
 export { type Conflict, type SideRule, zonesByRecord } from './sides.js'
+export { snapAgainstBandwidth } from './snapAgainstBandwidth.js'
 export { indexUnits, type NearUnits, type UnitIndex, unitsNear } from './unitsNear.js'
 export { readZones, type Zones } from './zones.js'

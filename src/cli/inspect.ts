@@ -4,6 +4,7 @@ import { numbersOf } from '../records/index.js'
 import type { Study } from '../study/index.js'
 import { count, largeSetAside, repeatedDistances, repeatedPositions, thinLines, unitsBySide } from './doubts.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
+import type { FabricAccount } from './fabricAccount.js'
 import { readInputs, readStudyFile } from './inputs.js'
 import { progressLine } from './progress.js'
 import { sayProblems } from './say.js'
@@ -26,12 +27,14 @@ export async function inspect(file: string): Promise<ExitCode> {
     sayProblems(placed.problems)
     return exitCodes.unusable
   }
-  const account = accountOf(study, (inputs as { value: AnalysisInputs }).value, placed.value)
+  const read = (inputs as { value: AnalysisInputs }).value
+  const { fabricAccount } = await import('./fabricAccount.js')
+  const account = accountOf(study, read, placed.value, fabricAccount(study, read, placed.value))
   process.stdout.write(`${account.join('\n')}\n`)
   return exitCodes.done
 }
 
-function accountOf(study: Study, inputs: AnalysisInputs, placed: Placed): string[] {
+function accountOf(study: Study, inputs: AnalysisInputs, placed: Placed, fabric: FabricAccount): string[] {
   const { table } = inputs
   const { placement } = placed
   const bySide = unitsBySide(placement)
@@ -41,7 +44,7 @@ function accountOf(study: Study, inputs: AnalysisInputs, placed: Placed): string
     .map((line, i) => [`  ${line.label}`, count(bySide.untreated[i]), count(bySide.treated[i])])
   const more = placement.lines.length - linesShown
   const missing = placed.missingKeys.map(({ key, units }) => [`  ${key}`, count(units)])
-  const doubts = doubtsOf(study, inputs, placed)
+  const doubts = [...fabric.doubts, ...doubtsOf(study, inputs, placed)]
   return [
     study.title,
     ...aligned([
@@ -52,6 +55,7 @@ function accountOf(study: Study, inputs: AnalysisInputs, placed: Placed): string
       ...setAside,
     ]),
     ...borderAccount(placed),
+    ...fabric.lines,
     ...(missing.length > 0
       ? ['keys that the schedule lacks, and units', ...aligned(missing.slice(0, linesShown))]
       : []),
