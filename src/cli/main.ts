@@ -65,7 +65,7 @@ function commands(done: (code: ExitCode) => void): Command {
     .option('--position <lon,lat>', 'the columns of longitude and latitude (GeoJSON points need none)')
     .option('--zone-name <property>', 'property with the name of a zone', 'name')
     .option('--treated <names>', 'names of the treated zones, with commas between')
-    .option('--dose <property>', 'not available yet')
+    .option('--dose <property>', 'numeric property of the zones, instead of --treated: the higher side is treated')
     .option('--unit <unit>', 'm, km, ft or mi', 'm')
     .requiredOption('--out <file>', 'table to write (.csv, .parquet or .geojson)')
     .action(async (records, options) => done(await (await import('./measure.js')).measure(records, options)))

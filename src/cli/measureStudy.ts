@@ -18,8 +18,9 @@ export async function measureStudy(records: string, options: MeasureOptions): Pr
   const problems: Problem[] = []
   const say = (what: string, found: string, todo: string) => problems.push({ file: 'scarp', what, found, todo })
   const treated = namesIn(options.treated ?? '')
-  if (options.dose !== undefined) say('--dose', 'not available yet', 'name the treated zones with --treated')
-  else if (treated.length === 0) say('--treated', 'missing', 'name the treated zones: --treated Inner,Harbour')
+  if (options.dose !== undefined && treated.length > 0) say('--dose', 'given with --treated', 'keep one of them')
+  if (options.dose === undefined && treated.length === 0)
+    say('--treated', 'missing', 'name the treated zones: --treated Inner,Harbour, or a numeric property: --dose rate')
   if (!units.includes(options.unit)) say('--unit', `got ${options.unit}`, 'write m, km, ft or mi')
   const position = options.position === undefined ? undefined : namesIn(options.position)
   if (position === undefined && !/\.geojson$/i.test(records))
@@ -28,7 +29,8 @@ export async function measureStudy(records: string, options: MeasureOptions): Pr
     say('--position', `got ${options.position}`, 'name two columns, longitude first: --position lon,lat')
   if (problems.length > 0) return { ok: false, problems }
 
-  const line = { zones: options.zones, zone_name: options.zoneName, treated, unit: options.unit }
+  const rule = options.dose === undefined ? { treated } : { dose: options.dose }
+  const line = { zones: options.zones, zone_name: options.zoneName, ...rule, unit: options.unit }
   const written = { records: { file: records, position }, outcomes: ['none'], line }
   const { readStudy } = await import('../study/index.js')
   const study = readStudy(JSON.stringify(written), 'scarp')

@@ -60,6 +60,15 @@ describe('scarp measure', () => {
     ])
   })
 
+  it('measures between zones of unlike dose what it measures between treated and untreated ones', async () => {
+    const zones = JSON.parse(readFileSync(join(room, 'zones.geojson'), 'utf8'))
+    for (const { properties } of zones.features) properties.rate = properties.name === 'East' ? 3 : 1
+    writeFileSync(join(room, 'rates.geojson'), JSON.stringify(zones))
+    const words = ['measure', 'leases.csv', '--zones', 'rates.geojson', '--dose', 'rate', '--out', 'by-dose.csv']
+    expect(await scarp([...words, ...position], { cwd: room })).toMatchObject({ code: 0, stderr: '' })
+    expect(rowsOf('by-dose.csv')).toEqual(rowsOf('placed.csv'))
+  })
+
   it('writes lengths in the unit asked for, as GeoJSON and as Parquet too', async () => {
     expect((await measure('placed.geojson', [...position, '--unit', 'km'])).code).toBe(0)
     const { features } = JSON.parse(readFileSync(join(room, 'placed.geojson'), 'utf8'))
