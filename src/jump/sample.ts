@@ -3,7 +3,7 @@
  * Ties in distance are ordered by line, outcome, weight and cluster, so that the order of rows in a file
  * cannot change a single bit of any sum.
  */
-import { argsortBy } from '../math/index.js'
+import { argsort, argsortBy } from '../math/index.js'
 
 export interface BySide<T> {
   readonly untreated: T
@@ -68,21 +68,28 @@ export function buildSample(entries: Entries, donut = 0): Sample {
 }
 
 function sortSide(entries: Entries, pick: Int32Array): Side {
-  const keys = [pickNumbers(entries.x, pick)]
-  for (let i = 0; i < pick.length; i++) keys[0][i] = Math.abs(keys[0][i])
-  for (const values of [entries.group, entries.y, entries.w, entries.cluster]) {
-    if (values) keys.push(pickNumbers(values, pick))
+  const distances = pickNumbers(entries.x, pick)
+  for (let i = 0; i < pick.length; i++) distances[i] = Math.abs(distances[i])
+  let order = argsort(distances)
+  const t = pickNumbers(distances, order)
+  if (hasTies(t)) {
+    const others = [entries.group, entries.y, entries.w, entries.cluster].filter((values) => values !== undefined)
+    order = argsortBy([distances, ...others.map((values) => pickNumbers(values, pick))])
   }
-  const order = argsortBy(keys)
   const sorted = pickCodes(pick, order)
   return {
-    t: pickNumbers(keys[0], order),
+    t,
     y: pickNumbers(entries.y, sorted),
     w: entries.w ? pickNumbers(entries.w, sorted) : null,
     unit: pickCodes(entries.unit, sorted),
     cluster: entries.cluster ? pickCodes(entries.cluster, sorted) : null,
     group: entries.group ? pickCodes(entries.group, sorted) : null,
   }
+}
+
+function hasTies(sorted: Float64Array): boolean {
+  for (let i = 1; i < sorted.length; i++) if (sorted[i] === sorted[i - 1]) return true
+  return false
 }
 
 export function pickNumbers(values: Float64Array | Int32Array, pick: Int32Array | Uint32Array): Float64Array {
