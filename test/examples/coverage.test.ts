@@ -1,11 +1,12 @@
 /** The example studies, run through the command line, cover the effects that their generators planted. */
-import { readFileSync, rmSync } from 'node:fs'
+import { cpSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
 import { join, resolve } from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import type { Jump, OutcomeResult, Results, Target } from '../../src/results.js'
 import { newRoom, scarp } from '../cli/studies.js'
 import { trueEffects as grantEffects } from './hedgerows/farms.js'
 import { trueEffects as levyEffects } from './quillhaven/leases.js'
+import { drawsFrom } from './random.js'
 
 const room = newRoom()
 afterAll(() => rmSync(room, { recursive: true, force: true }))
@@ -82,5 +83,26 @@ describe('Hedgerows: cutoffs by year and region', () => {
     }
     const asides = Object.values(results.placement.set_aside).reduce((a, b) => a + b, 0)
     expect(results.placement.placed + asides).toBe(results.placement.kept)
+  })
+})
+
+describe('the order of rows', () => {
+  it.each(['quillhaven', 'hedgerows'])('changes not one digit of %s', async (example) => {
+    cpSync(resolve('boundaries', example), join(room, 'shuffled', example), { recursive: true })
+    const file = join(room, 'shuffled', example, example === 'quillhaven' ? 'leases.csv' : 'farms.csv')
+    const [head, ...rows] = readFileSync(file, 'utf8').trimEnd().split('\n')
+    const draws = drawsFrom(17)
+    const keyed = rows.map((row) => ({ row, key: draws.uniform() })).sort((a, b) => a.key - b.key)
+    writeFileSync(file, `${[head, ...keyed.map(({ row }) => row)].join('\n')}\n`)
+    const said = await scarp(['run', `shuffled/${example}/study.yaml`, '--out', `${example}-again`, '--quiet'], {
+      cwd: room,
+    })
+    expect(said).toEqual({ code: 0, stdout: '', stderr: '' })
+    const read = (folder: string): Results => JSON.parse(readFileSync(join(room, folder, 'results.json'), 'utf8'))
+    const [again, before] = [read(`${example}-again`), read(example)]
+    expect(again.inputs[0].sha256).not.toBe(before.inputs[0].sha256)
+    for (const key of ['lines', 'outcomes', 'ledger', 'border'] as const) {
+      expect(JSON.stringify(again[key])).toBe(JSON.stringify(before[key]))
+    }
   })
 })

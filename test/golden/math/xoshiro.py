@@ -1,5 +1,5 @@
 # First words of xoshiro128** from the state 1, 2, 3, 4, for test/math/random.test.ts.
-# A literal transcription of Blackman & Vigna 2021 (ACM TOMS 47), figure for xoshiro128**, in Python 3 whole numbers:
+# The steps of Blackman & Vigna 2021 (ACM TOMS 47), figure for xoshiro128**, in Python 3 whole numbers:
 # python3 xoshiro.py > xoshiro.json
 import json
 
