@@ -1,15 +1,11 @@
 import geographic from 'geographiclib-geodesic'
+import { equatorialMetres, flattening } from '../math/index.js'
 
 /**
  * Lengths on the WGS 84 ellipsoid. Longitudes and latitudes in degrees, lengths in metres.
  * Source: Karney (2013), Algorithms for geodesics, J. Geodesy 87; METHODS section 10.
  */
 
-/** Equatorial radius. */
-export const equatorialMetres = 6378137
-export const flattening = 1 / 298.257223563
-/** Polar radius. */
-export const polarMetres = equatorialMetres * (1 - flattening)
 const eccentricitySquared = flattening * (2 - flattening)
 const radiansPerDegree = Math.PI / 180
 
@@ -19,21 +15,6 @@ const distanceOnly = geographic.Geodesic.DISTANCE
 /** Length of the shortest path between two points (Karney's inverse problem), good to about 15 nanometres. */
 export function geodesicMetres(lon0: number, lat0: number, lon1: number, lat1: number): number {
   return wgs84.Inverse(lat0, lon0, lat1, lon1, distanceOnly).s12!
-}
-
-/**
- * Earth-centred coordinates in metres of a point on the ellipsoid, written to out[at], out[at + 1], out[at + 2].
- * x points to (0, 0), y to (90° E, 0), z to the north pole. Rounding: about 1e-9 m.
- */
-export function earthCentred(lonDegrees: number, latDegrees: number, out: Float64Array, at: number): void {
-  const lon = lonDegrees * radiansPerDegree
-  const lat = latDegrees * radiansPerDegree
-  const sinLat = Math.sin(lat)
-  const normal = equatorialMetres / Math.sqrt(1 - eccentricitySquared * sinLat * sinLat)
-  const fromAxis = normal * Math.cos(lat)
-  out[at] = fromAxis * Math.cos(lon)
-  out[at + 1] = fromAxis * Math.sin(lon)
-  out[at + 2] = normal * (1 - eccentricitySquared) * sinLat
 }
 
 /**

@@ -5,7 +5,7 @@
  * curvature of WGS 84 (Torge & Müller 2012, Geodesy, section 4.1).
  * Against the geodesic (Karney 2013): distance within 1e-9 of itself and direction within 1e-7 radians up to 50 km.
  */
-import { earthCentred, equatorialMetres, flattening } from './geodesy.js'
+import { earthCentred, equatorialMetres, flattening } from '../math/index.js'
 
 export interface LocalMetres {
   readonly eastMetres: Float64Array

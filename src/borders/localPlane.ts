@@ -3,7 +3,7 @@
  * It is affine in degrees, so edges that are straight in longitude and latitude stay straight, and edges that
  * coincide go on coinciding. Distances d at a latitude φ are right to about d·tan φ / 6,000 km of themselves.
  */
-import { equatorialMetres, flattening } from './geodesy.js'
+import { equatorialMetres, flattening } from '../math/index.js'
 
 export interface LocalPlane {
   readonly lon: number

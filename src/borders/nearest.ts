@@ -1,4 +1,4 @@
-import { earthCentred } from './geodesy.js'
+import { earthCentred } from '../math/index.js'
 import { hilbertOrder } from './hilbert.js'
 import { edgeFraction, resolveNearest } from './nearestFar.js'
 import { closeMetres } from './nearestMeasure.js'

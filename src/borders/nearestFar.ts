@@ -1,5 +1,6 @@
-import { earthCentred, equatorialMetres, geodesicMetres } from './geodesy.js'
-import { closeMetres, longestChordMetres, measureErrorMetres, pieceMetres, surfaceMetres } from './nearestMeasure.js'
+import { earthCentred, equatorialMetres, surfaceMetres } from '../math/index.js'
+import { geodesicMetres } from './geodesy.js'
+import { closeMetres, longestChordMetres, measureErrorMetres, pieceMetres } from './nearestMeasure.js'
 import { collectPieces, type SearchRoom, tieMetres } from './nearestSearch.js'
 import { pieceSize, type SegmentTree } from './segmentTreeBuild.js'
 import { along, edgePoint } from './segmentTreeSplit.js'

@@ -1,16 +1,7 @@
-import { equatorialMetres, flattening, polarMetres } from './geodesy.js'
+import { surfaceMetres } from '../math/index.js'
 import { pieceSize, type SegmentTree } from './segmentTreeBuild.js'
 
-/**
- * Distances between points of the ellipsoid given in earth-centred metres, without solving the inverse geodesic problem.
- * Both have known errors (measured against Karney's inverse on 3,000 random pairs for each length):
- *   the arc of the normal section's circle: 7e-9 m to 50 km, 3e-7 m at 100 km, 8e-6 m at 200 km, then 0.026 m·(s / 1000 km)^5;
- *   Lambert's first-order formula: 1.4e-6·s to 10,000 km, 60 m at 15,000 km, 2.5 km at 19,800 km.
- */
-
-const axisRatioSquared = (equatorialMetres / polarMetres) ** 2
-/** From this chord on Lambert's formula is the better one. */
-const lambertChordSquare = 2.4e6 ** 2
+/** What a search by chords must know of `surfaceMetres`: its errors, and chords for distances. */
 
 /** Up to this distance the circle's arc is taken as it is (error below 1e-5 m). */
 export const closeMetres = 200_000
@@ -32,53 +23,6 @@ export function longestChordMetres(s: number): number {
   if (x > 1.57) return Infinity
   const x2 = x * x
   return s * (1 - (x2 / 6) * (1 - x2 / 20))
-}
-
-/**
- * Distance between the surface points f and q = f + r. All in earth-centred metres; square = r·r.
- * Normal curvature at the chord's middle, carried out to the surface: (r·H r)/(r·r) over the gradient's length.
- */
-export function surfaceMetres(
-  square: number,
-  rx: number,
-  ry: number,
-  rz: number,
-  fx: number,
-  fy: number,
-  fz: number,
-): number {
-  if (square === 0) return 0
-  if (square > lambertChordSquare) return lambertMetres(fx + rx, fy + ry, fz + rz, fx, fy, fz)
-  const mx = fx + rx / 2
-  const my = fy + ry / 2
-  const mz = fz + rz / 2
-  const bend = rx * rx + ry * ry + rz * rz * axisRatioSquared
-  const flat = mx * mx + my * my
-  const tall = mz * mz * axisRatioSquared
-  const gradient = flat + tall * axisRatioSquared
-  // (half chord times curvature)², the curvature scaled from the chord's middle to the surface
-  const x2 = (bend * bend * (flat + tall)) / (4 * square * gradient * equatorialMetres * equatorialMetres)
-  const series = x2 < 0.01 ? arcsineSeries(x2) : Math.asin(Math.sqrt(x2)) / Math.sqrt(x2)
-  return Math.sqrt(square) * series
-}
-
-/** asin(x)/x from x² below 0.01; the first term left out is below 3e-14. */
-function arcsineSeries(x2: number): number {
-  return (
-    1 + x2 * (1 / 6 + x2 * (3 / 40 + x2 * (15 / 336 + x2 * (105 / 3456 + x2 * (945 / 42240 + x2 * (10395 / 599040))))))
-  )
-}
-
-/** Lambert (1942), on the auxiliary sphere of reduced latitudes; half angles from sums and differences of unit vectors. */
-function lambertMetres(qx: number, qy: number, qz: number, fx: number, fy: number, fz: number): number {
-  const difference = (qx - fx) ** 2 + (qy - fy) ** 2 + (qz - fz) ** 2 * axisRatioSquared
-  const sum = (qx + fx) ** 2 + (qy + fy) ** 2 + (qz + fz) ** 2 * axisRatioSquared
-  const angle = 2 * Math.atan2(Math.sqrt(difference), Math.sqrt(sum))
-  const sine = Math.sin(angle)
-  const north = (qz + fz) ** 2 * axisRatioSquared
-  const south = (qz - fz) ** 2 * axisRatioSquared
-  const correction = (angle - sine) * (sum > 0 ? north / sum : 0) + (angle + sine) * (south / difference)
-  return equatorialMetres * (angle - (flattening / 2) * correction)
 }
 
 /**

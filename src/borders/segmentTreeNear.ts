@@ -1,4 +1,4 @@
-import { earthCentred, equatorialMetres } from './geodesy.js'
+import { earthCentred, equatorialMetres } from '../math/index.js'
 import { collectPieces, nodeStack } from './nearestSearch.js'
 import type { SegmentTree } from './segmentTreeBuild.js'
 

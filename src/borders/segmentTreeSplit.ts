@@ -1,4 +1,4 @@
-import { earthCentred, equatorialMetres } from './geodesy.js'
+import { earthCentred, equatorialMetres } from '../math/index.js'
 
 /** Straight lon/lat edges (RFC 7946), WGS 84 degrees, as written: from 179 to -179 runs through 0, from 179 to 181 crosses 180°. */
 export interface Edges {

@@ -1,6 +1,6 @@
 /** An index of the units on the ground: those within a distance of a place, in metres east and north of it. */
 import Flatbush from 'flatbush'
-import { equatorialMetres, flattening } from './geodesy.js'
+import { equatorialMetres, flattening } from '../math/index.js'
 import { type LocalMetres, localMetres } from './localMetres.js'
 
 export interface UnitIndex {

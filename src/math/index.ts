@@ -9,6 +9,7 @@ export {
   studentQuantile,
   studentTwoSidedP,
 } from './distributions.js'
+export { earthCentred, equatorialMetres, flattening, polarMetres, surfaceMetres } from './ellipsoid.js'
 export { type LeastSquares, leastSquares } from './leastSquares.js'
 export { normalCdf, normalQuantile, normalUpper } from './normal.js'
 export { goldenMinimum, rootBetween } from './optimise.js'
