@@ -1,20 +1,16 @@
 /**
- * Student, chi-square, F and folded normal distributions. Tails are accurate relative to themselves, quantiles come from
+ * Student and chi-square distributions. Tails are accurate relative to themselves, quantiles come from
  * Newton steps on the logarithm of the smaller tail. Degrees of freedom are any positive real, Infinity included.
  * Relative error against R 4.2 (test/golden/math) under 1e-12, tails down to 1e-300 included.
  * Arguments out of range, NaN among them, throw RangeError.
  */
-import { normalCdf, normalDensity, normalQuantile, normalUpper } from './normal.js'
-import { betaFraction, halfStepGammaRatio, incompleteBeta, incompleteGamma } from './specialFunctions.js'
+
+import jStat from 'jstat'
+import { normalDensity, normalQuantile, normalUpper } from './normal.js'
+import { betaFraction, halfStepGammaRatio, incompleteGamma } from './specialFunctions.js'
 
 /** Beyond this many degrees of freedom Student's t and the normal agree to every digit (they differ by z⁴/4ν). */
 const manyDegrees = 1e20
-
-/** P(T ≤ t), Student's t with df > 0 degrees of freedom; the smaller tail keeps its relative accuracy. */
-export function studentCdf(t: number, df: number): number {
-  const { both } = studentTails(t, df)
-  return t > 0 ? 1 - both / 2 : both / 2
-}
 
 /** P(|T| ≥ |t|), the two-sided p-value, accurate relative to itself however small. */
 export function studentTwoSidedP(t: number, df: number): number {
@@ -36,75 +32,6 @@ export function studentQuantile(p: number, df: number): number {
 export function chiSquareUpper(x: number, df: number): number {
   if (!(df > 0 && df < Number.POSITIVE_INFINITY)) throw new RangeError(`degrees of freedom are positive, not ${df}`)
   return x <= 0 ? 1 : incompleteGamma(df / 2, x / 2).upper
-}
-
-/** The x with P(X ≤ x) = p of chi-square with df degrees of freedom; 0 at 0, Infinity at 1. */
-export function chiSquareQuantile(p: number, df: number): number {
-  if (!(df > 0 && df < Number.POSITIVE_INFINITY)) throw new RangeError(`degrees of freedom are positive, not ${df}`)
-  checkProbability(p)
-  if (p === 0) return 0
-  if (p === 1) return Number.POSITIVE_INFINITY
-  const start = chiSquareStart(p, df) / 2
-  const rises = p <= 0.5
-  const half = argumentOfTail(rises ? p : 1 - p, start, rises, (x) => {
-    const { lower, upper, front } = incompleteGamma(df / 2, x)
-    return { tail: rises ? lower : upper, front }
-  })
-  return 2 * half
-}
-
-/** Wilson & Hilferty (1931), or the first term of the lower series where that is not positive or the tail is small. */
-function chiSquareStart(p: number, df: number): number {
-  const c = 2 / (9 * df)
-  const cube = (1 - c + normalQuantile(p) * Math.sqrt(c)) ** 3
-  if (cube > 0.05) return df * cube
-  const a = df / 2
-  const front = incompleteGamma(a, 1).front * Math.E
-  return Math.max(2 * Math.exp((Math.log(p) + Math.log(a) - Math.log(front)) / a), 1e-300)
-}
-
-/** P(X > x) of the F distribution with df1 and df2 degrees of freedom, either may be Infinity; 1 for x ≤ 0. */
-export function fUpper(x: number, df1: number, df2: number): number {
-  checkDegrees(df1)
-  checkDegrees(df2)
-  if (Number.isNaN(x)) throw new RangeError('the F distribution needs a number, not NaN')
-  if (x <= 0) return 1
-  if (x === Number.POSITIVE_INFINITY) return 0
-  if (df1 >= manyDegrees && df2 >= manyDegrees) return x > 1 ? 0 : x < 1 ? 1 : 0.5
-  if (df2 >= manyDegrees) return chiSquareUpper(df1 * x, df1)
-  if (df1 >= manyDegrees) return incompleteGamma(df2 / 2, df2 / (2 * x)).lower
-  const ratio = (df1 / df2) * x
-  return incompleteBeta(df2 / 2, df1 / 2, 1 / (1 + ratio), 1 / (1 + 1 / ratio)).lower
-}
-
-/**
- * The q ≥ 0 with P(|N(t, 1)| ≤ q) = probability: the critical value of a bias-aware interval whose worst bias is
- * t standard errors (Armstrong & Kolesár 2018). Even in t; Newton steps kept inside a bracket.
- */
-export function foldedNormalQuantile(probability: number, t: number): number {
-  checkProbability(probability)
-  if (Number.isNaN(t)) throw new RangeError('the folded normal needs a mean, not NaN')
-  const mean = Math.abs(t)
-  if (probability === 0) return 0
-  if (probability === 1 || mean === Number.POSITIVE_INFINITY) return Number.POSITIVE_INFINITY
-  const spread = -normalQuantile((1 - probability) / 2)
-  let low = Math.max(mean + normalQuantile(probability), spread)
-  let high = mean + spread
-  let q = low
-  for (let step = 0; step < 200 && high > low; step++) {
-    const excess =
-      probability > 0.5
-        ? 1 - probability - normalUpper(q - mean) - normalUpper(q + mean)
-        : normalCdf(q - mean) - normalCdf(-q - mean) - probability
-    if (excess < 0) low = q
-    else high = q
-    const density = normalDensity(q - mean) + normalDensity(q + mean)
-    const newton = q - excess / density
-    const next = newton >= low && newton <= high ? newton : (low + high) / 2
-    if (Math.abs(next - q) <= 2 * Number.EPSILON * q) return next
-    q = next
-  }
-  return q
 }
 
 interface StudentTails {
@@ -164,13 +91,27 @@ function studentFromCentre(centre: number, df: number): number {
   return t
 }
 
-/** |t| with P(|T| ≥ |t|) = both, from the normal quantile and the first terms of Fisher & Cornish (1960) where they hold. */
+/**
+ * |t| with P(|T| ≥ |t|) = both. Starts from jstat's quantile in its ordinary range, where that is right to about 1e-7
+ * and one or two Newton steps finish; elsewhere from the normal quantile and the first terms of Fisher & Cornish (1960).
+ */
 function studentFromTail(both: number, df: number): number {
+  return fromTail(
+    both,
+    df,
+    both >= 1e-6 && df >= 1 && df <= 1e5 ? -jStat.studentt.inv(both / 2, df) : startOf(both, df),
+  )
+}
+
+function startOf(both: number, df: number): number {
   const z = -normalQuantile(both / 2)
   const square = z * z
   const expansion = (square + 1) / (4 * df) + ((5 * square + 16) * square + 3) / (96 * df * df)
-  const start = square < df ? z * (1 + expansion) : z
-  return argumentOfTail(both, start, false, (t) => {
+  return square < df ? z * (1 + expansion) : z
+}
+
+function fromTail(both: number, df: number, start: number): number {
+  return argumentOfTail(both, start, (t) => {
     const tails = studentTails(t, df)
     return { tail: tails.both, front: tails.front }
   })
@@ -179,23 +120,18 @@ function studentFromTail(both: number, df: number): number {
 /**
  * The x > 0 where a tail probability reaches its target, by Newton steps on log tail against log x: a concave curve,
  * steepening towards a line for power tails, so the steps end on one side of the root and close in. tailAt gives the
- * tail at x and x times the density there; `rises` says whether the tail grows with x. 0 or Infinity beyond the doubles.
+ * tail at x and x times the density there; the tail falls with x. 0 or Infinity beyond the doubles.
  */
-function argumentOfTail(
-  target: number,
-  start: number,
-  rises: boolean,
-  tailAt: (x: number) => { tail: number; front: number },
-): number {
+function argumentOfTail(target: number, start: number, tailAt: (x: number) => { tail: number; front: number }): number {
   let x = start
   for (let step = 0; step < 200; step++) {
     const { tail, front } = tailAt(x)
     if (tail === 0) {
-      x *= rises ? 1.25 : 0.8
+      x *= 0.8
       continue
     }
     const move = (Math.log(Math.min(tail / target, Number.MAX_VALUE)) * tail) / front
-    x *= Math.exp(rises ? -move : move)
+    x *= Math.exp(move)
     if (!(x > 0 && x < Number.POSITIVE_INFINITY) || Math.abs(move) <= 1e-9) break
   }
   return x

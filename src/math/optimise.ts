@@ -1,35 +1,4 @@
-/** One-dimensional minimum and root. Both evaluate f only inside [low, high]. */
-
-/**
- * Place of a minimum of f on [low, high] by golden section (Kiefer 1953): exact to `tolerance` (absolute, in the
- * units of x) where f falls and then rises; a local minimum otherwise. About 1.44·log2((high − low)/tolerance) calls.
- */
-export function goldenMinimum(f: (x: number) => number, low: number, high: number, tolerance: number): number {
-  if (!(low <= high)) throw new RangeError(`the interval runs from ${low} to ${high}`)
-  if (!(tolerance > 0)) throw new RangeError(`the tolerance must be positive, not ${tolerance}`)
-  const ratio = (Math.sqrt(5) - 1) / 2
-  let left = high - ratio * (high - low)
-  let right = low + ratio * (high - low)
-  let atLeft = f(left)
-  let atRight = f(right)
-  const smallest = Math.max(tolerance, 4 * Number.EPSILON * Math.max(Math.abs(low), Math.abs(high)))
-  while (high - low > smallest) {
-    if (atLeft <= atRight) {
-      high = right
-      right = left
-      atRight = atLeft
-      left = high - ratio * (high - low)
-      atLeft = f(left)
-    } else {
-      low = left
-      left = right
-      atLeft = atRight
-      right = low + ratio * (high - low)
-      atRight = f(right)
-    }
-  }
-  return atLeft <= atRight ? left : right
-}
+/** A root in one dimension; f is evaluated only inside [low, high]. */
 
 /**
  * Root of f in [low, high] by Brent's method (Brent 1973, Algorithms for Minimization without Derivatives, chapter 4):

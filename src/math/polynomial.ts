@@ -11,20 +11,3 @@ export function legendreShifted(degree: number, t: number, out: Float64Array): v
   if (degree > 0) out[1] = u
   for (let k = 1; k < degree; k++) out[k + 1] = ((2 * k + 1) * u * out[k] - k * out[k - 1]) / (k + 1)
 }
-
-/**
- * Square matrix of side degree + 1, row-major: row j holds the coefficients of P_j in 1, t, …, t^degree,
- * (−1)^(j+k) C(j, k) C(j + k, k) (DLMF 18.5.7). Whole numbers, exact up to degree 20.
- */
-export function legendreToMonomial(degree: number): Float64Array {
-  const size = degree + 1
-  const matrix = new Float64Array(size * size)
-  for (let j = 0; j < size; j++) {
-    let coefficient = j % 2 === 0 ? 1 : -1
-    for (let k = 0; k <= j; k++) {
-      matrix[j * size + k] = coefficient
-      coefficient = (-coefficient * (j - k) * (j + k + 1)) / ((k + 1) * (k + 1))
-    }
-  }
-  return matrix
-}

@@ -1,22 +1,14 @@
 /**
- * Incomplete gamma and beta functions, regularised, with both tails and a common accuracy target: 1e-13 relative error
+ * The regularised incomplete gamma function, and what Student's t needs of the beta function: 1e-13 relative error
  * of the smaller tail for parameters up to 1e5, growing like the logarithm of the tail beyond.
  * Prefactors are written with deviances and Stirling errors (Loader 2000, Fast and Accurate Computation of Binomial
  * Probabilities), so that large parameters lose no digits to differences of log-gammas.
  */
-import jStat from 'jstat'
-
 /** The two parts of a distribution, and the front factor that both share: argument times density. */
 export interface Tails {
   readonly lower: number
   readonly upper: number
   readonly front: number
-}
-
-/** log Γ(x), x > 0, relative error under 1e-12 (jstat's Lanczos sum; absolute error up to 2e-10 where the value is large). */
-export function logGamma(x: number): number {
-  if (!(x > 0)) throw new RangeError(`logGamma needs a positive number, not ${x}`)
-  return jStat.gammaln(x)
 }
 
 /** δ(z) = log Γ(z) − (z − ½) log z + z − ½ log 2π, the error of Stirling's formula, z > 0 (DLMF 5.11.1). */
@@ -78,36 +70,6 @@ function gammaFraction(a: number, x: number): number {
     (m) => m * (a - m),
     (m) => x - a + 1 + 2 * m,
   )
-}
-
-/** x^a y^b / B(a, b) with x + y = 1; `balance` = a·y − b·x, each to full accuracy. */
-function betaFront(a: number, b: number, x: number, y: number, balance: number): number {
-  const n = a + b
-  const small = Math.min(a, b)
-  const large = Math.max(a, b)
-  const scale = Math.sqrt((small / (2 * Math.PI)) * (large / n))
-  const errors = stirlingError(n) - stirlingError(a) - stirlingError(b)
-  return scale * Math.exp(errors - deviance(a, n * x, balance) - deviance(b, n * y, -balance))
-}
-
-/**
- * I_x(a, b) and its complement I_y(b, a), the regularised incomplete beta functions (DLMF 8.17.2), a, b > 0.
- * Both x and y = 1 − x are given, so that neither is lost near 1. The work grows like the square root of min(a, b).
- */
-export function incompleteBeta(a: number, b: number, x: number, y: number): Tails {
-  if (!(a > 0 && b > 0 && x >= 0 && y >= 0)) {
-    throw new RangeError(`the incomplete beta function needs a, b > 0 and x, y ≥ 0, not ${[a, b, x, y].join(', ')}`)
-  }
-  if (x === 0) return { lower: 0, upper: 1, front: 0 }
-  if (y === 0) return { lower: 1, upper: 0, front: 0 }
-  const balance = a * y - b * x
-  const front = betaFront(a, b, x, y, balance)
-  if (balance >= 0) {
-    const lower = front / betaFraction(a, b, x, y)
-    return { lower, upper: 1 - lower, front }
-  }
-  const upper = front / betaFraction(b, a, y, x)
-  return { lower: 1 - upper, upper, front }
 }
 
 /**

@@ -1,11 +1,11 @@
 /**
  * Line fixed effects, absorbed exactly.
  * Source: Black 1999; METHODS section 8. γ̂ comes from the joint kernel-weighted fit of y on side-specific
- * polynomials of order p at h plus one dummy per line. Demeaning within lines removes the dummies
- * (Frisch–Waugh–Lovell), so thousands of lines cost O(n).
+ * polynomials of order p at h plus one dummy per line, in O(n) for thousands of lines (absorbed.ts).
  */
 import { type BySide, countWithin, type Kernel, kernelCurve, type Sample, type Side } from '../jump/index.js'
-import { choleskyInPlace, choleskySolveInPlace, legendreShifted } from '../math/index.js'
+import { legendreShifted } from '../math/index.js'
+import { absorbedLeastSquares, type EachRow } from './absorbed.js'
 
 export type FixedEffects =
   | {
@@ -14,8 +14,6 @@ export type FixedEffects =
       readonly effects: Float64Array
     }
   | { readonly ok: false; readonly reason: string }
-
-const smallestCondition = 1e-13
 
 /** Kernel weight w K(t/h)/h, constants of the kernel left out, summed by line over both sides. */
 export function kernelWeightByLine(sample: Sample, h: BySide<number>, kernel: Kernel, lines: number): Float64Array {
@@ -50,46 +48,20 @@ export function fitFixedEffects(
   kernel: Kernel,
   lines: number,
 ): FixedEffects {
-  const columns = 2 * order + 1
-  const eachRow = rowsOf(sample, h, order, kernel)
-  const { means, totals } = meansByLine(eachRow, lines, columns)
-  const gram = new Float64Array(columns * columns)
-  const slopes = new Float64Array(columns)
-  eachRow((line, k, row, y) => {
-    const at = line * (columns + 1)
-    for (let a = 0; a < columns; a++) row[a] -= means[at + a]
-    const centred = k * (y - means[at + columns])
-    for (let a = 0; a < columns; a++) {
-      for (let b = 0; b <= a; b++) gram[a * columns + b] += k * row[a] * row[b]
-      slopes[a] += row[a] * centred
-    }
-  })
-  if (!(choleskyInPlace(gram, columns) > smallestCondition)) {
+  const fit = absorbedLeastSquares(rowsOf(sample, h, order, kernel), lines, 2 * order + 1)
+  if (!fit.ok) {
     return { ok: false, reason: 'line fixed effects: no line has enough units on both sides within the bandwidth' }
   }
-  choleskySolveInPlace(gram, columns, slopes)
-  return { ok: true, effects: effectsFrom(means, totals, slopes, kernelWeightByLine(sample, h, kernel, lines)) }
-}
-
-/** γ̂_c = mean of y less the fitted columns' means; shifted so that the kernel-weighted mean is 0. */
-function effectsFrom(means: Float64Array, totals: Float64Array, slopes: Float64Array, weight: Float64Array) {
-  const columns = slopes.length
-  const effects = new Float64Array(totals.length).fill(Number.NaN)
+  const weight = kernelWeightByLine(sample, h, kernel, lines)
   let level = 0
   let sum = 0
-  for (let line = 0; line < totals.length; line++) {
-    if (!(totals[line] > 0)) continue
-    const at = line * (columns + 1)
-    effects[line] = means[at + columns]
-    for (let a = 0; a < columns; a++) effects[line] -= means[at + a] * slopes[a]
-    level += weight[line] * effects[line]
+  for (let line = 0; line < lines; line++) {
+    if (!(weight[line] > 0)) continue
+    level += weight[line] * fit.levels[line]
     sum += weight[line]
   }
-  return effects.map((effect) => effect - level / sum)
+  return { ok: true, effects: fit.levels.map((effect) => effect - level / sum) }
 }
-
-/** Visits every entry of positive weight with its line, kernel weight, design row (scratch, may be changed) and outcome. */
-type EachRow = (visit: (line: number, k: number, row: Float64Array, y: number) => void) => void
 
 function rowsOf(sample: Sample, h: BySide<number>, order: number, kernel: Kernel): EachRow {
   const basis = new Float64Array(order + 1)
@@ -109,21 +81,4 @@ function rowsOf(sample: Sample, h: BySide<number>, order: number, kernel: Kernel
       })
     }
   }
-}
-
-/** Weighted means of the columns and of y within each line (row-major, lines × (columns + 1)), and the weight of each line. */
-function meansByLine(eachRow: EachRow, lines: number, columns: number): { means: Float64Array; totals: Float64Array } {
-  const means = new Float64Array(lines * (columns + 1))
-  const totals = new Float64Array(lines)
-  eachRow((line, k, row, y) => {
-    const at = line * (columns + 1)
-    totals[line] += k
-    for (let a = 0; a < columns; a++) means[at + a] += k * row[a]
-    means[at + columns] += k * y
-  })
-  for (let line = 0; line < lines; line++) {
-    if (!(totals[line] > 0)) continue
-    for (let a = 0; a <= columns; a++) means[line * (columns + 1) + a] /= totals[line]
-  }
-  return { means, totals }
 }

@@ -1,15 +1,10 @@
 import jStat from 'jstat'
 import { describe, expect, test } from 'vitest'
 import {
-  chiSquareQuantile,
   chiSquareUpper,
-  foldedNormalQuantile,
-  fUpper,
-  logGamma,
   normalCdf,
   normalQuantile,
   normalUpper,
-  studentCdf,
   studentQuantile,
   studentTwoSidedP,
 } from '../../src/math/index.js'
@@ -45,13 +40,9 @@ describe('against R 4.2', () => {
   // The rest: 1e-12 as asked; an exponent near 700 alone costs 700 rounding units, 1.6e-13, and R has its own.
   test('Student, 0.3 to 1e8 degrees of freedom, t to 1e6', () => {
     expect(misses('student', 1e-12, studentTwoSidedP)).toEqual([])
-    expect(misses('student', 1e-12, (t, df) => 2 * studentCdf(-t, df))).toEqual([])
   })
   test('Student quantile', () => expect(misses('student_quantile', 1e-12, studentQuantile)).toEqual([]))
   test('chi-square upper tail to 1e-300', () => expect(misses('chi_square', 1e-12, chiSquareUpper)).toEqual([]))
-  test('chi-square quantile', () => expect(misses('chi_square_quantile', 1e-12, chiSquareQuantile)).toEqual([]))
-  test('F upper tail to 1e-300', () => expect(misses('f', 1e-12, fUpper)).toEqual([]))
-  test('log-gamma', () => expect(misses('log_gamma', 1e-12, logGamma)).toEqual([]))
 })
 
 describe('Student with very many degrees of freedom', () => {
@@ -67,57 +58,9 @@ describe('Student with very many degrees of freedom', () => {
   })
   test('is the normal at Infinity', () => {
     expect(studentTwoSidedP(1.5, Number.POSITIVE_INFINITY)).toBe(2 * normalUpper(1.5))
-    expect(studentCdf(-1.5, Number.POSITIVE_INFINITY)).toBe(normalCdf(-1.5))
     expect(studentQuantile(0.975, Number.POSITIVE_INFINITY)).toBe(normalQuantile(0.975))
     expect(relativeError(studentQuantile(0.975, 1e12), normalQuantile(0.975))).toBeLessThan(2e-12)
   })
-})
-
-describe('F with an infinite number of degrees of freedom', () => {
-  test('is a chi-square over its degrees, either way up', () => {
-    expect(fUpper(2.5, 4, Number.POSITIVE_INFINITY)).toBe(chiSquareUpper(10, 4))
-    expect(relativeError(fUpper(2.5, Number.POSITIVE_INFINITY, 4), 1 - chiSquareUpper(1.6, 4))).toBeLessThan(1e-14)
-    expect(relativeError(fUpper(2.5, 4, 1e13), fUpper(2.5, 4, Number.POSITIVE_INFINITY))).toBeLessThan(1e-11)
-  })
-  test('with one degree above is Student squared', () => {
-    for (const df of [0.7, 3, 40.5, 1e6]) {
-      expect(relativeError(fUpper(5.29, 1, df), studentTwoSidedP(2.3, df))).toBeLessThan(1e-13)
-    }
-  })
-})
-
-// CHECKS: 95% quantile of |N(t, 1)| (Armstrong & Kolesár 2018, 2020), printed to six places.
-test('folded normal quantiles of the bias-aware table', () => {
-  const table = [
-    [0, 1.959964],
-    [0.1, 1.969726],
-    [0.2, 1.998549],
-    [0.3, 2.045053],
-    [0.5, 2.181477],
-    [0.8, 2.450465],
-    [1, 2.646146],
-    [1.5, 3.14487],
-    [2, 3.644854],
-  ]
-  for (const [t, quantile] of table) {
-    expect(Math.abs(foldedNormalQuantile(0.95, t) - quantile)).toBeLessThan(5.1e-7)
-    expect(foldedNormalQuantile(0.95, -t)).toBe(foldedNormalQuantile(0.95, t))
-  }
-})
-
-test('the folded normal quantile solves its equation for any level and mean', () => {
-  for (const probability of [1e-9, 0.01, 0.3, 0.5, 0.8, 0.99, 1 - 1e-12]) {
-    for (const t of [0, 0.4, 3, 12, 60]) {
-      const q = foldedNormalQuantile(probability, t)
-      const inside = normalCdf(q - t) - normalCdf(-q - t)
-      const outside = normalUpper(q - t) + normalUpper(q + t)
-      // Near 0 the difference of two normals loses digits to the level 1e-16, so the error is counted against 1e-4 at least.
-      if (probability <= 0.5) expect(Math.abs(inside - probability)).toBeLessThan(1e-12 * Math.max(probability, 1e-4))
-      else expect(relativeError(outside, 1 - probability)).toBeLessThan(1e-12)
-    }
-  }
-  expect(foldedNormalQuantile(0, 1)).toBe(0)
-  expect(foldedNormalQuantile(1, 1)).toBe(Number.POSITIVE_INFINITY)
 })
 
 // The package jstat as a second, independent source where it is good to about 1e-7 or better.
@@ -126,15 +69,13 @@ test('jstat agrees in its ordinary range', () => {
     expect(Math.abs(normalQuantile(p) - jStat.normal.inv(p, 0, 1))).toBeLessThan(1e-8)
     for (const df of [2, 5.5, 30, 400]) {
       expect(relativeError(studentQuantile(p, df), jStat.studentt.inv(p, df))).toBeLessThan(1e-6)
-      expect(relativeError(chiSquareQuantile(p, df), jStat.chisquare.inv(p, df))).toBeLessThan(1e-6)
     }
   }
   for (const x of [0.2, 0.9, 1.7, 3.1]) {
     expect(Math.abs(normalCdf(x) - jStat.normal.cdf(x, 0, 1))).toBeLessThan(1e-14)
     for (const df of [3, 12, 80]) {
-      expect(Math.abs(studentCdf(x, df) - jStat.studentt.cdf(x, df))).toBeLessThan(1e-7)
+      expect(Math.abs(1 - studentTwoSidedP(x, df) / 2 - jStat.studentt.cdf(x, df))).toBeLessThan(1e-7)
       expect(Math.abs(1 - chiSquareUpper(x * df, df) - jStat.chisquare.cdf(x * df, df))).toBeLessThan(1e-8)
-      expect(Math.abs(1 - fUpper(x, df, 17) - jStat.centralF.cdf(x, df, 17))).toBeLessThan(1e-7)
     }
   }
 })
@@ -151,22 +92,15 @@ test('ends and faults', () => {
   expect(studentQuantile(0, 3)).toBe(Number.NEGATIVE_INFINITY)
   expect(chiSquareUpper(-1, 3)).toBe(1)
   expect(chiSquareUpper(Number.POSITIVE_INFINITY, 3)).toBe(0)
-  expect(chiSquareQuantile(0, 3)).toBe(0)
-  expect(fUpper(0, 2, 3)).toBe(1)
   const faults = [
     () => normalQuantile(Number.NaN),
     () => normalQuantile(1.2),
-    () => studentCdf(1, 0),
-    () => studentCdf(Number.NaN, 3),
+    () => studentTwoSidedP(1, 0),
+    () => studentTwoSidedP(Number.NaN, 3),
     () => studentQuantile(0.5, Number.NaN),
     () => studentQuantile(-0.1, 3),
     () => chiSquareUpper(Number.NaN, 3),
     () => chiSquareUpper(1, Number.NaN),
-    () => chiSquareQuantile(2, 3),
-    () => fUpper(Number.NaN, 2, 3),
-    () => fUpper(1, -2, 3),
-    () => foldedNormalQuantile(0.95, Number.NaN),
-    () => logGamma(0),
   ]
   for (const fault of faults) expect(fault).toThrow(RangeError)
 })

@@ -1,39 +1,5 @@
 import { describe, expect, test } from 'vitest'
-import { goldenMinimum, rootBetween } from '../../src/math/index.js'
-
-describe('golden section', () => {
-  test.each([
-    ['(x − 2)⁴ + x', (x: number) => (x - 2) ** 4 + x, -5, 10, 2 - 0.25 ** (1 / 3)],
-    ['x log x', (x: number) => x * Math.log(x), 1e-9, 3, Math.exp(-1)],
-    ['|x − 0.3|, a corner', (x: number) => Math.abs(x - 0.3), 0, 1, 0.3],
-    ['rising: the low end', (x: number) => x, 1, 4, 1],
-    ['falling: the high end', (x: number) => -x, 1, 4, 4],
-  ])('%s', (_, f, low, high, place) => {
-    // The values of a smooth function cannot tell places nearer than about the root of the rounding unit.
-    const found = goldenMinimum(f, low, high, 1e-6)
-    expect(Math.abs(found - place)).toBeLessThan(1e-6)
-  })
-  test('stays inside, counts its calls, and ends though the tolerance is beyond the doubles', () => {
-    let calls = 0
-    goldenMinimum(
-      (x) => {
-        expect(x >= 2 && x <= 3).toBe(true)
-        calls++
-        return (x - 2.5) ** 2
-      },
-      2,
-      3,
-      1e-3,
-    )
-    expect(calls).toBeLessThanOrEqual(Math.ceil(Math.log(1e3) / Math.log(1.618)) + 2)
-    expect(Math.abs(goldenMinimum((x) => Math.abs(x - 1e9), 0, 2e9, 1e-30) - 1e9)).toBeLessThan(1e-5)
-  })
-  test('refuses an empty interval and a tolerance that is none', () => {
-    expect(() => goldenMinimum((x) => x, 2, 1, 1e-3)).toThrow(RangeError)
-    expect(() => goldenMinimum((x) => x, Number.NaN, 1, 1e-3)).toThrow(RangeError)
-    expect(() => goldenMinimum((x) => x, 0, 1, 0)).toThrow(RangeError)
-  })
-})
+import { rootBetween } from '../../src/math/index.js'
 
 describe('root', () => {
   test.each([

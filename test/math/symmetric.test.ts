@@ -3,7 +3,6 @@ import {
   choleskyInPlace,
   choleskyInverse,
   choleskySolveInPlace,
-  quadraticFormPseudoInverse,
   seededRandom,
   symmetricEigen,
 } from '../../src/math/index.js'
@@ -85,64 +84,5 @@ describe('eigenvalues', () => {
   test('reads the lower triangle and refuses what is not finite', () => {
     expect([...symmetricEigen(Float64Array.from([2, 99, 0, 1]), 2).values]).toEqual([1, 2])
     expect(() => symmetricEigen(Float64Array.from([1, 0, Number.NaN, 1]), 2)).toThrow(RangeError)
-  })
-})
-
-describe('quadratic forms', () => {
-  test('of a full matrix equal those of its inverse', () => {
-    const { a } = covariance(5, 8, 6)
-    const d = Float64Array.from([1, 2, -1, 0.5, 3])
-    const factor = a.slice()
-    choleskyInPlace(factor, 5)
-    const inverse = choleskyInverse(factor, 5)
-    const expected = timesVector(inverse, 5, d).reduce((total, value, i) => total + value * d[i], 0)
-    const { statistic, rank } = quadraticFormPseudoInverse(a, 5, d)
-    expect(rank).toBe(5)
-    expect(Math.abs(statistic / expected - 1)).toBeLessThan(1e-12)
-  })
-  // For A = B B' with B of full column rank and d = B v, d' A⁺ d = v'v.
-  test('of a singular matrix, in any units', () => {
-    const { a, b } = covariance(6, 3, 7)
-    const v = [1, -2, 0.5]
-    const units = [1e-9, 1, 1e6, 10, 1e-3, 1]
-    const d = Float64Array.from({ length: 6 }, (_, i) => v.reduce((total, value, k) => total + b[i * 3 + k] * value, 0))
-    const scaledD = d.map((value, i) => value * units[i])
-    const scaledA = a.map((value, i) => value * units[Math.floor(i / 6)] * units[i % 6])
-    for (const [matrix, vector] of [
-      [a, d],
-      [scaledA, scaledD],
-    ]) {
-      const { statistic, rank } = quadraticFormPseudoInverse(matrix, 6, vector)
-      expect(rank).toBe(3)
-      expect(Math.abs(statistic - 5.25)).toBeLessThan(1e-11)
-    }
-  })
-  // Eigenvalues 2 − e and e of correlation 1 − e; d along the first.
-  test('a correlation closer to 1 than the tolerance is taken for 1', () => {
-    for (const [e, tolerance, rank] of [
-      [1e-12, undefined, 1],
-      [1e-8, undefined, 2],
-      [1e-8, 1e-6, 1],
-      [0.1, 0.06, 1],
-      [0.1, 0.05, 2],
-    ] as const) {
-      const form = quadraticFormPseudoInverse(
-        Float64Array.from([1, 1 - e, 1 - e, 1]),
-        2,
-        Float64Array.from([3, 3]),
-        tolerance,
-      )
-      expect(form.rank).toBe(rank)
-      expect(Math.abs(form.statistic - 18 / (2 - e))).toBeLessThan(1e-12 * (rank === 2 ? 2 / e : 1))
-    }
-  })
-  test('rows of zero variance are left out; a variance that is none is refused', () => {
-    const form = quadraticFormPseudoInverse(Float64Array.from([4, 0, 0, 0]), 2, Float64Array.from([6, 0]))
-    expect(form).toEqual({ statistic: 9, rank: 1 })
-    expect(quadraticFormPseudoInverse(new Float64Array(4), 2, new Float64Array(2))).toEqual({ statistic: 0, rank: 0 })
-    expect(() => quadraticFormPseudoInverse(Float64Array.from([-1]), 1, new Float64Array(1))).toThrow(RangeError)
-    expect(() => quadraticFormPseudoInverse(Float64Array.from([Number.NaN]), 1, new Float64Array(1))).toThrow(
-      RangeError,
-    )
   })
 })

@@ -38,11 +38,6 @@ chiDegrees <- c(0.5, 1, 2, 3, 5, 7.5, 10, 50, 200, 1e3, 1e4, 1e5)
 chi <- expand.grid(share = c(0.01, 0.1, 0.5, 0.9, 1, 1.1, 1.5, 2, 3, 5, 10, 40, 100, 300, 1000), df = chiDegrees)
 chi$x <- chi$share * chi$df
 chi <- chi[pchisq(chi$x, chi$df, lower.tail = FALSE, log.p = TRUE) > -700, ]
-chiq <- expand.grid(p = p, df = chiDegrees)
-f <- expand.grid(x = c(1e-4, 0.01, 0.2, 0.5, 0.9, 1, 1.1, 1.5, 2, 3, 5, 10, 30, 100, 1e3, 1e5),
-                 df1 = c(1, 2, 3, 5, 10, 40, 300), df2 = c(0.5, 1, 2.5, 4, 10, 33, 200, 1e4, 1e6))
-f <- f[pf(f$x, f$df1, f$df2, lower.tail = FALSE, log.p = TRUE) > -700, ]
-x <- c(0.01, 0.15, 0.3, 0.5, 0.75, 1.5, 2.5, 3, 5, 7.5, 10, 20, 50, 100, 1e3, 1e4, 1e5, 1e6, 5e7, 5e11)
 
 cat('{\n  "made_by": "distributions.R, R 4.2.2",\n')
 rows('normal', data.frame(z, pnorm(-z), pnorm(z)))
@@ -54,10 +49,4 @@ cat(',\n')
 rows('student_quantile', data.frame(tq$p, tq$df, mapply(student_quantile, tq$p, tq$df)))
 cat(',\n')
 rows('chi_square', data.frame(chi$x, chi$df, pchisq(chi$x, chi$df, lower.tail = FALSE)))
-cat(',\n')
-rows('chi_square_quantile', data.frame(chiq$p, chiq$df, qchisq(chiq$p, chiq$df)))
-cat(',\n')
-rows('f', data.frame(f$x, f$df1, f$df2, pf(f$x, f$df1, f$df2, lower.tail = FALSE)))
-cat(',\n')
-rows('log_gamma', data.frame(x, lgamma(x)))
 cat('\n}\n')
