@@ -8,6 +8,7 @@ import {
   type LayersAlong,
   type LineLayer,
   layersAlong,
+  type Measured,
   measureUnits,
   prepareBorder,
   type RepeatedPoints,
@@ -31,6 +32,7 @@ export interface BorderFacts {
   /** Its pieces carry what set them aside. */
   readonly border: Border
   readonly ground: Ground
+  readonly measured: Measured
   /** Why each row was not placed: index into `labels`, -1 where it was. */
   readonly reason: { readonly codes: Int32Array; readonly labels: readonly string[] }
   readonly waterfall: readonly WaterfallStep[]
@@ -94,6 +96,7 @@ export function locateOnBorder(
       placement,
       setAside,
       ground,
+      measured,
       reason,
       border: { ...border, pieces },
       waterfall,

@@ -1,6 +1,5 @@
 /** Areas on the WGS 84 ellipsoid of rings whose edges are straight in longitude and latitude (RFC 7946). */
 import geographic from 'geographiclib-geodesic'
-import type { MultiPolygonCoords } from './geojson.js'
 
 const wgs84 = geographic.Geodesic.WGS84
 
@@ -25,12 +24,4 @@ export function ringSquareMetres(ring: readonly (readonly number[])[]): number {
     }
   })
   return polygon.Compute(false, true).area ?? 0
-}
-
-/** Area in square metres of polygons with their holes taken out, whichever way the rings run. */
-export function polygonSquareMetres(polygons: MultiPolygonCoords): number {
-  return polygons.reduce(
-    (sum, rings) => rings.reduce((rest, ring, r) => rest + (r === 0 ? 1 : -1) * Math.abs(ringSquareMetres(ring)), sum),
-    0,
-  )
 }

@@ -1,5 +1,5 @@
 /** Distances from points to many lon/lat edges: the one place other files of this room import them from. */
 export { type Nearest, nearestEdges } from './nearest.js'
 export { buildSegmentTree, type SegmentTree } from './segmentTreeBuild.js'
-export { edgesNear, edgesNearEdge } from './segmentTreeNear.js'
+export { edgesNearEdge } from './segmentTreeNear.js'
 export { along, type Edges } from './segmentTreeSplit.js'

@@ -5,25 +5,10 @@ import type { SegmentTree } from './segmentTreeBuild.js'
 const metresPerDegree = (equatorialMetres * 1.004 * Math.PI) / 180
 
 /**
- * Edges that may come within `metres` of any point of the lon/lat rectangle with corners (lon0, lat0) and (lon1, lat1),
- * and so of the straight edge between them. Sets `out` to their indices, ascending, each once: every edge that does
- * come so near, and some that don't (the rectangle is covered with discs). Longitudes as written, across 180° unwrapped.
+ * Edges that may come within `metres` of any point of the straight edge from (lon0, lat0) to (lon1, lat1). Sets `out` to
+ * their indices, ascending, each once: every edge that does come so near, and some that don't (the edge is covered with
+ * discs). Longitudes as written, across 180° unwrapped.
  */
-export function edgesNear(
-  tree: SegmentTree,
-  lon0: number,
-  lat0: number,
-  lon1: number,
-  lat1: number,
-  metres: number,
-  out: number[],
-): void {
-  const pieces: number[] = []
-  coverRectangle(tree, nodeStack(tree), lon0, lat0, lon1, lat1, metres, pieces)
-  distinctEdges(tree, pieces, out)
-}
-
-/** As `edgesNear`, for the straight edge alone: covered with discs along it, so tighter for a long slanting edge. */
 export function edgesNearEdge(
   tree: SegmentTree,
   lon0: number,
@@ -43,34 +28,6 @@ function distinctEdges(tree: SegmentTree, pieces: number[], out: number[]): void
   pieces.sort((a, b) => a - b)
   out.length = 0
   for (let k = 0; k < pieces.length; k++) if (k === 0 || pieces[k] !== pieces[k - 1]) out.push(pieces[k])
-}
-
-/** Splits a long thin rectangle until it is at most twice as long as wide, or 1 km, or `metres`. */
-function coverRectangle(
-  tree: SegmentTree,
-  stack: Int32Array,
-  lon0: number,
-  lat0: number,
-  lon1: number,
-  lat1: number,
-  metres: number,
-  pieces: number[],
-): void {
-  const north = Math.abs(lat1 - lat0) * metresPerDegree
-  const east = Math.abs(lon1 - lon0) * metresPerDegree * cosineNearestEquator(lat0, lat1)
-  const small = Math.max(1000, metres)
-  const middleLon = (lon0 + lon1) / 2
-  const middleLat = (lat0 + lat1) / 2
-  if (Math.abs(lon1 - lon0) > 90 || (east > 2 * north && east > small)) {
-    coverRectangle(tree, stack, lon0, lat0, middleLon, lat1, metres, pieces)
-    coverRectangle(tree, stack, middleLon, lat0, lon1, lat1, metres, pieces)
-  } else if (north > 2 * east && north > small) {
-    coverRectangle(tree, stack, lon0, lat0, lon1, middleLat, metres, pieces)
-    coverRectangle(tree, stack, lon0, middleLat, lon1, lat1, metres, pieces)
-  } else {
-    // the straight lon/lat way from the middle to any point is no longer than this
-    collectDisc(tree, stack, middleLon, middleLat, Math.sqrt(north * north + east * east) / 2 + metres, pieces)
-  }
 }
 
 /** Splits the edge in two until a half is no longer than 500 m or `metres`. */

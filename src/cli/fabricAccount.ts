@@ -1,12 +1,13 @@
 /** How the zones of a border study fit together, as `inspect` tells it: boundaries by kind, gaps and overlaps, units in them. */
 import type { AnalysisInputs, Placed } from '../analyze.js'
-import { borderFit, fabricOf, type Sliver, unitsChangingSide, widestSlivers } from '../borders/index.js'
+import { borderFit, fabricOf, runnerUps, type Sliver, unitsChangingSide, widestSlivers } from '../borders/index.js'
 import { numbersOf } from '../records/index.js'
 import type { Study } from '../study/index.js'
 import { count } from './doubts.js'
 
 const sliversShown = 10
 const pairsShown = 5
+const nearlyAsNear = 1.25
 
 export interface FabricAccount {
   readonly lines: readonly string[]
@@ -14,7 +15,8 @@ export interface FabricAccount {
 }
 
 /** Nothing for studies without zones. */
-export function fabricAccount(study: Study, { table }: AnalysisInputs, { border }: Placed): FabricAccount {
+export function fabricAccount(study: Study, { table }: AnalysisInputs, placed: Placed): FabricAccount {
+  const { border } = placed
   if (study.line.kind !== 'border' || !border) return { lines: [], doubts: [] }
   const { snap } = study.line
   const fabric = fabricOf(border.zones, snap)
@@ -33,12 +35,24 @@ export function fabricAccount(study: Study, { table }: AnalysisInputs, { border 
       `boundaries of ${count(fabric.zones.length)} zones: ${byLabel.join(', ')}`,
       `farthest the border lies from the edge of one of its zones: ${metres(farthest)} (snap ${metres(snap)})`,
       `${count(changing.between)} units stand between the edges of two zones: ${count(changing.inGaps)} in gaps, ${count(changing.inOverlaps)} in overlaps`,
+      ...secondBorder(placed, lon, lat),
       ...(listed.length > 0 ? ['gaps and overlaps, widest first'] : []),
       ...listed.map(sliverLine),
       ...(others.count > 0 ? [`  and ${count(others.count)} more, ${squareMetres(others.squareMetres)} in all`] : []),
     ],
     doubts: doubtfulPairs(fabric.pairs, border.zones.names, border.treatedZone),
   }
+}
+
+/** Units for which another pair's border is nearly as near: they could have served it. */
+function secondBorder({ placement, border, measured }: Placed, lon: Float64Array, lat: Float64Array): string[] {
+  if (!border || !measured || new Set(border.pieces.map(({ zones }) => zones.join('\0'))).size < 2) return []
+  const { distanceMetres } = runnerUps(border, measured, lon, lat, placement.unit)
+  const close = placement.unit.filter((unit, i) => distanceMetres[i] < nearlyAsNear * measured.distanceMetres[unit])
+  const share = placement.unit.length > 0 ? Math.round((100 * close.length) / placement.unit.length) : 0
+  return [
+    `${count(close.length)} placed units (${share}%) have another pair's border less than ${nearlyAsNear} times as far`,
+  ]
 }
 
 function sliverLine({ kind, zones, widestMetres, squareMetres: area, lon, lat, isWithinSnap }: Sliver): string {

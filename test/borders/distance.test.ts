@@ -5,7 +5,6 @@ import { hilbertKey, hilbertOrder } from '../../src/borders/hilbert.js'
 import {
   buildSegmentTree,
   type Edges,
-  edgesNear,
   edgesNearEdge,
   type Nearest,
   nearestEdges,
@@ -405,16 +404,14 @@ describe('edges near a place', () => {
       })
       const { distanceMetres } = nearestOf(probe, points)
       const least = Array.from(edges.lon0, (_, edge) => Math.min(...distanceMetres.subarray(9 * edge, 9 * edge + 9)))
-      for (const find of [edgesNear, edgesNearEdge]) {
-        const out = [999]
-        find(tree, lon0, lat0, lon1, lat1, metres, out)
-        expect(out).toEqual([...new Set(out)].sort((a, b) => a - b))
-        const isListed = Array.from(edges.lon0, (_, edge) => out.includes(edge))
-        least.forEach((near, edge) => {
-          if (near <= metres !== isListed[edge]) expect(near).toBeGreaterThan(metres)
-          if (near > 2 * metres + 40_000) expect(isListed[edge]).toBe(false)
-        })
-      }
+      const out = [999]
+      edgesNearEdge(tree, lon0, lat0, lon1, lat1, metres, out)
+      expect(out).toEqual([...new Set(out)].sort((a, b) => a - b))
+      const isListed = Array.from(edges.lon0, (_, edge) => out.includes(edge))
+      least.forEach((near, edge) => {
+        if (near <= metres !== isListed[edge]) expect(near).toBeGreaterThan(metres)
+        if (near > 2 * metres + 40_000) expect(isListed[edge]).toBe(false)
+      })
     }
   })
   it('finds what is near the far end and the middle of a long edge', () => {
@@ -426,8 +423,6 @@ describe('edges near a place', () => {
       ]),
     )
     const out: number[] = []
-    edgesNear(far, -123.3, 49, -95.15, 49, 200, out)
-    expect(out).toEqual([0, 1])
     edgesNearEdge(far, -123.3, 49, -95.15, 49, 200, out)
     expect(out).toEqual([0, 1])
   })
