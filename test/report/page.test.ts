@@ -1,23 +1,33 @@
 /** The page in a real browser, network off: nothing requested, nothing said, nothing seriously inaccessible, nothing too wide. */
-import { mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
+import { copyFileSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
 import { createRequire } from 'node:module'
 import { tmpdir } from 'node:os'
-import { join } from 'node:path'
+import { join, resolve } from 'node:path'
 import { pathToFileURL } from 'node:url'
 import type axe from 'axe-core'
 import { type Browser, type BrowserContextOptions, chromium, type Page } from 'playwright-core'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { drawReport } from '../../src/report/index.js'
+import { scarp } from '../cli/studies.js'
 import { borderStudy, scoreStudy } from '../fixtures/report/studies.js'
 
 const folder = mkdtempSync(join(tmpdir(), 'report-page-'))
 const files = { border: drawReport(borderStudy()), score: drawReport(scoreStudy()) }
+/** Studies of boundaries/, run by the command line. */
+const examples = ['quillhaven', 'hedgerows']
 const axeSource = readFileSync(createRequire(import.meta.url).resolve('axe-core/axe.min.js'), 'utf8')
 let browser: Browser
 
 beforeAll(async () => {
   for (const [name, texts] of Object.entries(files))
     writeFileSync(join(folder, `${name}.html`), texts.get('report.html') as string)
+  for (const name of examples) {
+    const said = await scarp(['run', resolve('boundaries', name, 'study.yaml'), '--out', name, '--quiet'], {
+      cwd: folder,
+    })
+    expect(said).toEqual({ code: 0, stdout: '', stderr: '' })
+    copyFileSync(join(folder, name, 'report.html'), join(folder, `${name}.html`))
+  }
   browser = await chromium.launch({
     executablePath: '/usr/bin/chromium',
     args: [
@@ -67,7 +77,7 @@ async function open(
   await context.close()
 }
 
-describe.each(['border', 'score'])('the %s page', (name) => {
+describe.each(['border', 'score', ...examples])('the %s page', (name) => {
   it('asks for nothing and says nothing, and its style sheet applies', async () => {
     await open(name, {}, async (page, seen) => {
       expect(seen).toEqual({ requests: [], messages: [] })
