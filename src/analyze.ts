@@ -18,7 +18,7 @@ import { type LedgerStep, ledgerStep } from './records/index.js'
 import type { Analysis, Exhibits, InputFile, MapExhibit, OutcomeExhibit, OutcomeResult, UnitRows } from './results.js'
 import type { Study } from './study/index.js'
 
-export { metresPerUnit } from './analysis/border.js'
+export { borderOf, metresPerUnit } from './analysis/border.js'
 export type { AnalysisInputs, LayerInput, Progress } from './analysis/inputs.js'
 export { positionColumns } from './analysis/inputs.js'
 export type { Placed } from './analysis/placing.js'

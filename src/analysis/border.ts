@@ -48,32 +48,54 @@ export interface LocatedOnBorder extends BorderFacts {
   readonly setAside: SetAside
 }
 
+/** Zones prepared for their border, and the layers beside it. */
+interface StudyBorder {
+  readonly border: Border
+  readonly barriers: readonly Layer[]
+  readonly overlaps: readonly Layer[]
+}
+
+/** The border of a study, as every unit is measured against it; the problems of zones and layers all at once. */
+export function borderOf(line: BorderLine, inputs: AnalysisInputs): Checked<Border> {
+  const prepared = studyBorder(line, inputs)
+  return prepared.ok ? { ok: true, value: prepared.value.border } : prepared
+}
+
+function studyBorder(line: BorderLine, inputs: AnalysisInputs): Checked<StudyBorder> {
+  const { zones, ground } = inputs
+  if (!zones) throw new Error('the study has zones, but none were read')
+  const problems: Problem[] = []
+  const barriers = layersOf(line.barriers, inputs.barriers ?? [], problems)
+  const overlaps = layersOf(line.overlaps, inputs.overlaps ?? [], problems)
+  if (ground && problems.length === 0) return { ok: true, value: { border: ground.border, barriers, overlaps } }
+  const readyZones = readZones(zones.content, zones.file, line.zoneName)
+  if (!readyZones.ok) problems.unshift(...readyZones.problems)
+  if (!readyZones.ok || problems.length > 0) return { ok: false, problems }
+  const prepared = prepareBorder(readyZones.value, {
+    treated: line.treated,
+    dose: line.dose,
+    outside: line.outside,
+    snapMetres: line.snap,
+    pieceMetres: line.piece * metresPerUnit[line.unit],
+  })
+  return prepared.ok ? { ok: true, value: { border: prepared.value, barriers, overlaps } } : prepared
+}
+
+/** Places every row against the border; `inputs.ground` spares the geometry where it is known already. */
 export function locateOnBorder(
   study: Study,
   line: BorderLine,
   inputs: AnalysisInputs,
   progress?: Progress,
 ): Checked<LocatedOnBorder> {
-  const { table, zones } = inputs
-  if (!zones) throw new Error('the study has zones, but none were read')
-  const problems: Problem[] = []
-  const readyZones = readZones(zones.content, zones.file, line.zoneName)
-  if (!readyZones.ok) problems.push(...readyZones.problems)
-  const barriers = layersOf(line.barriers, inputs.barriers ?? [], problems)
-  const overlaps = layersOf(line.overlaps, inputs.overlaps ?? [], problems)
-  if (!readyZones.ok || problems.length > 0) return { ok: false, problems }
-  const perUnit = metresPerUnit[line.unit]
-  const prepared = prepareBorder(readyZones.value, {
-    treated: line.treated,
-    dose: line.dose,
-    outside: line.outside,
-    snapMetres: line.snap,
-    pieceMetres: line.piece * perUnit,
-  })
+  const { table } = inputs
+  const prepared = studyBorder(line, inputs)
   if (!prepared.ok) return prepared
-  const border = prepared.value
+  const { border, barriers, overlaps } = prepared.value
+  const perUnit = metresPerUnit[line.unit]
   const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
-  const measured = measureUnits(border, lon, lat, (done) => progress?.('placing', done, table.rows))
+  const measured =
+    inputs.ground?.measured ?? measureUnits(border, lon, lat, (done) => progress?.('placing', done, table.rows))
   const shares = (layers: readonly Layer[]): LayerShare[] =>
     layers.map(({ layer, within }) => ({ name: layer.file, share: shareNear(border, layer, within) }))
   const [nearBarriers, nearOverlaps] = [shares(barriers), shares(overlaps)]

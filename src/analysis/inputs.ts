@@ -1,4 +1,5 @@
 /** What an analysis reads besides the study, and which columns it asks of the tables. */
+import type { Border, Measured } from '../borders/index.js'
 import type { Table, WantedColumn } from '../records/index.js'
 import type { Study } from '../study/index.js'
 
@@ -21,6 +22,8 @@ export interface AnalysisInputs {
   readonly barriers?: readonly LayerInput[]
   /** In the order of the study's overlaps. */
   readonly overlaps?: readonly LayerInput[]
+  /** The border of `zones` and the rows of `table` measured against it, where that is known already. */
+  readonly ground?: { readonly border: Border; readonly measured: Measured }
 }
 
 /** Told how far a stage has come, for a progress bar. */
