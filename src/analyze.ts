@@ -12,6 +12,7 @@ import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/in
 import { type Placed, placeStudy } from './analysis/placing.js'
 import { sharesOfLines } from './analysis/shares.js'
 import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
+import { placeVariants, variantResults } from './analysis/variants.js'
 import { linesOfLayer, readLineLayer } from './borders/index.js'
 import type { Checked } from './problem.js'
 import { type LedgerStep, ledgerStep } from './records/index.js'
@@ -20,7 +21,7 @@ import type { Study } from './study/index.js'
 
 export { borderOf, metresPerUnit } from './analysis/border.js'
 export type { AnalysisInputs, LayerInput, Progress } from './analysis/inputs.js'
-export { positionColumns } from './analysis/inputs.js'
+export { positionColumns, readingKey } from './analysis/inputs.js'
 export type { Placed } from './analysis/placing.js'
 export { placeStudy, wantedColumns }
 
@@ -42,6 +43,8 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
   const { placement } = placed.value
   const shares = sharesOfLines(study, inputs, placement)
   if (!shares.ok) return shares
+  const variants = placeVariants(study, inputs, placed.value, context.progress)
+  if (!variants.ok) return variants
   const ground = alongGround(study, inputs, placed.value)
   const ledger = [...placed.value.ledger]
   const outcomes: OutcomeResult[] = []
@@ -56,7 +59,15 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     const { pooled } = estimates
     const along =
       ground && !hasReason(pooled) ? alongResult(study, inputs, placed.value, ground, outcome, pooled.jump) : {}
-    outcomes.push({ ...outcomeResult(study, outcome, placement.lines, estimates), ...along })
+    const main = { study, table: inputs.table, placed: placed.value, entries, made: estimates }
+    const beside = variantResults(variants.value, outcome, main, (done) =>
+      context.progress?.('estimating variants', done, variants.value.length),
+    )
+    outcomes.push({
+      ...outcomeResult(study, outcome, placement.lines, estimates),
+      ...along,
+      ...(beside.length > 0 ? { variants: beside } : {}),
+    })
     drawn.push(outcomeExhibit(study, outcome, estimates))
   })
   const used = placed.value.border?.pieces.filter(({ setAside }) => setAside === undefined)

@@ -76,6 +76,8 @@ export interface BorderResult {
   }
   /** Units by the record's zone and the map's, where the two differ. */
   readonly conflicts?: readonly { readonly record: string; readonly map: string; readonly units: number }[]
+  /** Points where three zones meet, and pieces in use that turn by more than `turn` degrees: distance alone errs there. */
+  readonly corners: { readonly points: number; readonly turn: number; readonly turning_pieces: number }
   readonly repeated_points: {
     readonly units: number
     readonly distinct: number
@@ -205,6 +207,21 @@ export type AlongAverage =
   | ({ readonly estimate: number; readonly standard_error: number; readonly p: number } & Interval)
   | NotEstimated
 
+/** The study with some keys written otherwise. */
+export interface VariantResult {
+  readonly variant: string
+  readonly pooled: PooledJump
+  readonly target: Target
+  /** Corrected pooled estimate of the variant less the study's own, with the covariance of the two. */
+  readonly difference?: {
+    readonly estimate: number
+    readonly standard_error: number | null
+    readonly standard_error_reason?: string
+    /** Of no difference, normal reference; absent where there is none to test. */
+    readonly p?: number
+  }
+}
+
 export interface OutcomeResult {
   readonly outcome: string
   readonly along?: readonly AlongResult[]
@@ -219,6 +236,7 @@ export interface OutcomeResult {
   readonly comparison: Comparison | null
   readonly comparison_reason?: string
   readonly checks: readonly CheckResult[]
+  readonly variants?: readonly VariantResult[]
 }
 
 /* What the report draws beside the numbers. It carries no record, id or unit coordinate. */

@@ -8,7 +8,6 @@ import {
   type LayersAlong,
   type LineLayer,
   layersAlong,
-  type Measured,
   measureUnits,
   prepareBorder,
   type RepeatedPoints,
@@ -23,7 +22,7 @@ import type { Placement, SetAside } from '../placement.js'
 import type { Checked, Problem } from '../problem.js'
 import { labelsOf, numbersOf } from '../records/index.js'
 import type { BorderLine, LayerNear, Study } from '../study/index.js'
-import { type AnalysisInputs, type LayerInput, type Progress, positionColumns } from './inputs.js'
+import { type AnalysisInputs, type KnownGround, type LayerInput, type Progress, positionColumns } from './inputs.js'
 
 export const metresPerUnit = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 } as const
 
@@ -31,8 +30,9 @@ export const metresPerUnit = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 } as con
 export interface BorderFacts {
   /** Its pieces carry what set them aside. */
   readonly border: Border
+  /** What the same border and units need not be measured for again. */
+  readonly known: KnownGround
   readonly ground: Ground
-  readonly measured: Measured
   /** Why each row was not placed: index into `labels`, -1 where it was. */
   readonly reason: { readonly codes: Int32Array; readonly labels: readonly string[] }
   readonly waterfall: readonly WaterfallStep[]
@@ -96,8 +96,13 @@ export function locateOnBorder(
   const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
   const measured =
     inputs.ground?.measured ?? measureUnits(border, lon, lat, (done) => progress?.('placing', done, table.rows))
+  const shareOf = new Map(inputs.ground?.shareOf)
   const shares = (layers: readonly Layer[]): LayerShare[] =>
-    layers.map(({ layer, within }) => ({ name: layer.file, share: shareNear(border, layer, within) }))
+    layers.map(({ layer, key, within }) => {
+      const share = shareOf.get(key) ?? shareNear(border, layer, within)
+      shareOf.set(key, share)
+      return { name: layer.file, share }
+    })
   const [nearBarriers, nearOverlaps] = [shares(barriers), shares(overlaps)]
   const side = line.side === undefined ? undefined : zonesByRecord(border.names, labelsOf(table, line.side))
   const result = eligible(border, measured, {
@@ -118,7 +123,7 @@ export function locateOnBorder(
       placement,
       setAside,
       ground,
-      measured,
+      known: { border, measured, shareOf },
       reason,
       border: { ...border, pieces },
       waterfall,
@@ -131,13 +136,15 @@ export function locateOnBorder(
 
 interface Layer {
   readonly layer: LineLayer
+  /** The layer's content and how near. */
+  readonly key: string
   readonly within: number
 }
 
 function layersOf(near: readonly LayerNear[], inputs: readonly LayerInput[], problems: Problem[]): Layer[] {
   return near.flatMap(({ within }, i) => {
     const layer = readLineLayer(inputs[i].content, inputs[i].file)
-    if (layer.ok) return [{ layer: layer.value, within }]
+    if (layer.ok) return [{ layer: layer.value, key: `${inputs[i].sha256} ${inputs[i].file} ${within}`, within }]
     problems.push(...layer.problems)
     return []
   })

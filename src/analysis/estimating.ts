@@ -47,6 +47,9 @@ export function hasReason<T extends object>(value: OrReason<T>): value is { read
   return 'reason' in value
 }
 
+/** What variants are put beside: no comparison of lines. */
+export type MainEstimates = Omit<OutcomeEstimates, 'comparison'>
+
 /** Estimates one outcome; `shares` are the target's weights by line where the study gives a column. */
 export function estimateOutcome(
   study: Study,
@@ -55,6 +58,19 @@ export function estimateOutcome(
   shares: Float64Array | undefined,
   progress: (done: number) => void,
 ): OutcomeEstimates {
+  const { effects, ...main } = estimateMain(study, placed, entries, shares, progress)
+  const { level } = study.estimation
+  return { ...main, comparison: compareLines(effects, { level, random: streamOf(study.seed, 1) }) }
+}
+
+/** Lines, pooled and target, and the effects that can be compared. */
+export function estimateMain(
+  study: Study,
+  placed: Placed,
+  entries: OutcomeEntries,
+  shares: Float64Array | undefined,
+  progress: (done: number) => void = () => {},
+): MainEstimates & { readonly effects: LineEffects } {
   const { placement } = placed
   const hasClusters = placed.cluster !== undefined
   const { lineVariance, pooledVariance } = variancesOf(study, hasClusters)
@@ -67,8 +83,6 @@ export function estimateOutcome(
   const pooled = guard(estimatePooled(study, entries, lines, pooledVariance, hasClusters))
   const ids = placement.lines.map((line) => line.id)
   const { effects, index } = effectsOf(ids, lines)
-  const { level } = study.estimation
-  const comparison = compareLines(effects, { level, random: streamOf(study.seed, 1) })
   const target = targetOf(study, effects, index, lines, shares)
   return {
     lines,
@@ -78,7 +92,7 @@ export function estimateOutcome(
     notes: snapNotes(study, [...lines, pooled]),
     compared: index,
     target,
-    comparison,
+    effects,
   }
 }
 

@@ -22,8 +22,18 @@ export interface AnalysisInputs {
   readonly barriers?: readonly LayerInput[]
   /** In the order of the study's overlaps. */
   readonly overlaps?: readonly LayerInput[]
-  /** The border of `zones` and the rows of `table` measured against it, where that is known already. */
-  readonly ground?: { readonly border: Border; readonly measured: Measured }
+  /** Where that is known already. */
+  readonly ground?: KnownGround
+  /** What each variant of the study reads, by its name. */
+  readonly variants?: ReadonlyMap<string, AnalysisInputs>
+}
+
+/** The border of the zones, no rule applied to it, and the rows of the table measured against it. */
+export interface KnownGround {
+  readonly border: Border
+  readonly measured: Measured
+  /** Share of each piece near a layer, by the layer and how near. */
+  readonly shareOf?: ReadonlyMap<string, Float64Array>
 }
 
 /** Told how far a stage has come, for a progress bar. */
@@ -37,14 +47,51 @@ export function positionColumns(study: Study): readonly [string, string] {
   return study.records.position ?? pointColumns
 }
 
+/** Equal for studies that read the same table, schedule and zones; which columns of them is left open. */
+export function readingKey({ records, line }: Study): string {
+  const { id: _, weight: __, cluster: ___, ...table } = records
+  const files = line.kind === 'border' ? line.zones : line.kind === 'score' ? line.cutoff : ''
+  const schedule = typeof files === 'object' && 'kind' in files && files.kind !== 'schedule' ? '' : files
+  return JSON.stringify([table, line.kind === 'border', schedule])
+}
+
 /**
- * The columns an analysis needs. `scheduleColumns` are the names in the schedule's header: pooling shares are read
+ * The columns an analysis needs, of the study and of its variants that read the same files. `scheduleColumns` are the names in the schedule's header: pooling shares are read
  * from the schedule where it has the column, else from the records.
  */
-export function wantedColumns(
-  study: Study,
-  scheduleColumns: readonly string[] = [],
-): { records: WantedColumn[]; schedule?: WantedColumn[] } {
+export function wantedColumns(study: Study, scheduleColumns: readonly string[] = []): WantedColumns {
+  const own = ownColumns(study, scheduleColumns)
+  const others = study.variants
+    .filter((variant) => readingKey(variant.study) === readingKey(study))
+    .map(({ name, study: other }) => named(name, ownColumns(other, scheduleColumns)))
+  return {
+    records: distinct([own, ...others].flatMap(({ records }) => records)),
+    ...(own.schedule ? { schedule: distinct([own, ...others].flatMap(({ schedule }) => schedule ?? [])) } : {}),
+  }
+}
+
+export interface WantedColumns {
+  readonly records: readonly WantedColumn[]
+  readonly schedule?: readonly WantedColumn[]
+}
+
+function named(variant: string, { records, schedule }: WantedColumns): WantedColumns {
+  const of = (columns: readonly WantedColumn[]) =>
+    columns.map((column) => ({ ...column, askedBy: `variant ${variant}: ${column.askedBy}` }))
+  return { records: of(records), ...(schedule ? { schedule: of(schedule) } : {}) }
+}
+
+/** The first to ask for a column of a kind. */
+function distinct(columns: readonly WantedColumn[]): WantedColumn[] {
+  const first = new Map<string, WantedColumn>()
+  for (const column of columns) {
+    const key = `${column.kind} ${column.name}`
+    if (!first.has(key)) first.set(key, column)
+  }
+  return [...first.values()]
+}
+
+function ownColumns(study: Study, scheduleColumns: readonly string[]): WantedColumns {
   const records: WantedColumn[] = []
   const ask = (kind: 'number' | 'label', name: string | undefined, askedBy: string) => {
     if (name !== undefined) records.push({ name, kind, askedBy })

@@ -15,7 +15,7 @@ import type {
 } from '../results.js'
 import type { EstimationPart, Study } from '../study/index.js'
 import type { BorderFacts } from './border.js'
-import { hasReason, type OutcomeEstimates } from './estimating.js'
+import { hasReason, type MainEstimates, type OutcomeEstimates } from './estimating.js'
 
 export function outcomeResult(
   study: Study,
@@ -42,7 +42,7 @@ export function outcomeResult(
   }
 }
 
-function pooledResult(estimates: OutcomeEstimates, estimation: EstimationPart, lines: readonly Line[]): PooledJump {
+export function pooledResult(estimates: MainEstimates, estimation: EstimationPart, lines: readonly Line[]): PooledJump {
   const { pooled } = estimates
   if (hasReason(pooled)) return { not_estimated: pooled.reason }
   const variance = lines.length === 1 ? estimates.lineVariance : estimates.pooledVariance
@@ -54,7 +54,7 @@ function pooledResult(estimates: OutcomeEstimates, estimation: EstimationPart, l
   return { ...jump, ...(notes ? { notes } : {}), weights: weightsByLine(lines, pooled.weights) }
 }
 
-function targetResult(estimates: OutcomeEstimates, lines: readonly Line[]): Target {
+export function targetResult(estimates: MainEstimates, lines: readonly Line[]): Target {
   const { target } = estimates
   if (!target.ok) return { not_estimated: target.reason }
   const compared = estimates.compared.map((i) => lines[i])
@@ -133,7 +133,12 @@ export function lineSummaries(placement: Placement, pieces: readonly Piece[] = [
   }))
 }
 
-export function borderResult({ waterfall, layers, conflicts, repeated }: BorderFacts): BorderResult {
+/** Degrees: a piece that turns by more has a corner (common practice, no source). */
+const cornerTurn = 45
+
+const hasCorner = (piece: Piece) => piece.largestTurnDegrees > cornerTurn
+
+export function borderResult({ waterfall, layers, conflicts, repeated, border }: BorderFacts): BorderResult {
   const { units, distinct, repeatedShare, most } = repeated
   const sharesOf = ({ km, shares }: { km: number; shares: readonly number[] }) => ({
     km,
@@ -151,6 +156,11 @@ export function borderResult({ waterfall, layers, conflicts, repeated }: BorderF
         }
       : {}),
     ...(conflicts ? { conflicts } : {}),
+    corners: {
+      points: border.corners.length,
+      turn: cornerTurn,
+      turning_pieces: border.pieces.filter((piece) => piece.setAside === undefined && hasCorner(piece)).length,
+    },
     repeated_points: {
       units,
       distinct,

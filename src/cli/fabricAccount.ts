@@ -45,7 +45,8 @@ export function fabricAccount(study: Study, { table }: AnalysisInputs, placed: P
 }
 
 /** Units for which another pair's border is nearly as near: they could have served it. */
-function secondBorder({ placement, border, measured }: Placed, lon: Float64Array, lat: Float64Array): string[] {
+function secondBorder({ placement, border, known }: Placed, lon: Float64Array, lat: Float64Array): string[] {
+  const measured = known?.measured
   if (!border || !measured || new Set(border.pieces.map(({ zones }) => zones.join('\0'))).size < 2) return []
   const { distanceMetres } = runnerUps(border, measured, lon, lat, placement.unit)
   const close = placement.unit.filter((unit, i) => distanceMetres[i] < nearlyAsNear * measured.distanceMetres[unit])

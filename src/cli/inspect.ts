@@ -8,6 +8,7 @@ import type { FabricAccount } from './fabricAccount.js'
 import { readInputs, readStudyFile } from './inputs.js'
 import { progressLine } from './progress.js'
 import { sayProblems } from './say.js'
+import { withVariants } from './variantInputs.js'
 
 const linesShown = 20
 
@@ -19,7 +20,8 @@ export async function inspect(file: string): Promise<ExitCode> {
     return exitCodes.unusable
   }
   const { study } = studyFile.value
-  const inputs = await readInputs(studyFile.value, { progress })
+  const readByStudy = await readInputs(studyFile.value, { progress })
+  const inputs = readByStudy.ok ? await withVariants(studyFile.value, readByStudy.value, { progress }) : readByStudy
   const { placeStudy } = await import('../analyze.js')
   const placed = inputs.ok ? placeStudy(study, inputs.value, progress) : inputs
   clear()

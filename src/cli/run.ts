@@ -8,6 +8,7 @@ import { mendResultsFolder, writeResultsFolder } from './resultsFolder.js'
 import { resultsJson } from './resultsJson.js'
 import { say, sayProblems } from './say.js'
 import { unitsCsv } from './unitsCsv.js'
+import { withVariants } from './variantInputs.js'
 import { packageVersion } from './version.js'
 
 export interface RunOptions {
@@ -26,7 +27,8 @@ export async function run(file: string, options: RunOptions): Promise<ExitCode> 
   if (!studyFile.ok) return refuse(studyFile.problems)
   const { study, paths } = studyFile.value
   const outProblems = outFolderProblems(out, paths)
-  const inputs = await readInputs(studyFile.value, { progress })
+  const read = await readInputs(studyFile.value, { progress })
+  const inputs = read.ok ? await withVariants(studyFile.value, read.value, { progress }) : read
   if (!inputs.ok || outProblems.length > 0) {
     clear()
     return refuse([...outProblems, ...(inputs.ok ? [] : inputs.problems)])

@@ -17,9 +17,9 @@ export interface Bandwidths {
   readonly b: BySide<number>
 }
 
-/** A rule, or numbers in x units; without `bias`, b is the rule's, or equal to a fixed h. */
+/** A rule, its answer times `scale`, or numbers in x units; without `bias`, b is the rule's, or equal to a fixed h. */
 export type BandwidthChoice =
-  | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number }
+  | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number; readonly scale?: number }
   | { readonly kind: 'fixed'; readonly untreated: number; readonly treated: number; readonly bias?: number }
 
 export interface BandwidthOptions {
@@ -102,7 +102,10 @@ export function bandwidthsFor(
   if (sample.untreated.t.length === 0) return { ok: false, reason: 'untreated side: no units' }
   if (sample.treated.t.length === 0) return { ok: false, reason: 'treated side: no units' }
   const chosen = plugIn(sample, neighbours ?? neighbourResidualsOf(sample), choice.rule, options)
-  return chosen.ok && bias ? { ok: true, bandwidths: { h: chosen.bandwidths.h, b: bias } } : chosen
+  if (!chosen.ok) return chosen
+  const { scale = 1 } = choice
+  const times = ({ untreated, treated }: BySide<number>) => ({ untreated: untreated * scale, treated: treated * scale })
+  return { ok: true, bandwidths: { h: times(chosen.bandwidths.h), b: bias ?? times(chosen.bandwidths.b) } }
 }
 
 /** Chooses h and b by the rule; a side that can't be fitted at some stage gives the reason. */

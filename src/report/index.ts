@@ -13,6 +13,7 @@ import { paperLineTable } from './lineTable.js'
 import { type PageFigures, pageHtml } from './page/page.js'
 import { pooledTable } from './pooledTable.js'
 import { type TextTable, toLatex, toMarkdown } from './tables.js'
+import { variantTable } from './variantTable.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View, viewOf } from './view.js'
 
 export type { ReportInput } from './input.js'
@@ -39,6 +40,8 @@ export function drawReport(input: ReportInput): Map<string, string> {
     if (pooled) files.set(`figures/${outcome.slug}-pooled.svg`, pooled)
     files.set(`figures/${outcome.slug}-forest.svg`, forest)
     addTable(files, `lines-${outcome.slug}`, paperLineTable(view, outcome))
+    const variants = variantTable(view, outcome)
+    if (variants) addTable(files, `variants-${outcome.slug}`, variants)
   })
   if (figures.map) files.set('figures/map.svg', figures.map)
   addTable(files, 'pooled', pooledTable(view))

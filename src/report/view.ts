@@ -149,3 +149,12 @@ function wordsOf(results: Results, exhibits: Exhibits, choices: Choices): Words 
       : `Distance from ${theLine} in ${exhibits.xUnit}; treated side positive`,
   }
 }
+
+/** Layers of which more than a twentieth of the border in use runs along a line, with that share in percent. */
+export function bundledLayers(view: View): { readonly name: string; readonly share: string }[] {
+  const found = view.results.border?.what_else_changes
+  return (found?.layers ?? []).flatMap((name, i) => {
+    const share = found?.whole.shares[i] ?? 0
+    return share > 0.05 ? [{ name, share: `${Math.round(share * 100)}%` }] : []
+  })
+}

@@ -16,5 +16,6 @@ export type {
   Study,
   TreatedSide,
   VarianceName,
+  Variant,
 } from './types.js'
 export { resolvedStudy } from './write.js'

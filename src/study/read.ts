@@ -1,10 +1,11 @@
 import type { Checked, Problem } from '../problem.js'
 import { problemsOf } from './messages.js'
-import { resolveStudy } from './resolve.js'
+import { resolveStudy, scaledBandwidth } from './resolve.js'
 import { isNamePath, study } from './schema.js'
-import { readSource } from './source.js'
+import { readSource, type Source } from './source.js'
 import { togetherProblems } from './together.js'
-import type { Study } from './types.js'
+import type { Study, Variant } from './types.js'
+import { variantSources } from './variants.js'
 
 /**
  * A study from the text of its file (YAML 1.2 or JSON), with every default filled in, or everything that is wrong
@@ -20,7 +21,27 @@ export function readStudy(text: string, file: string): Checked<Study> {
     ...togetherProblems(source.value, file),
   ]
   if (problems.length > 0 || !read.success) return { ok: false, problems: inOrder(problems) }
-  return { ok: true, value: resolveStudy(read.data, file) }
+  const base = resolveStudy(read.data, file)
+  const variants = readVariants(source.value, base.title, file, problems)
+  if (problems.length > 0) return { ok: false, problems: inOrder(problems) }
+  return { ok: true, value: { ...base, variants } }
+}
+
+/** The variants of a study that is sound by itself. */
+function readVariants(source: Source, title: string, file: string, problems: Problem[]): Variant[] {
+  return variantSources(source, file, problems).flatMap(({ name, overrides, source: merged, scale = 1 }): Variant[] => {
+    const read = study.safeParse(merged.data)
+    const found = [
+      ...(read.success ? [] : problemsOf(read.error.issues, merged, file)),
+      ...togetherProblems(merged, file),
+    ].map((problem) => ({ ...problem, what: `variant ${name}: ${problem.what}` }))
+    problems.push(...found)
+    if (found.length > 0 || !read.success) return []
+    const resolved = resolveStudy(read.data, file)
+    const { estimation } = resolved
+    const bandwidth = scaledBandwidth(estimation.bandwidth, scale)
+    return [{ name, overrides, study: { ...resolved, title, estimation: { ...estimation, bandwidth } } }]
+  })
 }
 
 function inOrder(problems: readonly Problem[]): Problem[] {

@@ -29,8 +29,17 @@ export function resolveStudy(written: WrittenStudy, file: string): Study {
     pooling: { fixedEffects: pooling.fixed_effects ?? line.kind === 'border', target: pooling.target ?? 'units' },
     checks: 'none',
     disclosure: { coordinates: disclosure.coordinates ?? false, smallestCell: disclosure.smallest_cell ?? 10 },
+    variants: [],
     seed: written.seed ?? 1,
   }
+}
+
+/** Numbers are multiplied; a rule's answer is, by `scale`. */
+export function scaledBandwidth(bandwidth: Bandwidth, scale: number): Bandwidth {
+  if (scale === 1) return bandwidth
+  const bias = given({ bias: bandwidth.bias === undefined ? undefined : bandwidth.bias * scale })
+  if (bandwidth.kind === 'rule') return { ...bandwidth, ...bias, scale }
+  return { kind: 'fixed', untreated: bandwidth.untreated * scale, treated: bandwidth.treated * scale, ...bias }
 }
 
 function resolveLine(line: WrittenStudy['line']): Study['line'] {

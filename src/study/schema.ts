@@ -211,7 +211,7 @@ export const study = keyed({
   pooling: pooling.optional(),
   checks: oneOf(['none'], ['standard', 'full']).optional(),
   disclosure: disclosure.optional(),
-  variants: notYet('leave it out and write one study for each'),
+  variants: z.unknown().optional(),
   seed: numberWhere(
     'must be a whole number, 0 or more',
     'write 1',
@@ -238,5 +238,5 @@ const NAMES =
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {
-  return NAMES.test(path.join('.'))
+  return NAMES.test((path[0] === 'variants' ? path.slice(2) : path).join('.'))
 }

@@ -9,7 +9,17 @@ export interface Study {
   readonly pooling: PoolingPart
   readonly checks: 'none'
   readonly disclosure: DisclosurePart
+  readonly variants: readonly Variant[]
   readonly seed: number
+}
+
+/** The study with some keys written otherwise. */
+export interface Variant {
+  readonly name: string
+  /** The keys as written. */
+  readonly overrides: Readonly<Record<string, unknown>>
+  /** Whole, and without variants of its own. */
+  readonly study: Study
 }
 
 export interface RecordsPart {
@@ -96,9 +106,12 @@ export interface DistanceLine {
 export type KernelName = 'triangular' | 'epanechnikov' | 'uniform'
 export type VarianceName = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters'
 
-/** How wide: a rule, or numbers in x units. `bias` is the bias bandwidth where the user gives one. */
+/**
+ * How wide: a rule, or numbers in x units. `bias` is the bias bandwidth where the user gives one.
+ * `scale` (variants alone) multiplies what the rule answers.
+ */
 export type Bandwidth =
-  | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number }
+  | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number; readonly scale?: number }
   | { readonly kind: 'fixed'; readonly untreated: number; readonly treated: number; readonly bias?: number }
 
 export interface EstimationPart {

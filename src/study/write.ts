@@ -34,6 +34,10 @@ export function resolvedStudy(study: Study): string {
     pooling: { fixed_effects: pooling.fixedEffects, target: pooling.target },
     checks: study.checks,
     disclosure: { coordinates: disclosure.coordinates, smallest_cell: disclosure.smallestCell },
+    variants:
+      study.variants.length > 0
+        ? Object.fromEntries(study.variants.map(({ name, overrides }) => [name, overrides]))
+        : undefined,
     seed: study.seed,
   }
   return stringify(written, { lineWidth: 0, aliasDuplicateObjects: false })

@@ -48,7 +48,16 @@ describe('rules of a border', () => {
       expect.arrayContaining(['within position error', 'near a corner where three zones meet']),
     )
     expect(results.border?.what_else_changes?.layers).toEqual(['river.geojson', 'river.geojson'])
-    expect(readFileSync(join(room, 'rules', 'report.html'), 'utf8')).toContain('What else changes here')
+    const page = readFileSync(join(room, 'rules', 'report.html'), 'utf8')
+    expect(page).toContain('What else changes here')
+    expect(results.border?.corners).toMatchObject({ points: 7, turn: 45 })
+    expect(page).toContain('Near a corner an estimate by distance alone is biased')
+    expect(results.outcomes[0].variants?.map(({ variant }) => variant)).toEqual([
+      'barriers kept',
+      'overlaps kept',
+      'turning pieces kept',
+      'corners kept',
+    ])
   })
 
   it('estimates along the border, band outside interval, no coordinate in the page', async () => {
@@ -126,6 +135,15 @@ describe('rules of a border', () => {
     }
     expect(setAside.placement.set_aside['record and map disagree']).toBe(wrong)
     expect(map.placement.placed - setAside.placement.placed).toBe(wrong)
+    // each run has the other two beside it, as they are alone
+    const asRun = new Map(
+      runs.map((results, i) => [['conflicts set aside', 'conflicts by map', 'conflicts by record'][i], results]),
+    )
+    for (const [own, results] of asRun) {
+      const beside = results.outcomes[0].variants?.filter(({ variant }) => variant.startsWith('conflicts')) ?? []
+      expect([own, ...beside.map(({ variant }) => variant)].sort()).toEqual([...asRun.keys()].sort())
+      for (const { variant, pooled } of beside) expect(pooled).toEqual(asRun.get(variant)?.outcomes[0].pooled)
+    }
   })
 
   it('caps or clusters units that share a position', async () => {

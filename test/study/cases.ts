@@ -491,8 +491,6 @@ estimation:
   variance: few-clusters
   spatial: 1500
 checks: standard
-variants:
-  half: {estimation: {order: 2}}
 `,
     problems: [
       '8: take_up: not available yet; leave it out',
@@ -503,7 +501,6 @@ variants:
       '14: estimation.variance: few-clusters: not available yet; write one of hc0, hc1, hc2, hc3, neighbours, clusters',
       '15: estimation.spatial: not available yet; leave it out',
       '16: checks: standard: not available yet; write none',
-      '17: variants: not available yet; leave it out and write one study for each',
     ],
   },
   {
@@ -647,6 +644,35 @@ variants:
     name: 'a list',
     text: '- a\n',
     problems: ['1: the study must hold keys: a list; begin with records, outcomes and line'],
+  },
+  {
+    name: 'variants that are no studies',
+    text: `${distance}variants:
+  empty: {}
+  two: 2
+  titled: {title: Other}
+  wide: {estimation: {bandwidth: {scale: 0}}}
+`,
+    problems: [
+      '5: variants.empty: must hold keys of its own: got {}; write the keys that differ: {estimation: {order: 2}}',
+      '6: variants.two: must hold keys of its own: got 2; write the keys that differ: {estimation: {order: 2}}',
+      "7: variants.titled.title: a variant has the study's own: it is written here; leave it out",
+      '8: variants.wide.estimation.bandwidth.scale: must be a number above 0: got 0; write 0.5 for half the bandwidth',
+    ],
+  },
+  {
+    name: 'variants with faults of their own, at their own lines',
+    text: `${distance}variants:
+  order five:
+    estimation:
+      order: 5
+  donut:
+    estimation: {bandwidth: 10, donut: 20}
+`,
+    problems: [
+      '7: variant order five: estimation.order: must be 0, 1, 2 or 3: got 5; write 1 for local lines',
+      '9: variant donut: estimation.donut: leaves no units inside the bandwidth: got 20, and a bandwidth of 10; write a donut below the bandwidth',
+    ],
   },
   {
     name: 'plain text',

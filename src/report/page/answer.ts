@@ -3,11 +3,26 @@ import type { Comparison, Estimate, Jump, Target } from '../../results.js'
 import { intervalText } from '../lineTable.js'
 import { cell, count, fixed, type Places, pWords } from '../numbers.js'
 import { pooledPlaces, targetWords } from '../pooledTable.js'
-import { estimatedLines, howMany, isEstimated, type OutcomeView, reasonText, type View, widthText } from '../view.js'
+import {
+  bundledLayers,
+  estimatedLines,
+  howMany,
+  isEstimated,
+  type OutcomeView,
+  reasonText,
+  type View,
+  widthText,
+} from '../view.js'
 
 export interface Answer {
   /** The pooled corrected estimate as a headline, with its sign; absent where there is none. */
-  readonly headline?: { readonly estimate: string; readonly interval: string; readonly p: string }
+  readonly headline?: {
+    readonly estimate: string
+    readonly interval: string
+    readonly p: string
+    /** Where other rules change along the same border. */
+    readonly bundle?: string
+  }
   readonly sentences: readonly string[]
   /** Terms and values: units, bandwidth, lines, weights. */
   readonly facts: readonly (readonly [term: string, value: string])[]
@@ -38,6 +53,7 @@ function headlineOf(view: View, estimate: Estimate, places: Places) {
     estimate: `${sign}${fixed(estimate.estimate, places)}`,
     interval: `${view.words.level} interval ${intervalText(estimate, places)}`,
     p: pWords(estimate.p),
+    ...(bundledLayers(view).length > 0 ? { bundle: 'a bundle of rules' } : {}),
   }
 }
 

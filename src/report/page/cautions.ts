@@ -2,7 +2,7 @@
 import type { Jump } from '../../results.js'
 import { capital } from '../lineTable.js'
 import { count, fixed, isSmall } from '../numbers.js'
-import { estimatedLines, howMany, isEstimated, reasonText, type View } from '../view.js'
+import { bundledLayers, estimatedLines, howMany, isEstimated, reasonText, type View } from '../view.js'
 
 export interface Caution {
   readonly head: string
@@ -18,6 +18,8 @@ export function cautionsOf(view: View): Caution[] {
   return [
     local(view),
     ...onGround(view),
+    ...bundle(view),
+    ...corners(view),
     ...smallSamples(view),
     ...multiple(view),
     ...clustering(view),
@@ -63,6 +65,36 @@ function onGround(view: View): Caution[] {
           },
         ]
       : []),
+  ]
+}
+
+function bundle(view: View): Caution[] {
+  const layers = bundledLayers(view)
+  if (layers.length === 0) return []
+  return [
+    {
+      head: 'A bundle of rules',
+      text: `Along part of the border in use another layer’s own line runs too (${layers.map(({ name, share }) => `${name} along ${share}`).join(', ')}). The jump there is that of everything that changes, not of this rule alone. “What else changes here” says where.`,
+    },
+  ]
+}
+
+/** Where the border bends, units at one distance from it stand in unlike places (Cattaneo, Titiunik & Yu 2025). */
+function corners(view: View): Caution[] {
+  const found = view.results.border?.corners
+  if (!found || found.turning_pieces + found.points === 0) return []
+  const bends = `${howMany(view, found.turning_pieces)} ${found.turning_pieces === 1 ? 'turns' : 'turn'} by more than ${found.turn} degrees`
+  const meets = `three zones meet at ${count(found.points)} ${found.points === 1 ? 'point' : 'points'}`
+  const parts = [...(found.turning_pieces > 0 ? [bends] : []), ...(found.points > 0 ? [meets] : [])]
+  const hasAlong = view.outcomes.some(({ result }) => result.along !== undefined)
+  const todo = hasAlong
+    ? 'The estimates along the border, in two coordinates, do not have that bias.'
+    : 'Estimates along the border (along) do not have that bias; largest_turn and corner set such places aside.'
+  return [
+    {
+      head: 'Corners',
+      text: `${capital(parts.join(' and '))}. Near a corner an estimate by distance alone is biased. ${todo}`,
+    },
   ]
 }
 

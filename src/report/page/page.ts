@@ -6,6 +6,7 @@ import { pageLineTable } from '../lineTable.js'
 import { count, significant } from '../numbers.js'
 import { comparisonTable, contrastTable, pooledTable } from '../pooledTable.js'
 import { toHtml } from '../tables.js'
+import { variantTable } from '../variantTable.js'
 import { estimatedLines, howMany, type OutcomeView, type View, widthText } from '../view.js'
 import { answerOf } from './answer.js'
 import { cautionsOf } from './cautions.js'
@@ -82,6 +83,7 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
   const checks = checksTable(view)
   const setAside = setAsideTable(view)
   const ground = [waterfallTable(view), whatElseTable(view), conflictTable(view)].filter((table) => table !== undefined)
+  const variants = view.outcomes.flatMap((outcome) => variantTable(view, outcome) ?? [])
   const hasComparison = view.results.lines.length > 1
   const contrasts = view.outcomes.flatMap((outcome) => contrastTable(view, outcome) ?? [])
   return [
@@ -106,6 +108,9 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
     ...(ground.length > 0
       ? [{ id: 'ground', title: 'The border', body: ground.map((table) => toHtml(table)).join('\n') }]
       : []),
+    ...(variants.length > 0
+      ? [{ id: 'variants', title: 'Run otherwise', body: variants.map((table) => toHtml(table)).join('\n') }]
+      : []),
     ...(checks ? [{ id: 'checks', title: 'Checks', body: toHtml(checks) }] : []),
     {
       id: 'ledger',
@@ -122,7 +127,7 @@ function answerHtml(view: View): string {
   const answers = view.outcomes.map((outcome) => {
     const answer = answerOf(view, outcome)
     const head = answer.headline
-      ? `<p class="head"><strong>${escapeHtml(answer.headline.estimate)}</strong> <span>${escapeHtml(answer.headline.interval)}, ${tied(escapeHtml(answer.headline.p))}</span></p>`
+      ? `<p class="head"><strong>${escapeHtml(answer.headline.estimate)}</strong> <span>${escapeHtml(answer.headline.interval)}, ${tied(escapeHtml(answer.headline.p))}${answer.headline.bundle ? `; ${escapeHtml(answer.headline.bundle)}` : ''}</span></p>`
       : ''
     const facts = answer.facts
       .map(([term, value]) => `<div><dt>${escapeHtml(term)}</dt><dd>${escapeHtml(value)}</dd></div>`)
