@@ -46,6 +46,8 @@ export interface Border {
   readonly treatedZone: Uint8Array
   /** By `names`, where the border is between zones of different dose. */
   readonly doses?: Float64Array
+  /** Units serve the borders of their own zone alone, the piece tells their side: set where zones of equal status meet. */
+  readonly isEqualStatus?: boolean
   /** By pair of zones, then along the pair's border. */
   readonly pieces: readonly Piece[]
   /** Indices of each piece's two zones. */
@@ -71,6 +73,37 @@ export interface Border {
  * Throws RangeError where snap is negative, the piece length not positive, or not one of treated and dose is given.
  */
 export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Border> {
+  const prepared = prepareZones(zones, options)
+  if (!prepared.ok) return prepared
+  const { roles, order, sortedNames, boundaries, nearness, metres } = prepared.value
+  const sorted = sortedRoles(roles, order)
+  const paths = pairPaths(boundaries, nearness, sorted, roles.outsideZone, metres)
+  if (paths.length === 0) {
+    const splits = roles.doses ? splitsByDose(roles.doses) : [roles.treatedZone]
+    const who = roles.doses ? 'zones whose dose differs' : 'treated and untreated zones'
+    const sortedSplits = splits.map((split) => Uint8Array.from(order, (zone) => split[zone]))
+    return { ok: false, problems: [noBorder(zones.file, boundaries, who, sortedSplits, options.snapMetres)] }
+  }
+  const problems = facingApartProblems(boundaries, sorted.isRelevant, paths, sortedNames, zones.file, metres)
+  if (problems.length > 0) return { ok: false, problems }
+  return { ok: true, value: borderOfPaths(zones, prepared.value, options.pieceMetres, paths) }
+}
+
+/** What borders are found in. */
+export interface PreparedZones {
+  readonly roles: Roles
+  /** Zones by name: their indices in the file. */
+  readonly order: readonly number[]
+  readonly sortedNames: readonly string[]
+  /** Zones in the order of their names. */
+  readonly boundaries: Boundaries
+  readonly nearness: Nearness
+  /** The tolerance. */
+  readonly metres: number
+}
+
+/** The roles of the zones and how near their boundaries are; the problems and errors are those of `prepareBorder`. */
+export function prepareZones(zones: Zones, options: BorderOptions): Checked<PreparedZones> {
   const { snapMetres, pieceMetres } = options
   if (!(snapMetres >= 0)) throw new RangeError(`snapMetres must be 0 or more: got ${snapMetres}`)
   if (!(pieceMetres > 0)) throw new RangeError(`pieceMetres must be above 0: got ${pieceMetres}`)
@@ -84,21 +117,22 @@ export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Bor
   const nearness = measureNearness(boundaries, metres)
   problems.push(...overlapProblems(boundaries, nearness, polygons, sortedNames, zones.file, metres))
   if (problems.length > 0) return { ok: false, problems }
-  const sorted = sortedRoles(roles, order)
-  const paths = pairPaths(boundaries, nearness, sorted, roles.outsideZone, metres)
-  if (paths.length === 0) {
-    const splits = roles.doses ? splitsByDose(roles.doses) : [roles.treatedZone]
-    const who = roles.doses ? 'zones whose dose differs' : 'treated and untreated zones'
-    const sortedSplits = splits.map((split) => Uint8Array.from(order, (zone) => split[zone]))
-    return { ok: false, problems: [noBorder(zones.file, boundaries, who, sortedSplits, snapMetres)] }
-  }
-  problems.push(...facingApartProblems(boundaries, sorted.isRelevant, paths, sortedNames, zones.file, metres))
-  if (problems.length > 0) return { ok: false, problems }
+  return { ok: true, value: { roles, order, sortedNames, boundaries, nearness, metres } }
+}
+
+/** The border along the paths, or along those that are wanted; the others only make corners where they end. */
+export function borderOfPaths(
+  zones: Zones,
+  { roles, order, metres }: PreparedZones,
+  pieceMetres: number,
+  paths: readonly PairPath[],
+  isWanted: (path: PairPath) => boolean = () => true,
+): Border {
   const names = roles.outsideZone < 0 ? zones.names : [...zones.names, outsideName]
   const zoneOf = [...order, roles.outsideZone]
-  const { pieces, ends } = piecesOfPairs(paths, names, zoneOf, roles.doses, pieceMetres, metres)
+  const { pieces, ends } = piecesOfPairs(paths, isWanted, names, zoneOf, roles.doses, pieceMetres, metres)
   const index = new Map(names.map((name, zone) => [name, zone]))
-  const value = {
+  return {
     zones,
     names,
     ...roles,
@@ -109,10 +143,9 @@ export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Bor
     ...edgesOfPieces(pieces),
     grid: buildZoneGrid(zones.polygons),
   }
-  return { ok: true, value }
 }
 
-type Roles = Pick<Border, 'treatedZone' | 'doses' | 'outsideZone'>
+export type Roles = Pick<Border, 'treatedZone' | 'doses' | 'outsideZone'>
 
 function rolesOf(zones: Zones, options: BorderOptions, problems: Problem[]): Roles {
   const { treated, dose } = options
@@ -147,8 +180,13 @@ function sortedRoles({ treatedZone, doses }: Roles, order: readonly number[]) {
   return { isTreated, isRelevant }
 }
 
+/** Does a unit serve the borders of its own zone alone, so that the piece tells its side? */
+export function isOwnZoneOnly({ doses, isEqualStatus }: Pick<Border, 'doses' | 'isEqualStatus'>): boolean {
+  return doses !== undefined || isEqualStatus === true
+}
+
 /** A stretch of border of a pair of zones, numbered in the order of their names; the land outside comes last. */
-type PairPath = Pick<SharedPath, 'treated' | 'untreated' | 'points'>
+export type PairPath = Pick<SharedPath, 'treated' | 'untreated' | 'points'>
 
 function pairPaths(
   boundaries: Boundaries,
@@ -157,20 +195,29 @@ function pairPaths(
   outsideZone: number,
   metres: number,
 ): PairPath[] {
-  const pathsWhere = (isWanted: Relevance) =>
-    sharedPaths(boundaries, nearness, isWanted, metres)
-      .map((path) => withoutWhiskers(boundaries, path, metres))
-      .filter((path) => path !== undefined)
-  const paths = pathsWhere(isRelevant)
+  const paths = pathsWhere(boundaries, nearness, isRelevant, metres)
   if (outsideZone < 0) return paths
-  const all = [...paths, ...pathsWhere((own) => isTreated[own] === 1)]
+  const all = [...paths, ...pathsWhere(boundaries, nearness, (own) => isTreated[own] === 1, metres)]
   const outside = outsidePaths(boundaries, nearness, isTreated, all)
   return [...paths, ...outside.map((path) => ({ ...path, untreated: outsideZone }))]
+}
+
+/** Shared stretches of the pairs that are wanted, without whiskers. */
+export function pathsWhere(
+  boundaries: Boundaries,
+  nearness: Nearness,
+  isWanted: Relevance,
+  metres: number,
+): SharedPath[] {
+  return sharedPaths(boundaries, nearness, isWanted, metres)
+    .map((path) => withoutWhiskers(boundaries, path, metres))
+    .filter((path) => path !== undefined)
 }
 
 /** Pieces by pair, pairs by untreated and then treated name, and where the borders of pairs end. */
 function piecesOfPairs(
   paths: readonly PairPath[],
+  isWanted: (path: PairPath) => boolean,
   names: readonly string[],
   zoneOf: readonly number[],
   doses: Float64Array | undefined,
@@ -190,6 +237,7 @@ function piecesOfPairs(
       if (first[0] === last[0] && first[1] === last[1]) continue
       for (const [lon, lat] of [first, last]) ends.push({ lon, lat, zones })
     }
+    if (!isWanted(sorted[from])) continue
     const dose = doses && doses[zones[1]] - doses[zones[0]]
     for (const piece of cutIntoPieces(chains, [names[zones[0]], names[zones[1]]], pieceMetres)) {
       const facts = factsOfPiece(piece.coordinates, metres)

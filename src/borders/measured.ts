@@ -1,5 +1,5 @@
 /** Measures units against the border, once: no rule about pieces or sides enters here (METHODS sections 1 and 10). */
-import type { Border } from './border.js'
+import { type Border, isOwnZoneOnly } from './border.js'
 import { edgeArrays, pointOfEdge, setEdge } from './boundaries.js'
 import { edgeLengthMetres } from './geodesy.js'
 import { buildSegmentTree, type Edges, type Nearest, nearestEdges } from './segmentTree.js'
@@ -9,7 +9,7 @@ import { locateInZones, noZone } from './zoneGrid.js'
 export const positionMissing = -1
 /** `piece` of a unit whose coordinates are no place on earth. */
 export const positionOutOfRange = -2
-/** `piece` of a unit whose own zone has no border, where units serve their own zone's borders alone (dose). */
+/** `piece` of a unit whose own zone has no border, where units serve their own zone's borders alone (`isOwnZoneOnly`). */
 export const noBorderOfZone = -3
 
 /** One element per unit. */
@@ -31,7 +31,8 @@ const sameFootMetres = 1e-6
 
 /**
  * Zone, nearest piece, foot and distance of every unit. Where pieces meet at the foot, one of the unit's own zone goes
- * first, then the first in order. With doses, a unit in one zone is measured against the borders of that zone alone.
+ * first, then the first in order. With doses, and between zones of equal status, a unit in one zone is measured against
+ * the borders of that zone alone.
  * lon, lat: degrees, NaN where missing. The answer for a unit does not depend on the others.
  * Throws RangeError where the lists differ in length.
  */
@@ -45,7 +46,7 @@ export function measureUnits(
   if (lat.length !== count) throw new RangeError(`lon has ${count} units, lat has ${lat.length}`)
   const zone = locateInZones(border.grid, lon, lat)
   if (border.outsideZone >= 0) giveOutside(zone, lon, lat, border.outsideZone)
-  const nearest = border.doses
+  const nearest = isOwnZoneOnly(border)
     ? nearestOfOwnZone(border, lon, lat, zone, progress)
     : nearestEdges(border.tree, lon, lat, progress)
   const meetings = pieceMeetings(border)

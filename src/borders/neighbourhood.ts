@@ -1,5 +1,5 @@
 /** What else is near a unit's foot: the nearest corner, and the border of another pair of zones that lost. */
-import type { Border } from './border.js'
+import { type Border, isOwnZoneOnly } from './border.js'
 import { edgeArrays, setEdge } from './boundaries.js'
 import { edgesByZone, type Measured, picked, pickedEdges } from './measured.js'
 import { buildSegmentTree, nearestEdges } from './segmentTree.js'
@@ -29,8 +29,8 @@ const tieMetres = 1e-8
 
 /**
  * Exact: each pair gets a number, and the borders of all other pairs are those whose number differs in some binary
- * digit: one search tree for each digit and value, as many searches per unit as digits. With doses, among the borders of
- * the unit's own zone. `units`: rows, absent: all. lon, lat: of all units, as they were measured.
+ * digit: one search tree for each digit and value, as many searches per unit as digits. Where units serve their own
+ * zone alone, among the borders of that zone. `units`: rows, absent: all. lon, lat: of all units, as they were measured.
  */
 export function runnerUps(
   border: Border,
@@ -45,7 +45,7 @@ export function runnerUps(
   }
   const pairOfPiece = pairsOf(border)
   const asked = units.map((_, k) => k).filter((k) => measured.piece[units[k]] >= 0)
-  if (!border.doses) {
+  if (!isOwnZoneOnly(border)) {
     const all = border.pieceOfEdge.map((_, e) => e)
     searchOtherPairs(border, measured, pairOfPiece, lon, lat, units, asked, all, best)
     return best

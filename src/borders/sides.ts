@@ -1,5 +1,5 @@
 /** The side of a unit: by the map, or by the record where the study has a column for it. */
-import type { Border } from './border.js'
+import { type Border, isOwnZoneOnly } from './border.js'
 import { manyZones, noZone } from './zoneGrid.js'
 
 /** `recordZone` of a unit without a record. */
@@ -39,11 +39,13 @@ const noPart = -4
 
 /** 1 treated, 0 untreated, or -1 - the index of a reason in `sideReasons`. */
 export function sideFinder(
-  { treatedZone, doses, treatedOfPiece, untreatedOfPiece }: Border,
+  border: Border,
   rule: SideRule | undefined,
 ): (zone: number, piece: number, unit: number) => number {
+  const { treatedZone, treatedOfPiece, untreatedOfPiece } = border
+  const isByPiece = isOwnZoneOnly(border)
   const sideOf = (zone: number, piece: number) => {
-    if (!doses) return treatedZone[zone]
+    if (!isByPiece) return treatedZone[zone]
     if (zone === treatedOfPiece[piece]) return 1
     return zone === untreatedOfPiece[piece] ? 0 : noPart
   }
