@@ -23,6 +23,7 @@ export { borderOf, metresPerUnit } from './analysis/border.js'
 export type { AnalysisInputs, LayerInput, Progress } from './analysis/inputs.js'
 export { positionColumns, readingKey } from './analysis/inputs.js'
 export type { Placed } from './analysis/placing.js'
+export { planFromAssumptions, planFromRecords } from './analysis/planning.js'
 export { placeStudy, wantedColumns }
 
 export interface AnalysisContext {

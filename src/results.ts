@@ -319,3 +319,29 @@ export interface Analysis {
   readonly exhibits: Exhibits
   readonly units: UnitRows
 }
+
+/** What `scarp plan` answers. */
+export interface Plan {
+  readonly title: string
+  readonly from: 'records' | 'assumptions'
+  readonly power: number
+  readonly level: number
+  readonly effect?: number
+  /** Smallest detectable effects in standard errors. */
+  readonly multiple: number
+  readonly rows: readonly PlanRow[]
+}
+
+export type PlanRow = { readonly outcome?: string; readonly line: string } & (
+  | {
+      /** In the bandwidth where there are records, else all. */
+      readonly units: number
+      readonly standard_error: number
+      readonly smallest_detectable: number
+      /** Power at the study's effect, and units for its power, all else equal. */
+      readonly power_at_effect?: number
+      readonly units_needed?: number
+      readonly curve: readonly { readonly effect: number; readonly power: number }[]
+    }
+  | { readonly not_planned: string }
+)

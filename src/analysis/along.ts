@@ -1,10 +1,10 @@
 /** Estimates at points along the border, as they stand in results.json (METHODS section 10). */
 import { type BorderPoint, indexUnits, pointsAlong, type UnitIndex, unitsNear } from '../borders/index.js'
-import { type JumpFit, type PlaneBandwidths, planeBandwidth, planeBandwidthRule, type Variance } from '../jump/index.js'
+import { type JumpFit, type PlaneBandwidths, planeBandwidth, planeBandwidthRule } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
 import { numbersOf } from '../records/index.js'
 import type { AlongAverage, AlongResult, OutcomeResult } from '../results.js'
-import type { BorderLine, Study } from '../study/index.js'
+import type { BorderLine, Study, VarianceName } from '../study/index.js'
 import { estimateAlong, type TargetEffect } from '../thresholds/index.js'
 import { metresPerUnit } from './border.js'
 import { type AnalysisInputs, positionColumns } from './inputs.js'
@@ -120,7 +120,7 @@ function pointBandwidths(study: Study, { line, points }: AlongGround, pooled: Ju
 }
 
 /** Near one point clusters are few: the bias-reduced variance. Neighbours are not offered in two coordinates: hc2. */
-function variancesAtPoints(variance: Variance | undefined, hasClusters: boolean) {
+function variancesAtPoints(variance: VarianceName | undefined, hasClusters: boolean) {
   if (hasClusters && (variance === undefined || variance === 'clusters')) return 'few-clusters' as const
   return variance === undefined || variance === 'neighbours' || variance === 'clusters' ? ('hc2' as const) : variance
 }

@@ -103,7 +103,8 @@ export function estimateMain(
 function variancesOf(study: Study, hasClusters: boolean): { lineVariance: Variance; pooledVariance: Variance } {
   const { variance } = study.estimation
   const byPiece = study.line.kind === 'border' && !hasClusters
-  if (variance !== undefined && variance !== 'clusters') return { lineVariance: variance, pooledVariance: variance }
+  if (variance !== undefined && variance !== 'clusters')
+    return { lineVariance: variance as Variance, pooledVariance: variance as Variance }
   return {
     lineVariance: hasClusters ? 'clusters' : 'hc2',
     pooledVariance: hasClusters || byPiece ? 'clusters' : 'hc2',

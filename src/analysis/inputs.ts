@@ -42,6 +42,12 @@ export type Progress = (stage: string, done: number, total: number) => void
 /** Names of the position columns of records that come as GeoJSON points. */
 export const pointColumns: readonly [string, string] = ['lon', 'lat']
 
+/** The columns that clusters come from: none, one, or two that cross. */
+export function clusterColumns({ records }: Study): readonly string[] {
+  const { cluster } = records
+  return cluster === undefined ? [] : typeof cluster === 'string' ? [cluster] : cluster
+}
+
 /** The columns of positions, as the study names them or as points bring them. */
 export function positionColumns(study: Study): readonly [string, string] {
   return study.records.position ?? pointColumns
@@ -98,7 +104,7 @@ function ownColumns(study: Study, scheduleColumns: readonly string[]): WantedCol
   }
   ask('label', study.records.id, 'records.id')
   ask('number', study.records.weight, 'records.weight')
-  ask('label', study.records.cluster, 'records.cluster')
+  for (const name of clusterColumns(study)) ask('label', name, 'records.cluster')
   study.outcomes.forEach((outcome, i) => {
     ask('number', outcome, `outcomes[${i}]`)
   })

@@ -7,7 +7,7 @@ import { type LedgerStep, labelsOf, ledgerStep, numbersOf, type Table } from '..
 import type { ScoreLine, Study } from '../study/index.js'
 import { type CutoffSource, type MissingKey, placeByDistance, placeByScore, readSchedule } from '../thresholds/index.js'
 import { type BorderFacts, locateOnBorder } from './border.js'
-import type { AnalysisInputs, Progress } from './inputs.js'
+import { type AnalysisInputs, clusterColumns, type Progress } from './inputs.js'
 
 /** Border studies have the facts of their border too. */
 export interface Placed extends Partial<BorderFacts> {
@@ -21,6 +21,8 @@ export interface Placed extends Partial<BorderFacts> {
   readonly missingKeys: readonly MissingKey[]
   /** Cluster of each row, from 0, or -1: the study's column, or the position where repeated points are clustered. */
   readonly cluster?: Int32Array
+  /** The same by the second column, where the study clusters by two. */
+  readonly crossedCluster?: Int32Array
 }
 
 interface Located extends Partial<BorderFacts> {
@@ -59,6 +61,7 @@ export function placeStudy(study: Study, inputs: AnalysisInputs, progress?: Prog
       ledger,
       missingKeys: located.value.missingKeys ?? [],
       cluster: usable?.cluster,
+      crossedCluster: usable?.crossed,
     },
   }
 }
@@ -106,6 +109,7 @@ function pairsOf(placement: Placement): number {
 
 interface Usability {
   readonly cluster: Int32Array | undefined
+  readonly crossed: Int32Array | undefined
   readonly reasonAgainst: (row: number) => string | undefined
 }
 
@@ -114,7 +118,7 @@ function usabilityOf(study: Study, table: Table, located: Located): Usability | 
   const weight = study.records.weight === undefined ? undefined : numbersOf(table, study.records.weight)
   const { repeated } = located
   const points = study.line.kind === 'border' && repeated ? study.line.repeatedPoints : 'keep'
-  const byColumn = study.records.cluster === undefined ? undefined : labelsOf(table, study.records.cluster).codes
+  const [byColumn, crossed] = clusterColumns(study).map((name) => labelsOf(table, name).codes)
   const cluster = byColumn ?? (points === 'cluster' ? repeated?.point : undefined)
   const key = study.records.id === undefined ? undefined : labelsOf(table, study.records.id).codes
   const beyond =
@@ -122,9 +126,10 @@ function usabilityOf(study: Study, table: Table, located: Located): Usability | 
   if (!weight && !cluster && !beyond) return undefined
   return {
     cluster,
+    crossed,
     reasonAgainst: (row) => {
       if (beyond?.[row]) return 'repeated point beyond the cap'
-      return unusable(weight?.[row], cluster?.[row])
+      return unusable(weight?.[row], cluster?.[row]) ?? unusable(undefined, crossed?.[row])
     },
   }
 }

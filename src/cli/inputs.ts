@@ -9,7 +9,7 @@ import type { Column, Table, WantedColumn } from '../records/index.js'
 import type { Study } from '../study/index.js'
 import { readJsonFile, readTextFile } from './textFile.js'
 
-const mostStudyBytes = 4_000_000
+export const mostStudyBytes = 4_000_000
 /** A JavaScript string holds 2^29 - 24 characters. */
 const mostLayerBytes = 500_000_000
 

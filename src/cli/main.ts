@@ -70,14 +70,11 @@ function commands(done: (code: ExitCode) => void): Command {
     .requiredOption('--out <file>', 'table to write (.csv, .parquet or .geojson)')
     .action(async (records, options) => done(await (await import('./measure.js')).measure(records, options)))
   program
-    .command('plan', { hidden: true })
-    .argument('[study]')
-    .allowUnknownOption()
-    .allowExcessArguments()
-    .action(() => {
-      say('scarp: plan is not available yet; scarp --help lists what is')
-      done(exitCodes.unusable)
-    })
+    .command('plan')
+    .description('smallest detectable effects and units needed, by line and pooled, from pilot records or assumptions')
+    .argument('<study>', 'study file; with plan.assume and no records, assumptions alone')
+    .option('--json', 'print the plan as JSON, with power curves')
+    .action(async (study, options) => done(await (await import('./plan.js')).plan(study, options)))
   return program
 }
 

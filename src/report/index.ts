@@ -17,6 +17,7 @@ import { variantTable } from './variantTable.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View, viewOf } from './view.js'
 
 export type { ReportInput } from './input.js'
+export { planLines } from './planText.js'
 export { summaryLines } from './summary.js'
 
 const mostLineFigures = 200

@@ -1,5 +1,5 @@
 /** Door of the study room: the study file, from text to a Study with every default filled in, and back. */
-export { readStudy } from './read.js'
+export { readPlanAlone, readStudy } from './read.js'
 export type {
   Bandwidth,
   BorderLine,
@@ -10,6 +10,9 @@ export type {
   KernelName,
   LayerNear,
   LengthUnit,
+  PlanAlone,
+  PlanAssumptions,
+  PlanPart,
   PoolingPart,
   RecordsPart,
   ScoreLine,

@@ -12,10 +12,6 @@ export interface Advice {
   readonly wants?: 'number' | 'switch'
   /** The words a value may be, for the nearest one. */
   readonly options?: readonly string[]
-  /** Holds for a value whose method is not there yet. */
-  readonly isLater?: (value: unknown) => boolean
-  /** The method of the key, not of one of its values, is not there yet. */
-  readonly isLaterKey?: boolean
 }
 
 /** `must` continues the key: "must be a number above 0". */
@@ -50,19 +46,10 @@ export const trueOrFalse = leaf<boolean>(
   (value) => typeof value === 'boolean',
 )
 
-/** One of `options`; words of `later` are refused by name. */
-export function oneOf<const T extends string>(options: readonly T[], later: readonly string[] = []): z.ZodType<T> {
-  const list = options.length === 1 ? options[0] : `one of ${options.join(', ')}`
-  return leaf<T>(
-    `must be ${list}`,
-    { todo: `write ${list}`, options, isLater: (value) => later.includes(value as string) },
-    (value) => options.includes(value as T),
-  )
-}
-
-/** A key whose method is not there yet: any value is refused. */
-export function notYet(todo = 'leave it out'): z.ZodOptional<z.ZodType<undefined>> {
-  return leaf<undefined>('is not available yet', { todo, isLaterKey: true }, () => false).optional()
+/** One of `options`. */
+export function oneOf<const T extends string>(options: readonly T[]): z.ZodType<T> {
+  const list = `one of ${options.join(', ')}`
+  return leaf<T>(`must be ${list}`, { todo: `write ${list}`, options }, (value) => options.includes(value as T))
 }
 
 /** A list of distinct items, at least one. */

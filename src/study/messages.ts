@@ -44,8 +44,6 @@ function wrongValue(issue: z.core.$ZodIssue, key: string, value: unknown): Words
   const advice: Advice | undefined = issue.code === 'custom' ? issue.params?.advice : undefined
   const todo = advice?.todo ?? (issue.code === 'invalid_type' ? wantedShape(issue.expected, key, value) : 'correct it')
   if (value === undefined) return { what: key, found: 'missing', todo }
-  if (advice?.isLaterKey) return { what: key, found: 'not available yet', todo }
-  if (advice?.isLater?.(value)) return { what: `${key}: ${bare(value)}`, found: 'not available yet', todo }
   if (value === null) return { what: key, found: 'nothing after the colon', todo }
   const must =
     issue.code !== 'invalid_type'
@@ -89,10 +87,6 @@ function shown(value: unknown): string {
   if (typeof value === 'number' && !Number.isFinite(value)) return stringify(value).trim()
   const text = JSON.stringify(value)
   return text.length > 60 ? `${text.slice(0, 57)}...` : text
-}
-
-function bare(value: unknown): string {
-  return typeof value === 'string' ? value : shown(value)
 }
 
 function pathOf(issue: z.core.$ZodIssue): Path {

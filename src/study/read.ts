@@ -1,10 +1,18 @@
 import type { Checked, Problem } from '../problem.js'
+import { isRecord } from './leaf.js'
 import { problemsOf } from './messages.js'
-import { resolveStudy, scaledBandwidth } from './resolve.js'
-import { isNamePath, study } from './schema.js'
+import {
+  folderOf,
+  resolveAssumptions,
+  resolveEstimation,
+  resolvePlan,
+  resolveStudy,
+  scaledBandwidth,
+} from './resolve.js'
+import { isNamePath, planAlone, study } from './schema.js'
 import { readSource, type Source } from './source.js'
 import { togetherProblems } from './together.js'
-import type { Study, Variant } from './types.js'
+import type { PlanAlone, Study, Variant } from './types.js'
 import { variantSources } from './variants.js'
 
 /**
@@ -42,6 +50,28 @@ function readVariants(source: Source, title: string, file: string, problems: Pro
     const bandwidth = scaledBandwidth(estimation.bandwidth, scale)
     return [{ name, overrides, study: { ...resolved, title, estimation: { ...estimation, bandwidth } } }]
   })
+}
+
+/**
+ * A plan from assumptions alone: a file with `plan.assume` and without records. Undefined where the file is no such plan;
+ * it is then a study, and readStudy says what is wrong with it.
+ */
+export function readPlanAlone(text: string, file: string): Checked<PlanAlone> | undefined {
+  const source = readSource(text, file, isNamePath)
+  if (!source.ok || !isRecord(source.value.data)) return undefined
+  const { data } = source.value
+  if (Object.hasOwn(data, 'records') || !isRecord(data.plan) || !Object.hasOwn(data.plan, 'assume')) return undefined
+  const read = planAlone.safeParse(data)
+  if (!read.success) return { ok: false, problems: inOrder(problemsOf(read.error.issues, source.value, file)) }
+  const { title, plan, estimation = {} } = read.data
+  return {
+    ok: true,
+    value: {
+      title: title ?? folderOf(file) ?? 'Plan',
+      plan: { ...resolvePlan(plan), assume: resolveAssumptions(plan.assume) },
+      estimation: resolveEstimation(estimation),
+    },
+  }
 }
 
 function inOrder(problems: readonly Problem[]): Problem[] {

@@ -1,36 +1,80 @@
 /** What is written, with every default filled in. All defaults are here. */
 import type { z } from 'zod'
-import type { borderLine, distanceLine, scoreLine, WrittenStudy } from './schema.js'
-import type { Bandwidth, BorderLine, Cutoff, DistanceLine, LengthUnit, ScoreLine, Study } from './types.js'
+import type { assumptions, borderLine, distanceLine, scoreLine, WrittenStudy } from './schema.js'
+import type {
+  Bandwidth,
+  BorderLine,
+  Cutoff,
+  DistanceLine,
+  EstimationPart,
+  LengthUnit,
+  PlanAssumptions,
+  PlanPart,
+  ScoreLine,
+  Study,
+} from './types.js'
 
 /** Length of the unit in metres; the foot is the international one. */
 const METRES: Readonly<Record<LengthUnit, number>> = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 }
 
 /** `file` gives the title where the study has none: the name of its folder. */
 export function resolveStudy(written: WrittenStudy, file: string): Study {
-  const { records, estimation = {}, pooling = {}, disclosure = {} } = written
+  const { records, pooling = {}, disclosure = {} } = written
   const line = resolveLine(written.line)
   return {
     title: written.title ?? folderOf(file) ?? 'Study',
     records: given(records),
     outcomes: written.outcomes,
     line,
-    estimation: {
-      order: estimation.order ?? 1,
-      kernel: estimation.kernel ?? 'triangular',
-      bandwidth: resolveBandwidth(estimation.bandwidth ?? 'mse'),
-      sides: estimation.sides ?? 'common',
-      interval: 'corrected',
-      ...given({ variance: estimation.variance }),
-      reference: estimation.reference ?? 't',
-      donut: estimation.donut ?? 0,
-      level: estimation.level ?? 0.95,
-    },
+    ...given({ takeUp: written.take_up }),
+    covariates: written.covariates ?? [],
+    predetermined: written.predetermined ?? [],
+    estimation: resolveEstimation(written.estimation ?? {}),
     pooling: { fixedEffects: pooling.fixed_effects ?? line.kind === 'border', target: pooling.target ?? 'units' },
-    checks: 'none',
+    checks: written.checks ?? 'standard',
     disclosure: { coordinates: disclosure.coordinates ?? false, smallestCell: disclosure.smallest_cell ?? 10 },
     variants: [],
+    plan: resolvePlan(written.plan ?? {}),
     seed: written.seed ?? 1,
+  }
+}
+
+export function resolveEstimation(estimation: NonNullable<WrittenStudy['estimation']>): EstimationPart {
+  return {
+    order: estimation.order ?? 1,
+    kernel: estimation.kernel ?? 'triangular',
+    bandwidth: resolveBandwidth(estimation.bandwidth ?? 'mse'),
+    sides: estimation.sides ?? 'common',
+    interval: estimation.interval ?? 'corrected',
+    smoothness: estimation.smoothness ?? 'rule',
+    ...given({ variance: estimation.variance }),
+    reference: estimation.reference ?? 't',
+    ...given({ spatial: estimation.spatial }),
+    donut: estimation.donut ?? 0,
+    level: estimation.level ?? 0.95,
+  }
+}
+
+/** A plan asks for 80% power. */
+export function resolvePlan({ effect, power, assume }: NonNullable<WrittenStudy['plan']>): PlanPart {
+  return {
+    ...given({ effect }),
+    power: power ?? 0.8,
+    ...given({ assume: assume && resolveAssumptions(assume) }),
+  }
+}
+
+export function resolveAssumptions(written: z.infer<typeof assumptions>): PlanAssumptions {
+  return {
+    units: written.units,
+    sd: written.sd ?? 1,
+    rSquared: written.r_squared ?? 0,
+    shareTreated: written.share_treated ?? 0.5,
+    score: written.score ?? 'normal',
+    ...given({ bandwidth: written.bandwidth }),
+    lines: written.lines ?? 1,
+    intraclassCorrelation: written.intraclass_correlation ?? 0,
+    clusterSize: written.cluster_size ?? 1,
   }
 }
 
@@ -108,7 +152,7 @@ function given<T extends object>(part: T): T {
   return Object.fromEntries(Object.entries(part).filter(([, value]) => value !== undefined)) as T
 }
 
-function folderOf(file: string): string | undefined {
+export function folderOf(file: string): string | undefined {
   const folder = file.split(/[\\/]/).at(-2)
   return folder === undefined || /^\.*$/.test(folder) || folder.endsWith(':') ? undefined : folder
 }

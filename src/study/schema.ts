@@ -10,7 +10,6 @@ import {
   leaf,
   listOf,
   notNegative,
-  notYet,
   numberWhere,
   oneOf,
   positive,
@@ -23,6 +22,16 @@ import type { Path } from './source.js'
 
 const columnNames = listOf(columnName, 'the names of columns')
 const nameOrNames = choose<string | string[]>((value) => (Array.isArray(value) ? columnNames : columnName))
+
+const oneOrTwoColumns = choose<string | [string, string]>((value) =>
+  Array.isArray(value)
+    ? leaf<[string, string]>(
+        'must name one column, or two that cross',
+        { todo: 'write [one column, another]' },
+        () => value.length === 2 && value[0] !== value[1] && value.every((name) => columnName.safeParse(name).success),
+      )
+    : columnName,
+)
 
 export const records = keyed({
   file: fileName,
@@ -38,7 +47,7 @@ export const records = keyed({
   ).optional(),
   keep: textFor('a condition over the columns').optional(),
   weight: columnName.optional(),
-  cluster: columnName.optional(),
+  cluster: oneOrTwoColumns.optional(),
 })
 
 const schedule = keyed({ schedule: fileName, by: nameOrNames, value: columnName })
@@ -172,15 +181,19 @@ export const estimation = keyed({
   kernel: oneOf(['triangular', 'epanechnikov', 'uniform']).optional(),
   bandwidth: bandwidth.optional(),
   sides: oneOf(['common', 'separate']).optional(),
-  interval: oneOf(['corrected'], ['bias-aware']).optional(),
-  smoothness: leaf<'rule'>(
-    'must be rule',
-    { todo: 'write rule or leave it out', options: ['rule'], isLater: (value) => typeof value === 'number' },
-    (value) => value === 'rule',
+  interval: oneOf(['corrected', 'bias-aware']).optional(),
+  smoothness: choose<'rule' | number>((value) =>
+    typeof value === 'number'
+      ? positive
+      : leaf(
+          'must be rule or a number above 0',
+          { todo: 'write rule, or a bound on the second derivative', options: ['rule'], wants: 'number' },
+          () => value === 'rule',
+        ),
   ).optional(),
-  variance: oneOf(['hc0', 'hc1', 'hc2', 'hc3', 'neighbours', 'clusters'], ['few-clusters']).optional(),
+  variance: oneOf(['hc0', 'hc1', 'hc2', 'hc3', 'neighbours', 'clusters', 'few-clusters']).optional(),
   reference: oneOf(['t', 'normal']).optional(),
-  spatial: notYet(),
+  spatial: positive.optional(),
   donut: notNegative.optional(),
   level: numberWhere('must lie between 0 and 1', 'write 0.95 for 95%', (value) => value > 0 && value < 1).optional(),
 })
@@ -199,19 +212,48 @@ export const disclosure = keyed({
   ).optional(),
 })
 
+const share = numberWhere('must lie between 0 and 1', 'write 0.5 for half', (value) => value > 0 && value < 1)
+const from0To1 = numberWhere('must be 0 or more and below 1', 'write 0.2', (value) => value >= 0 && value < 1)
+
+export const assumptions = keyed({
+  units: wholeFrom1,
+  sd: positive.optional(),
+  r_squared: from0To1.optional(),
+  share_treated: share.optional(),
+  score: oneOf(['normal', 'uniform']).optional(),
+  bandwidth: positive.optional(),
+  lines: wholeFrom1.optional(),
+  intraclass_correlation: from0To1.optional(),
+  cluster_size: wholeFrom1.optional(),
+})
+
+export const plan = keyed({
+  effect: positive.optional(),
+  power: share.optional(),
+  assume: assumptions.optional(),
+})
+
+/** A study without records: what `plan` needs for a plan from assumptions alone. */
+export const planAlone = keyed({
+  title: textFor('a title').optional(),
+  plan: keyed({ effect: positive.optional(), power: share.optional(), assume: assumptions }),
+  estimation: estimation.optional(),
+})
+
 export const study = keyed({
   title: textFor('a title').optional(),
   records,
   outcomes: listOf(columnName, 'the outcome columns'),
   line,
-  take_up: notYet(),
-  covariates: notYet(),
-  predetermined: notYet(),
+  take_up: columnName.optional(),
+  covariates: columnNames.optional(),
+  predetermined: columnNames.optional(),
   estimation: estimation.optional(),
   pooling: pooling.optional(),
-  checks: oneOf(['none'], ['standard', 'full']).optional(),
+  checks: oneOf(['none', 'standard', 'full']).optional(),
   disclosure: disclosure.optional(),
   variants: z.unknown().optional(),
+  plan: plan.optional(),
   seed: numberWhere(
     'must be a whole number, 0 or more',
     'write 1',
@@ -230,11 +272,12 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
   estimation: Object.keys(estimation.shape),
   pooling: Object.keys(pooling.shape),
   disclosure: Object.keys(disclosure.shape),
+  plan: Object.keys(plan.shape),
   'the top of the study': Object.keys(study.shape),
 }
 
 const NAMES =
-  /^(title|outcomes\.\d+|records\.(id|weight|cluster|position\.\d+)|line\.(score|distance|name|zone_name|dose|side|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
+  /^(title|take_up|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?)|line\.(score|distance|name|zone_name|dose|side|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

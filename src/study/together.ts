@@ -17,12 +17,32 @@ export function togetherProblems(source: Source, file: string): Problem[] {
     say(['records', 'position'], '', 'missing', 'name the two columns: [lon, lat]')
   if ((form === 'score' || form === 'distance') && records.position !== undefined)
     say(['records', 'position'], ': is for borders only', `line has ${form}`, 'leave it out')
-  if (form !== 'zones' && form !== undefined && estimation.variance === 'clusters' && records.cluster === undefined)
+  const isClustered = estimation.variance === 'clusters' || estimation.variance === 'few-clusters'
+  if (form !== 'zones' && form !== undefined && isClustered && records.cluster === undefined)
     say(
       ['estimation', 'variance'],
-      ': clusters needs a column',
+      `: ${estimation.variance} needs a column`,
       'no records.cluster',
       'name the column in records.cluster',
+    )
+
+  if (estimation.variance === 'few-clusters' && Array.isArray(records.cluster))
+    say(['records', 'cluster'], ': few-clusters takes one column', 'two columns', 'name one, or write clusters')
+  if (estimation.spatial !== undefined && form !== undefined && form !== 'zones')
+    say(['estimation', 'spatial'], ': is for borders only', `line has ${form}`, 'leave it out')
+  if (estimation.spatial !== undefined && estimation.variance !== undefined)
+    say(
+      ['estimation', 'spatial'],
+      ': is a variance of its own',
+      `got variance ${JSON.stringify(estimation.variance)} too`,
+      'keep one of them',
+    )
+  if (estimation.interval === 'bias-aware' && estimation.order !== undefined && estimation.order !== 1)
+    say(
+      ['estimation', 'interval'],
+      ': bias-aware is for order 1',
+      `got order ${JSON.stringify(estimation.order)}`,
+      'write order 1, or corrected',
     )
 
   if (form === 'zones') borderProblems(line, say)

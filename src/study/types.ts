@@ -7,9 +7,16 @@ export interface Study {
   readonly line: ScoreLine | BorderLine | DistanceLine
   readonly estimation: EstimationPart
   readonly pooling: PoolingPart
-  readonly checks: 'none'
+  /** Column of the treatment really received; absent: everyone on the treated side receives it, nobody else. */
+  readonly takeUp?: string
+  /** Columns taken out of the outcome with coefficients common to both sides. */
+  readonly covariates: readonly string[]
+  /** Columns that must not jump. */
+  readonly predetermined: readonly string[]
+  readonly checks: 'none' | 'standard' | 'full'
   readonly disclosure: DisclosurePart
   readonly variants: readonly Variant[]
+  readonly plan: PlanPart
   readonly seed: number
 }
 
@@ -31,7 +38,8 @@ export interface RecordsPart {
   /** SQL condition over the file's columns. */
   readonly keep?: string
   readonly weight?: string
-  readonly cluster?: string
+  /** One column, or two that cross. */
+  readonly cluster?: string | readonly [string, string]
 }
 
 export type TreatedSide = 'at-or-above' | 'above' | 'at-or-below' | 'below'
@@ -104,7 +112,7 @@ export interface DistanceLine {
 }
 
 export type KernelName = 'triangular' | 'epanechnikov' | 'uniform'
-export type VarianceName = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters'
+export type VarianceName = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters' | 'few-clusters'
 
 /**
  * How wide: a rule, or numbers in x units. `bias` is the bias bandwidth where the user gives one.
@@ -119,10 +127,15 @@ export interface EstimationPart {
   readonly kernel: KernelName
   readonly bandwidth: Bandwidth
   readonly sides: 'common' | 'separate'
-  readonly interval: 'corrected'
+  /** The one the report quotes; both are computed where they exist. */
+  readonly interval: 'corrected' | 'bias-aware'
+  /** Bound on the second derivative for the bias-aware interval: by rule of thumb, or given. */
+  readonly smoothness: 'rule' | number
   /** Absent: `clusters` with records.cluster, else hc2 (and, pooled over border pieces, clustered by piece). */
   readonly variance?: VarianceName
   readonly reference: 't' | 'normal'
+  /** Distance at which residuals are no longer related, in the study's unit; absent: not a spatial variance. */
+  readonly spatial?: number
   readonly donut: number
   readonly level: number
 }
@@ -135,4 +148,35 @@ export interface PoolingPart {
 export interface DisclosurePart {
   readonly coordinates: boolean
   readonly smallestCell: number
+}
+
+export interface PlanPart {
+  /** Of the outcome: how many units find it; absent: not asked. */
+  readonly effect?: number
+  readonly power: number
+  readonly assume?: PlanAssumptions
+}
+
+/** What a plan without pilot records goes by. */
+export interface PlanAssumptions {
+  /** On both sides of one line. */
+  readonly units: number
+  /** Of the outcome. */
+  readonly sd: number
+  /** Share of the outcome's variance that score and covariates explain. */
+  readonly rSquared: number
+  readonly shareTreated: number
+  readonly score: 'normal' | 'uniform'
+  /** In standard deviations of the score; absent: all units, straight lines. */
+  readonly bandwidth?: number
+  readonly lines: number
+  readonly intraclassCorrelation: number
+  readonly clusterSize: number
+}
+
+/** A plan from assumptions alone. */
+export interface PlanAlone {
+  readonly title: string
+  readonly plan: PlanPart & { readonly assume: PlanAssumptions }
+  readonly estimation: EstimationPart
 }

@@ -15,7 +15,7 @@ export interface VariantSource {
 }
 
 /** Keys that say what the study is; a variant has them from the study. */
-const own = ['title', 'outcomes', 'variants', 'disclosure', 'checks']
+const own = ['title', 'outcomes', 'variants', 'disclosure', 'checks', 'plan']
 /** Parts whose keys are replaced one by one; `null` takes a key out. */
 const parts = ['records', 'line', 'estimation', 'pooling']
 

@@ -1,5 +1,5 @@
 import { stringify } from 'yaml'
-import type { Bandwidth, Cutoff, Study } from './types.js'
+import type { Bandwidth, Cutoff, PlanPart, Study } from './types.js'
 
 /**
  * The study as YAML, keys in the order of the interface, every default filled in. Reading it back gives an equal study.
@@ -19,15 +19,19 @@ export function resolvedStudy(study: Study): string {
     },
     outcomes: study.outcomes,
     line: writtenLine(study.line),
+    take_up: study.takeUp,
+    covariates: study.covariates.length > 0 ? study.covariates : undefined,
+    predetermined: study.predetermined.length > 0 ? study.predetermined : undefined,
     estimation: {
       order: estimation.order,
       kernel: estimation.kernel,
       bandwidth: writtenBandwidth(estimation.bandwidth),
       sides: estimation.sides,
       interval: estimation.interval,
-      smoothness: 'rule',
+      smoothness: estimation.smoothness,
       variance: estimation.variance,
       reference: estimation.reference,
+      spatial: estimation.spatial,
       donut: estimation.donut,
       level: estimation.level,
     },
@@ -38,6 +42,7 @@ export function resolvedStudy(study: Study): string {
       study.variants.length > 0
         ? Object.fromEntries(study.variants.map(({ name, overrides }) => [name, overrides]))
         : undefined,
+    plan: writtenPlan(study.plan),
     seed: study.seed,
   }
   return stringify(written, { lineWidth: 0, aliasDuplicateObjects: false })
@@ -95,4 +100,24 @@ function writtenBandwidth(bandwidth: Bandwidth): string | number | object {
   }
   const main = bandwidth.kind === 'rule' ? bandwidth.rule : bandwidth.untreated
   return bandwidth.bias === undefined ? main : { main, bias: bandwidth.bias }
+}
+
+/** Nothing where the study says nothing of a plan. */
+function writtenPlan({ effect, power, assume }: PlanPart): object | undefined {
+  if (effect === undefined && assume === undefined) return undefined
+  return {
+    effect,
+    power,
+    assume: assume && {
+      units: assume.units,
+      sd: assume.sd,
+      r_squared: assume.rSquared,
+      share_treated: assume.shareTreated,
+      score: assume.score,
+      bandwidth: assume.bandwidth,
+      lines: assume.lines,
+      intraclass_correlation: assume.intraclassCorrelation,
+      cluster_size: assume.clusterSize,
+    },
+  }
 }
