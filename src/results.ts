@@ -207,6 +207,29 @@ export type AlongAverage =
   | ({ readonly estimate: number; readonly standard_error: number; readonly p: number } & Interval)
   | NotEstimated
 
+/** A pooled corrected estimate made again; `bandwidth` is h. */
+export type Rung =
+  | ({
+      readonly bandwidth: BySide
+      readonly units: BySide
+      readonly estimate: number
+      readonly standard_error: number
+      readonly p: number
+    } & Interval)
+  | NotEstimated
+
+/** The pooled estimate made again with one choice changed. */
+export interface Ladders {
+  /** `scale` multiplies the study's own bandwidths. */
+  readonly bandwidth: readonly ({ readonly scale: number } & Rung)[]
+  /** Units with |x| below `donut` left out, at the study's own bandwidths. */
+  readonly donut: readonly ({ readonly donut: number } & Rung)[]
+  /** At bandwidths of their own. */
+  readonly order_kernel: readonly ({ readonly order: number; readonly kernel: string } & Rung)[]
+  /** Lines that are none, at x = `at`, from the units of one side alone. */
+  readonly placebo_lines: readonly ({ readonly side: string; readonly at: number } & Rung)[]
+}
+
 /** The study with some keys written otherwise. */
 export interface VariantResult {
   readonly variant: string
@@ -236,6 +259,7 @@ export interface OutcomeResult {
   readonly comparison: Comparison | null
   readonly comparison_reason?: string
   readonly checks: readonly CheckResult[]
+  readonly ladders?: Ladders
   readonly variants?: readonly VariantResult[]
 }
 

@@ -11,13 +11,14 @@ import {
   type JumpOptions,
   jumpAt,
   neighbourResidualsOf,
+  outsideDonut,
   type Sample,
   type Variance,
   varianceOf,
 } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
 import type { EstimationPart, Study } from '../study/index.js'
-import { compareLines, type LineEffects, poolLines, targetEffect } from '../thresholds/index.js'
+import { compareLines, type LineEffects, type PoolOptions, poolLines, targetEffect } from '../thresholds/index.js'
 import { metresPerUnit } from './border.js'
 import { entriesOfLine, type OutcomeEntries } from './entries.js'
 import type { Placed } from './placing.js'
@@ -25,6 +26,13 @@ import type { Placed } from './placing.js'
 export interface LineEstimate {
   readonly jump: JumpFit
   readonly sample: Sample
+}
+
+/** All lines' entries on one distance, sorted; with the donut still in it. */
+export interface PoolBasis {
+  readonly sample: Sample
+  readonly lines: number
+  readonly options: PoolOptions
 }
 
 export type OrReason<T> = T | { readonly reason: string }
@@ -35,6 +43,8 @@ export interface OutcomeEstimates {
   readonly pooled: OrReason<LineEstimate & { readonly weights: Float64Array; readonly withoutEffect: number }>
   readonly lineVariance: Variance
   readonly pooledVariance: Variance
+  /** What the pooled estimate is made from, to make it again with one thing changed. */
+  readonly basis: PoolBasis
   /** Cautions about the pooled estimate that only the study knows of. */
   readonly notes: readonly string[]
   /** Places of the lines that the target and the comparison use. */
@@ -80,7 +90,8 @@ export function estimateMain(
     progress(line + 1)
     return estimate
   })
-  const pooled = guard(estimatePooled(study, entries, lines, pooledVariance, hasClusters))
+  const basis = poolBasis(study, entries, lines.length === 1 ? lineVariance : pooledVariance, hasClusters)
+  const pooled = guard(lines.length === 1 ? alone(lines[0]) : estimatePooled(basis, study.estimation.donut))
   const ids = placement.lines.map((line) => line.id)
   const { effects, index } = effectsOf(ids, lines)
   const target = targetOf(study, effects, index, lines, shares)
@@ -89,6 +100,7 @@ export function estimateMain(
     pooled,
     lineVariance,
     pooledVariance,
+    basis,
     notes: snapNotes(study, [...lines, pooled]),
     compared: index,
     target,
@@ -156,26 +168,32 @@ function estimateLine(entries: Entries, estimation: EstimationPart, variance: Va
   return estimated.ok ? { jump: estimated.jump, sample } : { reason: estimated.reason }
 }
 
-function estimatePooled(
-  study: Study,
-  entries: OutcomeEntries,
-  lines: readonly OrReason<LineEstimate>[],
-  variance: Variance,
-  hasClusters: boolean,
-): OutcomeEstimates['pooled'] {
-  if (lines.length === 1) {
-    const only = lines[0]
-    return hasReason(only) ? only : { ...only, weights: Float64Array.of(1), withoutEffect: 0 }
-  }
+function alone(line: OrReason<LineEstimate>): OutcomeEstimates['pooled'] {
+  return hasReason(line) ? line : { ...line, weights: Float64Array.of(1), withoutEffect: 0 }
+}
+
+/** A single line has no other to differ from: no fixed effect. */
+function poolBasis(study: Study, entries: OutcomeEntries, variance: Variance, hasClusters: boolean): PoolBasis {
+  const { estimation, pooling } = study
+  const lines = entries.start.length - 1
   const byPiece = variance === 'clusters' && !hasClusters
   const all = byPiece ? { ...entries.all, cluster: entries.all.group } : entries.all
-  const pooled = poolLines(buildSample(all, study.estimation.donut), lines.length, {
-    ...jumpOptions(study.estimation, variance),
-    bandwidth: study.estimation.bandwidth,
-    sides: study.estimation.sides,
-    clustered: variance === 'clusters',
-    fixedEffects: study.pooling.fixedEffects,
-  })
+  return {
+    sample: buildSample(all),
+    lines,
+    options: {
+      ...jumpOptions(estimation, variance),
+      bandwidth: estimation.bandwidth,
+      sides: estimation.sides,
+      clustered: variance === 'clusters',
+      fixedEffects: pooling.fixedEffects && lines > 1,
+    },
+  }
+}
+
+/** Pools the entries with |x| at or above `donut`. */
+export function estimatePooled({ sample, lines, options }: PoolBasis, donut: number): OutcomeEstimates['pooled'] {
+  const pooled = poolLines(outsideDonut(sample, donut), lines, options)
   return pooled.ok ? pooled : { reason: pooled.reason }
 }
 

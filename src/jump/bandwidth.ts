@@ -20,7 +20,12 @@ export interface Bandwidths {
 /** A rule, its answer times `scale`, or numbers in x units; without `bias`, b is the rule's, or equal to a fixed h. */
 export type BandwidthChoice =
   | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number; readonly scale?: number }
-  | { readonly kind: 'fixed'; readonly untreated: number; readonly treated: number; readonly bias?: number }
+  | {
+      readonly kind: 'fixed'
+      readonly untreated: number
+      readonly treated: number
+      readonly bias?: number | BySide<number>
+    }
 
 export interface BandwidthOptions {
   readonly order: number
@@ -94,7 +99,7 @@ export function bandwidthsFor(
   options: BandwidthOptions,
   neighbours?: BySide<Float64Array>,
 ): Chosen {
-  const bias = choice.bias === undefined ? undefined : { untreated: choice.bias, treated: choice.bias }
+  const bias = typeof choice.bias === 'number' ? { untreated: choice.bias, treated: choice.bias } : choice.bias
   if (choice.kind === 'fixed') {
     const h = { untreated: choice.untreated, treated: choice.treated }
     return { ok: true, bandwidths: { h, b: bias ?? h } }

@@ -20,10 +20,12 @@ export {
   type BySide,
   buildSample,
   type Entries,
+  outsideDonut,
   pickCodes,
   pickNumbers,
   type Sample,
   type Side,
+  splitSide,
   withOutcomes,
 } from './sample.js'
 export {

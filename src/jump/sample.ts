@@ -125,6 +125,61 @@ export function withOutcomes(sample: Sample, untreated: Float64Array, treated: F
   }
 }
 
+/** The entries with |x| at or above `donut`, as views; the centre stays. */
+export function outsideDonut(sample: Sample, donut: number): Sample {
+  const cut = (side: Side) => viewOf(side, firstAtOrAbove(side.t, donut), side.t.length)
+  return donut > 0 ? { ...sample, untreated: cut(sample.untreated), treated: cut(sample.treated) } : sample
+}
+
+type SideArray = Float64Array | Int32Array
+
+function changed(side: Side, change: <T extends SideArray>(values: T) => T): Side {
+  const { t, y, w, unit, cluster, group } = side
+  return {
+    t: change(t),
+    y: change(y),
+    w: w === null ? null : change(w),
+    unit: change(unit),
+    cluster: cluster === null ? null : change(cluster),
+    group: group === null ? null : change(group),
+  }
+}
+
+function viewOf(side: Side, from: number, to: number): Side {
+  return changed(side, <T extends SideArray>(values: T) => values.subarray(from, to) as T)
+}
+
+function firstAtOrAbove(t: Float64Array, value: number): number {
+  let low = 0
+  let high = t.length
+  while (low < high) {
+    const middle = (low + high) >> 1
+    if (t[middle] < value) low = middle + 1
+    else high = middle
+  }
+  return low
+}
+
+/**
+ * One side of a sample cut in two at distance `at`, the part farther from the line treated where the side is: a line that
+ * is none. Units exactly there are on the farther part.
+ */
+export function splitSide(sample: Sample, name: 'untreated' | 'treated', at: number): Sample {
+  const side = sample[name]
+  const place = firstAtOrAbove(side.t, at)
+  const far = viewOf(side, place, side.t.length)
+  const near = reversed(viewOf(side, 0, place))
+  const shifted = (part: Side, sign: number) => ({ ...part, t: part.t.map((t) => sign * (t - at)) })
+  const [inner, outer] = [shifted(near, -1), shifted(far, 1)]
+  return name === 'treated'
+    ? { ...sample, untreated: inner, treated: outer }
+    : { ...sample, untreated: outer, treated: inner }
+}
+
+function reversed(side: Side): Side {
+  return changed(side, <T extends SideArray>(values: T) => values.slice().reverse() as T)
+}
+
 /** Number of distinct values among the first `count` ascending values, counting no further than `enough`. */
 export function distinctWithin(t: Float64Array, count: number, enough = Number.POSITIVE_INFINITY): number {
   let distinct = 0
