@@ -111,7 +111,10 @@ function outcomeSteps(
   entries: ReturnType<typeof entriesOf>,
   { pooled }: OutcomeEstimates,
 ): LedgerStep[] {
-  const withOutcome = ledgerStep(`${outcome}: outcome present`, placedUnits, { 'outcome missing': entries.missing })
+  const withOutcome = ledgerStep(`${outcome}: outcome present`, placedUnits, {
+    'outcome missing': entries.missing,
+    'covariate or take-up missing': entries.incomplete,
+  })
   if (hasReason(pooled)) return [withOutcome]
   const { untreated, treated } = pooled.jump.unitsInBandwidth
   const used = pooled.sample.repeats ? distinctUnits(pooled) : untreated + treated

@@ -9,28 +9,49 @@ export interface OutcomeEntries {
   readonly all: Entries
   /** First entry of each line in `all`, and the number of entries at the end. */
   readonly start: Int32Array
-  /** Units placed that have the outcome, and that lack it. */
+  /** Units placed that have the outcome and all that its estimate needs. */
   readonly units: number
+  /** Units placed that lack the outcome, and those that have it and lack a covariate or the take-up. */
   readonly missing: number
+  readonly incomplete: number
 }
 
-/** Entries with a finite outcome. `group` is the line; `cluster` that of the placed units, where they have one. */
+/** Entries with a finite outcome, covariates and take-up. */
 export function entriesOf(study: Study, table: Table, placed: Placed, outcome: string): OutcomeEntries {
+  const others = [...study.covariates, ...(study.takeUp === undefined ? [] : [study.takeUp])]
+  const needed = others.map((name) => numbersOf(table, name))
+  return entriesOfValues(study, table, placed, numbersOf(table, outcome), needed)
+}
+
+/**
+ * Entries with a finite value, and finite values of all that is needed beside it; each of one element per row of the
+ * table. `group` is the line; `cluster` that of the placed units, where they have one.
+ */
+export function entriesOfValues(
+  study: Study,
+  table: Table,
+  placed: Placed,
+  y: Float64Array,
+  needed: readonly Float64Array[] = [],
+): OutcomeEntries {
   const { placement, cluster } = placed
-  const y = numbersOf(table, outcome)
+  const isComplete = (unit: number) => needed.every((values) => Number.isFinite(values[unit]))
+  const isKept = (unit: number) => Number.isFinite(y[unit]) && (needed.length === 0 || isComplete(unit))
   const weight = study.records.weight === undefined ? undefined : numbersOf(table, study.records.weight)
   const lineCount = placement.lines.length
   const start = new Int32Array(lineCount + 1)
   let units = 0
   let missing = 0
+  let incomplete = 0
   let previous = -1
   for (let e = 0; e < placement.unit.length; e++) {
     const unit = placement.unit[e]
-    const isUsable = Number.isFinite(y[unit])
+    const isUsable = isKept(unit)
     if (isUsable) start[placement.line[e] + 1]++
     if (unit === previous) continue
     previous = unit
     if (isUsable) units++
+    else if (Number.isFinite(y[unit])) incomplete++
     else missing++
   }
   for (let line = 0; line < lineCount; line++) start[line + 1] += start[line]
@@ -45,7 +66,7 @@ export function entriesOf(study: Study, table: Table, placed: Placed, outcome: s
   const clusters = cluster && new Int32Array(size)
   for (let e = 0; e < placement.unit.length; e++) {
     const unit = placement.unit[e]
-    if (!Number.isFinite(y[unit])) continue
+    if (!isKept(unit)) continue
     const at = next[placement.line[e]]++
     x[at] = placement.x[e]
     treated[at] = placement.treated[e]
@@ -61,6 +82,7 @@ export function entriesOf(study: Study, table: Table, placed: Placed, outcome: s
     start,
     units,
     missing,
+    incomplete,
   }
 }
 

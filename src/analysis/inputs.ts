@@ -108,6 +108,13 @@ function ownColumns(study: Study, scheduleColumns: readonly string[]): WantedCol
   study.outcomes.forEach((outcome, i) => {
     ask('number', outcome, `outcomes[${i}]`)
   })
+  ask('number', study.takeUp, 'take_up')
+  study.covariates.forEach((name, i) => {
+    ask('number', name, `covariates[${i}]`)
+  })
+  study.predetermined.forEach((name, i) => {
+    ask('number', name, `predetermined[${i}]`)
+  })
   const { line } = study
   let schedule: WantedColumn[] | undefined
   if (line.kind === 'border') {

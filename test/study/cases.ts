@@ -54,7 +54,7 @@ export const goodCases: readonly GoodCase[] = [
         level: 0.95,
       },
       pooling: { fixedEffects: false, target: 'units' },
-      checks: 'none',
+      checks: 'standard',
       disclosure: { coordinates: false, smallestCell: 10 },
       seed: 1,
     },
@@ -458,7 +458,7 @@ pooling:
       '7: line.treated: must be one of at-or-above, above, at-or-below, below: got "at_or_below"; did you mean at-or-below?',
       '8: line.rescale: must be one of none, spread: got "yes"; write one of none, spread',
       '10: estimation.kernel: must be one of triangular, epanechnikov, uniform: got "Triangle"; did you mean triangular?',
-      '11: estimation.variance: must be one of hc0, hc1, hc2, hc3, neighbours, clusters: got "hc5"; write one of hc0, hc1, hc2, hc3, neighbours, clusters',
+      '11: estimation.variance: must be one of hc0, hc1, hc2, hc3, neighbours, clusters, few-clusters: got "hc5"; write one of hc0, hc1, hc2, hc3, neighbours, clusters, few-clusters',
       '13: pooling.fixed_effects: must be true or false: got "yes"; write true',
       '14: pooling.target: must be one of units, equal, precision: got "population"; write one of units, equal, precision',
     ],
@@ -481,26 +481,34 @@ estimation: {bandwidth: 40}
     ],
   },
   {
-    name: 'keys and words whose method comes later',
-    text: `${border}take_up: pays
-covariates: [a]
-predetermined: [b]
+    name: 'variances and intervals that do not go together',
+    text: `${border}covariates: [a, a]
 estimation:
   interval: bias-aware
-  smoothness: 0.2
+  order: 2
+  smoothness: smooth
   variance: few-clusters
   spatial: 1500
-checks: standard
+checks: all
 `,
     problems: [
-      '8: take_up: not available yet; leave it out',
-      '9: covariates: not available yet; leave it out',
-      '10: predetermined: not available yet; leave it out',
-      '12: estimation.interval: bias-aware: not available yet; write corrected',
-      '13: estimation.smoothness: 0.2: not available yet; write rule or leave it out',
-      '14: estimation.variance: few-clusters: not available yet; write one of hc0, hc1, hc2, hc3, neighbours, clusters',
-      '15: estimation.spatial: not available yet; leave it out',
-      '16: checks: standard: not available yet; write none',
+      '8: covariates: must not repeat an item: got ["a","a"]; list the names of columns, each once',
+      '10: estimation.interval: bias-aware is for order 1: got order 2; write order 1, or corrected',
+      '12: estimation.smoothness: must be rule or a number above 0: got "smooth"; write rule, or a bound on the second derivative',
+      '14: estimation.spatial: is a variance of its own: got variance "few-clusters" too; keep one of them',
+      '15: checks: must be one of none, standard, full: got "all"; write one of none, standard, full',
+    ],
+  },
+  {
+    name: 'variances that need clusters or a map',
+    text: `${distance}estimation:
+  variance: few-clusters
+  spatial: 2
+`,
+    problems: [
+      '5: estimation.variance: few-clusters needs a column: no records.cluster; name the column in records.cluster',
+      '6: estimation.spatial: is for borders only: line has distance; leave it out',
+      '6: estimation.spatial: is a variance of its own: got variance "few-clusters" too; keep one of them',
     ],
   },
   {
@@ -683,9 +691,9 @@ checks: standard
     name: 'names that objects have of themselves',
     text: `${distance}__proto__: 1\nconstructor: 2\ntoString: 3\n`,
     problems: [
-      '4: __proto__: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, disclosure, variants, seed',
-      '5: constructor: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, disclosure, variants, seed',
-      '6: toString: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, disclosure, variants, seed',
+      '4: __proto__: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, disclosure, variants, plan, seed',
+      '5: constructor: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, disclosure, variants, plan, seed',
+      '6: toString: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, disclosure, variants, plan, seed',
     ],
   },
 ]

@@ -86,7 +86,7 @@ estimation:
 pooling:
   fixed_effects: true
   target: units
-checks: none
+checks: standard
 disclosure:
   coordinates: false
   smallest_cell: 10
