@@ -10,6 +10,7 @@ import { estimateOutcome, hasReason, type LineEstimate, type OutcomeEstimates } 
 import { mapOf, scatterOf } from './analysis/exhibits.js'
 import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/inputs.js'
 import { type Placed, placeStudy } from './analysis/placing.js'
+import { sharedUnits } from './analysis/sharedUnits.js'
 import { sharesOfLines } from './analysis/shares.js'
 import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
 import { placeVariants, variantResults } from './analysis/variants.js'
@@ -71,6 +72,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     })
     drawn.push(outcomeExhibit(study, outcome, estimates))
   })
+  const shared = sharedUnits(placement, inputs.table, study.records.id)
   const used = placed.value.border?.pieces.filter(({ setAside }) => setAside === undefined)
   return {
     ok: true,
@@ -91,6 +93,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
         },
         lines: lineSummaries(placement, used),
         ...(hasBorder(placed.value) ? { border: borderResult(placed.value) } : {}),
+        ...(shared ? { shared_units: shared } : {}),
         outcomes,
         ledger,
       },

@@ -18,8 +18,18 @@ export interface Results {
   readonly lines: readonly LineSummary[]
   /** Border studies. */
   readonly border?: BorderResult
+  /** Lines that share units; absent where none does. */
+  readonly shared_units?: SharedUnits
   readonly outcomes: readonly OutcomeResult[]
   readonly ledger: readonly LedgerStep[]
+}
+
+export interface SharedUnits {
+  /** Counted by unit, or by id where an id appears in more than one row. */
+  readonly by: 'unit' | 'id'
+  readonly serving_several: number
+  /** Most shared first, 200 at most. */
+  readonly pairs: readonly { readonly lines: readonly [string, string]; readonly count: number }[]
 }
 
 export interface InputFile {

@@ -12,6 +12,7 @@ import { ledgerTable } from './ledgerTable.js'
 import { paperLineTable } from './lineTable.js'
 import { type PageFigures, pageHtml } from './page/page.js'
 import { pooledTable } from './pooledTable.js'
+import { sharedTable } from './sharedTable.js'
 import { type TextTable, toLatex, toMarkdown } from './tables.js'
 import { variantTable } from './variantTable.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View, viewOf } from './view.js'
@@ -47,6 +48,8 @@ export function drawReport(input: ReportInput): Map<string, string> {
   if (figures.map) files.set('figures/map.svg', figures.map)
   addTable(files, 'pooled', pooledTable(view))
   addTable(files, 'ledger', ledgerTable(view))
+  const shared = sharedTable(view)
+  if (shared) addTable(files, 'shared-units', shared)
   const borderTables = { waterfall: waterfallTable(view), 'what-else': whatElseTable(view), sides: conflictTable(view) }
   for (const [name, table] of Object.entries(borderTables)) if (table) addTable(files, name, table)
   files.set('lines.csv', linesCsv(view))

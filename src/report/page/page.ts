@@ -5,6 +5,7 @@ import { checksTable, ledgerTable, setAsideTable } from '../ledgerTable.js'
 import { pageLineTable } from '../lineTable.js'
 import { count, significant } from '../numbers.js'
 import { comparisonTable, contrastTable, pooledTable } from '../pooledTable.js'
+import { sharedTable } from '../sharedTable.js'
 import { toHtml } from '../tables.js'
 import { variantTable } from '../variantTable.js'
 import { estimatedLines, howMany, type OutcomeView, type View, widthText } from '../view.js'
@@ -83,6 +84,7 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
   const checks = checksTable(view)
   const setAside = setAsideTable(view)
   const ground = [waterfallTable(view), whatElseTable(view), conflictTable(view)].filter((table) => table !== undefined)
+  const shared = sharedTable(view)
   const variants = view.outcomes.flatMap((outcome) => variantTable(view, outcome) ?? [])
   const hasComparison = view.results.lines.length > 1
   const contrasts = view.outcomes.flatMap((outcome) => contrastTable(view, outcome) ?? [])
@@ -94,7 +96,9 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
     {
       id: 'lines',
       title: 'Line by line',
-      body: view.outcomes.map((outcome) => lineTableHtml(view, outcome)).join('\n'),
+      body: [...view.outcomes.map((outcome) => lineTableHtml(view, outcome)), ...(shared ? [toHtml(shared)] : [])].join(
+        '\n',
+      ),
     },
     ...(hasComparison
       ? [
