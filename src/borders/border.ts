@@ -75,7 +75,8 @@ export interface Border {
 export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Border> {
   const prepared = prepareZones(zones, options)
   if (!prepared.ok) return prepared
-  const { roles, order, sortedNames, boundaries, nearness, metres } = prepared.value
+  const { roles, order, boundaries, nearness, metres } = prepared.value
+  const sortedNames = order.map((zone) => zones.names[zone])
   const sorted = sortedRoles(roles, order)
   const paths = pairPaths(boundaries, nearness, sorted, roles.outsideZone, metres)
   if (paths.length === 0) {
@@ -92,9 +93,10 @@ export function prepareBorder(zones: Zones, options: BorderOptions): Checked<Bor
 /** What borders are found in. */
 export interface PreparedZones {
   readonly roles: Roles
+  /** As `Border` has them. */
+  readonly names: readonly string[]
   /** Zones by name: their indices in the file. */
   readonly order: readonly number[]
-  readonly sortedNames: readonly string[]
   /** Zones in the order of their names. */
   readonly boundaries: Boundaries
   readonly nearness: Nearness
@@ -117,18 +119,18 @@ export function prepareZones(zones: Zones, options: BorderOptions): Checked<Prep
   const nearness = measureNearness(boundaries, metres)
   problems.push(...overlapProblems(boundaries, nearness, polygons, sortedNames, zones.file, metres))
   if (problems.length > 0) return { ok: false, problems }
-  return { ok: true, value: { roles, order, sortedNames, boundaries, nearness, metres } }
+  const names = roles.outsideZone < 0 ? zones.names : [...zones.names, outsideName]
+  return { ok: true, value: { roles, names, order, boundaries, nearness, metres } }
 }
 
 /** The border along the paths, or along those that are wanted; the others only make corners where they end. */
 export function borderOfPaths(
   zones: Zones,
-  { roles, order, metres }: PreparedZones,
+  { roles, names, order, metres }: Pick<PreparedZones, 'roles' | 'names' | 'order' | 'metres'>,
   pieceMetres: number,
   paths: readonly PairPath[],
   isWanted: (path: PairPath) => boolean = () => true,
 ): Border {
-  const names = roles.outsideZone < 0 ? zones.names : [...zones.names, outsideName]
   const zoneOf = [...order, roles.outsideZone]
   const { pieces, ends } = piecesOfPairs(paths, isWanted, names, zoneOf, roles.doses, pieceMetres, metres)
   const index = new Map(names.map((name, zone) => [name, zone]))

@@ -33,6 +33,7 @@ export { type BorderPlacement, type PlaceOptions, placeOnBorder } from './place.
 export { placeboBorder } from './placebo.js'
 export { beyondCap, centroidSuspicion, type RepeatedPoints, repeatedPoints } from './repeated.js'
 export { buildSegmentTree, type Edges, type Nearest, nearestEdges, type SegmentTree } from './segmentTree.js'
+export { type BorderSide, type ShiftedBorder, shiftedBorder } from './shifted.js'
 export { type Conflict, type SideRule, zonesByRecord } from './sides.js'
 export { snapAgainstBandwidth } from './snapAgainstBandwidth.js'
 export { indexUnits, type NearUnits, type UnitIndex, unitsNear } from './unitsNear.js'
