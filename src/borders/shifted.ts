@@ -2,10 +2,10 @@
 import type { Checked, Problem } from '../problem.js'
 import { type Border, borderOfPaths, type PairPath } from './border.js'
 import { edgeLengthMetres } from './geodesy.js'
-import type { MultiPolygonCoords } from './geojson.js'
+import { type Extent, levelCurve } from './levelCurve.js'
 import { coincidentMetres } from './nearness.js'
+import { turnsTo } from './rings.js'
 import { nearestEdges } from './segmentTree.js'
-import { landWithin } from './shiftedBuffer.js'
 import { locateInZones, noZone } from './zoneGrid.js'
 
 export type BorderSide = 'untreated' | 'treated'
@@ -16,22 +16,18 @@ export interface ShiftedBorder {
    * land counts as treated, so that x still grows towards it. Units of the side alone belong here.
    */
   readonly border: Border
-  /** The farthest that a vertex of the curve lies from where it should, in metres. */
+  /** How far the curve, as drawn, strays from the distance: the most at its vertices and their middles, in metres. */
   readonly errorMetres: number
 }
 
-/** More edges than this are too many to draw a distance around. */
-export const mostShiftedEdges = 200_000
-/** A curve that is farther off than this share of the distance is none. */
-const mostErrorShare = 0.02
 /** The land along the curve is looked at every this share of the distance: slivers narrower may be missed. */
 const lookShare = 1 / 20
 
 /**
  * The curve `metres` from the border (all its pieces), where it runs through land of one side. Which polygon holds a unit
- * tells whether it is near or far, and distances are to the curve: neither follows from the unit's distance to the border
- * where this turns or comes back. Problems: no land of the side lies so far away, borders between doses or of equal
- * status (no land is on one side of all of them), too many edges, a shape that can't be drawn.
+ * tells whether it is near or far, and distances are to the curve, which don't follow from the unit's distance to the
+ * border where this turns or comes back. Problems: no land of the side lies so far away, borders between doses or of equal
+ * status (no land is on one side of all of them), a border too long for the distance, half round the earth or near a pole.
  * Throws RangeError where metres or the piece length is not above 0.
  */
 export function shiftedBorder(
@@ -49,24 +45,19 @@ export function shiftedBorder(
   }
   if (border.doses || border.isEqualStatus)
     return refuse('a zone may lie on either side of different borders', 'shift lines of treated and untreated zones')
-  if (border.pieceOfEdge.length > mostShiftedEdges)
-    return refuse(`the border has ${border.pieceOfEdge.length} edges`, 'simplify the zones')
-  let near: MultiPolygonCoords
-  try {
-    near = landWithin(
-      border.pieces.map(({ coordinates }) => coordinates),
-      metres,
-    )
-  } catch (fault) {
-    return refuse(`it can't be drawn (${fault instanceof Error ? fault.message : fault})`, 'try another distance')
-  }
+  const extent = extentOf(border)
+  if (!(extent.east - extent.west < 180 && extent.south >= -80 && extent.north <= 80))
+    return refuse('the border spans half the earth or comes near a pole', 'study a part of it')
+  const rings = levelCurve(border.tree, extent, metres)
+  if (!rings) return refuse('the border is too long for a line so near', 'take a longer distance')
   const isLand = landTest(border, side)
-  const stretches = near.flatMap((polygon) => polygon.flatMap((ring) => stretchesOnLand(ring, isLand, metres)))
+  const stretches = rings.flatMap((ring) => stretchesOnLand(ring, isLand, metres))
   if (stretches.length === 0) return refuse('there is no such land', 'take a shorter distance')
   const [untreated, treated] = side === 'untreated' ? [1, 0] : [0, 1]
   const paths = stretches.map((points): PairPath => ({ untreated, treated, points }))
   const made = borderOfPaths(
-    { file, names: ['near'], polygons: [near], properties: [{}] },
+    // a place within an odd number of rings is near, so that every ring may stand by itself
+    { file, names: ['near'], polygons: [rings.map((ring) => [ring])], properties: [{}] },
     {
       roles: { treatedZone: Uint8Array.of(untreated, treated), outsideZone: 1 },
       names: ['near', 'far'],
@@ -76,10 +67,7 @@ export function shiftedBorder(
     pieceMetres,
     paths,
   )
-  const errorMetres = errorOf(made, border, metres)
-  if (!(errorMetres <= mostErrorShare * metres))
-    return refuse(`the curve drawn is ${shown(errorMetres)} m off`, 'try another distance')
-  return { ok: true, value: { border: made, errorMetres } }
+  return { ok: true, value: { border: made, errorMetres: errorOf(made, border, metres) } }
 }
 
 function shown(metres: number): number {
@@ -158,6 +146,27 @@ function shores(ends: readonly (readonly [Point, Point])[], isFirstOn: readonly 
 }
 
 function errorOf({ edges }: Border, border: Border, metres: number): number {
-  const { distanceMetres } = nearestEdges(border.tree, edges.lon0, edges.lat0)
-  return distanceMetres.reduce((most, distance) => Math.max(most, Math.abs(distance - metres)), 0)
+  const { lon0, lat0, lon1, lat1 } = edges
+  const halfway = (from: Float64Array, to: Float64Array) => from.map((value, e) => (value + to[e]) / 2)
+  return [
+    nearestEdges(border.tree, lon0, lat0),
+    nearestEdges(border.tree, halfway(lon0, lon1), halfway(lat0, lat1)),
+  ].reduce(
+    (most, { distanceMetres }) =>
+      distanceMetres.reduce((worst, distance) => Math.max(worst, Math.abs(distance - metres)), most),
+    0,
+  )
+}
+
+/** Longitudes turned to those of the first edge. */
+function extentOf({ edges: { lon0, lat0, lon1, lat1 } }: Border): Extent {
+  let [west, east, south, north] = [Infinity, -Infinity, Infinity, -Infinity]
+  for (let e = 0; e < lon0.length; e++) {
+    const turns = turnsTo(lon0[e], lon0[0])
+    west = Math.min(west, lon0[e] + turns, lon1[e] + turns)
+    east = Math.max(east, lon0[e] + turns, lon1[e] + turns)
+    south = Math.min(south, lat0[e], lat1[e])
+    north = Math.max(north, lat0[e], lat1[e])
+  }
+  return { west, east, south, north }
 }

@@ -1,5 +1,4 @@
 import { describe, expect, it } from 'vitest'
-import { fromLocalMetres } from '../../src/borders/fromLocalMetres.js'
 import {
   type BorderSide,
   eligible,
@@ -252,24 +251,5 @@ describe('a line shifted on real ground', () => {
     expect(shiftedBorder(border, 'treated', 500, 1000).ok).toBe(false)
     for (const metres of [0, -1, Number.NaN, Infinity])
       expect(() => shiftedBorder(border, 'treated', metres, 1000)).toThrow(RangeError)
-  })
-})
-
-describe('degrees from local metres', () => {
-  it('are those whose local metres were given', () => {
-    for (const [lon, lat] of [
-      [8, 50],
-      [179.99, -17],
-      [-150, 80],
-    ] as const) {
-      const east = Float64Array.of(0, 80_000, -80_000, 3, 500)
-      const north = Float64Array.of(0, 80_000, 40_000, -80_000, -1)
-      const back = fromLocalMetres(lon, lat, east, north)
-      const again = localMetres(lon, lat, back.lon, back.lat)
-      for (let i = 0; i < east.length; i++) {
-        expect(Math.abs(again.eastMetres[i] - east[i])).toBeLessThan(1e-3)
-        expect(Math.abs(again.northMetres[i] - north[i])).toBeLessThan(1e-3)
-      }
-    }
   })
 })
