@@ -11,6 +11,8 @@ import type { Kernel } from './kernel.js'
 import { addWeights, coefficientOf, fitLocal, functional, type LocalFit, responseOf } from './localPolynomial.js'
 import { neighbourResidualsOf } from './neighbours.js'
 import { type BySide, distinctWithin, type Sample, type Side } from './sample.js'
+import { negativeVariance, placesFor } from './spatial.js'
+import type { SpatialPlaces } from './spatialPairs.js'
 import { clusterFactor, countClusters, scaledResiduals, type Variance } from './variance.js'
 
 export interface JumpOptions {
@@ -19,6 +21,8 @@ export interface JumpOptions {
   readonly variance: Variance
   readonly reference: 't' | 'normal'
   readonly level: number
+  /** Where the variance is spatial: the units of the table, by row, with the cutoff. */
+  readonly spatial?: SpatialPlaces
 }
 
 export interface JumpFit {
@@ -163,6 +167,9 @@ function inferenceOf(
   const keys = sides.map((part) => (variance === 'clusters' ? (part.side.cluster as Int32Array) : part.side.unit))
   const sumByKey = variance === 'clusters' || repeats
   const influence = sumByKey ? influenceByKey(keys, psi) : influenceOfUnits(keys, psi)
+  const places = placesFor(options)
+  const spread = varianceOf(influence, places)
+  if (places && spread < 0) return negativeVariance(places)
   const reference = options.reference === 't' ? degreesOfFreedom : Number.POSITIVE_INFINITY
-  return { inference: infer(estimate, varianceOf(influence), reference, options.level), influence, clusters }
+  return { inference: infer(estimate, spread, reference, options.level), influence, clusters }
 }

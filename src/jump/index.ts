@@ -28,6 +28,7 @@ export {
   splitSide,
   withOutcomes,
 } from './sample.js'
+export { eachNeighbourhood, type SpatialPlaces, spatialPlaces } from './spatialPairs.js'
 export {
   jumpAtPoint,
   type PlaneBandwidths,

@@ -1,9 +1,13 @@
 /**
  * Influence values of an estimate, and covariances between estimates as sums of their products over shared keys.
- * Source: METHODS section 4, "Influence". A key is a unit, or a cluster where the variance is clustered.
+ * Source: METHODS section 4, "Influence". A key is a unit, or a cluster where the variance is clustered; where it is
+ * spatial, products of neighbouring units count too.
  * Pooling, contrasts, homogeneity tests and targets are all built on this one idea, so units that serve two lines and
  * clusters that straddle lines are accounted for everywhere.
  */
+
+import { spatialCovariance, spatialVariance } from './spatial.js'
+import type { SpatialPlaces } from './spatialPairs.js'
 
 /** Parallel arrays; every key once, with the sum of ψ over its entries. Keys whose ψ are all 0 may be absent. */
 export interface Influence {
@@ -54,9 +58,12 @@ function sumDensely(keys: readonly Int32Array[], psi: readonly Float64Array[], s
   return { key: used, psi: Float64Array.from(used, (k) => sums[k]) }
 }
 
-/** Variance: the covariance of an estimate with itself. */
-export function varianceOf(influence: Influence): number {
-  return sumOfSquares(influence.psi)
+/**
+ * Variance: the covariance of an estimate with itself. With places, keys are rows of the table and products of
+ * neighbouring units count too; then it may be negative.
+ */
+export function varianceOf(influence: Influence, spatial?: SpatialPlaces): number {
+  return spatial ? spatialVariance(influence, spatial) : sumOfSquares(influence.psi)
 }
 
 /** Σ ψ², in blocks of 4,096. */
@@ -73,9 +80,14 @@ export function sumOfSquares(psi: Float64Array): number {
 
 /**
  * Covariance matrix of several estimates, row-major L×L. Work goes with the number of shared keys, so thousands of
- * lines without shared keys cost no more than their own influence values.
+ * lines without shared keys cost no more than their own influence values. With places, keys are rows of the table and
+ * work goes with the pairs of neighbours.
  */
-export function covarianceMatrix(influences: readonly Influence[]): { matrix: Float64Array; isDiagonal: boolean } {
+export function covarianceMatrix(
+  influences: readonly Influence[],
+  spatial?: SpatialPlaces,
+): { matrix: Float64Array; isDiagonal: boolean } {
+  if (spatial) return spatialCovariance(influences, spatial)
   const count = influences.length
   if (count === 1) return { matrix: Float64Array.of(varianceOf(influences[0])), isDiagonal: true }
   const matrix = new Float64Array(count * count)

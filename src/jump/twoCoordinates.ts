@@ -26,10 +26,12 @@ import {
 } from './planeFit.js'
 import { bothSides, type PlaneSample, type PlaneSide } from './planeSample.js'
 import type { BySide } from './sample.js'
+import { negativeVariance, placesFor } from './spatial.js'
+import type { SpatialPlaces } from './spatialPairs.js'
 import { clusterFactor, countClusters } from './variance.js'
 
 /** `few-clusters` sets b = h: the corrected estimate is then one regression of order q. */
-export type PlaneVariance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'clusters' | 'few-clusters'
+export type PlaneVariance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'clusters' | 'few-clusters' | 'spatial'
 
 export interface PlaneOptions {
   readonly order: number
@@ -37,6 +39,8 @@ export interface PlaneOptions {
   readonly variance: PlaneVariance
   readonly reference: 't' | 'normal'
   readonly level: number
+  /** Where the variance is spatial: the units of the table, by row, with the cutoff. */
+  readonly spatial?: SpatialPlaces
   /** Units of positive weight that each side needs; 20 by default. */
   readonly smallestSide?: number
 }
@@ -176,7 +180,9 @@ function inferenceOf(
   const { reference, level } = options
   const spread = options.variance === 'few-clusters' ? reducedSpread(sides, which) : spreadOf(sides, which, options)
   if (typeof spread === 'string') return spread
-  const variance = varianceOf(spread.influence)
+  const places = placesFor(options)
+  const variance = varianceOf(spread.influence, places)
+  if (places && variance < 0) return negativeVariance(places)
   if (!(variance > 0)) return 'the fit leaves no residual on either side'
   let estimate = 0
   for (const part of sides) {
@@ -187,7 +193,7 @@ function inferenceOf(
   return { ...spread, inference: infer(estimate, variance, freedom, level) }
 }
 
-/** hc0 to hc3, and the plain clustered variance. */
+/** hc0 to hc3, the spatial and the plain clustered variance. */
 function spreadOf(
   sides: readonly SideFit[],
   which: 'plain' | 'corrected',

@@ -1,19 +1,20 @@
 /**
  * Variances of a linear estimate Σ l_i y_i, from its residuals or from neighbours.
  * Source: MacKinnon & White 1985 (hc0–hc3); Abadie & Imbens 2006 (neighbours); METHODS section 4.
- * Every variance is a sum of squares of influence values ψ_i (summed within clusters where clustered), and those
- * ψ carry whatever factor the variance has, so that covariances between estimates follow from the same numbers.
+ * Every variance is a sum of squares of influence values ψ_i (summed within clusters where clustered; where spatial, with
+ * the products of neighbours), and those ψ carry whatever factor the variance has, so that covariances between estimates
+ * follow from the same numbers.
  */
 import { choleskySolveInPlace } from '../math/index.js'
 import { kernelCurve, type LocalFit } from './localPolynomial.js'
 import type { Side } from './sample.js'
 import { evaluate, legendreInZ } from './zPolynomial.js'
 
-export type Variance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters'
+export type Variance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters' | 'spatial'
 
 /**
  * Residual factor of each of the first `count` units: ψ_i = l_i · value.
- * hc0, clusters: e_i; hc1: e_i √(n/(n−order−1)), n the units of positive weight; hc2: e_i/√(1−leverage);
+ * hc0, clusters, spatial: e_i; hc1: e_i √(n/(n−order−1)), n the units of positive weight; hc2: e_i/√(1−leverage);
  * hc3: e_i/(1−leverage). Units outside the fit's window have leverage 0 and the residual from the fit carried on to them.
  */
 export function scaledResiduals(side: Side, fit: LocalFit, count: number, variance: Variance): Float64Array {

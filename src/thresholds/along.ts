@@ -105,7 +105,7 @@ export function estimateAlong(points: readonly AlongPoint[], units: AlongUnits, 
     const none = { ok: false, reason: 'no point has an estimate' } as const
     return { points: estimated as Extract<PointEstimated, { ok: false }>[], average: { length: none, density: none } }
   }
-  const effects = effectsOf(usable)
+  const effects = effectsOf(usable, options)
   const criticalValue = largestQuantile(effects, level, random, draws)
   const averageBy = (name: string, shares: Float64Array) =>
     targetEffect(effects, { kind: 'shares', name, shares }, level)
@@ -152,8 +152,13 @@ function entriesNear(units: AlongUnits, { zones, id }: AlongPoint, near: UnitsNe
   }
 }
 
-function effectsOf(usable: readonly { readonly point: AlongPoint; readonly jump: PointJump }[]): LineEffects {
-  const { matrix, isDiagonal } = covarianceMatrix(inOrderMet(usable.map(({ jump }) => jump.influence)))
+function effectsOf(
+  usable: readonly { readonly point: AlongPoint; readonly jump: PointJump }[],
+  { variance, spatial }: AlongOptions,
+): LineEffects {
+  const influences = usable.map(({ jump }) => jump.influence)
+  const { matrix, isDiagonal } =
+    variance === 'spatial' ? covarianceMatrix(influences, spatial) : covarianceMatrix(inOrderMet(influences))
   return {
     ids: usable.map(({ point }) => point.id),
     estimate: Float64Array.from(usable, ({ jump }) => jump.corrected.estimate),
