@@ -1,4 +1,5 @@
 /** Door of the checks room: whether what a study rests on holds. */
+export { holmAdjusted } from './holm.js'
 export {
   type EffectFound,
   fewestPlacebos,
