@@ -3,7 +3,7 @@ import type { Checked, Problem } from '../problem.js'
 import { type Boundaries, boundariesOf, edgeArrays, setEdge } from './boundaries.js'
 import { joinPaths } from './chains.js'
 import { type BorderEnd, type Corner, cornersAt } from './corners.js'
-import { dosesOf, splitsByDose } from './dose.js'
+import { splitsByDose } from './dose.js'
 import { facingApartProblems } from './fabricApart.js'
 import { coincidentMetres, measureNearness, type Nearness } from './nearness.js'
 import { noBorder } from './noBorder.js'
@@ -11,9 +11,10 @@ import { outsidePaths } from './outside.js'
 import { overlapProblems } from './overlaps.js'
 import { factsOfPiece } from './pieceFacts.js'
 import { cutIntoPieces, type Piece, stepMetres } from './pieces.js'
+import { outsideName, type Roles, rolesOf, sortedRoles } from './roles.js'
 import { buildSegmentTree, type Edges, type SegmentTree } from './segmentTree.js'
 import { type Relevance, type SharedPath, sharedPaths } from './sharedBorders.js'
-import { type Treated, treatedZones } from './treated.js'
+import type { Treated } from './treated.js'
 import { withoutWhiskers } from './whiskers.js'
 import { buildZoneGrid, type ZoneGrid } from './zoneGrid.js'
 import type { Zones } from './zones.js'
@@ -30,9 +31,6 @@ export interface BorderOptions {
   readonly snapMetres: number
   readonly pieceMetres: number
 }
-
-/** The name of the land outside every zone, where it is treated as one. */
-export const outsideName = 'outside'
 
 /** The border, its geometry and facts; what counts of it is decided later (`eligible`). */
 export interface Border {
@@ -145,41 +143,6 @@ export function borderOfPaths(
     ...edgesOfPieces(pieces),
     grid: buildZoneGrid(zones.polygons),
   }
-}
-
-export type Roles = Pick<Border, 'treatedZone' | 'doses' | 'outsideZone'>
-
-function rolesOf(zones: Zones, options: BorderOptions, problems: Problem[]): Roles {
-  const { treated, dose } = options
-  const isOutsideUntreated = options.outside === 'untreated'
-  const { file, names } = zones
-  const outsideZone = isOutsideUntreated ? names.length : -1
-  if (isOutsideUntreated && names.includes(outsideName)) {
-    const found = `a zone named "${outsideName}"`
-    problems.push({ file, what: 'outside: untreated takes the name of a zone', found, todo: 'rename the zone' })
-  }
-  if (treated !== undefined && dose === undefined) {
-    const treatedZone = treatedZones(zones, treated, isOutsideUntreated, problems)
-    return { treatedZone: isOutsideUntreated ? Uint8Array.from([...treatedZone, 0]) : treatedZone, outsideZone }
-  }
-  if (treated !== undefined || dose === undefined) throw new RangeError('give either treated or dose')
-  if (isOutsideUntreated) {
-    const todo = 'leave outside out, or name treated zones instead of a dose'
-    problems.push({ file, what: 'outside: the land outside has no dose', found: 'untreated', todo })
-  }
-  const doses = dosesOf(zones, dose, problems)
-  const lowest = doses.reduce((least, next) => Math.min(least, next), Infinity)
-  return { treatedZone: Uint8Array.from(doses, (own) => (own > lowest ? 1 : 0)), doses, outsideZone }
-}
-
-/** Roles of the zones in the order of their names. */
-function sortedRoles({ treatedZone, doses }: Roles, order: readonly number[]) {
-  const isTreated = Uint8Array.from(order, (zone) => treatedZone[zone])
-  const sorted = doses && Float64Array.from(order, (zone) => doses[zone])
-  const isRelevant: Relevance = sorted
-    ? (own, other) => sorted[own] > sorted[other]
-    : (own, other) => isTreated[own] > isTreated[other]
-  return { isTreated, isRelevant }
 }
 
 /** Does a unit serve the borders of its own zone alone, so that the piece tells its side? */

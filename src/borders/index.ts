@@ -1,7 +1,7 @@
 /** Door of the borders room: GeoJSON zones to the border between treated and untreated ones, and units placed on it. */
 export { type BorderPoint, pointsAlong } from './alongPoints.js'
 export { type LineLayer, linesOfLayer, readLineLayer, shareNear } from './barriers.js'
-export { type Border, type BorderOptions, outsideName, prepareBorder } from './border.js'
+export { type Border, type BorderOptions, prepareBorder } from './border.js'
 export type { Corner } from './corners.js'
 export {
   type EligibilityRules,
@@ -33,6 +33,7 @@ export { type BorderPlacement, type PlaceOptions, placeOnBorder } from './place.
 export { placeboBorder } from './placebo.js'
 export { type RandomGround, randomGround } from './randomGround.js'
 export { beyondCap, centroidSuspicion, type RepeatedPoints, repeatedPoints } from './repeated.js'
+export { outsideName } from './roles.js'
 export { buildSegmentTree, type Edges, type Nearest, nearestEdges, type SegmentTree } from './segmentTree.js'
 export { type BorderSide, type ShiftedBorder, shiftedBorder } from './shifted.js'
 export { type Conflict, type SideRule, zonesByRecord } from './sides.js'

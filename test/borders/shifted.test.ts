@@ -1,3 +1,4 @@
+import { booleanPointInPolygon, buffer } from '@turf/turf'
 import { describe, expect, it } from 'vitest'
 import {
   type BorderSide,
@@ -136,6 +137,20 @@ describe('a line shifted from a corner', () => {
     expect(Math.abs(x[0] - 500)).toBeLessThan(1)
     expect(Math.abs(x[1])).toBeLessThan(1)
     expect(Math.abs(x[2] + 500)).toBeLessThan(1)
+  })
+
+  it('holds the same land as a buffer drawn by turf', () => {
+    // turf buffers on a sphere, up to 0.3 % off here (the ellipsoid's radii of curvature at 50° against its mean radius)
+    const shifted = shiftedOf(features, ['Quarter'], 'untreated', 1000)
+    const line = { type: 'LineString', coordinates: [at(0, 5 * km), at(0, 0), at(5 * km, 0)] } as const
+    const within = buffer({ ...line, coordinates: [...line.coordinates] }, 1000, { units: 'meters', steps: 64 })
+    if (!within) throw new Error('no buffer')
+    const random = seeded(11)
+    const points = Array.from({ length: 2000 }, () => at(-2000 + 6000 * random(), -2000 + 6000 * random()))
+    const { zones, realMetres } = placed(shifted, points)
+    const clear = points.map((_, i) => i).filter((i) => Math.abs(realMetres[i] - 1000) > 5)
+    expect(clear.length).toBeGreaterThan(1900)
+    for (const i of clear) expect(zones[i]).toBe(booleanPointInPolygon(points[i], within) ? 'near' : 'far')
   })
 
   it('is sharp inside, so that its distance is not what is left of the distance to the border', () => {
