@@ -130,8 +130,47 @@ export interface Jump {
   readonly plain: Estimate
   /** Bias-corrected, with its robust standard error. */
   readonly corrected: Estimate
+  /** Worst bias over all curves with a second derivative within `smoothness`; null with a reason where it has none. */
+  readonly bias_aware?: BiasAware | null
+  readonly bias_aware_reason?: string
+  /** With take-up, plain and corrected are the effect per unit of it. */
+  readonly take_up?: TakeUp
+  /** What covariates did to the corrected estimate. */
+  readonly covariates?: CovariateReport
   /** Cautions about this estimate, in words. */
   readonly notes?: readonly string[]
+}
+
+export interface BiasAware extends Interval {
+  readonly estimate: number
+  readonly standard_error: number
+  readonly worst_bias: number
+  readonly smoothness: number
+  readonly smoothness_from: 'rule' | 'study'
+  readonly bandwidth: BySide
+  /** The interval over a range of smoothness. */
+  readonly curve: readonly ({ readonly smoothness: number } & Interval)[]
+}
+
+/** The first stage, and the effect of eligibility, which no weakness of it can touch. */
+export interface TakeUp {
+  /** Of take-up, corrected. */
+  readonly jump: number
+  readonly standard_error: number
+  readonly f: number
+  /** Ends are null where the set is unbounded there; an empty list is an empty set. */
+  readonly anderson_rubin: readonly (readonly [number | null, number | null])[]
+  readonly eligibility: { readonly plain: Estimate; readonly corrected: Estimate }
+}
+
+export interface CovariateReport {
+  readonly coefficients: Readonly<Record<string, number>>
+  /** Constant or a sum of others: left out. */
+  readonly left_out: readonly string[]
+  /** Corrected estimate with covariates less without. */
+  readonly moved: number
+  /** Standard error with over without. */
+  readonly standard_error_ratio: number
 }
 
 export interface NotEstimated {
@@ -193,6 +232,14 @@ export interface CheckResult {
   readonly says: string
 }
 
+export interface StandardsRow {
+  readonly requirement: string
+  readonly answer: 'met' | 'not met' | 'the program cannot know' | 'not applicable'
+  readonly says: string
+  /** File of the results folder that shows it. */
+  readonly exhibit: string
+}
+
 /** A point of the border: pointwise interval, and the band that covers the whole curve. */
 export interface AlongResult {
   readonly lon: number
@@ -240,6 +287,26 @@ export interface Ladders {
   readonly placebo_lines: readonly ({ readonly side: string; readonly at: number } & Rung)[]
 }
 
+/** Effects at borders between zones of equal status; which of the two counts as treated is arbitrary. */
+export interface PlaceboBorders {
+  readonly placebos: readonly ({
+    readonly pair: readonly [string, string]
+    readonly estimate: number
+    readonly standard_error: number
+    readonly p: number
+    /** Within the bandwidth. */
+    readonly units: number
+  } & Interval)[]
+  readonly not_estimated: readonly { readonly pair: readonly [string, string]; readonly reason: string }[]
+  /** Of the real effect by |t|, among the placebo effects and itself; absent where there are too few of these. */
+  readonly rank?: number
+  readonly of?: number
+  readonly p?: number
+  /** The same by |estimate|. */
+  readonly rank_by_estimate?: number
+  readonly p_by_estimate?: number
+}
+
 /** The study with some keys written otherwise. */
 export interface VariantResult {
   readonly variant: string
@@ -270,6 +337,9 @@ export interface OutcomeResult {
   readonly comparison_reason?: string
   readonly checks: readonly CheckResult[]
   readonly ladders?: Ladders
+  readonly placebo_borders?: PlaceboBorders
+  /** Requirements of the What Works Clearinghouse handbook, in our words. */
+  readonly standards?: readonly StandardsRow[]
   readonly variants?: readonly VariantResult[]
 }
 

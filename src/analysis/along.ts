@@ -61,7 +61,7 @@ export function alongResult(
     {
       order: estimation.order,
       kernel: estimation.kernel,
-      variance: variancesAtPoints(estimation.variance, placed.cluster !== undefined),
+      ...variancesAtPoints(estimation.variance, placed),
       reference: estimation.reference,
       level: estimation.level,
       bandwidths,
@@ -120,9 +120,11 @@ function pointBandwidths(study: Study, { line, points }: AlongGround, pooled: Ju
 }
 
 /** Near one point clusters are few: the bias-reduced variance. Neighbours are not offered in two coordinates: hc2. */
-function variancesAtPoints(variance: VarianceName | undefined, hasClusters: boolean) {
-  if (hasClusters && (variance === undefined || variance === 'clusters')) return 'few-clusters' as const
-  return variance === undefined || variance === 'neighbours' || variance === 'clusters' ? ('hc2' as const) : variance
+function variancesAtPoints(variance: VarianceName | undefined, { cluster, spatial }: Placed) {
+  if (spatial) return { variance: 'spatial' as const, spatial }
+  const isByUnit = variance === 'hc0' || variance === 'hc1' || variance === 'hc2' || variance === 'hc3'
+  if (isByUnit) return { variance }
+  return { variance: cluster && variance !== 'neighbours' ? ('few-clusters' as const) : ('hc2' as const) }
 }
 
 /** By entry of the placement; y is NaN where the outcome is missing or the unit lies in the donut. */

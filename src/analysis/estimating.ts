@@ -13,8 +13,8 @@ import {
   neighbourResidualsOf,
   outsideDonut,
   type Sample,
+  type SpatialPlaces,
   type Variance,
-  varianceOf,
 } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
 import type { EstimationPart, Study } from '../study/index.js'
@@ -86,14 +86,15 @@ export function estimateMain(
   const { lineVariance, pooledVariance } = variancesOf(study, hasClusters)
   const guard = bandwidthGuard(study, placed)
   const lines = placement.lines.map((_, line) => {
-    const estimate = guard(estimateLine(entriesOfLine(entries, line), study.estimation, lineVariance))
+    const options = jumpOptions(study.estimation, lineVariance, placed.spatial)
+    const estimate = guard(estimateLine(entriesOfLine(entries, line), study.estimation, options))
     progress(line + 1)
     return estimate
   })
-  const basis = poolBasis(study, entries, lines.length === 1 ? lineVariance : pooledVariance, hasClusters)
+  const basis = poolBasis(study, placed, entries, lines.length === 1 ? lineVariance : pooledVariance)
   const pooled = guard(lines.length === 1 ? alone(lines[0]) : estimatePooled(basis, study.estimation.donut))
   const ids = placement.lines.map((line) => line.id)
-  const { effects, index } = effectsOf(ids, lines)
+  const { effects, index } = effectsOf(ids, lines, placed.spatial)
   const target = targetOf(study, effects, index, lines, shares)
   return {
     lines,
@@ -113,7 +114,8 @@ export function estimateMain(
  * for pooled border pieces clustered by piece. `clusters` on a border without clusters: pooled by piece, each piece hc2.
  */
 function variancesOf(study: Study, hasClusters: boolean): { lineVariance: Variance; pooledVariance: Variance } {
-  const { variance } = study.estimation
+  const { variance, spatial } = study.estimation
+  if (spatial !== undefined) return { lineVariance: 'spatial', pooledVariance: 'spatial' }
   const byPiece = study.line.kind === 'border' && !hasClusters
   if (variance !== undefined && variance !== 'clusters')
     return { lineVariance: variance as Variance, pooledVariance: variance as Variance }
@@ -153,18 +155,19 @@ function snapNotes({ line }: Study, made: readonly OrReason<LineEstimate>[]): st
   return doubt === undefined ? [] : [doubt.says]
 }
 
-function jumpOptions(estimation: EstimationPart, variance: Variance): JumpOptions {
+function jumpOptions(estimation: EstimationPart, variance: Variance, spatial: SpatialPlaces | undefined): JumpOptions {
   const { order, kernel, reference, level } = estimation
-  return { order, kernel, variance, reference, level }
+  return { order, kernel, variance, reference, level, ...(spatial ? { spatial } : {}) }
 }
 
-function estimateLine(entries: Entries, estimation: EstimationPart, variance: Variance): OrReason<LineEstimate> {
+function estimateLine(entries: Entries, estimation: EstimationPart, options: JumpOptions): OrReason<LineEstimate> {
+  const { variance } = options
   const sample = buildSample(entries, estimation.donut)
   const clustered = variance === 'clusters'
   const neighbours = variance === 'neighbours' ? neighbourResidualsOf(sample) : undefined
   const chosen = bandwidthsFor(sample, estimation.bandwidth, { ...estimation, clustered }, neighbours)
   if (!chosen.ok) return { reason: chosen.reason }
-  const estimated = jumpAt(sample, chosen.bandwidths, jumpOptions(estimation, variance), neighbours)
+  const estimated = jumpAt(sample, chosen.bandwidths, options, neighbours)
   return estimated.ok ? { jump: estimated.jump, sample } : { reason: estimated.reason }
 }
 
@@ -173,8 +176,9 @@ function alone(line: OrReason<LineEstimate>): OutcomeEstimates['pooled'] {
 }
 
 /** A single line has no other to differ from: no fixed effect. */
-function poolBasis(study: Study, entries: OutcomeEntries, variance: Variance, hasClusters: boolean): PoolBasis {
+function poolBasis(study: Study, placed: Placed, entries: OutcomeEntries, variance: Variance): PoolBasis {
   const { estimation, pooling } = study
+  const hasClusters = placed.cluster !== undefined
   const lines = entries.start.length - 1
   const byPiece = variance === 'clusters' && !hasClusters
   const all = byPiece ? { ...entries.all, cluster: entries.all.group } : entries.all
@@ -182,7 +186,7 @@ function poolBasis(study: Study, entries: OutcomeEntries, variance: Variance, ha
     sample: buildSample(all),
     lines,
     options: {
-      ...jumpOptions(estimation, variance),
+      ...jumpOptions(estimation, variance, placed.spatial),
       bandwidth: estimation.bandwidth,
       sides: estimation.sides,
       clustered: variance === 'clusters',
@@ -201,17 +205,18 @@ export function estimatePooled({ sample, lines, options }: PoolBasis, donut: num
 function effectsOf(
   ids: readonly string[],
   lines: readonly OrReason<LineEstimate>[],
+  spatial: SpatialPlaces | undefined,
 ): { effects: LineEffects; index: number[] } {
   const index: number[] = []
   const influences: Influence[] = []
   const estimates: number[] = []
   lines.forEach((line, i) => {
-    if (hasReason(line) || !(varianceOf(line.jump.influence) > 0)) return
+    if (hasReason(line) || !(line.jump.corrected.standardError > 0)) return
     index.push(i)
     influences.push(line.jump.influence)
     estimates.push(line.jump.corrected.estimate)
   })
-  const { matrix, isDiagonal } = covarianceMatrix(influences)
+  const { matrix, isDiagonal } = covarianceMatrix(influences, spatial)
   return {
     effects: { ids: index.map((i) => ids[i]), estimate: Float64Array.from(estimates), covariance: matrix, isDiagonal },
     index,

@@ -4,7 +4,7 @@ import { type EffectFound, fewestPlacebos, judgePlacebos, rankAmongPlacebos } fr
 import type { Inference } from '../jump/index.js'
 import { problemText } from '../problem.js'
 import { numbersOf } from '../records/index.js'
-import type { CheckResult } from '../results.js'
+import type { CheckResult, PlaceboBorders } from '../results.js'
 import type { Study } from '../study/index.js'
 import { metresPerUnit } from './border.js'
 import { entriesOf } from './entries.js'
@@ -15,29 +15,7 @@ import { pooledOverLines } from './pooledAgain.js'
 
 export const placeboCheck = 'borders that change nothing'
 
-/** Corrected estimates of one pair of zones of equal status; which of the two counts as treated is arbitrary. */
-export interface PlaceboEffect {
-  readonly pair: readonly [string, string]
-  readonly estimate: number
-  readonly standard_error: number
-  readonly low: number
-  readonly high: number
-  readonly p: number
-  /** Units within the bandwidth. */
-  readonly units: number
-}
-
-export interface PlaceboExhibit {
-  readonly placebos: readonly PlaceboEffect[]
-  readonly not_estimated: readonly { readonly pair: readonly [string, string]; readonly reason: string }[]
-  /** Of the real effect by |t|, among the placebo effects and itself; absent where there are too few of these. */
-  readonly rank?: number
-  readonly of?: number
-  readonly p?: number
-  /** The same by |estimate|. */
-  readonly rank_by_estimate?: number
-  readonly p_by_estimate?: number
-}
+type PlaceboEffect = PlaceboBorders['placebos'][number]
 
 /** Rows placed against the borders that change nothing, or why there are none. */
 export type PlacedPlacebos =
@@ -84,7 +62,7 @@ export function placeboBorders(
   placebos: PlacedPlacebos,
   outcome: string,
   pooled: OutcomeEstimates['pooled'],
-): { readonly checks: readonly CheckResult[]; readonly exhibit?: PlaceboExhibit } {
+): { readonly checks: readonly CheckResult[]; readonly exhibit?: PlaceboBorders } {
   const impossible = (says: string) => ({ check: placeboCheck, verdict: 'not possible' as const, says })
   if (!placebos.ok) return { checks: [impossible(placebos.reason)] }
   const effects: PlaceboEffect[] = []

@@ -1,13 +1,14 @@
 /** From tables and layers to a placement: the one step that knows whether a line is a cutoff or a border. */
 import { beyondCap } from '../borders/index.js'
+import { type SpatialPlaces, spatialPlaces } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
 import type { Placement, SetAside } from '../placement.js'
 import type { Checked } from '../problem.js'
 import { type LedgerStep, labelsOf, ledgerStep, numbersOf, type Table } from '../records/index.js'
 import type { ScoreLine, Study } from '../study/index.js'
 import { type CutoffSource, type MissingKey, placeByDistance, placeByScore, readSchedule } from '../thresholds/index.js'
-import { type BorderFacts, locateOnBorder } from './border.js'
-import { type AnalysisInputs, clusterColumns, type Progress } from './inputs.js'
+import { type BorderFacts, locateOnBorder, metresPerUnit } from './border.js'
+import { type AnalysisInputs, clusterColumns, type Progress, positionColumns } from './inputs.js'
 
 /** Border studies have the facts of their border too. */
 export interface Placed extends Partial<BorderFacts> {
@@ -23,6 +24,8 @@ export interface Placed extends Partial<BorderFacts> {
   readonly cluster?: Int32Array
   /** The same by the second column, where the study clusters by two. */
   readonly crossedCluster?: Int32Array
+  /** Where rows stand and how far noise reaches, for a spatial variance. */
+  readonly spatial?: SpatialPlaces
 }
 
 interface Located extends Partial<BorderFacts> {
@@ -62,8 +65,16 @@ export function placeStudy(study: Study, inputs: AnalysisInputs, progress?: Prog
       missingKeys: located.value.missingKeys ?? [],
       cluster: usable?.cluster,
       crossedCluster: usable?.crossed,
+      spatial: spatialOf(study, table),
     },
   }
+}
+
+function spatialOf(study: Study, table: Table): SpatialPlaces | undefined {
+  const { line, estimation } = study
+  if (line.kind !== 'border' || estimation.spatial === undefined) return undefined
+  const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
+  return spatialPlaces(lon, lat, estimation.spatial * metresPerUnit[line.unit])
 }
 
 function locate(study: Study, inputs: AnalysisInputs, progress?: Progress): Checked<Located> {

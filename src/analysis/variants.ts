@@ -2,7 +2,7 @@
  * The same study with some keys written otherwise, estimated beside it. What a variant shares with the study is not done
  * again: the ground is measured once, and rows are placed once where neither line nor records differ.
  */
-import { covarianceMatrix, type Influence } from '../jump/index.js'
+import { covarianceMatrix, type Influence, type SpatialPlaces } from '../jump/index.js'
 import { studentTwoSidedP } from '../math/index.js'
 import type { Checked, Problem } from '../problem.js'
 import type { Table } from '../records/index.js'
@@ -171,21 +171,22 @@ function differenceOf(main: Side, other: Side): Pick<VariantResult, 'difference'
     const reason = 'the two variances do not sum over the same units or clusters'
     return { difference: { estimate, standard_error: null, standard_error_reason: reason } }
   }
-  const variance = varianceOfDifference(a.jump.influence, b.jump.influence)
+  const variance = varianceOfDifference(a.jump.influence, b.jump.influence, main.placed.spatial)
   const standardError = Math.sqrt(Math.max(0, variance))
   if (!(standardError > 1e-9 * a.jump.corrected.standardError)) return { difference: { estimate, standard_error: 0 } }
   const p = studentTwoSidedP(estimate / standardError, Number.POSITIVE_INFINITY)
   return { difference: { estimate, standard_error: standardError, p } }
 }
 
-function varianceOfDifference(a: Influence, b: Influence): number {
-  const { matrix } = covarianceMatrix([a, b])
+function varianceOfDifference(a: Influence, b: Influence, spatial: SpatialPlaces | undefined): number {
+  const { matrix } = covarianceMatrix([a, b], spatial)
   return matrix[0] + matrix[3] - 2 * matrix[1]
 }
 
 /** What the keys of a pooled influence are. */
 function keysOf({ study, placed, made }: Side): string {
   const variance = placed.placement.lines.length === 1 ? made.lineVariance : made.pooledVariance
+  if (variance === 'spatial') return `within ${placed.spatial?.cutoffMetres}`
   if (variance !== 'clusters') return 'unit'
   if (study.records.cluster !== undefined) return `column ${study.records.cluster}`
   if (placed.cluster) return 'point'

@@ -8,6 +8,7 @@ import { mapFigure } from './figures/map.js'
 import { scatterFigure } from './figures/scatter.js'
 import { bordersGeojson } from './geojson.js'
 import type { ReportInput } from './input.js'
+import { ladderTable, placeboTable, standardsTable } from './ladderTable.js'
 import { ledgerTable } from './ledgerTable.js'
 import { paperLineTable } from './lineTable.js'
 import { type PageFigures, pageHtml } from './page/page.js'
@@ -42,8 +43,13 @@ export function drawReport(input: ReportInput): Map<string, string> {
     if (pooled) files.set(`figures/${outcome.slug}-pooled.svg`, pooled)
     files.set(`figures/${outcome.slug}-forest.svg`, forest)
     addTable(files, `lines-${outcome.slug}`, paperLineTable(view, outcome))
-    const variants = variantTable(view, outcome)
-    if (variants) addTable(files, `variants-${outcome.slug}`, variants)
+    const more = {
+      variants: variantTable(view, outcome),
+      ladders: ladderTable(view, outcome),
+      placebos: placeboTable(view, outcome),
+      standards: standardsTable(outcome),
+    }
+    for (const [name, table] of Object.entries(more)) if (table) addTable(files, `${name}-${outcome.slug}`, table)
   })
   if (figures.map) files.set('figures/map.svg', figures.map)
   addTable(files, 'pooled', pooledTable(view))

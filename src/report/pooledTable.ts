@@ -57,10 +57,13 @@ function outcomeRows(view: View, outcome: OutcomeView): TableRow[] {
       cell(pooled.units_in_bandwidth.treated, view.smallestCell),
       widthCell(pooled.bandwidth, widthPlaces([pooled])),
     ]
+    rows.push(...firstStageRows(head, pooled, shared, places))
     for (const name of ['plain', 'corrected'] as const) {
       const estimate = pooled[name]
-      rows.push([head, `pooled, ${name}`, ...shared, ...estimateCells(estimate, places), p(estimate.p)])
+      const what = pooled.take_up ? `pooled per unit of take-up, ${name}` : `pooled, ${name}`
+      rows.push([head, what, ...shared, ...estimateCells(estimate, places), p(estimate.p)])
     }
+    if (pooled.bias_aware) rows.push(biasAwareRow(head, pooled.bias_aware, places))
   } else {
     rows.push({ head, across: `pooled: not estimated: ${reasonText(view, pooled.not_estimated)}` })
   }
@@ -74,6 +77,54 @@ function outcomeRows(view: View, outcome: OutcomeView): TableRow[] {
     rows.push([head, 'random-effects mean', ...none, ...estimateCells(comparison.random_effects, places), missing])
   }
   return rows
+}
+
+/** Take-up first, then the effect of being eligible, which needs no first stage. */
+function firstStageRows(
+  head: string,
+  { take_up: takeUp }: Jump,
+  shared: readonly string[],
+  places: Places,
+): TableRow[] {
+  if (!takeUp) return []
+  const { eligibility } = takeUp
+  const set = takeUp.anderson_rubin.map(([low, high]) => `${end(low, '−∞', places)} to ${end(high, '∞', places)}`)
+  return [
+    [
+      head,
+      'jump in take-up',
+      ...shared,
+      significant(takeUp.jump),
+      significant(takeUp.standard_error),
+      `F ${fixed(takeUp.f, 1)}`,
+      missing,
+    ],
+    [
+      head,
+      'eligibility, corrected',
+      ...shared,
+      ...estimateCells(eligibility.corrected, places),
+      p(eligibility.corrected.p),
+    ],
+    { head, across: `per unit of take-up, the Anderson–Rubin set: ${set.length > 0 ? set.join(' and ') : 'empty'}` },
+  ]
+}
+
+function end(value: number | null, none: string, places: Places): string {
+  return value === null ? none : fixed(value, places)
+}
+
+/** At a bandwidth of its own, whose units are not counted here. */
+function biasAwareRow(head: string, found: NonNullable<Jump['bias_aware']>, places: Places): TableRow {
+  return [
+    head,
+    `pooled, bias-aware (curvature up to ${significant(found.smoothness)})`,
+    missing,
+    missing,
+    significant(found.bandwidth.treated),
+    ...estimateCells(found, places),
+    missing,
+  ]
 }
 
 function estimateCells(

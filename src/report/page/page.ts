@@ -1,6 +1,7 @@
 /** report.html: one page, no request, no script. The answer in words first, then what it rests on. */
 import { conflictTable, waterfallTable, whatElseTable } from '../borderTables.js'
 import { escapeHtml } from '../escape.js'
+import { ladderTable, placeboTable, standardsTable } from '../ladderTable.js'
 import { checksTable, ledgerTable, setAsideTable } from '../ledgerTable.js'
 import { pageLineTable } from '../lineTable.js'
 import { count, significant } from '../numbers.js'
@@ -85,6 +86,10 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
   const setAside = setAsideTable(view)
   const ground = [waterfallTable(view), whatElseTable(view), conflictTable(view)].filter((table) => table !== undefined)
   const shared = sharedTable(view)
+  const again = view.outcomes.flatMap((outcome) =>
+    [ladderTable(view, outcome) ?? [], placeboTable(view, outcome) ?? []].flat(),
+  )
+  const standards = view.outcomes.flatMap((outcome) => standardsTable(outcome) ?? [])
   const variants = view.outcomes.flatMap((outcome) => variantTable(view, outcome) ?? [])
   const hasComparison = view.results.lines.length > 1
   const contrasts = view.outcomes.flatMap((outcome) => contrastTable(view, outcome) ?? [])
@@ -115,7 +120,12 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
     ...(variants.length > 0
       ? [{ id: 'variants', title: 'Run otherwise', body: variants.map((table) => toHtml(table)).join('\n') }]
       : []),
-    ...(checks ? [{ id: 'checks', title: 'Checks', body: toHtml(checks) }] : []),
+    ...(checks
+      ? [{ id: 'checks', title: 'Checks', body: [checks, ...again].map((table) => toHtml(table)).join('\n') }]
+      : []),
+    ...(standards.length > 0
+      ? [{ id: 'standards', title: 'Against the handbook', body: standards.map((table) => toHtml(table)).join('\n') }]
+      : []),
     {
       id: 'ledger',
       title: 'From rows to units',
