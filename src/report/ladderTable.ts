@@ -1,0 +1,120 @@
+/** The pooled estimate made again with one choice changed, and at lines and borders that change nothing. */
+import type { Jump, Rung } from '../results.js'
+import { intervalText } from './lineTable.js'
+import { cell, fixed, missing, type Places, p, sharedPlaces, significant } from './numbers.js'
+import type { TableRow, TextTable } from './tables.js'
+import { isEstimated, type OutcomeView, reasonText, type View, widthText } from './view.js'
+
+/** Nothing where no checks were run. */
+export function ladderTable(view: View, { result }: OutcomeView): TextTable | undefined {
+  const { ladders, pooled } = result
+  if (!ladders || !isEstimated<Jump>(pooled)) return undefined
+  const own = { ...pooled.corrected, bandwidth: pooled.bandwidth, units: pooled.units_in_bandwidth }
+  const rungs: readonly (readonly [string, Rung])[] = [
+    ['the study', own],
+    ...ladders.bandwidth.map((rung) => [`${rung.scale} times the bandwidth`, rung] as const),
+    ...ladders.donut.map((rung) => [`without units nearer than ${significant(rung.donut)}`, rung] as const),
+    ...ladders.order_kernel.map((rung) => [`order ${rung.order}, ${rung.kernel}`, rung] as const),
+    ...ladders.placebo_lines.map((rung) => [`line that is none at ${significant(rung.at)}`, rung] as const),
+  ]
+  const made = rungs.flatMap(([, rung]) => ('not_estimated' in rung ? [] : [rung]))
+  const places = sharedPlaces(
+    made.map((rung) => rung.standard_error),
+    made.map(({ estimate }) => estimate),
+  )
+  return {
+    caption: `${result.outcome}: the pooled estimate with one choice changed`,
+    columns: [
+      { head: 'Change', isText: true },
+      { head: 'N untreated' },
+      { head: 'N treated' },
+      { head: 'Bandwidth' },
+      { head: 'Estimate' },
+      { head: 'Standard error' },
+      { head: `${view.words.level} interval` },
+      { head: 'p' },
+    ],
+    rows: rungs.map(([head, rung]) => rungRow(view, head, rung, places)),
+    notes: [
+      'Corrected estimates. Other orders and kernels, and lines that are none, have bandwidths of their own; those lines use the units of one side alone.',
+    ],
+  }
+}
+
+function rungRow(view: View, head: string, rung: Rung, places: Places): TableRow {
+  if ('not_estimated' in rung) return { head, across: `not estimated: ${reasonText(view, rung.not_estimated)}` }
+  return [
+    head,
+    cell(rung.units.untreated, view.smallestCell),
+    cell(rung.units.treated, view.smallestCell),
+    widthText(view, rung.bandwidth),
+    fixed(rung.estimate, places),
+    fixed(rung.standard_error, places),
+    intervalText(rung, places),
+    p(rung.p),
+  ]
+}
+
+const placebosShown = 30
+
+/** Effects at borders between zones of equal status, largest |t| first; nothing where there are none. */
+export function placeboTable(view: View, { result }: OutcomeView): TextTable | undefined {
+  const found = result.placebo_borders
+  if (!found || found.placebos.length === 0) return undefined
+  const places = sharedPlaces(
+    found.placebos.map((effect) => effect.standard_error),
+    found.placebos.map(({ estimate }) => estimate),
+  )
+  const sorted = [...found.placebos].sort(
+    (a, b) => Math.abs(b.estimate / b.standard_error) - Math.abs(a.estimate / a.standard_error),
+  )
+  const rank =
+    found.rank === undefined
+      ? 'Too few for a rank.'
+      : `Among them the real effect ranks ${found.rank} of ${found.of} by |t| (p = ${p(found.p)}).`
+  const more =
+    sorted.length > placebosShown ? ` ${sorted.length - placebosShown} smaller ones are in results.json.` : ''
+  return {
+    caption: `${result.outcome}: borders that change nothing`,
+    columns: [
+      { head: 'Border between', isText: true },
+      { head: 'Units' },
+      { head: 'Effect' },
+      { head: 'Standard error' },
+      { head: `${view.words.level} interval` },
+      { head: 'p' },
+    ],
+    rows: sorted
+      .slice(0, placebosShown)
+      .map((effect) => [
+        effect.pair.join(' | '),
+        cell(effect.units, view.smallestCell),
+        fixed(effect.estimate, places),
+        fixed(effect.standard_error, places),
+        intervalText(effect, places),
+        p(effect.p),
+      ]),
+    notes: [
+      `${rank} Both zones of a pair have the same status; which counts as treated is arbitrary, so read sizes and not signs.${more}`,
+    ],
+  }
+}
+
+/** Requirements of the handbook, answered; nothing where no checks were run. */
+export function standardsTable({ result }: OutcomeView): TextTable | undefined {
+  const { standards } = result
+  if (!standards) return undefined
+  return {
+    caption: `${result.outcome}: what the What Works Clearinghouse handbook asks of such designs`,
+    columns: [
+      { head: 'Requirement', isText: true },
+      { head: 'Answer', isText: true },
+      { head: 'What it rests on', isText: true },
+      { head: 'Shown in', isText: true },
+    ],
+    rows: standards.map(({ requirement, answer, says, exhibit }) => [requirement, answer, says || missing, exhibit]),
+    notes: [
+      'The wording of the requirements is ours, from memory, and not a quotation; the handbook itself decides. No requirement counts as met without a number behind it.',
+    ],
+  }
+}
