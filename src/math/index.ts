@@ -1,9 +1,10 @@
 /** Distributions, random numbers, root finding, small linear algebra and sorting: numbers in, numbers out. */
 export { choleskyInPlace, choleskyInverse, choleskySolveInPlace } from './cholesky.js'
-export { chiSquareUpper, studentQuantile, studentTwoSidedP } from './distributions.js'
+export { chiSquareUpper, foldedNormalQuantile, studentQuantile, studentTwoSidedP } from './distributions.js'
 export { earthCentred, equatorialMetres, flattening, polarMetres, surfaceMetres } from './ellipsoid.js'
+export { inverseRootTimes } from './inverseRoot.js'
 export { normalCdf, normalQuantile, normalUpper } from './normal.js'
-export { rootBetween } from './optimise.js'
+export { lowestOn, rootBetween } from './optimise.js'
 export { legendreShifted } from './polynomial.js'
 export { quantileOfSorted, standardDeviation } from './quantiles.js'
 export { type Random, seededRandom, streamOf } from './random.js'

@@ -1,4 +1,66 @@
-/** A root in one dimension; f is evaluated only inside [low, high]. */
+/** A minimum and a root in one dimension; f is evaluated only inside [low, high]. */
+
+const goldenRatio = (Math.sqrt(5) - 1) / 2
+
+/**
+ * Place x of the smallest value met of a function on [low, high], 0 < low ≤ high, that may have several minima: a geometric
+ * grid of `points`, then golden section (Kiefer 1953) between the neighbours of the three lowest grid points that are lower
+ * than both neighbours, to `tolerance` relative to x. A function may be Infinity in places; undefined where it is everywhere.
+ */
+export function lowestOn(
+  f: (x: number) => number,
+  low: number,
+  high: number,
+  points: number,
+  tolerance: number,
+): number | undefined {
+  if (!(low > 0 && low <= high)) throw new RangeError(`the interval runs from ${low} to ${high}`)
+  if (!(points >= 2 && tolerance > 0)) throw new RangeError(`${points} points, tolerance ${tolerance}`)
+  let best: number | undefined
+  let lowest = Number.POSITIVE_INFINITY
+  const tried = (x: number) => {
+    const value = f(x)
+    if (value < lowest) {
+      lowest = value
+      best = x
+    }
+    return value
+  }
+  const place = (i: number) => (i === points - 1 ? high : low * (high / low) ** (i / (points - 1)))
+  const values = Float64Array.from({ length: points }, (_, i) => tried(place(i)))
+  const at = (i: number) => (i < 0 || i >= points ? Number.POSITIVE_INFINITY : values[i])
+  Array.from(values.keys())
+    .filter((i) => at(i) < Number.POSITIVE_INFINITY && at(i) <= at(i - 1) && at(i) <= at(i + 1))
+    .sort((i, j) => values[i] - values[j])
+    .slice(0, 3)
+    .forEach((i) => {
+      goldenSection(tried, place(Math.max(0, i - 1)), place(Math.min(points - 1, i + 1)), tolerance)
+    })
+  return best
+}
+
+function goldenSection(f: (x: number) => number, from: number, to: number, tolerance: number): void {
+  let [low, high] = [from, to]
+  let left = high - goldenRatio * (high - low)
+  let right = low + goldenRatio * (high - low)
+  let atLeft = f(left)
+  let atRight = f(right)
+  while (high - low > tolerance * high) {
+    if (atLeft <= atRight) {
+      high = right
+      right = left
+      atRight = atLeft
+      left = high - goldenRatio * (high - low)
+      atLeft = f(left)
+    } else {
+      low = left
+      left = right
+      atLeft = atRight
+      right = low + goldenRatio * (high - low)
+      atRight = f(right)
+    }
+  }
+}
 
 /**
  * Root of f in [low, high] by Brent's method (Brent 1973, Algorithms for Minimization without Derivatives, chapter 4):

@@ -2,6 +2,7 @@ import jStat from 'jstat'
 import { describe, expect, test } from 'vitest'
 import {
   chiSquareUpper,
+  foldedNormalQuantile,
   normalCdf,
   normalQuantile,
   normalUpper,
@@ -60,6 +61,50 @@ describe('Student with very many degrees of freedom', () => {
     expect(studentTwoSidedP(1.5, Number.POSITIVE_INFINITY)).toBe(2 * normalUpper(1.5))
     expect(studentQuantile(0.975, Number.POSITIVE_INFINITY)).toBe(normalQuantile(0.975))
     expect(relativeError(studentQuantile(0.975, 1e12), normalQuantile(0.975))).toBeLessThan(2e-12)
+  })
+})
+
+describe('folded normal quantile', () => {
+  // Made by R 4.2.2: test/golden/math/folded-normal.R.
+  test('against R’s root of pnorm, means to 1e7, levels to 1 − 1e-12', () => {
+    const { quantiles } = golden<{ quantiles: number[][] }>('folded-normal.json')
+    expect(quantiles.length).toBeGreaterThan(150)
+    for (const [outside, t, q] of quantiles) {
+      // 1 − outside is rounded to 1e-16, which moves a quantile far out by that over its tail.
+      const lost = 1e-16 / outside
+      expect(relativeError(foldedNormalQuantile(1 - outside, t), q)).toBeLessThan(1e-14 + lost)
+    }
+  })
+  // CHECKS: 95% quantile of |N(t, 1)| (Armstrong & Kolesár 2018, 2020), printed to six places.
+  test('of the bias-aware table', () => {
+    const table = [
+      [0, 1.959964],
+      [0.1, 1.969726],
+      [0.2, 1.998549],
+      [0.3, 2.045053],
+      [0.5, 2.181477],
+      [0.8, 2.450465],
+      [1, 2.646146],
+      [1.5, 3.14487],
+      [2, 3.644854],
+    ]
+    for (const [t, quantile] of table) {
+      expect(Math.abs(foldedNormalQuantile(0.95, t) - quantile)).toBeLessThan(5.1e-7)
+      expect(foldedNormalQuantile(0.95, -t)).toBe(foldedNormalQuantile(0.95, t))
+    }
+  })
+  test('levels under one half, ends and faults', () => {
+    for (const probability of [1e-9, 0.01, 0.3]) {
+      for (const t of [0, 0.4, 3, 12]) {
+        const q = foldedNormalQuantile(probability, t)
+        const inside = normalCdf(q - t) - normalCdf(-q - t)
+        expect(Math.abs(inside - probability)).toBeLessThan(1e-12 * Math.max(probability, 1e-4))
+      }
+    }
+    expect(foldedNormalQuantile(0, 1)).toBe(0)
+    expect(foldedNormalQuantile(1, 1)).toBe(Number.POSITIVE_INFINITY)
+    expect(() => foldedNormalQuantile(0.95, Number.NaN)).toThrow(RangeError)
+    expect(() => foldedNormalQuantile(1.1, 0)).toThrow(RangeError)
   })
 })
 

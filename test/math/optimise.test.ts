@@ -1,5 +1,32 @@
 import { describe, expect, test } from 'vitest'
-import { rootBetween } from '../../src/math/index.js'
+import { lowestOn, rootBetween } from '../../src/math/index.js'
+
+describe('lowest place', () => {
+  // The values of a smooth function cannot tell places nearer than about the root of the rounding unit.
+  test.each([
+    ['(x − 2)⁴ + x', (x: number) => (x - 2) ** 4 + x, 0.1, 10, 2 - 0.25 ** (1 / 3)],
+    ['x log x', (x: number) => x * Math.log(x), 1e-9, 3, Math.exp(-1)],
+    ['a corner', (x: number) => Math.abs(x - 0.3), 0.01, 1, 0.3],
+    ['rising: the low end', (x: number) => x, 1, 4, 1],
+    ['falling: the high end', (x: number) => -x, 1, 4, 4],
+    ['many minima, the lowest at 3', (x: number) => (x - 3) ** 2 - Math.cos(12 * (x - 3)), 0.5, 9, 3],
+    ['nowhere but past 2', (x: number) => (x < 2 ? Number.POSITIVE_INFINITY : (x - 2.5) ** 2), 1, 9, 2.5],
+    ['one point', (x: number) => x, 2, 2, 2],
+  ])('%s', (_, f, low, high, place) => {
+    expect(Math.abs((lowestOn(f, low, high, 40, 1e-7) as number) - place)).toBeLessThan(1e-6)
+  })
+  test('stays inside, has no answer where there is none, and refuses what is no interval', () => {
+    const f = (x: number) => {
+      expect(x >= 2 && x <= 3).toBe(true)
+      return (x - 2.5) ** 2
+    }
+    lowestOn(f, 2, 3, 7, 1e-3)
+    expect(lowestOn(() => Number.POSITIVE_INFINITY, 1, 2, 5, 1e-3)).toBeUndefined()
+    expect(() => lowestOn(f, 3, 2, 7, 1e-3)).toThrow(RangeError)
+    expect(() => lowestOn(f, Number.NaN, 2, 7, 1e-3)).toThrow(RangeError)
+    expect(() => lowestOn(f, 2, 3, 7, 0)).toThrow(RangeError)
+  })
+})
 
 describe('root', () => {
   test.each([
