@@ -234,7 +234,7 @@ function reducedSpread(sides: readonly SideFit[], which: 'plain' | 'corrected'):
       return { side: part.side, fit, weights: part[which], residual: planeResiduals(part.side, fit, fit.count) }
     }),
   )
-  return reduced.clusters < 2 ? oneCluster : reduced
+  return typeof reduced !== 'string' && reduced.clusters < 2 ? oneCluster : reduced
 }
 
 function densityOf({ side, main }: SideFit): number {
