@@ -145,11 +145,6 @@ export function borderOfPaths(
   }
 }
 
-/** Does a unit serve the borders of its own zone alone, so that the piece tells its side? */
-export function isOwnZoneOnly({ doses, isEqualStatus }: Pick<Border, 'doses' | 'isEqualStatus'>): boolean {
-  return doses !== undefined || isEqualStatus === true
-}
-
 /** A stretch of border of a pair of zones, numbered in the order of their names; the land outside comes last. */
 export type PairPath = Pick<SharedPath, 'treated' | 'untreated' | 'points'>
 

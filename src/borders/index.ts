@@ -25,7 +25,13 @@ export { edgeLengthMetres, geodesicMetres } from './geodesy.js'
 export type { MultiPolygonCoords } from './geojson.js'
 export { type LayersAlong, layersAlong } from './layersAlong.js'
 export { type LocalMetres, localMetres } from './localMetres.js'
-export { type Measured, measureUnits } from './measured.js'
+export {
+  type Measured,
+  type MeasuredBorder,
+  measureUnits,
+  putMeasured,
+  roomFor,
+} from './measured.js'
 export { metresToCorner, type RunnerUps, runnerUps } from './neighbourhood.js'
 export type { PieceFacts } from './pieceFacts.js'
 export type { Piece } from './pieces.js'

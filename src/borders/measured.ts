@@ -1,8 +1,11 @@
 /** Measures units against the border, once: no rule about pieces or sides enters here (METHODS sections 1 and 10). */
-import { type Border, isOwnZoneOnly } from './border.js'
+import type { Border } from './border.js'
 import { edgeArrays, pointOfEdge, setEdge } from './boundaries.js'
 import { edgeLengthMetres } from './geodesy.js'
-import { buildSegmentTree, type Edges, type Nearest, nearestEdges } from './segmentTree.js'
+import { hilbertOrder } from './hilbert.js'
+import { nearestInOrder, nearestRoom } from './nearest.js'
+import { isOwnZoneOnly } from './ownZone.js'
+import { buildSegmentTree, type Edges, type Nearest, type SegmentTree } from './segmentTree.js'
 import { locateInZones, noZone } from './zoneGrid.js'
 
 /** `piece` of a unit without a position. */
@@ -26,60 +29,121 @@ export interface Measured {
   readonly positionMetres: Float64Array
 }
 
+/** What units are measured by: numbers, texts and typed arrays alone, so that it can be sent to another thread. */
+export type MeasuredBorder = Pick<
+  Border,
+  | 'names'
+  | 'outsideZone'
+  | 'doses'
+  | 'isEqualStatus'
+  | 'edges'
+  | 'tree'
+  | 'grid'
+  | 'pieceOfEdge'
+  | 'untreatedOfPiece'
+  | 'treatedOfPiece'
+  | 'positionMetres'
+  | 'lengthMetres'
+>
+
 /** A foot nearer than this to the end of an edge is at that end. */
 const sameFootMetres = 1e-6
+/** Units in work at a time: room for them stays small, and they lie close together along the curve. */
+const chunkUnits = 262_144
 
 /**
  * Zone, nearest piece, foot and distance of every unit. Where pieces meet at the foot, one of the unit's own zone goes
  * first, then the first in order. With doses, and between zones of equal status, a unit in one zone is measured against
  * the borders of that zone alone.
  * lon, lat: degrees, NaN where missing. The answer for a unit does not depend on the others.
+ * The answers take 40 bytes a unit; while they are worked out, another 30 MB.
  * Throws RangeError where the lists differ in length.
  */
 export function measureUnits(
-  border: Border,
+  border: MeasuredBorder,
   lon: Float64Array,
   lat: Float64Array,
   progress?: (done: number) => void,
 ): Measured {
   const count = lon.length
   if (lat.length !== count) throw new RangeError(`lon has ${count} units, lat has ${lat.length}`)
-  const zone = locateInZones(border.grid, lon, lat)
-  if (border.outsideZone >= 0) giveOutside(zone, lon, lat, border.outsideZone)
-  const nearest = isOwnZoneOnly(border)
-    ? nearestOfOwnZone(border, lon, lat, zone, progress)
-    : nearestEdges(border.tree, lon, lat, progress)
-  const meetings = pieceMeetings(border)
-  const nothing = () => new Float64Array(count).fill(Number.NaN)
-  const measured = {
-    zone,
-    piece: new Int32Array(count),
-    distanceMetres: nearest.distanceMetres,
-    footLon: nothing(),
-    footLat: nothing(),
-    positionMetres: nothing(),
-  }
-  for (let i = 0; i < count; i++) {
-    // the edge that the foot was measured on; the unit's own edge may be another one that meets it at the foot
-    const edge = nearest.edge[i]
-    if (edge < 0) {
-      measured.piece[i] =
-        Number.isNaN(lon[i]) || Number.isNaN(lat[i])
-          ? positionMissing
-          : isOnEarth(lon[i], lat[i])
-            ? noBorderOfZone
-            : positionOutOfRange
-      continue
-    }
-    const own = ownEdge(border, meetings, edge, nearest.fraction[i], zone[i])
-    const [footLon, footLat] = pointOfEdge(border.edges, edge, nearest.fraction[i])
-    measured.piece[i] = border.pieceOfEdge[own]
-    measured.footLon[i] = footLon
-    measured.footLat[i] = footLat
-    measured.positionMetres[i] =
-      own === edge ? positionAlong(border, edge, nearest.fraction[i]) : positionOfEnd(border, own, footLon, footLat)
+  const measured = roomFor(count)
+  const measure = unitMeasurer(border)
+  for (let from = 0; from < count; from += chunkUnits) {
+    const to = Math.min(count, from + chunkUnits)
+    putMeasured(measured, from, measure(lon.subarray(from, to), lat.subarray(from, to)))
+    progress?.(to)
   }
   return measured
+}
+
+/** Room for the answers of `count` units. */
+export function roomFor(count: number): Measured {
+  return {
+    zone: new Int32Array(count),
+    piece: new Int32Array(count),
+    distanceMetres: new Float64Array(count),
+    footLon: new Float64Array(count),
+    footLat: new Float64Array(count),
+    positionMetres: new Float64Array(count),
+  }
+}
+
+/** Puts the answers of a part of the units in their place, from unit `first` on. */
+export function putMeasured(whole: Measured, first: number, part: Measured): void {
+  whole.zone.set(part.zone, first)
+  whole.piece.set(part.piece, first)
+  whole.distanceMetres.set(part.distanceMetres, first)
+  whole.footLon.set(part.footLon, first)
+  whole.footLat.set(part.footLat, first)
+  whole.positionMetres.set(part.positionMetres, first)
+}
+
+/**
+ * Measures any units against the border, part after part: what is made of the border for it is made once.
+ * The units of a part are worked through along a Hilbert curve, so that neighbours meet the same edges and cells.
+ */
+export function unitMeasurer(border: MeasuredBorder): (lon: Float64Array, lat: Float64Array) => Measured {
+  const meetings = pieceMeetings(border)
+  const nearestOf = isOwnZoneOnly(border) ? ownZoneSearch(border) : undefined
+  return (lon, lat) => {
+    const order = hilbertOrder(lon, lat)
+    const x = picked(lon, order)
+    const y = picked(lat, order)
+    const zone = locateInZones(border.grid, x, y)
+    if (border.outsideZone >= 0) giveOutside(zone, x, y, border.outsideZone)
+    const nearest = nearestOf ? nearestOf(x, y, zone) : nearestInOrder(border.tree, x, y)
+    const measured = roomFor(order.length)
+    for (let k = 0; k < order.length; k++) {
+      const i = order[k]
+      measured.zone[i] = zone[k]
+      measured.distanceMetres[i] = nearest.distanceMetres[k]
+      // the edge that the foot was measured on; the unit's own edge may be another one that meets it at the foot
+      const edge = nearest.edge[k]
+      if (edge < 0) {
+        measured.piece[i] = reasonWithout(x[k], y[k])
+        measured.footLon[i] = Number.NaN
+        measured.footLat[i] = Number.NaN
+        measured.positionMetres[i] = Number.NaN
+        continue
+      }
+      const fraction = nearest.fraction[k]
+      const own = ownEdge(border, meetings, edge, fraction, zone[k])
+      const [footLon, footLat] = pointOfEdge(border.edges, edge, fraction)
+      measured.piece[i] = border.pieceOfEdge[own]
+      measured.footLon[i] = footLon
+      measured.footLat[i] = footLat
+      measured.positionMetres[i] =
+        own === edge ? positionAlong(border, edge, fraction) : positionOfEnd(border, own, footLon, footLat)
+    }
+    return measured
+  }
+}
+
+/** Why a unit has no nearest edge. */
+function reasonWithout(lon: number, lat: number): number {
+  if (Number.isNaN(lon) || Number.isNaN(lat)) return positionMissing
+  return isOnEarth(lon, lat) ? noBorderOfZone : positionOutOfRange
 }
 
 function isOnEarth(lon: number, lat: number): boolean {
@@ -91,40 +155,30 @@ function giveOutside(zone: Int32Array, lon: Float64Array, lat: Float64Array, out
   for (let i = 0; i < zone.length; i++) if (zone[i] === noZone && isOnEarth(lon[i], lat[i])) zone[i] = outsideZone
 }
 
-/** Nearest edges among those of each unit's own zone; of the whole border for units that are not in one zone. */
-function nearestOfOwnZone(
-  border: Border,
-  lon: Float64Array,
-  lat: Float64Array,
-  zone: Int32Array,
-  progress?: (done: number) => void,
-): Nearest {
-  const count = lon.length
-  const nearest = {
-    edge: new Int32Array(count).fill(-1),
-    fraction: new Float64Array(count).fill(Number.NaN),
-    distanceMetres: new Float64Array(count).fill(Number.NaN),
-  }
-  const groups = unitsByZone(zone, border.names.length)
+/**
+ * Nearest edges among those of each unit's own zone; of the whole border for units that are not in one zone.
+ * The search tree of a zone is built when a unit first asks for it.
+ */
+function ownZoneSearch(border: MeasuredBorder): (lon: Float64Array, lat: Float64Array, zone: Int32Array) => Nearest {
   const edgesOfZone = edgesByZone(border)
-  let done = 0
-  groups.forEach((units, own) => {
-    if (units.length === 0) return
-    // the last group: units in no zone or in several
-    const isNowhere = own === border.names.length
-    const edges = isNowhere ? undefined : edgesOfZone[own]
-    const tree = edges ? buildSegmentTree(pickedEdges(border.edges, edges)) : border.tree
-    const found = nearestEdges(tree, picked(lon, units), picked(lat, units))
-    for (let k = 0; k < units.length; k++) {
-      if (found.edge[k] < 0) continue
-      nearest.edge[units[k]] = edges ? edges[found.edge[k]] : found.edge[k]
-      nearest.fraction[units[k]] = found.fraction[k]
-      nearest.distanceMetres[units[k]] = found.distanceMetres[k]
-    }
-    done += units.length
-    progress?.(done)
-  })
-  return nearest
+  const treeOfZone: SegmentTree[] = []
+  return (lon, lat, zone) => {
+    const nearest = nearestRoom(lon.length)
+    unitsByZone(zone, border.names.length).forEach((units, own) => {
+      if (units.length === 0) return
+      // the last group: units in no zone or in several
+      const edges = own === border.names.length ? undefined : edgesOfZone[own]
+      if (edges) treeOfZone[own] ??= buildSegmentTree(pickedEdges(border.edges, edges))
+      const found = nearestInOrder(edges ? treeOfZone[own] : border.tree, picked(lon, units), picked(lat, units))
+      for (let k = 0; k < units.length; k++) {
+        if (found.edge[k] < 0) continue
+        nearest.edge[units[k]] = edges ? edges[found.edge[k]] : found.edge[k]
+        nearest.fraction[units[k]] = found.fraction[k]
+        nearest.distanceMetres[units[k]] = found.distanceMetres[k]
+      }
+    })
+    return nearest
+  }
 }
 
 /** Rows of each zone, and in a last group those of no single zone. */
@@ -141,7 +195,7 @@ function unitsByZone(zone: Int32Array, zones: number): Int32Array[] {
 }
 
 /** Indices of the border's edges on either side of which each zone lies, ascending. */
-export function edgesByZone({ names, pieceOfEdge, untreatedOfPiece, treatedOfPiece }: Border): Int32Array[] {
+export function edgesByZone({ names, pieceOfEdge, untreatedOfPiece, treatedOfPiece }: MeasuredBorder): Int32Array[] {
   const lists = names.map((): number[] => [])
   for (let e = 0; e < pieceOfEdge.length; e++) {
     lists[untreatedOfPiece[pieceOfEdge[e]]].push(e)
@@ -165,10 +219,15 @@ export function picked(values: Float64Array, rows: ArrayLike<number>): Float64Ar
   return few
 }
 
-/** Edges that end where pieces meet: by 2·edge, plus 1 for its end, the first or last edges of the pieces there. */
-type Meetings = ReadonlyMap<number, readonly number[]>
+/** Where pieces meet. */
+interface Meetings {
+  /** By 2·edge, plus 1 for its end: 1 where a piece ends there. */
+  readonly isAt: Uint8Array
+  /** By the same number, the first or last edges of the pieces that meet there. */
+  readonly edges: ReadonlyMap<number, readonly number[]>
+}
 
-function pieceMeetings({ edges, pieceOfEdge }: Border): Meetings {
+function pieceMeetings({ edges, pieceOfEdge }: MeasuredBorder): Meetings {
   const edgesAt = new Map<string, number[]>()
   const endsAt: [string, number][] = []
   const add = (lon: number, lat: number, edge: number, isEnd: 0 | 1) => {
@@ -182,16 +241,19 @@ function pieceMeetings({ edges, pieceOfEdge }: Border): Meetings {
     if (pieceOfEdge[e] !== pieceOfEdge[e - 1]) add(edges.lon0[e], edges.lat0[e], e, 0)
     if (pieceOfEdge[e] !== pieceOfEdge[e + 1]) add(edges.lon1[e], edges.lat1[e], e, 1)
   }
-  return new Map(endsAt.map(([place, end]) => [end, edgesAt.get(place) as number[]]))
+  const isAt = new Uint8Array(2 * pieceOfEdge.length)
+  for (const [, end] of endsAt) isAt[end] = 1
+  return { isAt, edges: new Map(endsAt.map(([place, end]) => [end, edgesAt.get(place) as number[]])) }
 }
 
 /** The edge whose piece the unit belongs to: the nearest, or where pieces meet at the foot, one of its own zone's. */
-function ownEdge(border: Border, meetings: Meetings, edge: number, fraction: number, zone: number): number {
+function ownEdge(border: MeasuredBorder, meetings: Meetings, edge: number, fraction: number, zone: number): number {
   const length = border.lengthMetres[edge]
   const isAtStart = fraction * length < sameFootMetres
   if (!isAtStart && (1 - fraction) * length >= sameFootMetres) return edge
-  const meeting = meetings.get(2 * edge + (isAtStart ? 0 : 1))
-  if (!meeting) return edge
+  const end = 2 * edge + (isAtStart ? 0 : 1)
+  if (meetings.isAt[end] === 0) return edge
+  const meeting = meetings.edges.get(end) as readonly number[]
   for (const candidate of meeting) {
     const piece = border.pieceOfEdge[candidate]
     if (border.untreatedOfPiece[piece] === zone || border.treatedOfPiece[piece] === zone) return candidate
@@ -200,13 +262,18 @@ function ownEdge(border: Border, meetings: Meetings, edge: number, fraction: num
 }
 
 /** Position along the pair's border at a fraction of an edge; short edges are uniform in it to a few centimetres. */
-function positionAlong({ edges, positionMetres, lengthMetres }: Border, e: number, fraction: number): number {
+function positionAlong({ edges, positionMetres, lengthMetres }: MeasuredBorder, e: number, fraction: number): number {
   if (lengthMetres[e] < 1000 || fraction === 1) return positionMetres[e] + fraction * lengthMetres[e]
   const [lon, lat] = pointOfEdge(edges, e, fraction)
   return positionMetres[e] + edgeLengthMetres(edges.lon0[e], edges.lat0[e], lon, lat)
 }
 
-function positionOfEnd({ edges, positionMetres, lengthMetres }: Border, e: number, lon: number, lat: number): number {
+function positionOfEnd(
+  { edges, positionMetres, lengthMetres }: MeasuredBorder,
+  e: number,
+  lon: number,
+  lat: number,
+): number {
   const fromStart = Math.abs(edges.lat0[e] - lat) + Math.abs(Math.sin((edges.lon0[e] - lon) * (Math.PI / 360)))
   const fromEnd = Math.abs(edges.lat1[e] - lat) + Math.abs(Math.sin((edges.lon1[e] - lon) * (Math.PI / 360)))
   return fromStart <= fromEnd ? positionMetres[e] : positionMetres[e] + lengthMetres[e]

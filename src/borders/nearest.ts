@@ -33,37 +33,51 @@ export function nearestEdges(
   const count = lonDegrees.length
   if (latDegrees.length !== count)
     throw new RangeError(`lonDegrees has ${count} points, latDegrees has ${latDegrees.length}`)
-  const nearest = {
-    edge: new Int32Array(count).fill(-1),
-    fraction: new Float64Array(count).fill(Number.NaN),
-    distanceMetres: new Float64Array(count).fill(Number.NaN),
-  }
-  if (tree.pieceCount === 0) return nearest
+  const nearest = nearestRoom(count)
   for (let from = 0; from < count; from += chunkSize) {
     const to = Math.min(count, from + chunkSize)
-    nearestOfChunk(tree, lonDegrees, latDegrees, from, to, nearest)
+    const order = hilbertOrder(lonDegrees.subarray(from, to), latDegrees.subarray(from, to))
+    for (let k = 0; k < order.length; k++) order[k] += from
+    search(tree, lonDegrees, latDegrees, order, nearest)
     progress?.(to)
   }
   return nearest
 }
 
-function nearestOfChunk(
+/** The same for points that follow a Hilbert curve already: each is searched from the answer before it. */
+export function nearestInOrder(tree: SegmentTree, lonDegrees: Float64Array, latDegrees: Float64Array): Nearest {
+  const nearest = nearestRoom(lonDegrees.length)
+  search(tree, lonDegrees, latDegrees, undefined, nearest)
+  return nearest
+}
+
+/** No answer for any point yet. */
+export function nearestRoom(count: number): Nearest {
+  return {
+    edge: new Int32Array(count).fill(-1),
+    fraction: new Float64Array(count).fill(Number.NaN),
+    distanceMetres: new Float64Array(count).fill(Number.NaN),
+  }
+}
+
+/** Searches for the points of `order`, one after the other; for all as they come where there is none. */
+function search(
   tree: SegmentTree,
   lonDegrees: Float64Array,
   latDegrees: Float64Array,
-  from: number,
-  to: number,
+  order: Uint32Array | undefined,
   nearest: Nearest,
 ): void {
+  if (tree.pieceCount === 0) return
   const { origin, pieceEdge } = tree
   const room = searchRoom(tree)
   const { tiePiece, tieDistance, tieFoot } = room
   const point = new Float64Array(3)
-  const order = hilbertOrder(lonDegrees.subarray(from, to), latDegrees.subarray(from, to))
+  const count = order ? order.length : lonDegrees.length
   let start = 0
   let previous = -1
-  for (let k = 0; k < order.length; k++) {
-    const i = from + order[k]
+  for (let k = 0; k < count; k++) {
+    const i = order ? order[k] : k
     const lon = lonDegrees[i]
     const lat = latDegrees[i]
     if (!(Math.abs(lat) <= 90 && Math.abs(lon) < Infinity)) continue

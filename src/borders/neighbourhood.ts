@@ -1,7 +1,8 @@
 /** What else is near a unit's foot: the nearest corner, and the border of another pair of zones that lost. */
-import { type Border, isOwnZoneOnly } from './border.js'
+import type { Border } from './border.js'
 import { edgeArrays, setEdge } from './boundaries.js'
 import { edgesByZone, type Measured, picked, pickedEdges } from './measured.js'
+import { isOwnZoneOnly } from './ownZone.js'
 import { buildSegmentTree, nearestEdges } from './segmentTree.js'
 
 /** Metres from each unit's foot to the nearest corner; Infinity where the border has none, NaN without a foot. */

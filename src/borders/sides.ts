@@ -1,5 +1,6 @@
 /** The side of a unit: by the map, or by the record where the study has a column for it. */
-import { type Border, isOwnZoneOnly } from './border.js'
+import type { Border } from './border.js'
+import { isOwnZoneOnly } from './ownZone.js'
 import { manyZones, noZone } from './zoneGrid.js'
 
 /** `recordZone` of a unit without a record. */

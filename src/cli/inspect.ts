@@ -5,6 +5,7 @@ import type { Study } from '../study/index.js'
 import { count, largeSetAside, repeatedDistances, repeatedPositions, thinLines, unitsBySide } from './doubts.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
 import type { FabricAccount } from './fabricAccount.js'
+import { withGround } from './ground.js'
 import { readInputs, readStudyFile } from './inputs.js'
 import { progressLine } from './progress.js'
 import { sayProblems } from './say.js'
@@ -12,7 +13,11 @@ import { withVariants } from './variantInputs.js'
 
 const linesShown = 20
 
-export async function inspect(file: string): Promise<ExitCode> {
+export interface InspectOptions {
+  readonly workers?: number
+}
+
+export async function inspect(file: string, options: InspectOptions = {}): Promise<ExitCode> {
   const { progress, clear } = progressLine(false)
   const studyFile = await readStudyFile(file)
   if (!studyFile.ok) {
@@ -23,7 +28,8 @@ export async function inspect(file: string): Promise<ExitCode> {
   const readByStudy = await readInputs(studyFile.value, { progress })
   const inputs = readByStudy.ok ? await withVariants(studyFile.value, readByStudy.value, { progress }) : readByStudy
   const { placeStudy } = await import('../analyze.js')
-  const placed = inputs.ok ? placeStudy(study, inputs.value, progress) : inputs
+  const ready = inputs.ok ? await withGround(study, inputs.value, { workers: options.workers, progress }) : inputs
+  const placed = ready.ok ? placeStudy(study, ready.value, progress) : ready
   clear()
   if (!placed.ok) {
     sayProblems(placed.problems)

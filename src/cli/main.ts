@@ -1,6 +1,6 @@
 #!/usr/bin/env node
 /** The command line. Commands load their rooms when they are called, so that help and version come at once. */
-import { Command, CommanderError } from 'commander'
+import { Command, CommanderError, InvalidArgumentError, Option } from 'commander'
 import { type ExitCode, exitCodes } from './exitCodes.js'
 import { say, sayFault, sayProblems, systemProblem } from './say.js'
 import { packageVersion } from './version.js'
@@ -51,12 +51,14 @@ function commands(done: (code: ExitCode) => void): Command {
     )
     .option('--quiet', 'print nothing but problems')
     .option('--json', 'print results.json and nothing else')
+    .addOption(workersOption())
     .action(async (study, options) => done(await (await import('./run.js')).run(study, options)))
   program
     .command('inspect')
     .description('everything that can be known to be wrong or doubtful before estimating')
     .argument('<study>', 'study file (YAML or JSON)')
-    .action(async (study) => done(await (await import('./inspect.js')).inspect(study)))
+    .addOption(workersOption())
+    .action(async (study, options) => done(await (await import('./inspect.js')).inspect(study, options)))
   program
     .command('measure')
     .description('only the placement: zone, line, piece, signed distance and foot point of every unit')
@@ -68,6 +70,7 @@ function commands(done: (code: ExitCode) => void): Command {
     .option('--dose <property>', 'numeric property of the zones, instead of --treated: the higher side is treated')
     .option('--unit <unit>', 'm, km, ft or mi', 'm')
     .requiredOption('--out <file>', 'table to write (.csv, .parquet or .geojson)')
+    .addOption(workersOption())
     .action(async (records, options) => done(await (await import('./measure.js')).measure(records, options)))
   program
     .command('plan')
@@ -76,6 +79,19 @@ function commands(done: (code: ExitCode) => void): Command {
     .option('--json', 'print the plan as JSON, with power curves')
     .action(async (study, options) => done(await (await import('./plan.js')).plan(study, options)))
   return program
+}
+
+/** The answers are the same whatever it is. */
+function workersOption(): Option {
+  return new Option(
+    '--workers <number>',
+    'threads that measure units on the ground (default: one for each core, at most 8, where units are many)',
+  ).argParser((text) => {
+    const workers = Number(text)
+    if (!(Number.isInteger(workers) && workers >= 1 && workers <= 64))
+      throw new InvalidArgumentError('Write a whole number from 1 to 64.')
+    return workers
+  })
 }
 
 /** Help and version end well; any other complaint of the parser is one line. */

@@ -7,6 +7,7 @@ import type { Checked, Problem } from '../problem.js'
 import type { Table } from '../records/index.js'
 import type { Study } from '../study/index.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
+import { withGround } from './ground.js'
 import { readInputs } from './inputs.js'
 import { measuredColumns } from './measuredColumns.js'
 import { measureStudy } from './measureStudy.js'
@@ -23,6 +24,7 @@ export interface MeasureOptions {
   readonly dose?: string
   readonly unit: string
   readonly out: string
+  readonly workers?: number
 }
 
 export async function measure(records: string, options: MeasureOptions): Promise<ExitCode> {
@@ -32,7 +34,8 @@ export async function measure(records: string, options: MeasureOptions): Promise
   if (!study.ok || problems.length > 0) return refuse(problems)
   const inputs = await readInputs({ study: study.value, file: './measure', paths: [] }, { progress, all: true })
   const { placeStudy } = await import('../analyze.js')
-  const placed: Checked<Placed> = inputs.ok ? placeStudy(study.value, inputs.value, progress) : inputs
+  const ready = inputs.ok ? await withGround(study.value, inputs.value, { workers: options.workers, progress }) : inputs
+  const placed: Checked<Placed> = ready.ok ? placeStudy(study.value, ready.value, progress) : ready
   clear()
   if (!inputs.ok || !placed.ok) return refuse(placed.ok ? [] : placed.problems.map(inOptions))
   const { table } = inputs.value

@@ -1,6 +1,7 @@
 /** `scarp run`: the whole job, from a study file to a results folder. */
 import type { Results } from '../results.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
+import { withGround } from './ground.js'
 import { readInputs, readStudyFile } from './inputs.js'
 import { defaultOutFolder, outFolderProblems, resultNames } from './outFolder.js'
 import { progressLine } from './progress.js'
@@ -15,6 +16,7 @@ export interface RunOptions {
   readonly out?: string
   readonly quiet?: boolean
   readonly json?: boolean
+  readonly workers?: number
 }
 
 export async function run(file: string, options: RunOptions): Promise<ExitCode> {
@@ -35,7 +37,8 @@ export async function run(file: string, options: RunOptions): Promise<ExitCode> 
   }
 
   const { analyze } = await import('../analyze.js')
-  const analysis = analyze(study, inputs.value, { version: packageVersion(), started, progress })
+  const ready = await withGround(study, inputs.value, { workers: options.workers, progress })
+  const analysis = ready.ok ? analyze(study, ready.value, { version: packageVersion(), started, progress }) : ready
   if (!analysis.ok) {
     clear()
     return refuse(analysis.problems)
