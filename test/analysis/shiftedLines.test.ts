@@ -13,11 +13,12 @@ const halves = [zone('West', box(at, -6000, 0, 0, 8000)), zone('East', box(at, 0
 interface Draw {
   readonly outcome?: (east: number, north: number) => number
   readonly lines?: readonly string[]
+  readonly rest?: readonly string[]
   readonly reversed?: boolean
 }
 
 /** Noise of variance 1 over both halves. */
-function draw(seed: number, { outcome = () => 0, lines = [], reversed = false }: Draw = {}): GroundStudy {
+function draw(seed: number, { outcome = () => 0, lines = [], rest = [], reversed = false }: Draw = {}): GroundStudy {
   const random = seededRandom(seed)
   const points: Point[] = []
   const y = new Float64Array(8000)
@@ -26,7 +27,7 @@ function draw(seed: number, { outcome = () => 0, lines = [], reversed = false }:
     points.push(at(east, north))
     y[i] = random.normal() + outcome(east, north)
   }
-  return groundStudy(reversed ? [...halves].reverse() : halves, ['East'], points, y, { lines })
+  return groundStudy(reversed ? [...halves].reverse() : halves, ['East'], points, y, { lines, rest })
 }
 
 function checked({ study, inputs }: GroundStudy, metres?: readonly number[]) {
@@ -81,9 +82,9 @@ describe('shifted lines', () => {
   })
 
   it('use units of one side alone: the jump at the real border does not reach them', () => {
-    // a jump of 100, 300 m away
+    // a jump of 100, 300 m away from a line with a bandwidth of 600 m
     const outcome = (east: number) => (east > 0 ? 100 : 0)
-    const { exhibit } = checked(draw(3, { outcome }), [300])
+    const { exhibit } = checked(draw(3, { outcome, rest: ['estimation: {bandwidth: 600}'] }), [300])
     expect(exhibit?.shifted.length).toBe(2)
     for (const { estimate, standard_error } of exhibit?.shifted ?? []) {
       expect(Math.abs(estimate)).toBeLessThan(4 * standard_error)

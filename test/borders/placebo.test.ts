@@ -48,8 +48,15 @@ describe('borders between zones of equal status', () => {
   })
 
   it('has the corners that the real border makes, too', () => {
-    // nine inner points of the grid; three of them lie on the real border
+    // the nine inner points of the grid
     expect(border.corners.length).toBe(9)
+    // A | B ends where C, which is treated, runs past both
+    const past = [
+      zone('A', box(at, 0, 0, 2000, 2000)),
+      zone('B', box(at, 0, 2000, 2000, 4000)),
+      zone('C', box(at, 2000, 0, 4000, 4000)),
+    ]
+    expect(placebo(past, { treated: ['C'] }).corners.map(({ zones }) => zones)).toEqual([['A', 'B', 'C']])
   })
 
   it('serves units of its own two zones, side by zone', () => {

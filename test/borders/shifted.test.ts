@@ -240,6 +240,28 @@ describe('a line shifted on real ground', () => {
     expect(Math.abs(total(shifted) / (8000 + island) - 1)).toBeLessThan(0.003)
   })
 
+  it('holds the land that is nearer than the distance, among islands at random', () => {
+    const random = seeded(21)
+    const islands = Array.from({ length: 40 }, (_, i) => {
+      const [x, y] = [(i % 8) * 1500 + 600 * random(), Math.floor(i / 8) * 1500 + 600 * random()]
+      return box(at, x, y, x + 200 + 500 * random(), y + 200 + 500 * random())
+    })
+    const sea = zone('Sea', box(at, -3000, -3000, 15_000, 11_000), ...islands)
+    const land = islands.map((ring, i) => zone(`Island ${i}`, ring))
+    const names = land.map(({ properties }) => String(properties?.name))
+    for (const metres of [250, 420, 480, 520]) {
+      const shifted = shiftedOf([sea, ...land], names, 'untreated', metres)
+      // where curves about two islands all but touch, the grid's squares are too coarse for what lies between
+      expect(shifted.errorMetres).toBeLessThan(0.05 * metres)
+      const points = Array.from({ length: 20_000 }, () => at(14_000 * random() - 1000, 9000 * random() - 1000))
+      const { zones, realMetres } = placed(shifted, points)
+      const wrong = points.filter(
+        (_, i) => Math.abs(realMetres[i] - metres) > 0.02 * metres && (zones[i] === 'near') !== realMetres[i] < metres,
+      )
+      expect(wrong).toEqual([])
+    }
+  })
+
   it('takes the land outside for untreated where the study does', () => {
     const only = [zone('Town', box(at, 0, 0, 4000, 4000))]
     const shifted = shiftedOf(only, ['Town'], 'untreated', 500, { outside: 'untreated' })
