@@ -5,24 +5,17 @@
  * q = p+1, c = Σ a_{0,i} x_i^{p+1}. Residuals come from the order-p fit at h, and from the order-q fit at b.
  */
 import type { Bandwidths } from './bandwidth.js'
-import { type Inference, infer, satterthwaite } from './inference.js'
-import { type Influence, influenceByKey, influenceOfUnits, varianceOf } from './influence.js'
+import type { Inference } from './inference.js'
+import type { Influence } from './influence.js'
 import type { Kernel } from './kernel.js'
+import { type InferenceOptions, type LinearEstimate, linearEstimate } from './linearEstimate.js'
 import { addWeights, coefficientOf, fitLocal, functional, type LocalFit, responseOf } from './localPolynomial.js'
 import { neighbourResidualsOf } from './neighbours.js'
 import { type BySide, distinctWithin, type Sample, type Side } from './sample.js'
-import { negativeVariance, placesFor } from './spatial.js'
-import type { SpatialPlaces } from './spatialPairs.js'
-import { clusterFactor, countClusters, scaledResiduals, type Variance } from './variance.js'
 
-export interface JumpOptions {
+export interface JumpOptions extends InferenceOptions {
   readonly order: number
   readonly kernel: Kernel
-  readonly variance: Variance
-  readonly reference: 't' | 'normal'
-  readonly level: number
-  /** Where the variance is spatial: the units of the table, by row, with the cutoff. */
-  readonly spatial?: SpatialPlaces
 }
 
 export interface JumpFit {
@@ -35,7 +28,10 @@ export interface JumpFit {
   readonly corrected: Inference
   /** Of the corrected estimate. */
   readonly influence: Influence
+  /** Of the corrected estimate; where two kinds of clusters cross, of the kind that has fewer. */
   readonly clusters?: number
+  /** By the weights of the corrected estimate (clustersEffective.ts). */
+  readonly effectiveClusters?: number
   /** Distinct distances within h, counted to 10. */
   readonly distinct: BySide<number>
   /** The order-p fits at h, for drawing. */
@@ -56,7 +52,8 @@ interface SideFit {
 
 /**
  * Estimates at given bandwidths; what can't be estimated has a reason that names the side. `neighbours` are the
- * sample's neighbour residuals, where the caller has them.
+ * sample's neighbour residuals, where the caller has them. `few-clusters` sets b = h: the corrected estimate is then one
+ * regression of order q; where lines have levels of their own, with those levels fitted in it.
  */
 export function jumpAt(
   sample: Sample,
@@ -65,6 +62,7 @@ export function jumpAt(
   neighbours?: BySide<Float64Array>,
 ): Estimated {
   const sides: SideFit[] = []
+  if (options.variance === 'few-clusters') bandwidths = { h: bandwidths.h, b: bandwidths.h }
   const fromNeighbours = options.variance === 'neighbours' ? (neighbours ?? neighbourResidualsOf(sample)) : undefined
   for (const name of ['untreated', 'treated'] as const) {
     const fitted = fitSide(sample, name, bandwidths, options, fromNeighbours?.[name])
@@ -90,6 +88,7 @@ export function jumpAt(
       corrected: corrected.inference,
       influence: corrected.influence,
       clusters: corrected.clusters,
+      effectiveClusters: corrected.effectiveClusters,
       distinct: {
         untreated: distinctWithin(left.side.t, left.main.count, 10),
         treated: distinctWithin(right.side.t, right.main.count, 10),
@@ -136,40 +135,12 @@ function inferenceOf(
   which: 'plain' | 'corrected',
   options: JumpOptions,
   repeats: boolean,
-): { inference: Inference; influence: Influence; clusters?: number } | string {
-  const { variance } = options
-  const weights = sides.map((part) => part[which])
-  const order = which === 'plain' ? options.order : options.order + 1
-  let estimate = 0
-  const psi = sides.map((part, s) => {
-    const l = weights[s]
-    for (let i = 0; i < l.length; i++) estimate += l[i] * part.side.y[i]
-    const fit = which === 'plain' ? part.main : part.bias
-    const residuals = part.neighbours ?? scaledResiduals(part.side, fit, l.length, variance)
-    const values = new Float64Array(l.length)
-    for (let i = 0; i < l.length; i++) values[i] = l[i] * residuals[i]
-    return values
-  })
-  let degreesOfFreedom = satterthwaite(weights)
-  let clusters: number | undefined
-  if (variance === 'clusters') {
-    const counted = countClusters(
-      weights,
-      sides.map((part) => part.side),
-    )
-    clusters = counted.clusters
-    if (clusters < 2) return `only ${clusters} cluster near the line, a clustered variance needs 2`
-    const factor = clusterFactor(clusters, counted.units, order)
-    if (!(factor > 0)) return `only ${counted.units} units near the line, too few for a clustered variance`
-    for (const side of psi) for (let i = 0; i < side.length; i++) side[i] *= Math.sqrt(factor)
-    degreesOfFreedom = clusters - 1
-  }
-  const keys = sides.map((part) => (variance === 'clusters' ? (part.side.cluster as Int32Array) : part.side.unit))
-  const sumByKey = variance === 'clusters' || repeats
-  const influence = sumByKey ? influenceByKey(keys, psi) : influenceOfUnits(keys, psi)
-  const places = placesFor(options)
-  const spread = varianceOf(influence, places)
-  if (places && spread < 0) return negativeVariance(places)
-  const reference = options.reference === 't' ? degreesOfFreedom : Number.POSITIVE_INFINITY
-  return { inference: infer(estimate, spread, reference, options.level), influence, clusters }
+): LinearEstimate | string {
+  const parts = sides.map(({ side, main, bias, neighbours, ...weights }) => ({
+    side,
+    fit: which === 'plain' ? main : bias,
+    weights: weights[which],
+    neighbours,
+  }))
+  return linearEstimate(parts, options, repeats)
 }

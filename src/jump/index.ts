@@ -8,6 +8,7 @@ export {
   type Chosen,
   pilotBandwidth,
 } from './bandwidth.js'
+export { type CrossedClusters, crossClusters } from './clustersCrossed.js'
 export { type Estimated, type JumpFit, type JumpOptions, jumpAt } from './estimate.js'
 export { type Inference, infer, satterthwaite } from './inference.js'
 export { covarianceMatrix, type Influence, varianceOf } from './influence.js'

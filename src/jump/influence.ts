@@ -6,6 +6,7 @@
  * clusters that straddle lines are accounted for everywhere.
  */
 
+import { shrinkToDefinite } from './definite.js'
 import { spatialCovariance, spatialVariance } from './spatial.js'
 import type { SpatialPlaces } from './spatialPairs.js'
 
@@ -13,6 +14,11 @@ import type { SpatialPlaces } from './spatialPairs.js'
 export interface Influence {
   readonly key: Int32Array
   readonly psi: Float64Array
+  /**
+   * Where two kinds of clusters cross: the influence by cluster of each kind. Key and psi are then those of pairs, and
+   * covariances are V_1 + V_2 − V_12 (clustersCrossed.ts).
+   */
+  readonly crossed?: { readonly first: Influence; readonly second: Influence }
 }
 
 /** Joins the sides of an estimate whose keys are all different: no summing is needed. */
@@ -60,10 +66,12 @@ function sumDensely(keys: readonly Int32Array[], psi: readonly Float64Array[], s
 
 /**
  * Variance: the covariance of an estimate with itself. With places, keys are rows of the table and products of
- * neighbouring units count too; then it may be negative.
+ * neighbouring units count too; then, and where clusters cross, it may be negative.
  */
 export function varianceOf(influence: Influence, spatial?: SpatialPlaces): number {
-  return spatial ? spatialVariance(influence, spatial) : sumOfSquares(influence.psi)
+  const { psi, crossed } = influence
+  if (crossed) return sumOfSquares(crossed.first.psi) + sumOfSquares(crossed.second.psi) - sumOfSquares(psi)
+  return spatial ? spatialVariance(influence, spatial) : sumOfSquares(psi)
 }
 
 /** Σ ψ², in blocks of 4,096. */
@@ -81,13 +89,15 @@ export function sumOfSquares(psi: Float64Array): number {
 /**
  * Covariance matrix of several estimates, row-major L×L. Work goes with the number of shared keys, so thousands of
  * lines without shared keys cost no more than their own influence values. With places, keys are rows of the table and
- * work goes with the pairs of neighbours.
+ * work goes with the pairs of neighbours. Where clusters cross in one, they do in all.
  */
 export function covarianceMatrix(
   influences: readonly Influence[],
   spatial?: SpatialPlaces,
 ): { matrix: Float64Array; isDiagonal: boolean } {
   if (spatial) return spatialCovariance(influences, spatial)
+  const crossed = influences.flatMap((influence) => influence.crossed ?? [])
+  if (crossed.length > 0) return crossedCovariance(influences, crossed)
   const count = influences.length
   if (count === 1) return { matrix: Float64Array.of(varianceOf(influences[0])), isDiagonal: true }
   const matrix = new Float64Array(count * count)
@@ -118,5 +128,20 @@ export function covarianceMatrix(
       }
     }
   }
+  return { matrix, isDiagonal }
+}
+
+/** V_1 + V_2 − V_12, covariances shrunk by the least that leaves no combination a negative variance. */
+function crossedCovariance(
+  influences: readonly Influence[],
+  crossed: readonly { readonly first: Influence; readonly second: Influence }[],
+): { matrix: Float64Array; isDiagonal: boolean } {
+  if (crossed.length !== influences.length) throw new Error('clusters cross in some of the estimates only')
+  const first = covarianceMatrix(crossed.map((one) => one.first))
+  const second = covarianceMatrix(crossed.map((one) => one.second))
+  const both = covarianceMatrix(influences.map(({ key, psi }) => ({ key, psi })))
+  const matrix = first.matrix.map((value, i) => value + second.matrix[i] - both.matrix[i])
+  const isDiagonal = first.isDiagonal && second.isDiagonal
+  if (!isDiagonal) shrinkToDefinite(matrix, influences.length)
   return { matrix, isDiagonal }
 }

@@ -10,7 +10,7 @@ import { kernelCurve, type LocalFit } from './localPolynomial.js'
 import type { Side } from './sample.js'
 import { evaluate, legendreInZ } from './zPolynomial.js'
 
-export type Variance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters' | 'spatial'
+export type Variance = 'hc0' | 'hc1' | 'hc2' | 'hc3' | 'neighbours' | 'clusters' | 'few-clusters' | 'spatial'
 
 /**
  * Residual factor of each of the first `count` units: ψ_i = l_i · value.
@@ -52,11 +52,11 @@ function leverageShape(fit: LocalFit): Float64Array {
   return shape
 }
 
-/** Number of clusters among the units of non-zero weight, and the number of those units. */
+/** The clusters among the units of non-zero weight, their number, and the number of those units. */
 export function countClusters(
   weights: readonly Float64Array[],
   sides: readonly Side[],
-): { clusters: number; units: number } {
+): { met: ReadonlySet<number>; clusters: number; units: number } {
   const seen = new Set<number>()
   let units = 0
   for (let s = 0; s < sides.length; s++) {
@@ -68,7 +68,7 @@ export function countClusters(
       seen.add(codes[i])
     }
   }
-  return { clusters: seen.size, units }
+  return { met: seen, clusters: seen.size, units }
 }
 
 /** G/(G−1) · (n−1)/(n−k), k = 2(order+1) for the two sides together. */

@@ -64,7 +64,7 @@ export function poolLines(sample: Sample, lines: number, options: PoolOptions): 
     used = freed.sample
     withoutEffect = freed.dropped
   }
-  const estimated = jumpAt(used, bandwidths, options)
+  const estimated = jumpAt(used, bandwidths, { ...options, hasLineLevels: options.fixedEffects })
   if (!estimated.ok) return estimated
   const weights = kernelWeightByLine(used, bandwidths.h, options.kernel, lines)
   const total = weights.reduce((sum, weight) => sum + weight, 0)
