@@ -1,6 +1,6 @@
 /** Lines shifted into either side, where nothing changes: the study's estimate made again on each. */
 import { type BorderSide, eligible, measureUnits, type ShiftedBorder, shiftedBorder } from '../borders/index.js'
-import { holmAdjusted } from '../checks/index.js'
+import { holm } from '../checks/index.js'
 import type { Placement } from '../placement.js'
 import { numbersOf } from '../records/index.js'
 import type { CheckResult } from '../results.js'
@@ -70,7 +70,7 @@ export function shiftedLines(
       else made.push(effect)
     }
   }
-  const adjusted = holmAdjusted(made.map(({ p }) => p))
+  const adjusted = holm(made.map(({ p }) => p))
   const shifted = made.map((effect, i): ShiftedEffect => ({ ...effect, p_holm: adjusted[i] }))
   const checks = [
     ...shifted.map((effect) => checkOf(effect, study.estimation.level)),

@@ -1,6 +1,5 @@
 /** Door of the checks room: whether what a study rests on holds, and what it could find. */
 
-export { holmAdjusted } from './holm.js'
 export { type Moran, type MoranOutcome, moran, type Neighbourhood } from './moran.js'
 export { benjaminiHochberg, holm } from './multiplicity.js'
 export {
