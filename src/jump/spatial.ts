@@ -5,7 +5,7 @@
  * a variance may come out negative: then there is none. Where the variances are positive but that of some combination of the
  * estimates is not, covariances are shrunk by the least that mends it.
  */
-import { argsort } from '../math/index.js'
+import { argsortBy } from '../math/index.js'
 import { shrinkToDefinite } from './definite.js'
 import type { Influence } from './influence.js'
 import { eachNeighbourhood, type SpatialPlaces } from './spatialPairs.js'
@@ -78,7 +78,7 @@ export function spatialCovariance(
 function byPlace(influences: readonly Influence[], { placeOfUnit }: SpatialPlaces): ByPlace {
   const total = influences.reduce((sum, { key }) => sum + key.length, 0)
   const place = new Float64Array(total)
-  const holder = new Int32Array(total)
+  const holder = new Float64Array(total)
   const value = new Float64Array(total)
   let filled = 0
   influences.forEach(({ key, psi }, line) => {
@@ -90,7 +90,8 @@ function byPlace(influences: readonly Influence[], { placeOfUnit }: SpatialPlace
       value[filled++] = psi[i]
     }
   })
-  const order = argsort(place)
+  // by value last, so that the sums do not depend on the order of rows
+  const order = argsortBy([place, holder, value])
   const visited = new Int32Array(total)
   const start = new Int32Array(total + 1)
   const estimate = new Int32Array(total)

@@ -134,6 +134,36 @@ describe('the spatial variance', () => {
     expect(again([...forwards].reverse())).toEqual(again(forwards))
   })
 
+  it('does not change by a bit with the order of rows where many units stand at one place and serve two lines', () => {
+    const random = seededRandom(8)
+    const count = 240
+    const at = Array.from({ length: count }, (_, i) => Math.floor(i / 8))
+    const lon = Float64Array.from(at, (place) => 12 + 0.004 * place)
+    const x = Float64Array.from(at, () => 2 * random.next() - 1)
+    const y = x.map((value) => value + random.normal())
+    const again = (order: readonly number[]) => {
+      const twice = [...order, ...order]
+      const places = spatialPlaces(
+        Float64Array.from(order, (i) => lon[i]),
+        Float64Array.from(order, () => 51),
+        cutoffMetres,
+      )
+      const entries = {
+        x: Float64Array.from(twice, (i, k) => (k < count ? x[i] : -x[i] / 2)),
+        treated: Uint8Array.from(twice, (i, k) => (x[i] > 0 === k < count ? 1 : 0)),
+        unit: Int32Array.from(twice, (_, k) => k % count),
+        y: Float64Array.from(twice, (i) => y[i]),
+        repeats: true,
+      }
+      const made = jumpAt(buildSample(entries), bandwidths, { ...options, spatial: places })
+      return made.ok ? made.jump.corrected : made.reason
+    }
+    const forwards = [...x.keys()]
+    const known = again(forwards)
+    expect(known).toHaveProperty('standardError')
+    for (const step of [7, 11, 13, 101, 239]) expect(again(forwards.map((i) => (i * step) % count))).toEqual(known)
+  })
+
   it('may be negative for noise on a lattice: the kernel is no covariance in the plane', () => {
     // 36 places 0.7 cutoffs apart; the eigenvector of the least eigenvalue of the matrix of κ (ml-matrix)
     const step = (0.7 * cutoffMetres) / 111_195
