@@ -1,12 +1,12 @@
 /**
  * Are the residuals of neighbours alike? Moran's I with its expectation and variance under randomisation.
  * Source: Moran 1950, Biometrika; Cliff & Ord 1981, Spatial Processes, sections 1.5 and 2.3.
- * I = (n/S0) Σ_ij w_ij z_i z_j / Σ z_i², z the residuals less their mean, w_ii = 0. Weights are w_ij = max(0, 1 − d_ij/D),
- * those of the spatial variance (METHODS section 4), so that Σ w_ij z_i z_j is what that variance adds; or 1 for the k
- * nearest. They are not row-standardised: a unit with many neighbours counts for more, as it does in the variance.
+ * I = (n/S0) Σ_ij w_ij z_i z_j / Σ z_i², z the residuals less their mean, w_ii = 0. Weights are κ_ij = max(0, 1 − d_ij/D), as in
+ * the spatial variance (METHODS section 4), or 1 for the k nearest; each unit's are divided by their sum, so that I is the
+ * slope of the mean of a unit's neighbours on its own residual. Units without a neighbour count in n and in Σ z² alone.
  * Residuals of a fit are taken as they are: with few units per coefficient they are less alike than the noise.
  */
-import { eachNeighbourhood, spatialPlaces } from '../jump/index.js'
+import { eachNeighbourhood, type SpatialPlaces, spatialPlaces } from '../jump/index.js'
 import { normalUpper } from '../math/index.js'
 import { nearestUnits } from './nearestUnits.js'
 
@@ -93,61 +93,77 @@ function lessMean(values: Float64Array): Float64Array {
   return values.map((value) => value - mean)
 }
 
-/** Units that stand at one place are neighbours with w = 1, and are summed before the pairs of places are visited. */
+/** Units that stand at one place have κ = 1, and are summed before the pairs of places are visited, once for rows and once for sums. */
 function sumsWithin(z: Float64Array, lon: Float64Array, lat: Float64Array, withinMetres: number): WeightSums {
   const places = spatialPlaces(lon, lat, withinMetres)
   const units = new Float64Array(places.count)
   const total = new Float64Array(places.count)
-  let cross = 0
+  const own = new Float64Array(places.count)
   for (let i = 0; i < z.length; i++) {
     const place = places.placeOfUnit[i]
     if (place < 0) throw new RangeError(`unit ${i} has no position`)
     units[place]++
     total[place] += z[i]
-    cross -= z[i] * z[i]
+    own[place] += z[i] * z[i]
   }
-  let [s0, squares, pairs] = [0, 0, 0]
-  const row = units.map((count) => count - 1)
-  const visited = Int32Array.from(units.keys())
-  eachNeighbourhood(places, visited, (at, later, kappa, found) => {
-    const others = units[at] - 1
-    let [sum, weight, weightSquare, near] = [0, others, others, others]
-    for (let k = 0; k < found; k++) {
-      const other = later[k]
-      sum += kappa[k] * total[other]
-      weight += 2 * kappa[k] * units[other]
-      weightSquare += 2 * kappa[k] * kappa[k] * units[other]
-      near += 2 * units[other]
-      row[at] += kappa[k] * units[other]
-      row[other] += kappa[k] * units[at]
-    }
-    cross += total[at] * (total[at] + 2 * sum)
-    s0 += units[at] * weight
-    squares += units[at] * weightSquare
-    pairs += units[at] * near
+  const row = rowSums(places, units)
+  const share = row.map((sum) => (sum > 0 ? 1 / sum : 0))
+  const received = units.map((count, place) => (count - 1) * share[place])
+  let [cross, s0, s1, s2, pairs] = [0, 0, 0, 0, 0]
+  eachPair(places, (a, b, kappa) => {
+    const both = share[a] + share[b]
+    cross += kappa * total[a] * total[b] * both
+    s1 += units[a] * units[b] * (kappa * both) ** 2
+    received[a] += kappa * units[b] * share[b]
+    received[b] += kappa * units[a] * share[a]
+    pairs += 2 * units[a] * units[b]
   })
-  let s2 = 0
-  for (let place = 0; place < places.count; place++) s2 += units[place] * (2 * row[place]) ** 2
-  return { cross, s0, s1: 2 * squares, s2, pairs }
+  for (let place = 0; place < places.count; place++) {
+    const [count, given] = [units[place], row[place] > 0 ? 1 : 0]
+    cross += share[place] * (total[place] * total[place] - own[place])
+    s0 += count * given
+    s1 += 2 * count * (count - 1) * share[place] * share[place]
+    s2 += count * (given + received[place]) ** 2
+    pairs += count * (count - 1)
+  }
+  return { cross, s0, s1, s2, pairs }
 }
 
-/** w = 1 for the nearest, which need not be mutual. */
+/** Σ_j κ_ij of a unit of each place. */
+function rowSums(places: SpatialPlaces, units: Float64Array): Float64Array {
+  const row = units.map((count) => count - 1)
+  eachPair(places, (a, b, kappa) => {
+    row[a] += kappa * units[b]
+    row[b] += kappa * units[a]
+  })
+  return row
+}
+
+function eachPair(places: SpatialPlaces, visit: (a: number, b: number, kappa: number) => void): void {
+  const all = Int32Array.from({ length: places.count }, (_, place) => place)
+  eachNeighbourhood(places, all, (at, later, kappa, found) => {
+    for (let k = 0; k < found; k++) visit(at, later[k], kappa[k])
+  })
+}
+
+/** The nearest of a unit share its row of weights; they need not be mutual. */
 function sumsOfNearest(z: Float64Array, lon: Float64Array, lat: Float64Array, nearest: number): WeightSums {
   const { start, other } = nearestUnits(lon, lat, nearest)
-  const chosen = new Float64Array(z.length)
-  let [cross, mutual] = [0, 0]
+  const received = new Float64Array(z.length)
+  let [cross, s1] = [0, 0]
   for (let i = 0; i < z.length; i++) {
-    let sum = 0
+    const share = 1 / (start[i + 1] - start[i])
+    s1 += share
     for (let k = start[i]; k < start[i + 1]; k++) {
-      sum += z[other[k]]
-      chosen[other[k]]++
-      if (holds(other, start[other[k]], start[other[k] + 1], i)) mutual++
+      const j = other[k]
+      cross += share * z[i] * z[j]
+      received[j] += share
+      if (holds(other, start[j], start[j + 1], i)) s1 += share / (start[j + 1] - start[j])
     }
-    cross += z[i] * sum
   }
   let s2 = 0
-  for (let i = 0; i < z.length; i++) s2 += (start[i + 1] - start[i] + chosen[i]) ** 2
-  return { cross, s0: other.length, s1: other.length + mutual, s2, pairs: other.length }
+  for (let i = 0; i < z.length; i++) s2 += (1 + received[i]) ** 2
+  return { cross, s0: z.length, s1, s2, pairs: other.length }
 }
 
 /** Is the value among the ascending ones between `from` and `to`? */
