@@ -13,7 +13,7 @@ export interface JointFit {
   readonly estimate: number
   /** l by unit of each side's window, untreated first. */
   readonly weights: readonly Float64Array[]
-  readonly regression: ClusteredRegression
+  readonly regression: Omit<ClusteredRegression, 'cluster'>
 }
 
 const smallestCondition = 1e-13
@@ -59,7 +59,7 @@ export function jointFit(windows: readonly SideWindow[], hasLineLevels: boolean)
   return {
     estimate,
     weights: [l.subarray(0, first), l.subarray(first)],
-    regression: { columns, rows, k, l, residual, cluster: clusterOf(windows, n), line },
+    regression: { columns, rows, k, l, residual, line },
   }
 }
 
@@ -126,15 +126,4 @@ function residualOf(
     }
   }
   return residual
-}
-
-function clusterOf(windows: readonly SideWindow[], n: number): Int32Array {
-  const cluster = new Int32Array(n)
-  let at = 0
-  for (const { side, fit } of windows) {
-    if (side.cluster === null) throw new Error('the clustered variance needs cluster codes')
-    cluster.set(side.cluster.subarray(0, fit.count), at)
-    at += fit.count
-  }
-  return cluster
 }

@@ -58,9 +58,21 @@ export function fewClustersSpread(
 ): (ClusteredSpread & { readonly estimate: number }) | string {
   const joint = jointFit(windows, hasLineLevels)
   if (typeof joint === 'string') return joint
-  const reduced = reducedClusters(joint.regression)
+  const cluster = clustersWithin(windows)
+  const reduced = reducedClusters({ ...joint.regression, cluster })
   if (typeof reduced === 'string') return reduced
   if (reduced.clusters < 2) return 'only 1 cluster near the line, a clustered variance needs 2'
   const codes = windows.map(({ side }) => side.cluster as Int32Array)
   return { ...reduced, estimate: joint.estimate, effectiveClusters: effectiveClusters(joint.weights, codes) }
+}
+
+function clustersWithin(windows: readonly SideWindow[]): Int32Array {
+  const cluster = new Int32Array(windows.reduce((sum, { fit }) => sum + fit.count, 0))
+  let filled = 0
+  for (const { side, fit } of windows) {
+    if (side.cluster === null) throw new Error('the clustered variance needs cluster codes')
+    cluster.set(side.cluster.subarray(0, fit.count), filled)
+    filled += fit.count
+  }
+  return cluster
 }

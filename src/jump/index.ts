@@ -8,6 +8,15 @@ export {
   type Chosen,
   pilotBandwidth,
 } from './bandwidth.js'
+export {
+  type BiasAware,
+  type BiasAwareEstimated,
+  type BiasAwareInterval,
+  type BiasAwareOptions,
+  biasAware,
+  fewDistinct,
+  type SampleAt,
+} from './biasAware.js'
 export { type CrossedClusters, crossClusters } from './clustersCrossed.js'
 export { type Estimated, type JumpFit, type JumpOptions, jumpAt } from './estimate.js'
 export { type Inference, infer, satterthwaite } from './inference.js'

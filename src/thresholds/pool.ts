@@ -48,8 +48,7 @@ export function poolLines(sample: Sample, lines: number, options: PoolOptions): 
   const pick = (on: Sample) => bandwidthsFor(on, options.bandwidth, options)
   let on = sample
   if (options.fixedEffects && options.bandwidth.kind === 'rule') {
-    const pilot = pilotBandwidth(sample, options.kernel, bandwidthRange(sample, options.order))
-    const freed = freeOfEffects(sample, { untreated: pilot, treated: pilot }, lines, options)
+    const freed = freeAtPilot(sample, lines, options)
     if (!freed.ok) return freed
     on = freed.sample
   }
@@ -81,7 +80,19 @@ type Freed =
   | { readonly ok: true; readonly sample: Sample; readonly dropped: number }
   | { readonly ok: false; readonly reason: string }
 
-function freeOfEffects(sample: Sample, h: BySide<number>, lines: number, options: PoolOptions): Freed {
+/** y − γ̂ from the pilot bandwidth, which bandwidths are chosen on. */
+export function freeAtPilot(sample: Sample, lines: number, options: Pick<PoolOptions, 'order' | 'kernel'>): Freed {
+  const pilot = pilotBandwidth(sample, options.kernel, bandwidthRange(sample, options.order))
+  return freeOfEffects(sample, { untreated: pilot, treated: pilot }, lines, options)
+}
+
+/** y − γ̂ from the fit at h; entries of lines without a unit of positive weight are dropped. */
+export function freeOfEffects(
+  sample: Sample,
+  h: BySide<number>,
+  lines: number,
+  options: Pick<PoolOptions, 'order' | 'kernel'>,
+): Freed {
   const fit = fitFixedEffects(sample, h, options.order, options.kernel, lines)
   if (!fit.ok) return fit
   const { effects } = fit
