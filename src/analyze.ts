@@ -190,10 +190,12 @@ function inputFiles({ table, schedule, zones, barriers = [], overlaps = [] }: An
     sha256,
     rows: rowsRead,
   }))
-  const layers = [...(zones ? [zones] : []), ...barriers, ...overlaps].map(({ file, sha256, content }) => ({
+  const layers = [...(zones ? [zones] : []), ...barriers, ...overlaps].map(({ file, sha256, content, facts }) => ({
     file,
     sha256,
     features: (content as { features?: unknown[] }).features?.length ?? 1,
+    ...(facts ? { format: facts.format, crs: facts.crs, crs_from: facts.from } : {}),
+    ...(facts && facts.edgeMetres > 0 ? { edge_m: facts.edgeMetres } : {}),
   }))
   return [...tables, ...layers]
 }

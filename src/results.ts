@@ -37,6 +37,12 @@ export interface InputFile {
   readonly sha256: string
   readonly rows?: number
   readonly features?: number
+  /** Of layers: the format, the coordinate system and who says so. */
+  readonly format?: string
+  readonly crs?: string
+  readonly crs_from?: string
+  /** The farthest that an edge lies from where it was straight in the file's projection, in metres; absent in degrees. */
+  readonly edge_m?: number
 }
 
 export interface PlacementSummary {

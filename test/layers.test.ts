@@ -10,6 +10,7 @@ const mayImport: Readonly<Record<string, readonly string[]>> = {
   math: [],
   study: [],
   records: [],
+  layers: [],
   jump: ['math'],
   borders: ['math'],
   thresholds: ['math', 'jump'],
@@ -21,7 +22,7 @@ const mayImport: Readonly<Record<string, readonly string[]>> = {
   'index.ts': ['analyze.ts', 'math', 'study', 'jump', 'borders', 'thresholds', 'checks', 'results.ts', 'report'],
 }
 const leaves = ['placement.ts', 'problem.ts']
-const nodeFiles = /^(cli\/|records\/files\.ts$|records\/duckdb\/)/
+const nodeFiles = /^(cli\/|layers\/|records\/files\.ts$|records\/duckdb\/)/
 
 interface Import {
   readonly from: string

@@ -10,6 +10,8 @@ export interface LayerInput {
   readonly content: unknown
   /** SHA-256 of the file's bytes, hexadecimal. */
   readonly sha256: string
+  /** How its coordinates were read, where that is known. */
+  readonly facts?: { readonly format: string; readonly crs: string; readonly from: string; readonly edgeMetres: number }
 }
 
 export interface AnalysisInputs {
@@ -48,9 +50,11 @@ export function clusterColumns({ records }: Study): readonly string[] {
   return cluster === undefined ? [] : typeof cluster === 'string' ? [cluster] : cluster
 }
 
-/** The columns of positions, as the study names them or as points bring them. */
-export function positionColumns(study: Study): readonly [string, string] {
-  return study.records.position ?? pointColumns
+/** The columns of positions: as the study names them, as points bring them, or made of a column of WKT. */
+export function positionColumns({ records }: Study): readonly [string, string] {
+  const { position } = records
+  if (typeof position !== 'string') return position ?? pointColumns
+  return [`${position} (longitude)`, `${position} (latitude)`]
 }
 
 /** Equal for studies that read the same table, schedule and zones; which columns of them is left open. */
@@ -118,9 +122,8 @@ function ownColumns(study: Study, scheduleColumns: readonly string[]): WantedCol
   const { line } = study
   let schedule: WantedColumn[] | undefined
   if (line.kind === 'border') {
-    const [lon, lat] = positionColumns(study)
-    ask('number', lon, 'records.position')
-    ask('number', lat, 'records.position')
+    if (typeof study.records.position === 'string') ask('label', study.records.position, 'records.position')
+    else for (const name of positionColumns(study)) ask('number', name, 'records.position')
     ask('label', line.side, 'line.side')
   } else if (line.kind === 'distance') {
     ask('number', line.distance, 'line.distance')

@@ -1,5 +1,5 @@
 /** How the zones of a border study fit together, as `inspect` tells it: boundaries by kind, gaps and overlaps, units in them. */
-import type { AnalysisInputs, Placed } from '../analyze.js'
+import { type AnalysisInputs, type Placed, positionColumns } from '../analyze.js'
 import { borderFit, fabricOf, runnerUps, type Sliver, unitsChangingSide, widestSlivers } from '../borders/index.js'
 import { numbersOf } from '../records/index.js'
 import type { Study } from '../study/index.js'
@@ -26,7 +26,7 @@ export function fabricAccount(study: Study, { table }: AnalysisInputs, placed: P
   }
   const byLabel = [...totals].filter(([, metres]) => metres > 0).map(([label, metres]) => `${label} ${km(metres)}`)
   const { listed, others } = widestSlivers(fabric, sliversShown)
-  const [lon, lat] = (study.records.position ?? ['lon', 'lat']).map((name) => numbersOf(table, name))
+  const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
   const changing = unitsChangingSide(border, fabric, lon, lat)
   const [worst] = borderFit(border, snap)
   const farthest = worst ? Math.max(worst.untreatedMetres, worst.treatedMetres) : 0

@@ -4,14 +4,13 @@
  */
 import { dirname, resolve } from 'node:path'
 import type { AnalysisInputs, LayerInput, Progress } from '../analyze.js'
+import { type Box, boxOf, extentOf, filesBeside, readTextFile, swappedAxes } from '../layers/index.js'
 import type { Checked, Problem } from '../problem.js'
-import type { Column, Table, WantedColumn } from '../records/index.js'
-import type { Study } from '../study/index.js'
-import { readJsonFile, readTextFile } from './textFile.js'
+import { type Column, numbersOf, type Table, type WantedColumn } from '../records/index.js'
+import type { LayerSource, Study } from '../study/index.js'
+import { readRecords } from './records.js'
 
 export const mostStudyBytes = 4_000_000
-/** A JavaScript string holds 2^29 - 24 characters. */
-const mostLayerBytes = 500_000_000
 
 export interface StudyFile {
   readonly study: Study
@@ -27,8 +26,9 @@ export async function readStudyFile(file: string): Promise<Checked<StudyFile>> {
   const { readStudy } = await import('../study/index.js')
   const study = readStudy(text.value.text, file)
   if (!study.ok) return study
-  const named = namedFiles(study.value)
-  const paths = [resolve(file), ...named.map((name) => resolve(dirname(file), name))]
+  const studies = [study.value, ...study.value.variants.map((variant) => variant.study)]
+  const named = [...new Set(studies.flatMap(namedFiles))].map((name) => resolve(dirname(file), name))
+  const paths = [resolve(file), ...named, ...named.flatMap(filesBeside)]
   return { ok: true, value: { study: study.value, file, paths } }
 }
 
@@ -37,7 +37,7 @@ function namedFiles(study: Study): string[] {
   const files = [study.records.file]
   const { line } = study
   if (line.kind === 'score' && line.cutoff.kind === 'schedule') files.push(line.cutoff.file)
-  if (line.kind === 'border') files.push(line.zones, ...[...line.barriers, ...line.overlaps].map((layer) => layer.file))
+  if (line.kind === 'border') files.push(...[line.zones, ...line.barriers, ...line.overlaps].map(({ file }) => file))
   return files
 }
 
@@ -82,7 +82,7 @@ async function readParts({ study, file }: StudyFile, { all }: ReadOptions, probl
   const header = scheduleFile === undefined ? undefined : await headerOf(at(scheduleFile), scheduleFile)
   const wanted = wantedColumns(study, header?.ok ? header.value : [])
   const table = keep(
-    await readTable(at(records.file), {
+    await readRecords(at(records.file), study, {
       wanted: wanted.records,
       keep: records.keep,
       keepAskedBy: 'records.keep',
@@ -100,16 +100,39 @@ async function readParts({ study, file }: StudyFile, { all }: ReadOptions, probl
             : header,
         )
   if (line.kind !== 'border') return { table, schedule, barriers: [], overlaps: [] }
-  const zones = keep(await readLayer(at(line.zones), line.zones, 'line.zones'))
+  const { readGeoLayer } = await import('../layers/index.js')
+  const units = table && (await unitsBox(study, table))
+  const read = async (source: LayerSource, askedBy: string): Promise<LayerInput | undefined> => {
+    const layer = keep(await readGeoLayer(at(source.file), { ...source, shownAs: source.file, askedBy, units }))
+    return layer && { file: source.file, ...layer }
+  }
+  const zones = await read(line.zones, 'line.zones')
+  problems.push(...swapProblems(study, zones, units))
   const readAll = async (key: 'barriers' | 'overlaps') => {
     const layers: LayerInput[] = []
-    for (const [i, { file }] of line[key].entries()) {
-      const layer = keep(await readLayer(at(file), file, `line.${key}[${i}].file`))
+    for (const [i, source] of line[key].entries()) {
+      const layer = await read(source, `line.${key}[${i}].file`)
       if (layer) layers.push(layer)
     }
     return layers
   }
   return { table, zones, barriers: await readAll('barriers'), overlaps: await readAll('overlaps') }
+}
+
+async function unitsBox(study: Study, table: Table): Promise<Box | undefined> {
+  const { positionColumns } = await import('../analyze.js')
+  const [x, y] = positionColumns(study).map((name) => numbersOf(table, name))
+  return boxOf(x, y)
+}
+
+/** Units that would meet the zones with their axes swapped: one of the two files has them the wrong way round. */
+function swapProblems({ records }: Study, zones: LayerInput | undefined, units: Box | undefined): Problem[] {
+  const { features } = (zones?.content ?? {}) as { features?: unknown }
+  const box = Array.isArray(features) ? extentOf(features) : undefined
+  if (!zones || !box || !units || !swappedAxes(box, units)) return []
+  const found = `they meet ${zones.file} only with longitude and latitude swapped`
+  const todo = 'write the longitude column before the latitude column, or longitude before latitude in the zones'
+  return [{ file: records.file, what: 'records.position', found, todo }]
 }
 
 /** Problems of the parts that could be read, where others could not: they are placed with no units at all. */
@@ -142,10 +165,4 @@ function emptyTable(file: string, wanted: readonly WantedColumn[]): Table {
       : { kind, name, codes: new Int32Array(0), labels: [] },
   ])
   return { file, rowsRead: 0, rows: 0, lineOfRow: new Int32Array(0), columns: new Map(columns), sha256: '' }
-}
-
-export async function readLayer(path: string, shownAs: string, askedBy: string): Promise<Checked<LayerInput>> {
-  const layer = await readJsonFile(path, { shownAs, askedBy, mostBytes: mostLayerBytes })
-  if (!layer.ok) return layer
-  return { ok: true, value: { file: shownAs, content: layer.value.content, sha256: layer.value.sha256 } }
 }

@@ -1,5 +1,5 @@
 /** `scarp inspect`: all that can be known to be wrong or doubtful before estimating. */
-import type { AnalysisInputs, Placed } from '../analyze.js'
+import { type AnalysisInputs, type Placed, positionColumns } from '../analyze.js'
 import { numbersOf } from '../records/index.js'
 import type { Study } from '../study/index.js'
 import { count, largeSetAside, repeatedDistances, repeatedPositions, thinLines, unitsBySide } from './doubts.js'
@@ -86,7 +86,7 @@ function doubtsOf(study: Study, { table }: AnalysisInputs, placed: Placed): stri
   const thin = thinLines(placement, unitsBySide(placement))
   const share = largeSetAside(placed.units, table.rows)
   if (study.line.kind !== 'border') return [...thin, ...repeatedDistances(placement), ...share]
-  const [lon, lat] = study.records.position ?? ['lon', 'lat']
+  const [lon, lat] = positionColumns(study)
   return [...thin, ...repeatedPositions(numbersOf(table, lon), numbersOf(table, lat)), ...share]
 }
 

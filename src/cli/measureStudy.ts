@@ -1,4 +1,5 @@
 /** The options of `scarp measure` as a study without outcomes, so that units are placed by the one way there is. */
+import { pointLayer } from '../layers/index.js'
 import type { Checked, Problem } from '../problem.js'
 import type { LengthUnit, Study } from '../study/index.js'
 import type { MeasureOptions } from './measure.js'
@@ -23,7 +24,7 @@ export async function measureStudy(records: string, options: MeasureOptions): Pr
     say('--treated', 'missing', 'name the treated zones: --treated Inner,Harbour, or a numeric property: --dose rate')
   if (!units.includes(options.unit)) say('--unit', `got ${options.unit}`, 'write m, km, ft or mi')
   const position = options.position === undefined ? undefined : namesIn(options.position)
-  if (position === undefined && !/\.geojson$/i.test(records))
+  if (position === undefined && !/\.geojson$/i.test(records) && !pointLayer.test(records))
     say('--position', 'missing', 'name the columns of longitude and latitude: --position lon,lat')
   if (position !== undefined && position.length !== 2)
     say('--position', `got ${options.position}`, 'name two columns, longitude first: --position lon,lat')

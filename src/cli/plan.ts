@@ -1,11 +1,12 @@
 /** `scarp plan`: smallest detectable effects and units needed, before outcomes are seen. */
+
+import { readTextFile } from '../layers/index.js'
 import type { Checked } from '../problem.js'
 import type { Plan } from '../results.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
 import { mostStudyBytes, readInputs, readStudyFile } from './inputs.js'
 import { progressLine } from './progress.js'
 import { say, sayProblems } from './say.js'
-import { readTextFile } from './textFile.js'
 
 export interface PlanOptions {
   readonly json?: boolean

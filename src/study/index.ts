@@ -9,6 +9,7 @@ export type {
   EstimationPart,
   KernelName,
   LayerNear,
+  LayerSource,
   LengthUnit,
   PlanAlone,
   PlanAssumptions,

@@ -114,7 +114,7 @@ function resolveBorder(line: z.infer<typeof borderLine>): BorderLine {
   const unit = line.unit ?? 'm'
   return {
     kind: 'border',
-    zones: line.zones,
+    zones: typeof line.zones === 'string' ? { file: line.zones } : given(line.zones),
     zoneName: line.zone_name ?? 'name',
     ...given({ treated: line.treated, dose: line.dose }),
     outside: line.outside ?? 'set-aside',

@@ -23,6 +23,9 @@ import type { Path } from './source.js'
 const columnNames = listOf(columnName, 'the names of columns')
 const nameOrNames = choose<string | string[]>((value) => (Array.isArray(value) ? columnNames : columnName))
 
+/** EPSG codes look like numbers, and are text. */
+const crsText = textFor('a coordinate system: EPSG:5070')
+
 const oneOrTwoColumns = choose<string | [string, string]>((value) =>
   Array.isArray(value)
     ? leaf<[string, string]>(
@@ -36,15 +39,21 @@ const oneOrTwoColumns = choose<string | [string, string]>((value) =>
 export const records = keyed({
   file: fileName,
   id: columnName.optional(),
-  position: leaf<[string, string]>(
-    'must name two columns',
-    { todo: 'write [longitude column, latitude column]' },
-    (value) =>
-      Array.isArray(value) &&
-      value.length === 2 &&
-      value[0] !== value[1] &&
-      value.every((name) => columnName.safeParse(name).success),
+  position: choose<string | [string, string]>((value) =>
+    typeof value === 'string' && value.trim() !== ''
+      ? columnName
+      : leaf<[string, string]>(
+          'must name two columns',
+          { todo: 'write [longitude column, latitude column]' },
+          () =>
+            Array.isArray(value) &&
+            value.length === 2 &&
+            value[0] !== value[1] &&
+            value.every((name) => columnName.safeParse(name).success),
+        ),
   ).optional(),
+  crs: crsText.optional(),
+  layer: textFor('the name of a layer').optional(),
   keep: textFor('a condition over the columns').optional(),
   weight: columnName.optional(),
   cluster: oneOrTwoColumns.optional(),
@@ -91,7 +100,15 @@ const zonesByProperty = keyed({
   ),
 })
 
-const layerNear = keyed({ file: fileName, within: positive })
+const layerKeys = {
+  file: fileName,
+  layer: textFor('the name of a layer').optional(),
+  geometry: columnName.optional(),
+  crs: crsText.optional(),
+}
+const layerSource = choose<string | z.infer<typeof layerObject>>((value) => (isRecord(value) ? layerObject : fileName))
+const layerObject = keyed(layerKeys)
+const layerNear = keyed({ ...layerKeys, within: positive })
 
 const repeatedPoints = choose<'keep' | 'cluster' | { cap: number }>((value) =>
   isRecord(value) ? keyed({ cap: wholeFrom1 }) : oneOf(['keep', 'cluster']),
@@ -103,7 +120,7 @@ const wholeFrom1 = numberWhere(
 )
 
 export const borderLine = keyed({
-  zones: fileName,
+  zones: layerSource,
   zone_name: textFor('a property of the zones').optional(),
   treated: treatedZones.optional(),
   dose: textFor('a numeric property of the zones').optional(),
@@ -277,7 +294,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|take_up|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?)|line\.(score|distance|name|zone_name|dose|side|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
+  /^(title|take_up|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

@@ -13,11 +13,13 @@ export function togetherProblems(source: Source, file: string): Problem[] {
     problems.push({ file, line: source.lineOf(path), what: `${pathText(path)}${must}`, found, todo })
 
   const recordsFile = typeof records.file === 'string' ? records.file : ''
-  if (form === 'zones' && records.position === undefined && recordsFile !== '' && !/\.geojson$/i.test(recordsFile))
+  if (form === 'zones' && records.position === undefined && recordsFile !== '' && !pointFile.test(recordsFile))
     say(['records', 'position'], '', 'missing', 'name the two columns: [lon, lat]')
   if ((form === 'score' || form === 'distance') && records.position !== undefined)
     say(['records', 'position'], ': is for borders only', `line has ${form}`, 'leave it out')
   const isClustered = estimation.variance === 'clusters' || estimation.variance === 'few-clusters'
+  if ((form === 'score' || form === 'distance') && records.crs !== undefined)
+    say(['records', 'crs'], ': is for borders only', `line has ${form}`, 'leave it out')
   if (form !== 'zones' && form !== undefined && isClustered && records.cluster === undefined)
     say(
       ['estimation', 'variance'],
@@ -84,6 +86,9 @@ export function togetherProblems(source: Source, file: string): Problem[] {
     )
   return problems
 }
+
+/** Files whose rows are points by themselves. */
+const pointFile = /\.(geojson|topojson|shp|gpkg|zip|kml|kmz)$/i
 
 type Say = (path: Path, must: string, found: string, todo: string) => void
 

@@ -33,8 +33,12 @@ export interface RecordsPart {
   /** Path as written in the study, relative to the study file. */
   readonly file: string
   readonly id?: string
-  /** [longitude column, latitude column]. */
-  readonly position?: readonly [string, string]
+  /** [longitude column, latitude column], or a column of WKT points. */
+  readonly position?: readonly [string, string] | string
+  /** What the positions are, where they are not WGS 84 degrees: `EPSG:5070`. */
+  readonly crs?: string
+  /** Which layer of a file of points. */
+  readonly layer?: string
   /** SQL condition over the file's columns. */
   readonly keep?: string
   readonly weight?: string
@@ -62,15 +66,25 @@ export interface ScoreLine {
 
 export type LengthUnit = 'm' | 'km' | 'ft' | 'mi'
 
-export interface LayerNear {
+/** A file of geometries; the rest where the file does not say it. */
+export interface LayerSource {
   readonly file: string
+  /** Which of its layers. */
+  readonly layer?: string
+  /** The column of WKT, in a table. */
+  readonly geometry?: string
+  /** Its coordinate system: `EPSG:5070`. */
+  readonly crs?: string
+}
+
+export interface LayerNear extends LayerSource {
   /** Metres. */
   readonly within: number
 }
 
 export interface BorderLine {
   readonly kind: 'border'
-  readonly zones: string
+  readonly zones: LayerSource
   readonly zoneName: string
   /** Names of treated zones, or a property and the value that marks them; absent where `dose` is given. */
   readonly treated?: readonly string[] | { readonly property: string; readonly equals: string | number | boolean }

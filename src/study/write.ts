@@ -13,6 +13,8 @@ export function resolvedStudy(study: Study): string {
       file: records.file,
       id: records.id,
       position: records.position,
+      crs: records.crs,
+      layer: records.layer,
       keep: records.keep,
       weight: records.weight,
       cluster: records.cluster,
@@ -59,7 +61,7 @@ function writtenLine(line: Study['line']): object {
     }
   if (line.kind === 'distance') return { distance: line.distance, name: line.name }
   return {
-    zones: line.zones,
+    zones: Object.keys(line.zones).length === 1 ? line.zones.file : line.zones,
     zone_name: line.zoneName,
     treated: line.treated,
     dose: line.dose,

@@ -37,7 +37,7 @@ async function run(example: string, files: Record<string, string>): Promise<Resu
     const table = await read(records.file, wanted.records, records.keep)
     const inputs =
       line.kind === 'border'
-        ? { table, zones: layer(line.zones), barriers: line.barriers.map(({ file }) => layer(file)) }
+        ? { table, zones: layer(line.zones.file), barriers: line.barriers.map(({ file }) => layer(file)) }
         : { table, schedule: await read('cutoffs.csv', wanted.schedule) }
     const analysis = analyze(study.value, inputs, { version: 'test', started: '' })
     if (!analysis.ok) throw new Error(analysis.problems[0].what)

@@ -66,7 +66,7 @@ export const goodCases: readonly GoodCase[] = [
       records: { file: 'rows.csv', position: ['lon', 'lat'] },
       line: {
         kind: 'border',
-        zones: 'zones.geojson',
+        zones: { file: 'zones.geojson' },
         zoneName: 'name',
         treated: ['Inner'],
         unit: 'm',
@@ -169,7 +169,7 @@ pooling: {fixed_effects: false}
     gives: {
       line: {
         kind: 'border',
-        zones: 'zones.geojson',
+        zones: { file: 'zones.geojson' },
         zoneName: 'code',
         treated: { property: 'levy', equals: true },
         unit: 'km',

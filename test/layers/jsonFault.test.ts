@@ -1,6 +1,6 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
-import { findJsonFault } from '../../src/cli/jsonFault.js'
+import { findJsonFault } from '../../src/layers/jsonFault.js'
 
 const isJson = (text: string) => {
   try {
