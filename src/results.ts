@@ -14,6 +14,8 @@ export interface Results {
   readonly started: string
   readonly seconds: number
   readonly inputs: readonly InputFile[]
+  /** Where the study names a placement that was measured before. */
+  readonly geometry?: GeometryUsed
   readonly placement: PlacementSummary
   readonly lines: readonly LineSummary[]
   /** Border studies. */
@@ -22,6 +24,13 @@ export interface Results {
   readonly shared_units?: SharedUnits
   readonly outcomes: readonly OutcomeResult[]
   readonly ledger: readonly LedgerStep[]
+}
+
+export interface GeometryUsed {
+  readonly from: string
+  readonly reused: boolean
+  /** Why it was measured anew. */
+  readonly because?: string
 }
 
 export interface SharedUnits {

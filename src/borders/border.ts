@@ -117,8 +117,13 @@ export function prepareZones(zones: Zones, options: BorderOptions): Checked<Prep
   const nearness = measureNearness(boundaries, metres)
   problems.push(...overlapProblems(boundaries, nearness, polygons, sortedNames, zones.file, metres))
   if (problems.length > 0) return { ok: false, problems }
-  const names = roles.outsideZone < 0 ? zones.names : [...zones.names, outsideName]
+  const names = namesOf(zones, roles)
   return { ok: true, value: { roles, names, order, boundaries, nearness, metres } }
+}
+
+/** Names of the zones, and of the land outside where that is one. */
+export function namesOf(zones: Zones, { outsideZone }: Roles): readonly string[] {
+  return outsideZone < 0 ? zones.names : [...zones.names, outsideName]
 }
 
 /** The border along the paths, or along those that are wanted; the others only make corners where they end. */
@@ -131,6 +136,17 @@ export function borderOfPaths(
 ): Border {
   const zoneOf = [...order, roles.outsideZone]
   const { pieces, ends } = piecesOfPairs(paths, isWanted, names, zoneOf, roles.doses, pieceMetres, metres)
+  return borderOfPieces(zones, roles, names, pieces, cornersAt(ends, names, metres))
+}
+
+/** The border that pieces make. */
+export function borderOfPieces(
+  zones: Zones,
+  roles: Roles,
+  names: readonly string[],
+  pieces: readonly Piece[],
+  corners: readonly Corner[],
+): Border {
   const index = new Map(names.map((name, zone) => [name, zone]))
   return {
     zones,
@@ -139,7 +155,7 @@ export function borderOfPaths(
     pieces,
     untreatedOfPiece: Int32Array.from(pieces, (piece) => index.get(piece.zones[0]) as number),
     treatedOfPiece: Int32Array.from(pieces, (piece) => index.get(piece.zones[1]) as number),
-    corners: cornersAt(ends, names, metres),
+    corners,
     ...edgesOfPieces(pieces),
     grid: buildZoneGrid(zones.polygons),
   }

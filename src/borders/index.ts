@@ -24,6 +24,7 @@ export { borderFit, type PairFit, type SideChanges, unitsChangingSide } from './
 export { edgeLengthMetres, geodesicMetres } from './geodesy.js'
 export type { MultiPolygonCoords } from './geojson.js'
 export { type LayersAlong, layersAlong } from './layersAlong.js'
+export { borderOfLines, type Lines, linesOf, type MeasuredColumns, measuredOfColumns } from './lines.js'
 export { type LocalMetres, localMetres } from './localMetres.js'
 export {
   type Measured,
@@ -45,4 +46,5 @@ export { type BorderSide, type ShiftedBorder, shiftedBorder } from './shifted.js
 export { type Conflict, type SideRule, zonesByRecord } from './sides.js'
 export { snapAgainstBandwidth } from './snapAgainstBandwidth.js'
 export { indexUnits, type NearUnits, type UnitIndex, unitsNear } from './unitsNear.js'
+export { manyZones, noZone } from './zoneGrid.js'
 export { readZones, type Zones } from './zones.js'

@@ -140,8 +140,8 @@ export function unitMeasurer(border: MeasuredBorder): (lon: Float64Array, lat: F
   }
 }
 
-/** Why a unit has no nearest edge. */
-function reasonWithout(lon: number, lat: number): number {
+/** Why a unit has no nearest edge: a code of `piece`. */
+export function reasonWithout(lon: number, lat: number): number {
   if (Number.isNaN(lon) || Number.isNaN(lat)) return positionMissing
   return isOnEarth(lon, lat) ? noBorderOfZone : positionOutOfRange
 }

@@ -37,7 +37,10 @@ function namedFiles(study: Study): string[] {
   const files = [study.records.file]
   const { line } = study
   if (line.kind === 'score' && line.cutoff.kind === 'schedule') files.push(line.cutoff.file)
-  if (line.kind === 'border') files.push(...[line.zones, ...line.barriers, ...line.overlaps].map(({ file }) => file))
+  if (line.kind === 'border') {
+    files.push(...[line.zones, ...line.barriers, ...line.overlaps].map(({ file }) => file))
+    if (line.measured !== undefined) files.push(line.measured, `${line.measured}.lines`)
+  }
   return files
 }
 

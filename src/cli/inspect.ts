@@ -1,10 +1,12 @@
 /** `scarp inspect`: all that can be known to be wrong or doubtful before estimating. */
 import { type AnalysisInputs, type Placed, positionColumns } from '../analyze.js'
 import { numbersOf } from '../records/index.js'
+import { geometryWords } from '../report/index.js'
 import type { Study } from '../study/index.js'
 import { count, largeSetAside, repeatedDistances, repeatedPositions, thinLines, unitsBySide } from './doubts.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
 import type { FabricAccount } from './fabricAccount.js'
+import { withFrozen } from './frozen.js'
 import { withGround } from './ground.js'
 import { readInputs, readStudyFile } from './inputs.js'
 import { progressLine } from './progress.js'
@@ -28,7 +30,10 @@ export async function inspect(file: string, options: InspectOptions = {}): Promi
   const readByStudy = await readInputs(studyFile.value, { progress })
   const inputs = readByStudy.ok ? await withVariants(studyFile.value, readByStudy.value, { progress }) : readByStudy
   const { placeStudy } = await import('../analyze.js')
-  const ready = inputs.ok ? await withGround(study, inputs.value, { workers: options.workers, progress }) : inputs
+  const frozen = inputs.ok ? await withFrozen(studyFile.value, inputs.value) : inputs
+  const ready = frozen.ok
+    ? await withGround(study, frozen.value.inputs, { workers: options.workers, progress })
+    : frozen
   const placed = ready.ok ? placeStudy(study, ready.value, progress) : ready
   clear()
   if (!placed.ok) {
@@ -37,7 +42,11 @@ export async function inspect(file: string, options: InspectOptions = {}): Promi
   }
   const read = (inputs as { value: AnalysisInputs }).value
   const { fabricAccount } = await import('./fabricAccount.js')
-  const account = accountOf(study, read, placed.value, fabricAccount(study, read, placed.value))
+  const geometry = frozen.ok && 'geometry' in frozen.value ? frozen.value.geometry : undefined
+  const account = [
+    ...accountOf(study, read, placed.value, fabricAccount(study, read, placed.value)),
+    ...(geometry ? [geometryWords(geometry)] : []),
+  ]
   process.stdout.write(`${account.join('\n')}\n`)
   return exitCodes.done
 }

@@ -2,13 +2,14 @@
 import { randomBytes } from 'node:crypto'
 import { open, rename, rm } from 'node:fs/promises'
 import { basename, dirname, extname, join, resolve } from 'node:path'
-import type { Placed } from '../analyze.js'
+import type { AnalysisInputs, Placed } from '../analyze.js'
+import { pointLayer } from '../layers/index.js'
 import type { Checked, Problem } from '../problem.js'
-import type { Table } from '../records/index.js'
-import type { Study } from '../study/index.js'
+import { numbersOf, type Table } from '../records/index.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
+import { linesFileOf, writeLinesFile } from './frozen.js'
 import { withGround } from './ground.js'
-import { readInputs } from './inputs.js'
+import { readInputs, readStudyFile, type StudyFile } from './inputs.js'
 import { measuredColumns } from './measuredColumns.js'
 import { measureStudy } from './measureStudy.js'
 import { factsOf, realPath } from './outFolder.js'
@@ -17,33 +18,71 @@ import { removeWhenStopped } from './resultsFolder.js'
 import { sayProblems } from './say.js'
 
 export interface MeasureOptions {
-  readonly zones: string
+  readonly zones?: string
   readonly position?: string
-  readonly zoneName: string
+  readonly zoneName?: string
   readonly treated?: string
   readonly dose?: string
-  readonly unit: string
+  readonly unit?: string
   readonly out: string
   readonly workers?: number
+  readonly runnerUp?: boolean
+  /** Commander's name for --without-coordinates. */
+  readonly withoutCoordinates?: boolean
 }
 
-export async function measure(records: string, options: MeasureOptions): Promise<ExitCode> {
+/** `first`: a table of units, with zones beside it, or a study file that names both. */
+export async function measure(first: string, options: MeasureOptions): Promise<ExitCode> {
   const { progress, clear } = progressLine(false)
-  const study = await measureStudy(records, options)
-  const problems = [...(study.ok ? [] : study.problems), ...outFileProblems(options.out, [records, options.zones])]
-  if (!study.ok || problems.length > 0) return refuse(problems)
-  const inputs = await readInputs({ study: study.value, file: './measure', paths: [] }, { progress, all: true })
+  const isStudy = /\.(ya?ml|json)$/i.test(first) && options.zones === undefined
+  const from = isStudy ? await readStudyFile(first) : await studyOfOptions(first, options)
+  const read = from.ok && isStudy ? from.value.paths : [first, ...(options.zones ? [options.zones] : [])]
+  const problems = [
+    ...(from.ok ? [] : from.problems),
+    ...(isStudy ? wordsBesideStudy(options) : []),
+    ...outFileProblems(options.out, read, options.withoutCoordinates === true),
+    ...(from.ok && from.value.study.line.kind !== 'border' ? [noBorderProblem(first)] : []),
+  ]
+  if (!from.ok || problems.length > 0) return refuse(problems)
+  const { study } = from.value
+  const inputs = await readInputs(from.value, { progress, all: true })
   const { placeStudy } = await import('../analyze.js')
-  const ready = inputs.ok ? await withGround(study.value, inputs.value, { workers: options.workers, progress }) : inputs
-  const placed: Checked<Placed> = ready.ok ? placeStudy(study.value, ready.value, progress) : ready
+  const ready = inputs.ok ? await withGround(study, inputs.value, { workers: options.workers, progress }) : inputs
+  const placed: Checked<Placed> = ready.ok ? placeStudy(study, ready.value, progress) : ready
   clear()
-  if (!inputs.ok || !placed.ok) return refuse(placed.ok ? [] : placed.problems.map(inOptions))
+  if (!inputs.ok || !placed.ok) return refuse(placed.ok ? [] : placed.problems.map(isStudy ? asItIs : inOptions))
+  await writeMeasured(from.value, options, inputs.value, placed.value)
   const { table } = inputs.value
-  await writeMeasured(options.out, study.value, table, placed.value)
   const reasons = [...placed.value.setAside].map(([reason, units]) => `, ${units} ${reason}`).join('')
   process.stdout.write(`${placed.value.units} of ${table.rows} units placed${reasons}: ${options.out}\n`)
+  if (options.withoutCoordinates !== true)
+    process.stdout.write(`the border it was measured against: ${linesFileOf(options.out)}\n`)
   return exitCodes.done
 }
+
+async function studyOfOptions(records: string, options: MeasureOptions): Promise<Checked<StudyFile>> {
+  const study = await measureStudy(records, options)
+  return study.ok ? { ok: true, value: { study: study.value, file: './measure', paths: [] } } : study
+}
+
+/** A study says all of that itself. */
+function wordsBesideStudy(options: MeasureOptions): Problem[] {
+  const given = (['position', 'zoneName', 'treated', 'dose', 'unit'] as const).filter(
+    (key) => options[key] !== undefined,
+  )
+  return given.map((key) => ({
+    file: 'scarp',
+    what: `--${key === 'zoneName' ? 'zone-name' : key}`,
+    found: 'given with a study file',
+    todo: 'write it in the study',
+  }))
+}
+
+function noBorderProblem(file: string): Problem {
+  return { file, what: 'line', found: 'no border between zones', todo: 'measure a study with zones' }
+}
+
+const asItIs = (problem: Problem) => problem
 
 /** The keys of a study under the names they have here. */
 function inOptions(problem: Problem): Problem {
@@ -61,25 +100,48 @@ function refuse(problems: readonly Problem[]): ExitCode {
 }
 
 /** Writes beside the target and renames, so that an earlier file stays whole until the new one is. */
-async function writeMeasured(out: string, study: Study, table: Table, placed: Placed): Promise<void> {
+async function writeMeasured(
+  { study, file }: StudyFile,
+  { out, runnerUp, withoutCoordinates }: MeasureOptions,
+  inputs: AnalysisInputs,
+  placed: Placed,
+): Promise<void> {
+  const { table } = inputs
   const { headerOf, writeTable } = await import('../records/files.js')
   const { positionColumns } = await import('../analyze.js')
+  const { linesOf, runnerUps } = await import('../borders/index.js')
+  const { known } = placed
+  if (!known) throw new Error('nothing was measured')
   const [lon, lat] = positionColumns(study)
-  const header = await headerOf(study.records.file, study.records.file)
-  const columns = measuredColumns(inOrder(table, header.ok ? header.value : []), placed)
+  const records = resolve(dirname(file), study.records.file)
+  const header = pointLayer.test(records) ? undefined : await headerOf(records, study.records.file)
+  const { position } = study.records
+  const columns = measuredColumns(inOrder(table, header?.ok ? header.value : []), placed, {
+    ...(runnerUp
+      ? { runnerUp: runnerUps(known.border, known.measured, numbersOf(table, lon), numbersOf(table, lat)) }
+      : {}),
+    ...(withoutCoordinates
+      ? { withoutCoordinates: [lon, lat, ...(typeof position === 'string' ? [position] : [])] }
+      : {}),
+  })
   const target = realPath(resolve(out))
   const name = `.${basename(target)}-${process.pid}-${randomBytes(4).toString('hex')}${extname(target)}`
   const stage = join(dirname(target), name)
   const letGo = removeWhenStopped(stage)
+  const letGoLines = removeWhenStopped(linesFileOf(stage))
   try {
-    await writeTable(stage, columns, table.rows, { lon, lat })
+    await writeTable(stage, columns, table.rows, withoutCoordinates ? undefined : { lon, lat })
+    if (!withoutCoordinates) await writeLinesFile(stage, study, inputs, linesOf(known.border))
     const handle = await open(stage, 'r')
     await handle.sync()
     await handle.close()
     await rename(stage, target)
+    if (!withoutCoordinates) await rename(linesFileOf(stage), linesFileOf(target))
   } finally {
     await rm(stage, { force: true })
+    await rm(linesFileOf(stage), { force: true })
     letGo()
+    letGoLines()
   }
 }
 
@@ -89,10 +151,12 @@ function inOrder(table: Table, header: readonly string[]): Table {
   return { ...table, columns: new Map(columns) }
 }
 
-function outFileProblems(out: string, inputs: readonly string[]): Problem[] {
+function outFileProblems(out: string, inputs: readonly string[], withoutCoordinates: boolean): Problem[] {
   const problem = (what: string, found: string, todo: string): Problem[] => [{ file: out, what, found, todo }]
   if (!/\.(csv|parquet|geojson)$/i.test(out))
     return problem('--out', 'the name does not say what to write', 'end it in .csv, .parquet or .geojson')
+  if (withoutCoordinates && /\.geojson$/i.test(out))
+    return problem('--without-coordinates', 'a GeoJSON file is made of them', 'end --out in .csv or .parquet')
   const facts = factsOf(out)
   if (facts?.isDirectory()) return problem('--out', 'this is a folder', 'give the name of a file')
   const isSame = (input: string) => {

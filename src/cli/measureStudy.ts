@@ -19,10 +19,12 @@ export async function measureStudy(records: string, options: MeasureOptions): Pr
   const problems: Problem[] = []
   const say = (what: string, found: string, todo: string) => problems.push({ file: 'scarp', what, found, todo })
   const treated = namesIn(options.treated ?? '')
+  const { zones, zoneName = 'name', unit = 'm' } = options
+  if (zones === undefined) say('--zones', 'missing', 'name the file of zones, or measure a study file')
   if (options.dose !== undefined && treated.length > 0) say('--dose', 'given with --treated', 'keep one of them')
   if (options.dose === undefined && treated.length === 0)
     say('--treated', 'missing', 'name the treated zones: --treated Inner,Harbour, or a numeric property: --dose rate')
-  if (!units.includes(options.unit)) say('--unit', `got ${options.unit}`, 'write m, km, ft or mi')
+  if (!units.includes(unit)) say('--unit', `got ${unit}`, 'write m, km, ft or mi')
   const position = options.position === undefined ? undefined : namesIn(options.position)
   if (position === undefined && !/\.geojson$/i.test(records) && !pointLayer.test(records))
     say('--position', 'missing', 'name the columns of longitude and latitude: --position lon,lat')
@@ -31,7 +33,7 @@ export async function measureStudy(records: string, options: MeasureOptions): Pr
   if (problems.length > 0) return { ok: false, problems }
 
   const rule = options.dose === undefined ? { treated } : { dose: options.dose }
-  const line = { zones: options.zones, zone_name: options.zoneName, ...rule, unit: options.unit }
+  const line = { zones, zone_name: zoneName, ...rule, unit }
   const written = { records: { file: records, position }, outcomes: ['none'], line }
   const { readStudy } = await import('../study/index.js')
   const study = readStudy(JSON.stringify(written), 'scarp')

@@ -1,6 +1,7 @@
 /** `scarp run`: the whole job, from a study file to a results folder. */
 import type { Results } from '../results.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
+import { withFrozen } from './frozen.js'
 import { withGround } from './ground.js'
 import { readInputs, readStudyFile } from './inputs.js'
 import { defaultOutFolder, outFolderProblems, resultNames } from './outFolder.js'
@@ -37,7 +38,10 @@ export async function run(file: string, options: RunOptions): Promise<ExitCode> 
   }
 
   const { analyze } = await import('../analyze.js')
-  const ready = await withGround(study, inputs.value, { workers: options.workers, progress })
+  const frozen = await withFrozen(studyFile.value, inputs.value)
+  const ready = frozen.ok
+    ? await withGround(study, frozen.value.inputs, { workers: options.workers, progress })
+    : frozen
   const analysis = ready.ok ? analyze(study, ready.value, { version: packageVersion(), started, progress }) : ready
   if (!analysis.ok) {
     clear()
@@ -46,7 +50,8 @@ export async function run(file: string, options: RunOptions): Promise<ExitCode> 
   const { resolvedStudy } = await import('../study/index.js')
   const { drawReport, summaryLines } = await import('../report/index.js')
   const seconds = Math.round(performance.now() - begun) / 1000
-  const results: Results = { ...analysis.value.results, seconds }
+  const { geometry } = frozen.ok ? frozen.value : {}
+  const results: Results = withGeometry({ ...analysis.value.results, seconds }, geometry)
   const finished = { ...analysis.value, results }
   const resolved = resolvedStudy(study)
   const drawn = drawReport({ analysis: finished, resolvedStudy: resolved, disclosure: study.disclosure })
@@ -65,6 +70,13 @@ export async function run(file: string, options: RunOptions): Promise<ExitCode> 
   if (reason === undefined) return exitCodes.done
   say(`${file}: nothing can be estimated: ${reason}; see ${out}`)
   return exitCodes.nothingEstimated
+}
+
+/** After the inputs, where a reader looks for it. */
+function withGeometry(results: Results, geometry: Results['geometry']): Results {
+  if (!geometry) return results
+  const { format, title, version, seed, started, seconds, inputs, ...rest } = results
+  return { format, title, version, seed, started, seconds, inputs, geometry, ...rest }
 }
 
 const written: ReadonlySet<string> = new Set(['results.json', 'study.resolved.yaml', 'units.csv'])

@@ -20,7 +20,7 @@ import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type V
 
 export type { ReportInput } from './input.js'
 export { planLines } from './planText.js'
-export { summaryLines } from './summary.js'
+export { geometryWords, summaryLines } from './summary.js'
 
 const mostLineFigures = 200
 

@@ -16,12 +16,18 @@ export function summaryLines(results: Results, folder: string): string[] {
     ...(aside.length > 0
       ? [`set aside: ${aside.map(([reason, units]) => `${count(units)} ${reason}`).join(', ')}`]
       : []),
+    ...(results.geometry ? [geometryWords(results.geometry)] : []),
     ...shown.flatMap(outcomeLines),
     ...(results.outcomes.length > mostOutcomes
       ? [`and ${count(results.outcomes.length - mostOutcomes)} more outcomes in the report`]
       : []),
     `${results.seconds.toFixed(1)} s; report: ${folder}/report.html`,
   ]
+}
+
+/** Whether an earlier placement served, and if not, why. */
+export function geometryWords({ from, reused, because }: NonNullable<Results['geometry']>): string {
+  return reused ? `geometry taken from ${from}` : `geometry measured anew, not taken from ${from}: ${because}`
 }
 
 function outcomeLines(outcome: Results['outcomes'][number]): string[] {

@@ -121,7 +121,7 @@ function resolveBorder(line: z.infer<typeof borderLine>): BorderLine {
     unit,
     snap: line.snap ?? 2,
     piece: line.piece ?? 1000 / METRES[unit],
-    ...given({ reach: line.reach }),
+    ...given({ measured: line.measured, reach: line.reach }),
     barriers: line.barriers ?? [],
     overlaps: line.overlaps ?? [],
     ...given({ along: line.along, side: line.side }),

@@ -128,6 +128,7 @@ export const borderLine = keyed({
   unit: oneOf(['m', 'km', 'ft', 'mi']).optional(),
   snap: positive.optional(),
   piece: positive.optional(),
+  measured: fileName.optional(),
   reach: positive.optional(),
   barriers: z.array(layerNear).optional(),
   overlaps: z.array(layerNear).optional(),

@@ -97,6 +97,8 @@ export interface BorderLine {
   readonly snap: number
   /** In `unit`. */
   readonly piece: number
+  /** A file that `measure` wrote: its geometry is taken where zones, records and options are those it was made from. */
+  readonly measured?: string
   /** In `unit`; absent: no limit. */
   readonly reach?: number
   readonly barriers: readonly LayerNear[]

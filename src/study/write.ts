@@ -69,6 +69,7 @@ function writtenLine(line: Study['line']): object {
     unit: line.unit,
     snap: line.snap,
     piece: line.piece,
+    measured: line.measured,
     reach: line.reach,
     barriers: line.barriers,
     overlaps: line.overlaps,

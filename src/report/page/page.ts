@@ -3,10 +3,11 @@ import { conflictTable, waterfallTable, whatElseTable } from '../borderTables.js
 import { escapeHtml } from '../escape.js'
 import { ladderTable, placeboTable, standardsTable } from '../ladderTable.js'
 import { checksTable, ledgerTable, setAsideTable } from '../ledgerTable.js'
-import { pageLineTable } from '../lineTable.js'
-import { count, significant } from '../numbers.js'
+import { capital, pageLineTable } from '../lineTable.js'
+import { count, missing, significant } from '../numbers.js'
 import { comparisonTable, contrastTable, pooledTable } from '../pooledTable.js'
 import { sharedTable } from '../sharedTable.js'
+import { geometryWords } from '../summary.js'
 import { toHtml } from '../tables.js'
 import { variantTable } from '../variantTable.js'
 import { estimatedLines, howMany, type OutcomeView, type View, widthText } from '../view.js'
@@ -242,13 +243,23 @@ function studyHtml(view: View): string {
 }
 
 function inputsHtml(view: View): string {
-  const { inputs, version, seed, started, seconds } = view.results
+  const { inputs, version, seed, started, seconds, geometry } = view.results
   const table = toHtml(
     {
       caption: 'Files read',
-      columns: [{ head: 'File', isText: true }, { head: 'Rows or features' }, { head: 'SHA-256', isText: true }],
-      rows: inputs.map((input) => [input.file, count(input.rows ?? input.features), input.sha256]),
-      notes: [],
+      columns: [
+        { head: 'File', isText: true },
+        { head: 'Rows or features' },
+        { head: 'Coordinates', isText: true },
+        { head: 'SHA-256', isText: true },
+      ],
+      rows: inputs.map((input) => [
+        input.file,
+        count(input.rows ?? input.features),
+        input.crs ?? missing,
+        input.sha256,
+      ]),
+      notes: geometry ? [`${capital(geometryWords(geometry))}.`] : [],
     },
     'inputs',
   )
