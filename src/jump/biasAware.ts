@@ -55,7 +55,9 @@ export type SampleAt = (
   h: BySide<number>,
 ) => { readonly ok: true; readonly sample: Sample } | { readonly ok: false; readonly reason: string }
 
-const gridPoints = 48
+/** Steps of the grid of bandwidths, but for very wide ranges. */
+const gridRatio = 1.15
+const mostGridPoints = 48
 const ownTolerance = 1e-3
 const curveTolerance = 1e-2
 const eighthToEightfold = [1 / 8, 1 / 4, 1 / 2, 1, 2, 4, 8]
@@ -192,7 +194,8 @@ function searcher(sample: Sample, options: BiasAwareOptions) {
       if (typeof estimate === 'string') return Number.POSITIVE_INFINITY
       return halfLength(smoothness * estimate.unitBias, estimate.standardError, options.level)
     }
-    const h = lowestOn(length, low, largest, gridPoints, tolerance)
+    const points = Math.min(mostGridPoints, 2 + Math.ceil(Math.log(largest / low) / Math.log(gridRatio)))
+    const h = lowestOn(length, low, largest, points, tolerance)
     return h === undefined ? (estimateAt(largest) as string) : { untreated: h, treated: h }
   }
 }

@@ -9,8 +9,8 @@ import { symmetricEigen } from './symmetric.js'
 /** Lengths below this share of what they came from are rounding. */
 const rounding = 1e-13
 
-/** Steps between looks at the answer, once there have been as many. */
-const stride = 6
+/** Steps between looks at the answer. */
+const stride = 4
 
 /**
  * `multiply` writes B v to its second argument. Eigenvalues up to `smallest` count as 0, and their directions are taken out
@@ -34,7 +34,7 @@ export function inverseRootTimes(
     for (let pass = 0; pass < 2; pass++) for (const q of basis) subtract(next, q, dot(q, next))
     const rest = Math.sqrt(dot(next, next))
     const isLast = !(rest > rounding * Math.abs(diagonal[0])) || basis.length === b.length
-    if (isLast || basis.length < stride || basis.length % stride === 0) {
+    if (isLast || basis.length % stride === 0) {
       const now = firstColumn(diagonal, beside, smallest)
       if (isLast || (before && isSettled(before, now))) return combined(basis, now, length)
       before = now

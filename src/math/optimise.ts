@@ -4,8 +4,9 @@ const goldenRatio = (Math.sqrt(5) - 1) / 2
 
 /**
  * Place x of the smallest value met of a function on [low, high], 0 < low ≤ high, that may have several minima: a geometric
- * grid of `points`, then golden section (Kiefer 1953) between the neighbours of the three lowest grid points that are lower
- * than both neighbours, to `tolerance` relative to x. A function may be Infinity in places; undefined where it is everywhere.
+ * grid of `points`, then golden section (Kiefer 1953) between the neighbours of the lowest grid points that are no higher
+ * than both neighbours (three at most, and none more than 2% above the lowest), to `tolerance` relative to x. A function
+ * may be Infinity in places; undefined where it is everywhere.
  */
 export function lowestOn(
   f: (x: number) => number,
@@ -28,11 +29,13 @@ export function lowestOn(
   }
   const place = (i: number) => (i === points - 1 ? high : low * (high / low) ** (i / (points - 1)))
   const values = Float64Array.from({ length: points }, (_, i) => tried(place(i)))
+  const lowestOfGrid = lowest
   const at = (i: number) => (i < 0 || i >= points ? Number.POSITIVE_INFINITY : values[i])
   Array.from(values.keys())
     .filter((i) => at(i) < Number.POSITIVE_INFINITY && at(i) <= at(i - 1) && at(i) <= at(i + 1))
     .sort((i, j) => values[i] - values[j])
     .slice(0, 3)
+    .filter((i) => values[i] - lowestOfGrid <= 0.02 * Math.abs(lowestOfGrid))
     .forEach((i) => {
       goldenSection(tried, place(Math.max(0, i - 1)), place(Math.min(points - 1, i + 1)), tolerance)
     })
