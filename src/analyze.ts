@@ -5,6 +5,7 @@
  */
 import { alongGround, alongResult } from './analysis/along.js'
 import type { BorderFacts } from './analysis/border.js'
+import { outcomeChecks, sharedChecks } from './analysis/checks.js'
 import { entriesOf } from './analysis/entries.js'
 import { estimateOutcome, hasReason, type LineEstimate, type OutcomeEstimates } from './analysis/estimating.js'
 import { mapOf, scatterOf } from './analysis/exhibits.js'
@@ -48,6 +49,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
   const variants = placeVariants(study, inputs, placed.value, context.progress)
   if (!variants.ok) return variants
   const ground = alongGround(study, inputs, placed.value)
+  const checked = sharedChecks(study, inputs, placed.value, context.progress)
   const ledger = [...placed.value.ledger]
   const outcomes: OutcomeResult[] = []
   const drawn: OutcomeExhibit[] = []
@@ -65,9 +67,11 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     const beside = variantResults(variants.value, outcome, main, (done) =>
       context.progress?.('estimating variants', done, variants.value.length),
     )
+    const result = { ...outcomeResult(study, outcome, placement.lines, estimates), ...along }
+    const about = { entries, made: estimates, result }
     outcomes.push({
-      ...outcomeResult(study, outcome, placement.lines, estimates),
-      ...along,
+      ...result,
+      ...(checked ? outcomeChecks(checked, study, inputs, placed.value, about) : {}),
       ...(beside.length > 0 ? { variants: beside } : {}),
     })
     drawn.push(outcomeExhibit(study, outcome, estimates))

@@ -171,6 +171,14 @@ function estimateLine(entries: Entries, estimation: EstimationPart, options: Jum
   return estimated.ok ? { jump: estimated.jump, sample } : { reason: estimated.reason }
 }
 
+/** The pooled estimate without any line's own: what checks need of other outcomes and other lines. */
+export function pooledOnly(study: Study, placed: Placed, entries: OutcomeEntries): OutcomeEstimates['pooled'] {
+  const { lineVariance, pooledVariance } = variancesOf(study, placed.cluster !== undefined)
+  const isOne = placed.placement.lines.length === 1
+  const basis = poolBasis(study, placed, entries, isOne ? lineVariance : pooledVariance)
+  return bandwidthGuard(study, placed)(estimatePooled(basis, study.estimation.donut))
+}
+
 function alone(line: OrReason<LineEstimate>): OutcomeEstimates['pooled'] {
   return hasReason(line) ? line : { ...line, weights: Float64Array.of(1), withoutEffect: 0 }
 }

@@ -1,5 +1,6 @@
 /** What the ladders say, as checks: does the estimate hold when one choice is changed, and does nothing jump elsewhere? */
 import type { CheckResult, Interval, Ladders, Rung } from '../results.js'
+import { shown } from './words.js'
 
 type Made = Extract<Rung, { estimate: number }>
 type Holm = (p: readonly number[]) => readonly number[]
@@ -71,8 +72,4 @@ function placeboChecks(rungs: Ladders['placebo_lines'], level: number, holm: Hol
       says: `${place}, where nothing changes: ${interval}${jumps ? ', a jump that should not be there' : ''}`,
     }
   })
-}
-
-function shown(value: number): string {
-  return String(Number(value.toPrecision(3)))
 }

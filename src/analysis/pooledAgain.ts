@@ -1,7 +1,7 @@
 /** The study's pooled estimate made again on other lines, by the same options. */
 import type { Study } from '../study/index.js'
 import { entriesOfLine, type OutcomeEntries } from './entries.js'
-import { estimateMain, type OutcomeEstimates } from './estimating.js'
+import { type OutcomeEstimates, pooledOnly } from './estimating.js'
 import type { Placed } from './placing.js'
 
 /** Pools lines `from` to before `to` of a placement, whose entries stand together. */
@@ -17,7 +17,5 @@ export function pooledOverLines(
   const group = entries.all.group?.slice(bounds[0], bounds[1]).map((line) => line - from)
   const start = entries.start.slice(from, to + 1).map((at) => at - bounds[0])
   const few = { ...placed, placement: { ...placed.placement, lines: placed.placement.lines.slice(from, to) } }
-  const alone: Study = { ...study, pooling: { ...study.pooling, target: 'equal' } }
-  const some = { ...entries, all: { ...all, group, repeats: entries.all.repeats }, start }
-  return estimateMain(alone, few, some, undefined).pooled
+  return pooledOnly(study, few, { ...entries, all: { ...all, group, repeats: entries.all.repeats }, start })
 }

@@ -23,6 +23,9 @@ const papers = {
   target: 'Bertanha 2020, Journal of Econometrics',
   random: 'DerSimonian & Laird 1986, Controlled Clinical Trials',
   hartung: 'Knapp & Hartung 2003, Statistics in Medicine',
+  spatial: 'Conley 1999, Journal of Econometrics',
+  reduced: 'Bell & McCaffrey 2002, Survey Methodology',
+  reducedFreedom: 'Pustejovsky & Tipton 2018, Journal of Business & Economic Statistics',
   geodesic: 'Karney 2013, Journal of Geodesy',
 } as const
 
@@ -97,6 +100,16 @@ function varianceMethod(variance: string): Method {
       papers: [papers.neighbours],
     }
   }
+  if (variance === 'spatial')
+    return {
+      text: 'Variance spatial: units nearer to each other than the study’s cutoff may depend on each other, less the farther apart.',
+      papers: [papers.spatial],
+    }
+  if (variance === 'few-clusters')
+    return {
+      text: 'Variance few-clusters: clustered, with the bias-reduced matrix and its degrees of freedom, for few or unequal clusters.',
+      papers: [papers.reduced, papers.reducedFreedom],
+    }
   return {
     text: `Variance ${variance}: units of one cluster may depend on each other, on both sides of the line.`,
     papers: [],
@@ -106,8 +119,8 @@ function varianceMethod(variance: string): Method {
 function reference(view: View, variances: ReadonlySet<string>): Method[] {
   if (view.choices.reference === 'normal')
     return [{ text: 'Intervals and p-values use the normal distribution.', papers: [] }]
-  const isUnclustered = [...variances].some((variance) => /^(hc[0-3]|neighbours)$/.test(variance))
-  const isClustered = [...variances].some((variance) => !/^(hc[0-3]|neighbours)$/.test(variance))
+  const isUnclustered = [...variances].some((variance) => /^(hc[0-3]|neighbours|spatial)$/.test(variance))
+  const isClustered = variances.has('clusters')
   return [
     ...(isUnclustered
       ? [

@@ -1,0 +1,64 @@
+/** Predetermined columns must not jump: each on its own, and all together by their joint covariance. */
+import { holm } from '../checks/index.js'
+import { covarianceMatrix, type JumpFit } from '../jump/index.js'
+import { chiSquareUpper, choleskyInPlace, choleskySolveInPlace } from '../math/index.js'
+import { numbersOf } from '../records/index.js'
+import type { CheckResult } from '../results.js'
+import type { Study } from '../study/index.js'
+import { entriesOfValues } from './entries.js'
+import { hasReason, type OrReason, pooledOnly } from './estimating.js'
+import type { AnalysisInputs } from './inputs.js'
+import type { Placed } from './placing.js'
+import { shown } from './words.js'
+
+interface Column {
+  readonly name: string
+  readonly made: OrReason<{ readonly jump: JumpFit }>
+}
+
+export function balanceChecks(study: Study, { table }: AnalysisInputs, placed: Placed): CheckResult[] {
+  const columns = study.predetermined.map((name): Column => {
+    const entries = entriesOfValues(study, table, placed, numbersOf(table, name))
+    return { name, made: pooledOnly(study, placed, entries) }
+  })
+  const alpha = 1 - study.estimation.level
+  const fits = columns.flatMap(({ name, made }) => (hasReason(made) ? [] : [{ name, jump: made.jump }]))
+  const adjusted = holm(fits.map(({ jump }) => jump.corrected.p))
+  const rows = columns.map(({ name, made }): CheckResult => {
+    const check = `balance of ${name}`
+    if (hasReason(made)) return { check, verdict: 'not possible', says: made.reason }
+    const { estimate, standardError, low, high, p } = made.jump.corrected
+    const pHolm = adjusted[fits.findIndex((fit) => fit.name === name)]
+    const jumps = pHolm < alpha
+    const says = `${jumps ? 'jumps' : 'moves'} by ${shown(estimate)} (${shown(low)} to ${shown(high)})`
+    return { check, statistic: estimate / standardError, p, p_holm: pHolm, verdict: jumps ? 'doubt' : 'fine', says }
+  })
+  return [
+    ...rows,
+    ...joint(
+      fits.map(({ jump }) => jump),
+      placed,
+      alpha,
+    ),
+  ]
+}
+
+/** Wald statistic of all jumps being 0, with the covariance that shared units and clusters give them. */
+function joint(jumps: readonly JumpFit[], placed: Placed, alpha: number): CheckResult[] {
+  const check = 'balance, joint'
+  const count = jumps.length
+  if (count < 2) return []
+  const { matrix } = covarianceMatrix(
+    jumps.map(({ influence }) => influence),
+    placed.spatial,
+  )
+  const effect = Float64Array.from(jumps, ({ corrected }) => corrected.estimate)
+  const solved = effect.slice()
+  if (!(choleskyInPlace(matrix, count) > 1e-10))
+    return [{ check, verdict: 'not possible', says: 'the jumps depend on each other too closely to be tested jointly' }]
+  choleskySolveInPlace(matrix, count, solved)
+  const statistic = effect.reduce((sum, value, i) => sum + value * solved[i], 0)
+  const p = chiSquareUpper(statistic, count)
+  const says = `${count} columns together: ${p < alpha ? 'they jump by more than chance' : 'no more than chance'} (${shown(statistic)} on ${count} degrees of freedom)`
+  return [{ check, statistic, p, verdict: p < alpha ? 'doubt' : 'fine', says }]
+}

@@ -1,0 +1,131 @@
+/**
+ * Is it credible? Every check of a study, what all outcomes share made once (METHODS section 11). Each is a row with a
+ * verdict in plain words; p-values are adjusted for the number of tests of their kind.
+ */
+import { holm, moranNearLine } from '../checks/index.js'
+import { numbersOf, type Table } from '../records/index.js'
+import type { CheckResult, Jump, OutcomeResult, PooledJump } from '../results.js'
+import type { Study } from '../study/index.js'
+import { balanceChecks } from './balance.js'
+import { entriesOfValues, type OutcomeEntries } from './entries.js'
+import { hasReason, type MainEstimates, pooledOnly } from './estimating.js'
+import { type AnalysisInputs, type Progress, positionColumns } from './inputs.js'
+import { ladderChecks } from './ladderChecks.js'
+import { laddersOf } from './ladders.js'
+import { type PlacedPlacebos, placeboBorders, placePlacebos } from './placeboBorders.js'
+import type { Placed } from './placing.js'
+import { shiftedLines } from './shiftedLines.js'
+import { standardsSheet } from './standards.js'
+import { shown } from './words.js'
+
+/** What the checks of all outcomes share. */
+export interface SharedChecks {
+  /** Rows that are the same for every outcome. */
+  readonly rows: readonly CheckResult[]
+  readonly placebos: PlacedPlacebos | undefined
+}
+
+/** Undefined where the study asks for no checks. */
+export function sharedChecks(
+  study: Study,
+  inputs: AnalysisInputs,
+  placed: Placed,
+  progress?: Progress,
+): SharedChecks | undefined {
+  if (study.checks === 'none') return undefined
+  progress?.('checking', 0, 1)
+  return {
+    rows: balanceChecks(study, inputs, placed),
+    placebos: study.line.kind === 'border' ? placePlacebos(study, inputs, placed, progress) : undefined,
+  }
+}
+
+type Checked = Pick<OutcomeResult, 'checks' | 'ladders' | 'placebo_borders' | 'standards'>
+
+/** `result`: the outcome as far as it is estimated. */
+export function outcomeChecks(
+  shared: SharedChecks,
+  study: Study,
+  inputs: AnalysisInputs,
+  placed: Placed,
+  { entries, made, result }: { entries: OutcomeEntries; made: MainEstimates; result: OutcomeResult },
+): Checked {
+  const { outcome, pooled } = result
+  const isBorder = study.line.kind === 'border'
+  const ladders = laddersOf(made.basis, made.pooled, {
+    donut: study.estimation.donut,
+    isFull: study.checks === 'full',
+    hasPlacebos: !isBorder,
+  })
+  const placebos = shared.placebos && placeboBorders(study, inputs, shared.placebos, outcome, made.pooled)
+  const checks = [
+    ...shared.rows,
+    ...missingOutcome(study, inputs.table, placed, outcome, entries),
+    ...(ladders && isEstimated(pooled) ? ladderChecks(ladders, pooled.corrected, study.estimation.level, holm) : []),
+    ...(placebos?.checks ?? []),
+    ...(isBorder ? shiftedLines(study, inputs, placed, outcome, made.pooled).checks : []),
+    ...(isBorder ? likeNeighbours(study, inputs.table, made) : []),
+  ]
+  const facts = { placed: placed.units, missing: entries.missing, distinct: fewestDistinct(made) }
+  return {
+    checks,
+    ...(ladders ? { ladders } : {}),
+    ...(placebos?.exhibit ? { placebo_borders: placebos.exhibit } : {}),
+    standards: standardsSheet(study, { ...result, checks }, facts),
+  }
+}
+
+function isEstimated(pooled: PooledJump): pooled is PooledJump & Jump {
+  return !('not_estimated' in pooled)
+}
+
+function fewestDistinct({ pooled }: MainEstimates): number | undefined {
+  if (hasReason(pooled)) return undefined
+  return Math.min(pooled.jump.distinct.untreated, pooled.jump.distinct.treated)
+}
+
+/** Does the share of units that lack the outcome jump at the line? */
+function missingOutcome(
+  study: Study,
+  table: Table,
+  placed: Placed,
+  outcome: string,
+  { missing }: OutcomeEntries,
+): CheckResult[] {
+  const check = 'missing outcome'
+  if (missing === 0) return [{ check, verdict: 'fine', says: 'no unit placed lacks the outcome' }]
+  const values = numbersOf(table, outcome).map((value) => (Number.isFinite(value) ? 0 : 1))
+  const made = pooledOnly(study, placed, entriesOfValues(study, table, placed, values))
+  if (hasReason(made)) return [{ check, verdict: 'not possible', says: made.reason }]
+  const { estimate, standardError, low, high, p } = made.jump.corrected
+  const jumps = p < 1 - study.estimation.level
+  const says = `the share of units without the outcome ${jumps ? 'jumps' : 'moves'} by ${shown(estimate)} (${shown(low)} to ${shown(high)})`
+  return [{ check, statistic: estimate / standardError, p, verdict: jumps ? 'doubt' : 'fine', says }]
+}
+
+/** Neighbours whose residuals are alike make units count for less than they seem to. */
+function likeNeighbours(study: Study, table: Table, { pooled, basis }: MainEstimates): CheckResult[] {
+  const check = 'spatial correlation'
+  if (hasReason(pooled)) return [{ check, verdict: 'not possible', says: pooled.reason }]
+  const [lon, lat] = positionColumns(study).map((name) => numbersOf(table, name))
+  const { spatial, variance } = basis.options
+  const neighbourhood = spatial ? { withinMetres: spatial.cutoffMetres } : { nearest: 8 }
+  const found = moranNearLine(pooled.sample, pooled.jump, lon, lat, neighbourhood)
+  if (!found.ok) return [{ check, verdict: 'not possible', says: found.reason }]
+  const isAlike = found.p < 1 - study.estimation.level
+  const allowsForIt = variance === 'spatial' || variance === 'clusters' || variance === 'few-clusters'
+  const meaning = !isAlike
+    ? 'no more alike than chance'
+    : allowsForIt
+      ? `neighbours are alike, which the variance (${variance}) allows for`
+      : `neighbours are alike, which the variance (${variance}) does not allow for: name clusters or a spatial cutoff`
+  return [
+    {
+      check,
+      statistic: found.i,
+      p: found.p,
+      verdict: isAlike && !allowsForIt ? 'doubt' : 'fine',
+      says: `Moran's I of the residuals near the line is ${shown(found.i)}, ${shown(found.expected)} by chance alone: ${meaning}`,
+    },
+  ]
+}
