@@ -137,6 +137,8 @@ export interface Jump {
   readonly variance: string
   /** Number of clusters, where the variance is clustered. */
   readonly clusters?: number
+  /** As many equal ones would give as sure a variance (Carter, Schnepel & Steigerwald 2017). */
+  readonly effective_clusters?: number
   readonly units_in_bandwidth: BySide
   readonly bandwidth: BySide
   readonly bias_bandwidth: BySide
@@ -164,7 +166,7 @@ export interface BiasAware extends Interval {
   readonly smoothness_from: 'rule' | 'study'
   readonly bandwidth: BySide
   /** The interval over a range of smoothness. */
-  readonly curve: readonly ({ readonly smoothness: number } & Interval)[]
+  readonly curve?: readonly ({ readonly smoothness: number } & Interval)[]
 }
 
 /** The first stage, and the effect of eligibility, which no weakness of it can touch. */

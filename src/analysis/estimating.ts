@@ -2,7 +2,9 @@
 
 import { centroidSuspicion, snapAgainstBandwidth } from '../borders/index.js'
 import {
+  type BiasAwareEstimated,
   bandwidthsFor,
+  biasAware,
   buildSample,
   covarianceMatrix,
   type Entries,
@@ -18,7 +20,14 @@ import {
 } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
 import type { EstimationPart, Study } from '../study/index.js'
-import { compareLines, type LineEffects, type PoolOptions, poolLines, targetEffect } from '../thresholds/index.js'
+import {
+  compareLines,
+  type LineEffects,
+  type PoolOptions,
+  poolBiasAware,
+  poolLines,
+  targetEffect,
+} from '../thresholds/index.js'
 import { metresPerUnit } from './border.js'
 import { entriesOfLine, type OutcomeEntries } from './entries.js'
 import type { Placed } from './placing.js'
@@ -26,6 +35,8 @@ import type { Placed } from './placing.js'
 export interface LineEstimate {
   readonly jump: JumpFit
   readonly sample: Sample
+  /** Of the main estimates alone; for another order than 1 it has a reason. */
+  readonly biasAware?: BiasAwareEstimated
 }
 
 /** All lines' entries on one distance, sorted; with the donut still in it. */
@@ -86,13 +97,13 @@ export function estimateMain(
   const { lineVariance, pooledVariance } = variancesOf(study, hasClusters)
   const guard = bandwidthGuard(study, placed)
   const lines = placement.lines.map((_, line) => {
-    const options = jumpOptions(study.estimation, lineVariance, placed.spatial)
+    const options = jumpOptions(study.estimation, lineVariance, placed)
     const estimate = guard(estimateLine(entriesOfLine(entries, line), study.estimation, options))
     progress(line + 1)
     return estimate
   })
   const basis = poolBasis(study, placed, entries, lines.length === 1 ? lineVariance : pooledVariance)
-  const pooled = guard(lines.length === 1 ? alone(lines[0]) : estimatePooled(basis, study.estimation.donut))
+  const pooled = guard(lines.length === 1 ? alone(lines[0]) : withBiasAware(basis, study.estimation))
   const ids = placement.lines.map((line) => line.id)
   const { effects, index } = effectsOf(ids, lines, placed.spatial)
   const target = targetOf(study, effects, index, lines, shares)
@@ -117,8 +128,8 @@ function variancesOf(study: Study, hasClusters: boolean): { lineVariance: Varian
   const { variance, spatial } = study.estimation
   if (spatial !== undefined) return { lineVariance: 'spatial', pooledVariance: 'spatial' }
   const byPiece = study.line.kind === 'border' && !hasClusters
-  if (variance !== undefined && variance !== 'clusters')
-    return { lineVariance: variance as Variance, pooledVariance: variance as Variance }
+  if (variance === 'few-clusters') return { lineVariance: hasClusters ? variance : 'hc2', pooledVariance: variance }
+  if (variance !== undefined && variance !== 'clusters') return { lineVariance: variance, pooledVariance: variance }
   return {
     lineVariance: hasClusters ? 'clusters' : 'hc2',
     pooledVariance: hasClusters || byPiece ? 'clusters' : 'hc2',
@@ -155,20 +166,31 @@ function snapNotes({ line }: Study, made: readonly OrReason<LineEstimate>[]): st
   return doubt === undefined ? [] : [doubt.says]
 }
 
-function jumpOptions(estimation: EstimationPart, variance: Variance, spatial: SpatialPlaces | undefined): JumpOptions {
+function jumpOptions(estimation: EstimationPart, variance: Variance, { spatial, crossed }: Placed): JumpOptions {
   const { order, kernel, reference, level } = estimation
-  return { order, kernel, variance, reference, level, ...(spatial ? { spatial } : {}) }
+  const isCrossed = crossed && variance === 'clusters'
+  return {
+    order,
+    kernel,
+    variance,
+    reference,
+    level,
+    ...(spatial ? { spatial } : {}),
+    ...(isCrossed ? { crossed } : {}),
+  }
 }
 
 function estimateLine(entries: Entries, estimation: EstimationPart, options: JumpOptions): OrReason<LineEstimate> {
   const { variance } = options
   const sample = buildSample(entries, estimation.donut)
-  const clustered = variance === 'clusters'
+  const clustered = variance === 'clusters' || variance === 'few-clusters'
   const neighbours = variance === 'neighbours' ? neighbourResidualsOf(sample) : undefined
   const chosen = bandwidthsFor(sample, estimation.bandwidth, { ...estimation, clustered }, neighbours)
   if (!chosen.ok) return { reason: chosen.reason }
   const estimated = jumpAt(sample, chosen.bandwidths, options, neighbours)
-  return estimated.ok ? { jump: estimated.jump, sample } : { reason: estimated.reason }
+  if (!estimated.ok) return { reason: estimated.reason }
+  const { smoothness } = estimation
+  return { jump: estimated.jump, sample, biasAware: biasAware(sample, { ...options, smoothness, multiples: [] }) }
 }
 
 /** The pooled estimate without any line's own: what checks need of other outcomes and other lines. */
@@ -188,19 +210,27 @@ function poolBasis(study: Study, placed: Placed, entries: OutcomeEntries, varian
   const { estimation, pooling } = study
   const hasClusters = placed.cluster !== undefined
   const lines = entries.start.length - 1
-  const byPiece = variance === 'clusters' && !hasClusters
+  const byPiece = (variance === 'clusters' || variance === 'few-clusters') && !hasClusters
   const all = byPiece ? { ...entries.all, cluster: entries.all.group } : entries.all
   return {
     sample: buildSample(all),
     lines,
     options: {
-      ...jumpOptions(estimation, variance, placed.spatial),
+      ...jumpOptions(estimation, variance, placed),
       bandwidth: estimation.bandwidth,
       sides: estimation.sides,
-      clustered: variance === 'clusters',
+      clustered: variance === 'clusters' || variance === 'few-clusters',
       fixedEffects: pooling.fixedEffects && lines > 1,
     },
   }
+}
+
+/** The pooled estimate with its bias-aware interval, and the curve of that over smoothness. */
+function withBiasAware(basis: PoolBasis, { donut, smoothness }: EstimationPart): OutcomeEstimates['pooled'] {
+  const pooled = estimatePooled(basis, donut)
+  if (hasReason(pooled)) return pooled
+  const sample = outsideDonut(basis.sample, donut)
+  return { ...pooled, biasAware: poolBiasAware(sample, basis.lines, { ...basis.options, smoothness }) }
 }
 
 /** Pools the entries with |x| at or above `donut`. */

@@ -1,6 +1,6 @@
 /** From tables and layers to a placement: the one step that knows whether a line is a cutoff or a border. */
 import { beyondCap } from '../borders/index.js'
-import { type SpatialPlaces, spatialPlaces } from '../jump/index.js'
+import { type CrossedClusters, crossClusters, type SpatialPlaces, spatialPlaces } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
 import type { Placement, SetAside } from '../placement.js'
 import type { Checked } from '../problem.js'
@@ -22,8 +22,8 @@ export interface Placed extends Partial<BorderFacts> {
   readonly missingKeys: readonly MissingKey[]
   /** Cluster of each row, from 0, or -1: the study's column, or the position where repeated points are clustered. */
   readonly cluster?: Int32Array
-  /** The same by the second column, where the study clusters by two. */
-  readonly crossedCluster?: Int32Array
+  /** What pairs of clusters stand for, where the study clusters by two columns: `cluster` has pairs then. */
+  readonly crossed?: CrossedClusters
   /** Where rows stand and how far noise reaches, for a spatial variance. */
   readonly spatial?: SpatialPlaces
 }
@@ -64,7 +64,7 @@ export function placeStudy(study: Study, inputs: AnalysisInputs, progress?: Prog
       ledger,
       missingKeys: located.value.missingKeys ?? [],
       cluster: usable?.cluster,
-      crossedCluster: usable?.crossed,
+      crossed: usable?.crossed,
       spatial: spatialOf(study, table),
     },
   }
@@ -120,7 +120,7 @@ function pairsOf(placement: Placement): number {
 
 interface Usability {
   readonly cluster: Int32Array | undefined
-  readonly crossed: Int32Array | undefined
+  readonly crossed: CrossedClusters | undefined
   readonly reasonAgainst: (row: number) => string | undefined
 }
 
@@ -129,7 +129,9 @@ function usabilityOf(study: Study, table: Table, located: Located): Usability | 
   const weight = study.records.weight === undefined ? undefined : numbersOf(table, study.records.weight)
   const { repeated } = located
   const points = study.line.kind === 'border' && repeated ? study.line.repeatedPoints : 'keep'
-  const [byColumn, crossed] = clusterColumns(study).map((name) => labelsOf(table, name).codes)
+  const [first, second] = clusterColumns(study).map((name) => labelsOf(table, name).codes)
+  const pairs = second && pairsOfClusters(first, second)
+  const byColumn = pairs?.cluster ?? first
   const cluster = byColumn ?? (points === 'cluster' ? repeated?.point : undefined)
   const key = study.records.id === undefined ? undefined : labelsOf(table, study.records.id).codes
   const beyond =
@@ -137,12 +139,26 @@ function usabilityOf(study: Study, table: Table, located: Located): Usability | 
   if (!weight && !cluster && !beyond) return undefined
   return {
     cluster,
-    crossed,
+    crossed: pairs?.crossed,
     reasonAgainst: (row) => {
       if (beyond?.[row]) return 'repeated point beyond the cap'
-      return unusable(weight?.[row], cluster?.[row]) ?? unusable(undefined, crossed?.[row])
+      return unusable(weight?.[row], cluster?.[row])
     },
   }
+}
+
+/** Codes of pairs; -1 where either is missing. */
+function pairsOfClusters(first: Int32Array, second: Int32Array): ReturnType<typeof crossClusters> {
+  const rows = first.map((_, row) => row).filter((row) => first[row] >= 0 && second[row] >= 0)
+  const { cluster: found, crossed } = crossClusters(
+    rows.map((row) => first[row]),
+    rows.map((row) => second[row]),
+  )
+  const cluster = new Int32Array(first.length).fill(-1)
+  rows.forEach((row, i) => {
+    cluster[row] = found[i]
+  })
+  return { cluster, crossed }
 }
 
 /** Takes out the entries of rows with a reason against them, counted by row. */

@@ -1,7 +1,7 @@
 /** Estimates as they stand in results.json. */
 
 import type { Piece } from '../borders/index.js'
-import type { Inference, JumpFit, Variance } from '../jump/index.js'
+import type { BiasAwareEstimated, Inference, JumpFit, Variance } from '../jump/index.js'
 import type { Line, Placement } from '../placement.js'
 import type {
   BorderResult,
@@ -15,7 +15,7 @@ import type {
 } from '../results.js'
 import type { EstimationPart, Study } from '../study/index.js'
 import type { BorderFacts } from './border.js'
-import { hasReason, type MainEstimates, type OutcomeEstimates } from './estimating.js'
+import { hasReason, type LineEstimate, type MainEstimates, type OutcomeEstimates } from './estimating.js'
 
 export function outcomeResult(
   study: Study,
@@ -31,7 +31,7 @@ export function outcomeResult(
       const estimate = estimates.lines[i]
       return hasReason(estimate)
         ? { line: line.id, not_estimated: estimate.reason }
-        : { line: line.id, ...jumpResult(estimate.jump, estimation, estimates.lineVariance) }
+        : { line: line.id, ...jumpResult(estimate, estimation, estimates.lineVariance) }
     }),
     pooled: pooledResult(estimates, estimation, lines),
     target: targetResult(estimates, lines),
@@ -46,7 +46,7 @@ export function pooledResult(estimates: MainEstimates, estimation: EstimationPar
   const { pooled } = estimates
   if (hasReason(pooled)) return { not_estimated: pooled.reason }
   const variance = lines.length === 1 ? estimates.lineVariance : estimates.pooledVariance
-  const jump = jumpResult(pooled.jump, estimation, variance)
+  const jump = jumpResult(pooled, estimation, variance)
   const left = pooled.withoutEffect
   const without = left > 0 ? [`${left} entries of lines without a unit within the bandwidth are left out`] : []
   const all = [...(jump.notes ?? []), ...without, ...estimates.notes]
@@ -73,20 +73,43 @@ function weightsByLine(lines: readonly Line[], weights: Float64Array): Record<st
   return Object.fromEntries(lines.map((line, i) => [line.id, weights[i]]))
 }
 
-export function jumpResult(jump: JumpFit, estimation: EstimationPart, variance: Variance): Jump {
+export function jumpResult({ jump, biasAware }: LineEstimate, estimation: EstimationPart, variance: Variance): Jump {
   const notes = notesOn(jump)
   return {
     order: estimation.order,
     kernel: estimation.kernel,
     variance,
     ...(jump.clusters === undefined ? {} : { clusters: jump.clusters }),
+    ...(jump.effectiveClusters === undefined ? {} : { effective_clusters: jump.effectiveClusters }),
     units_in_bandwidth: jump.unitsInBandwidth,
     bandwidth: jump.bandwidths.h,
     bias_bandwidth: jump.bandwidths.b,
     at_line: jump.atLine,
     plain: estimateResult(jump.plain),
     corrected: estimateResult(jump.corrected),
+    ...biasAwareResult(biasAware),
     ...(notes.length > 0 ? { notes } : {}),
+  }
+}
+
+function biasAwareResult(made: BiasAwareEstimated | undefined): Pick<Jump, 'bias_aware' | 'bias_aware_reason'> {
+  if (!made) return {}
+  if (!made.ok) return { bias_aware: null, bias_aware_reason: made.reason }
+  const { estimate, standardError, worstBias, smoothness, smoothnessFrom, bandwidth, low, high, curve } = made.interval
+  return {
+    bias_aware: {
+      estimate,
+      standard_error: standardError,
+      worst_bias: worstBias,
+      smoothness,
+      smoothness_from: smoothnessFrom === 'rule' ? 'rule' : 'study',
+      bandwidth,
+      low,
+      high,
+      ...(curve.length > 0
+        ? { curve: curve.map((one) => ({ smoothness: one.smoothness, low: one.low, high: one.high })) }
+        : {}),
+    },
   }
 }
 
@@ -109,7 +132,7 @@ function notesOn(jump: JumpFit): string[] {
   for (const name of ['untreated', 'treated'] as const) {
     if (jump.distinct[name] >= 10) continue
     const values = `${jump.distinct[name]} distinct values within the bandwidth on the ${name} side`
-    notes.push(`only ${values}: the interval does not allow for what may happen between them`)
+    notes.push(`only ${values}: use the bias-aware interval, which allows for what may happen between them`)
   }
   return notes
 }

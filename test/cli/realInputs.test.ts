@@ -26,6 +26,7 @@ line:
   piece: 150
   reach: 400
 estimation: {bandwidth: 150}
+checks: none
 `
 
 const athensStudy = `
@@ -34,6 +35,7 @@ records: {file: flats.csv, id: id, position: [lon, lat]}
 outcomes: [price_per_sqm, size]
 line: {zones: districts.geojson, zone_name: district, treated: ['5', '7'], unit: m, piece: 1500, snap: 15}
 estimation: {bandwidth: 900}
+checks: none
 `
 
 interface UnitRow {

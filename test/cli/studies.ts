@@ -105,6 +105,7 @@ line:
   score: income
   cutoff: 50
   treated: below
+checks: none
 `,
     'households.csv': `${lines.join('\n')}\n`,
   }
@@ -132,6 +133,7 @@ line:
   score: grade
   cutoff: {schedule: cutoffs.csv, by: [year, region], value: cutoff}
   treated: at-or-above
+checks: none
 `,
     'pupils.csv': `${lines.join('\n')}\n`,
     'cutoffs.csv': `year,region,cutoff\n${schedule.join('\n')}\n`,
@@ -159,6 +161,7 @@ line:
   treated: [East]
   piece: 1200
   barriers: [{file: river.geojson, within: 10}]
+checks: none
 `,
     'leases.csv': `${lines.join('\n')}\n`,
     'zones.geojson': layer(
