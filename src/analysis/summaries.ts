@@ -157,9 +157,9 @@ export function lineSummaries(placement: Placement, pieces: readonly Piece[] = [
 }
 
 /** Degrees: a piece that turns by more has a corner (common practice, no source). */
-const cornerTurn = 45
+export const cornerTurn = 45
 
-const hasCorner = (piece: Piece) => piece.largestTurnDegrees > cornerTurn
+export const hasCorner = (piece: Piece) => piece.largestTurnDegrees > cornerTurn
 
 export function borderResult({ waterfall, layers, conflicts, repeated, border }: BorderFacts): BorderResult {
   const { units, distinct, repeatedShare, most } = repeated

@@ -13,7 +13,7 @@ import { estimateMain, hasReason, type MainEstimates } from './estimating.js'
 import type { AnalysisInputs, Progress } from './inputs.js'
 import { type Placed, placeStudy } from './placing.js'
 import { sharesOfLines } from './shares.js'
-import { pooledResult, targetResult } from './summaries.js'
+import { cornerTurn, hasCorner, pooledResult, targetResult } from './summaries.js'
 
 /** A variant ready to be estimated. */
 export interface PlacedVariant {
@@ -44,7 +44,7 @@ export function placeVariants(
   })
   const known = new Set(written.flatMap(({ name, study: other }) => [name, numbersKey(other)]))
   const isNew = ({ name, study: other }: NamedStudy) => !known.has(name) && !known.has(numbersKey(other))
-  const all = [...written, ...usualVariants(study, inputs).filter(isNew)]
+  const all = [...written, ...usualVariants(study, inputs, placed).filter(isNew)]
   const ready: PlacedVariant[] = []
   const problems: Problem[] = []
   all.forEach((variant, i) => {
@@ -57,7 +57,7 @@ export function placeVariants(
 }
 
 /** What a referee asks of a border: the other ways to settle conflicts, and each rule about its pieces switched off. */
-function usualVariants(study: Study, inputs: AnalysisInputs): NamedStudy[] {
+function usualVariants(study: Study, inputs: AnalysisInputs, { border }: Placed): NamedStudy[] {
   const { line } = study
   if (line.kind !== 'border') return []
   const beside = (name: string, other: Partial<BorderLine>, read: Partial<AnalysisInputs> = {}): NamedStudy => ({
@@ -65,6 +65,9 @@ function usualVariants(study: Study, inputs: AnalysisInputs): NamedStudy[] {
     study: { ...study, line: { ...line, ...other } },
     inputs: { ...inputs, ...read },
   })
+  const inUse = (border?.pieces ?? []).filter(({ setAside }) => setAside === undefined)
+  const turning = inUse.filter(hasCorner).length
+  const turns = turning > 0 && turning < inUse.length
   const conflicts = (['set-aside', 'map', 'record'] as const).filter((way) => way !== line.onConflict)
   return [
     ...(line.side === undefined
@@ -74,7 +77,11 @@ function usualVariants(study: Study, inputs: AnalysisInputs): NamedStudy[] {
         )),
     ...(line.barriers.length > 0 ? [beside('barriers kept', { barriers: [] }, { barriers: [] })] : []),
     ...(line.overlaps.length > 0 ? [beside('overlaps kept', { overlaps: [] }, { overlaps: [] })] : []),
-    ...(line.largestTurn === undefined ? [] : [beside('turning pieces kept', { largestTurn: undefined })]),
+    ...(line.largestTurn === undefined
+      ? turns
+        ? [beside(`pieces that turn by more than ${cornerTurn} degrees left out`, { largestTurn: cornerTurn })]
+        : []
+      : [beside('turning pieces kept', { largestTurn: undefined })]),
     ...(line.corner > 0 ? [beside('corners kept', { corner: 0 })] : []),
   ]
 }

@@ -36,6 +36,8 @@ export interface OutcomeView {
 export interface Choices {
   readonly level: number
   readonly reference: string
+  /** The interval to quote. */
+  readonly interval: string
   readonly bandwidth: string
   readonly order: number
   readonly donut: number
@@ -117,6 +119,7 @@ function choicesOf(resolvedStudy: string): Choices {
   return {
     level,
     reference: name(study.estimation?.reference) ?? 't',
+    interval: name(study.estimation?.interval) ?? 'corrected',
     bandwidth: ruleOf(study.estimation?.bandwidth),
     order: Number(study.estimation?.order ?? 1),
     donut: Number(study.estimation?.donut ?? 0),

@@ -1,7 +1,7 @@
 /** The answer in words: sentences made of the results' own numbers. */
-import type { Comparison, Estimate, Jump, Target } from '../../results.js'
+import type { Comparison, Jump, Target } from '../../results.js'
 import { intervalText } from '../lineTable.js'
-import { cell, count, fixed, type Places, pWords } from '../numbers.js'
+import { cell, count, fixed, type Places, pWords, significant } from '../numbers.js'
 import { pooledPlaces, targetWords } from '../pooledTable.js'
 import {
   bundledLayers,
@@ -33,12 +33,13 @@ export function answerOf(view: View, outcome: OutcomeView): Answer {
   const places = pooledPlaces(outcome)
   const jump = isEstimated<Jump & { weights: unknown }>(pooled) ? pooled : undefined
   return {
-    ...(jump ? { headline: headlineOf(view, jump.corrected, places) } : {}),
+    ...(jump ? { headline: headlineOf(view, jump, places) } : {}),
     sentences: [
       jump
         ? pooledSentence(view, outcome, jump, places)
         : `There is no pooled estimate: ${reasonText(view, 'not_estimated' in pooled ? pooled.not_estimated : '')}.`,
       targetSentence(view, target, places),
+      ...biasAwareSentence(view, jump, places),
       comparison
         ? differenceSentence(view, comparison, places)
         : `The ${view.words.lines} were not compared: ${reasonText(view, reason ?? 'fewer than two have an estimate')}.`,
@@ -47,12 +48,16 @@ export function answerOf(view: View, outcome: OutcomeView): Answer {
   }
 }
 
-function headlineOf(view: View, estimate: Estimate, places: Places) {
-  const sign = estimate.estimate > 0 ? '+' : ''
+/** The interval that the study asks for; the bias-aware one comes without a p-value. */
+function headlineOf(view: View, jump: Jump, places: Places): NonNullable<Answer['headline']> {
+  const biasAware = view.choices.interval === 'bias-aware' ? jump.bias_aware : undefined
+  const { estimate } = biasAware ?? jump.corrected
+  const sign = estimate > 0 ? '+' : ''
+  const kind = biasAware ? 'bias-aware interval' : 'interval'
   return {
-    estimate: `${sign}${fixed(estimate.estimate, places)}`,
-    interval: `${view.words.level} interval ${intervalText(estimate, places)}`,
-    p: pWords(estimate.p),
+    estimate: `${sign}${fixed(estimate, places)}`,
+    interval: `${view.words.level} ${kind} ${intervalText(biasAware ?? jump.corrected, places)}`,
+    p: biasAware ? `curvature up to ${significant(biasAware.smoothness)}` : pWords(jump.corrected.p),
     ...(bundledLayers(view).length > 0 ? { bundle: 'a bundle of rules' } : {}),
   }
 }
@@ -69,6 +74,15 @@ function pooledSentence(view: View, outcome: OutcomeView, jump: Jump, places: Pl
     : `The interval excludes zero.`
   const means = `The fitted means there are ${fixed(jump.at_line.untreated, places)} untreated and ${fixed(jump.at_line.treated, places)} treated (plain fit).`
   return `${start}, ${outcome.result.outcome} is ${way} just inside the treated side of ${view.words.theLine} than just outside it (corrected estimate; ${view.words.level} interval ${intervalText(corrected, places)}, ${pWords(corrected.p)}). ${verdict} ${means}`
+}
+
+function biasAwareSentence(view: View, jump: Jump | undefined, places: Places): string[] {
+  const found = jump?.bias_aware
+  if (!found) return []
+  const from = found.smoothness_from === 'rule' ? 'by a rule of thumb from the data' : 'as the study says'
+  return [
+    `If the curves bend by no more than ${significant(found.smoothness)} (second derivative, ${from}), the ${view.words.level} bias-aware interval is ${intervalText(found, places)}, about ${fixed(found.estimate, places)}, at its own bandwidth.`,
+  ]
 }
 
 function targetSentence(view: View, target: Target, places: Places): string {

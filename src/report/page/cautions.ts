@@ -127,18 +127,32 @@ function multiple(view: View): Caution[] {
   ]
 }
 
+/** Clusters of unlike size count for less than their number. */
+function effectiveWords(view: View): string {
+  const least = Math.min(
+    ...view.outcomes.flatMap(({ result }) =>
+      [result.pooled, ...result.lines].flatMap((jump) =>
+        isEstimated<Jump>(jump as Jump) ? [(jump as Jump).effective_clusters ?? Infinity] : [],
+      ),
+    ),
+  )
+  return least < Infinity ? `, worth ${fixed(least, 1)} equal ones at least` : ''
+}
+
 function clustering(view: View): Caution[] {
   const clusters = view.outcomes.flatMap(({ result }) => {
     const jumps = [result.pooled, ...result.lines].flatMap((jump) =>
       isEstimated<Jump>(jump as Jump) ? [jump as Jump] : [],
     )
-    return jumps.flatMap((jump) => (jump.clusters !== undefined && jump.clusters < fewClusters ? [jump.clusters] : []))
+    return jumps.flatMap((jump) =>
+      jump.variance === 'clusters' && jump.clusters !== undefined && jump.clusters < fewClusters ? [jump.clusters] : [],
+    )
   })
   if (clusters.length === 0) return []
   return [
     {
       head: 'Few clusters',
-      text: `Some standard errors rest on only ${count(Math.min(...clusters))} clusters; with fewer than ${fewClusters} they tend to be too small.`,
+      text: `Some standard errors rest on only ${count(Math.min(...clusters))} clusters${effectiveWords(view)}; with fewer than ${fewClusters} they tend to be too small. variance: few-clusters corrects for that.`,
     },
   ]
 }
