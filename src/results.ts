@@ -289,6 +289,8 @@ export type Rung =
       readonly estimate: number
       readonly standard_error: number
       readonly p: number
+      /** Of being the study's own estimate, shared units accounted for. */
+      readonly p_difference?: number
     } & Interval)
   | NotEstimated
 

@@ -15,41 +15,45 @@ export function ladderChecks(
   holm: Holm,
 ): CheckResult[] {
   return [
-    steadiness('bandwidth', 'between 0.5 and 2 times the bandwidth', ladders.bandwidth, study),
-    steadiness('donut', 'with up to a fifth of the bandwidth left out at the line', ladders.donut, study),
-    steadiness('order and kernel', 'at other orders and kernels', ladders.order_kernel, study),
+    steadiness('bandwidth', 'between 0.5 and 2 times the bandwidth', ladders.bandwidth, study, level, holm),
+    steadiness('donut', 'with up to a fifth of the bandwidth left out at the line', ladders.donut, study, level, holm),
+    steadiness('order and kernel', 'at other orders and kernels', ladders.order_kernel, study, level, holm),
     ...(ladders.placebo_lines.length > 0 ? placeboChecks(ladders.placebo_lines, level, holm) : []),
   ]
 }
 
-/** Fine while every estimate stays in the study's own interval; a change of sign that is significant fails. */
+/** Fine while no estimate differs from the study's by more than their shared units allow; the other sign fails. */
 function steadiness(
   check: string,
   where: string,
   rungs: readonly Rung[],
   study: Interval & { readonly estimate: number },
+  level: number,
+  holm: Holm,
 ): CheckResult {
   const made = rungs.filter(isMade)
   if (made.length === 0) return { check, verdict: 'not possible', says: `no estimate could be made ${where}` }
   const estimates = made.map(({ estimate }) => estimate)
-  const range = `${where} the estimate runs from ${shown(Math.min(...estimates))} to ${shown(Math.max(...estimates))}`
-  const own = `the study's interval ${shown(study.low)} to ${shown(study.high)}`
   const lost = rungs.length - made.length
   const missing = lost > 0 ? `; ${lost} of ${rungs.length} could not be estimated` : ''
+  const range = `${where} the estimate runs from ${shown(Math.min(...estimates))} to ${shown(Math.max(...estimates))}${missing}`
   const against = made.filter(
     ({ estimate, low, high }) =>
       estimate * study.estimate < 0 && (low > 0 || high < 0) && (study.low > 0 || study.high < 0),
   )
+  const p = made.map(({ p_difference: own }) => own ?? 1)
+  const adjusted = holm(p)
+  const smallest = { p: Math.min(...p), p_holm: Math.min(...adjusted) }
   if (against.length > 0) {
-    const says = `${range}: ${against.length} of ${made.length} have the other sign and exclude 0${missing}`
-    return { check, verdict: 'fail', says }
+    const says = `${range}: ${against.length} of ${made.length} have the other sign and exclude 0`
+    return { check, ...smallest, verdict: 'fail', says }
   }
-  const outside = estimates.filter((estimate) => !(estimate >= study.low && estimate <= study.high)).length
+  const differ = adjusted.filter((own) => own < 1 - level).length
   const says =
-    outside === 0
-      ? `${range}, all inside ${own}${missing}`
-      : `${range}: ${outside} of ${made.length} lie outside ${own}${missing}`
-  return { check, verdict: outside === 0 ? 'fine' : 'doubt', says }
+    differ === 0
+      ? `${range}: none differs from the study's by more than chance`
+      : `${range}: ${differ} of ${made.length} differ from the study's by more than chance`
+  return { check, ...smallest, verdict: differ === 0 ? 'fine' : 'doubt', says }
 }
 
 /** One row for each line that is none, p-values adjusted for their number. */

@@ -2,7 +2,8 @@
  * The pooled estimate made again with one choice changed: bandwidths, a hole at the line, orders and kernels, and lines
  * that are none, drawn inside one side. Sorted entries are shared by all.
  */
-import { type Kernel, outsideDonut, splitSide } from '../jump/index.js'
+import { covarianceMatrix, type JumpFit, type Kernel, outsideDonut, splitSide } from '../jump/index.js'
+import { studentTwoSidedP } from '../math/index.js'
 import type { Ladders, Rung } from '../results.js'
 import { estimatePooled, hasReason, type OutcomeEstimates, type PoolBasis } from './estimating.js'
 
@@ -40,6 +41,20 @@ export function laddersOf(
       bias: { untreated: b.untreated * scale, treated: b.treated * scale },
     },
   })
+  const { influence } = pooled.jump
+  const { spatial } = basis.options
+  const beside = (made: OutcomeEstimates['pooled']): Rung => {
+    const rung = rungOf(made)
+    if (hasReason(made) || 'not_estimated' in rung) return rung
+    return {
+      ...rung,
+      p_difference: differenceP(
+        pooled.jump,
+        made.jump,
+        covarianceMatrix([influence, made.jump.influence], spatial).matrix,
+      ),
+    }
+  }
   const own = basis.options
   const shapes = [0, 1, 2, 3].flatMap((order) => kernels.map((kernel) => ({ order, kernel })))
   const kept = shapes.filter(
@@ -49,14 +64,22 @@ export function laddersOf(
   )
   const narrower = Math.min(h.untreated, h.treated)
   return {
-    bandwidth: scales.map((scale) => ({ scale, ...rungOf(again(fixed(scale))) })),
+    bandwidth: scales.map((scale) => ({ scale, ...beside(again(fixed(scale))) })),
     donut: holes
       .map((share) => share * narrower)
       .filter((hole) => hole > donut)
-      .map((hole) => ({ donut: hole, ...rungOf(again(fixed(1), hole)) })),
-    order_kernel: kept.map((shape) => ({ ...shape, ...rungOf(again(shape)) })),
+      .map((hole) => ({ donut: hole, ...beside(again(fixed(1), hole)) })),
+    order_kernel: kept.map((shape) => ({ ...shape, ...beside(again(shape)) })),
     placebo_lines: hasPlacebos ? placeboLines(basis, donut) : [],
   }
+}
+
+/** Two-sided, normal: of the two estimates being the same, with the covariance that shared units give them. */
+function differenceP({ corrected: a }: JumpFit, { corrected: b }: JumpFit, matrix: Float64Array): number {
+  const standardError = Math.sqrt(Math.max(0, matrix[0] + matrix[3] - 2 * matrix[1]))
+  const difference = b.estimate - a.estimate
+  if (!(standardError > 1e-9 * a.standardError)) return difference === 0 ? 1 : 0
+  return studentTwoSidedP(difference / standardError, Number.POSITIVE_INFINITY)
 }
 
 function rungOf(made: OutcomeEstimates['pooled']): Rung {

@@ -26,13 +26,7 @@ export type { MultiPolygonCoords } from './geojson.js'
 export { type LayersAlong, layersAlong } from './layersAlong.js'
 export { borderOfLines, type Lines, linesOf, type MeasuredColumns, measuredOfColumns } from './lines.js'
 export { type LocalMetres, localMetres } from './localMetres.js'
-export {
-  type Measured,
-  type MeasuredBorder,
-  measureUnits,
-  putMeasured,
-  roomFor,
-} from './measured.js'
+export { type Measured, type MeasuredBorder, measureUnits } from './measured.js'
 export { metresToCorner, type RunnerUps, runnerUps } from './neighbourhood.js'
 export type { PieceFacts } from './pieceFacts.js'
 export type { Piece } from './pieces.js'

@@ -78,7 +78,7 @@ export function measureUnits(
 }
 
 /** Room for the answers of `count` units. */
-export function roomFor(count: number): Measured {
+function roomFor(count: number): Measured {
   return {
     zone: new Int32Array(count),
     piece: new Int32Array(count),

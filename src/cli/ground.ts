@@ -6,7 +6,7 @@ import type { Measured, MeasuredBorder } from '../borders/index.js'
 import type { Checked } from '../problem.js'
 import { numbersOf } from '../records/index.js'
 import type { Study } from '../study/index.js'
-import { type AskedPart, type MeasuredPart, sharedBorder, type WorkerStart } from './groundParts.js'
+import { type AskedPart, sharedBorder, sharedRoom, type WorkerStart } from './groundParts.js'
 
 /** With fewer units a second thread takes longer to start than it saves. */
 const fewestUnits = 200_000
@@ -54,13 +54,12 @@ export async function inWorkers(
   threads: number,
   progress?: (done: number) => void,
 ): Promise<Measured> {
-  const { putMeasured, roomFor } = await import('../borders/index.js')
   const units = lon.length
   const partUnits = Math.max(1, Math.min(largestPart, Math.ceil(units / (partsEach * threads))))
-  const measured = roomFor(units)
+  const answers = sharedRoom(units)
   let asked = 0
   let done = 0
-  const workerData: WorkerStart = { border }
+  const workerData: WorkerStart = { border, answers }
   const workers = Array.from(
     { length: threads },
     () => new Worker(new URL('./groundWorker.js', import.meta.url), { workerData }),
@@ -77,9 +76,8 @@ export async function inWorkers(
       for (const worker of workers) {
         worker.on('error', fail)
         worker.on('exit', (code) => fail(new Error(`a measuring thread ended by itself, with code ${code}`)))
-        worker.on('message', (part: MeasuredPart) => {
-          putMeasured(measured, part.first, part.measured)
-          done += part.measured.zone.length
+        worker.on('message', (measured: number) => {
+          done += measured
           progress?.(done)
           if (done === units) finish()
           else ask(worker)
@@ -92,5 +90,5 @@ export async function inWorkers(
   } finally {
     await Promise.all(workers.map((worker) => worker.terminate()))
   }
-  return measured
+  return answers
 }

@@ -3,23 +3,29 @@ import type { Measured, MeasuredBorder } from '../borders/index.js'
 
 export interface WorkerStart {
   readonly border: MeasuredBorder
+  /** Where the answers of all units go, in memory that threads share. */
+  readonly answers: Measured
 }
 
-/** Units `first`, `first` + 1, and so on. */
+/** Units `first`, `first` + 1, and so on. When they are measured, the thread says how many they were. */
 export interface AskedPart {
   readonly first: number
   readonly lon: Float64Array
   readonly lat: Float64Array
 }
 
-export interface MeasuredPart {
-  readonly first: number
-  readonly measured: Measured
-}
-
-/** The memory of the answers, which moves with the message. */
-export function answersOf(measured: Measured): ArrayBuffer[] {
-  return Object.values(measured).map((values: Float64Array | Int32Array) => values.buffer as ArrayBuffer)
+/** Room for the answers of `units` units, in memory that threads share. */
+export function sharedRoom(units: number): Measured {
+  const integers = () => new Int32Array(new SharedArrayBuffer(4 * units))
+  const numbers = () => new Float64Array(new SharedArrayBuffer(8 * units))
+  return {
+    zone: integers(),
+    piece: integers(),
+    distanceMetres: numbers(),
+    footLon: numbers(),
+    footLat: numbers(),
+    positionMetres: numbers(),
+  }
 }
 
 /** What of a border units are measured by, its arrays in memory that threads share. */

@@ -1,7 +1,7 @@
 /** What `scarp measure` writes: one row for each unit read, placed or not. */
 import type { Placed } from '../analyze.js'
 import { manyZones, type RunnerUps } from '../borders/index.js'
-import type { OutColumn } from '../records/files.js'
+import type { NumberOfRow, OutColumn } from '../records/files.js'
 import type { Table } from '../records/index.js'
 
 /** The zone of a unit that lies in more than one. */
@@ -24,32 +24,32 @@ export function measuredColumns(table: Table, placed: Placed, extras: MeasuredEx
   const { placement, ground, border, reason, known } = placed
   if (!ground || !border || !reason || !known) throw new Error('nothing was placed on the ground')
   const { runnerUp, withoutCoordinates } = extras
-  const { rows } = table
-  const lineOfRow = new Int32Array(rows).fill(-1)
-  const sideOfRow = new Int32Array(rows).fill(-1)
-  const x = new Float64Array(rows).fill(Number.NaN)
-  const piece = new Float64Array(rows).fill(Number.NaN)
-  for (let e = 0; e < placement.unit.length; e++) {
-    const row = placement.unit[e]
-    lineOfRow[row] = placement.line[e]
-    sideOfRow[row] = placement.treated[e]
-    x[row] = placement.x[e]
-    piece[row] = placement.lines[placement.line[e]].piece ?? Number.NaN
-  }
-  const row: OutColumn = { kind: 'integer', name: 'row', values: Int32Array.from(x, (_, i) => i + 1) }
+  const { lines } = placement
+  const entryOf = entryFinder(placement.unit)
+  const ofEntry =
+    (numberAt: (entry: number) => number, otherwise: number): NumberOfRow =>
+    (row) => {
+      const entry = entryOf(row)
+      return entry < 0 ? otherwise : numberAt(entry)
+    }
+  const lineOf = ofEntry((entry) => placement.line[entry], -1)
+  const sideOf = ofEntry((entry) => placement.treated[entry], -1)
+  const pieceOf = ofEntry((entry) => lines[placement.line[entry]].piece ?? Number.NaN, Number.NaN)
+  const { distanceMetres } = known.measured
+  const row: OutColumn = { kind: 'integer', name: 'row', values: (i) => i + 1 }
   const pieces = border.pieces.map(({ label }) => label)
   const zones = border.names.length
   const own: OutColumn[] = [
     {
       kind: 'label',
       name: 'zone',
-      codes: ground.zone.map((zone) => (zone === manyZones ? zones : zone)),
+      codes: (row) => (ground.zone[row] === manyZones ? zones : ground.zone[row]),
       labels: [...border.names, severalZones],
     },
-    { kind: 'label', name: 'line', codes: lineOfRow, labels: placement.lines.map(({ id }) => id) },
-    { kind: 'number', name: 'piece', values: piece },
-    { kind: 'label', name: 'side', codes: sideOfRow, labels: ['untreated', 'treated'] },
-    { kind: 'number', name: 'x', values: x },
+    { kind: 'label', name: 'line', codes: lineOf, labels: lines.map(({ id }) => id) },
+    { kind: 'number', name: 'piece', values: pieceOf },
+    { kind: 'label', name: 'side', codes: sideOf, labels: ['untreated', 'treated'] },
+    { kind: 'number', name: 'x', values: ofEntry((entry) => placement.x[entry], Number.NaN) },
     ...(withoutCoordinates
       ? []
       : [
@@ -57,8 +57,8 @@ export function measuredColumns(table: Table, placed: Placed, extras: MeasuredEx
           { kind: 'number', name: 'foot_lat', values: ground.footLat } as const,
         ]),
     { kind: 'number', name: 'position_m', values: ground.positionMetres },
-    { kind: 'number', name: 'distance_m', values: known.measured.distanceMetres.map(finiteOrMissing) },
-    { kind: 'label', name: 'nearest', codes: ground.piece.map((at) => Math.max(at, -1)), labels: pieces },
+    { kind: 'number', name: 'distance_m', values: (row) => finiteOrMissing(distanceMetres[row]) },
+    { kind: 'label', name: 'nearest', codes: (row) => Math.max(ground.piece[row], -1), labels: pieces },
     ...(runnerUp
       ? [
           { kind: 'label', name: 'runner_up', codes: runnerUp.piece, labels: pieces } as const,
@@ -77,4 +77,14 @@ export function measuredColumns(table: Table, placed: Placed, extras: MeasuredEx
 
 function finiteOrMissing(value: number): number {
   return value < Number.POSITIVE_INFINITY ? value : Number.NaN
+}
+
+/** The place of a row in `unit` (ascending), or -1: found at once where rows are asked for in their order. */
+function entryFinder(unit: Int32Array): NumberOfRow {
+  let entry = 0
+  return (row) => {
+    if (entry > 0 && unit[entry - 1] >= row) entry = 0
+    while (entry < unit.length && unit[entry] < row) entry++
+    return unit[entry] === row ? entry : -1
+  }
 }

@@ -11,7 +11,7 @@ import { readColumns } from './duckdb/read.js'
 import type { Source } from './duckdb/source.js'
 import type { Table, WantedColumn } from './table.js'
 
-export { type OutColumn, type PointPositions, writeTable } from './duckdb/write.js'
+export { type NumberOfRow, type OutColumn, type PointPositions, writeTable } from './duckdb/write.js'
 
 export interface ReadOptions {
   /** A column wanted both as numbers and as labels is read as numbers (`labelsOf` gives labels of those too). */

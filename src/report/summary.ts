@@ -1,5 +1,5 @@
 /** About a dozen plain lines for the terminal. */
-import type { Jump, Results } from '../results.js'
+import type { CheckResult, Jump, Results } from '../results.js'
 import { intervalText } from './lineTable.js'
 import { count, fixed, pWords, sharedPlaces, significant } from './numbers.js'
 
@@ -53,5 +53,19 @@ function outcomeLines(outcome: Results['outcomes'][number]): string[] {
         ]
       : []),
     `  lines   ${count(estimated)} of ${count(outcome.lines.length)} estimated${comparison ? `; equal effects ${pWords(comparison.wald.p)}, I² ${fixed(comparison.i_squared, 0)}%` : ''}`,
+    ...(outcome.checks.length > 0 ? [`  checks  ${verdictWords(outcome.checks)}`] : []),
   ]
+}
+
+/** `21 fine, 2 in doubt (donut, heaping), 1 not possible`. */
+function verdictWords(checks: readonly CheckResult[]): string {
+  const of = (verdict: CheckResult['verdict']) => checks.filter((check) => check.verdict === verdict)
+  const names = (found: readonly CheckResult[]) => [...new Set(found.map(({ check }) => check))].join(', ')
+  const [fine, doubt, fail, impossible] = (['fine', 'doubt', 'fail', 'not possible'] as const).map(of)
+  return [
+    `${count(fine.length)} fine`,
+    ...(doubt.length > 0 ? [`${count(doubt.length)} in doubt (${names(doubt)})`] : []),
+    ...(fail.length > 0 ? [`${count(fail.length)} failed (${names(fail)})`] : []),
+    ...(impossible.length > 0 ? [`${count(impossible.length)} not possible`] : []),
+  ].join(', ')
 }

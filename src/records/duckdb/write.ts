@@ -1,6 +1,4 @@
-import { once } from 'node:events'
-import { createWriteStream } from 'node:fs'
-import { finished } from 'node:stream/promises'
+import { open } from 'node:fs/promises'
 import {
   DOUBLE,
   type DuckDBAppender,
@@ -12,13 +10,21 @@ import {
 } from '@duckdb/node-api'
 import { identifier, literal, withDatabase } from './connection.js'
 
+/** The number of a row, from 0: for a column that takes no memory of its own. */
+export type NumberOfRow = (row: number) => number
+
 /** A column to be written; all have one element a row. */
 export type OutColumn =
   /** NaN is written as missing. */
-  | { readonly name: string; readonly kind: 'number'; readonly values: Float64Array }
-  | { readonly name: string; readonly kind: 'integer'; readonly values: Int32Array }
+  | { readonly name: string; readonly kind: 'number'; readonly values: Float64Array | NumberOfRow }
+  | { readonly name: string; readonly kind: 'integer'; readonly values: Int32Array | NumberOfRow }
   /** Codes index `labels`; -1 is missing. */
-  | { readonly name: string; readonly kind: 'label'; readonly codes: Int32Array; readonly labels: readonly string[] }
+  | {
+      readonly name: string
+      readonly kind: 'label'
+      readonly codes: Int32Array | NumberOfRow
+      readonly labels: readonly string[]
+    }
   | { readonly name: string; readonly kind: 'text'; readonly values: readonly string[] }
 
 /** Positions that become geometry, in degrees: names of two number columns, or the numbers themselves. */
@@ -27,7 +33,7 @@ export interface PointPositions {
   readonly lat: string | Float64Array
 }
 
-const ROWS_PER_WRITE = 4096
+const BUFFER_BYTES = 1 << 20
 const ROWS_PER_CHUNK = 2048
 
 /**
@@ -49,33 +55,49 @@ export async function writeTable(
 }
 
 function checkColumn(column: OutColumn, rows: number): void {
-  const length = column.kind === 'label' ? column.codes.length : column.values.length
-  if (length !== rows) throw new RangeError(`column ${column.name} has ${length} rows, the table has ${rows}`)
+  const elements = column.kind === 'label' ? column.codes : column.values
+  if (typeof elements !== 'function' && elements.length !== rows)
+    throw new RangeError(`column ${column.name} has ${elements.length} rows, the table has ${rows}`)
   if (column.kind !== 'number') return
-  const infinite = column.values.findIndex((value) => value === Infinity || value === -Infinity)
-  if (infinite !== -1) throw new RangeError(`column ${column.name} is infinite in row ${infinite}`)
+  const numberAt = ofRow(column.values)
+  for (let row = 0; row < rows; row++) {
+    const value = numberAt(row)
+    if (value === Infinity || value === -Infinity)
+      throw new RangeError(`column ${column.name} is infinite in row ${row}`)
+  }
 }
 
-/** Writes head, rows and foot, waiting whenever the disk is behind. */
+function ofRow(elements: Float64Array | Int32Array | NumberOfRow): NumberOfRow {
+  return typeof elements === 'function' ? elements : (row) => elements[row]
+}
+
+/** Writes head, rows and foot through one buffer: text on its way to the disk would fill memory faster than it is cleared. */
 async function writeLines(
   path: string,
   rows: number,
   lineOf: (row: number) => string,
   [head, foot]: readonly [string, string],
 ): Promise<void> {
-  const out = createWriteStream(path)
-  const done = finished(out)
-  const write = async (text: string) => {
-    if (!out.write(text)) await Promise.race([once(out, 'drain'), done])
+  const handle = await open(path, 'w')
+  try {
+    const buffer = Buffer.allocUnsafe(BUFFER_BYTES)
+    let used = 0
+    await handle.writeFile(head)
+    for (let row = 0; row < rows; row++) {
+      const line = lineOf(row)
+      // a character takes three bytes at most, or four where two make one
+      if (used + 3 * line.length > BUFFER_BYTES) {
+        await handle.writeFile(buffer.subarray(0, used))
+        used = 0
+      }
+      if (3 * line.length > BUFFER_BYTES) await handle.writeFile(line)
+      else used += buffer.write(line, used)
+    }
+    await handle.writeFile(buffer.subarray(0, used))
+    await handle.writeFile(foot)
+  } finally {
+    await handle.close()
   }
-  await write(head)
-  for (let first = 0; first < rows; first += ROWS_PER_WRITE) {
-    let text = ''
-    for (let row = first; row < Math.min(first + ROWS_PER_WRITE, rows); row++) text += lineOf(row)
-    await write(text)
-  }
-  out.end(foot)
-  await done
 }
 
 function csvRow(columns: readonly OutColumn[]): (row: number) => string {
@@ -90,15 +112,31 @@ function csvRow(columns: readonly OutColumn[]): (row: number) => string {
 function csvCell(column: OutColumn): (row: number) => string {
   switch (column.kind) {
     case 'number':
-      return (row) => (Number.isNaN(column.values[row]) ? '' : numberText(column.values[row]))
+      return numberCell(ofRow(column.values), '')
     case 'integer':
-      return (row) => `${column.values[row]}`
-    case 'label': {
-      const labels = column.labels.map(quoted)
-      return (row) => (column.codes[row] < 0 ? '' : labels[column.codes[row]])
-    }
+      return integerCell(ofRow(column.values))
+    case 'label':
+      return labelCell(ofRow(column.codes), column.labels.map(quoted), '')
     case 'text':
       return (row) => quoted(column.values[row])
+  }
+}
+
+function numberCell(numberAt: NumberOfRow, missing: string): (row: number) => string {
+  return (row) => {
+    const value = numberAt(row)
+    return Number.isNaN(value) ? missing : numberText(value)
+  }
+}
+
+function integerCell(numberAt: NumberOfRow): (row: number) => string {
+  return (row) => `${numberAt(row)}`
+}
+
+function labelCell(codeAt: NumberOfRow, labels: readonly string[], missing: string): (row: number) => string {
+  return (row) => {
+    const code = codeAt(row)
+    return code < 0 ? missing : labels[code]
   }
 }
 
@@ -142,7 +180,7 @@ function positionsOf(
 ): Float64Array {
   const column = columns.find(({ name }) => name === position)
   const values = typeof position === 'object' ? position : column?.kind === 'number' ? column.values : undefined
-  if (values?.length !== rows)
+  if (typeof values === 'function' || values?.length !== rows)
     throw new RangeError(`GeoJSON needs ${rows} positions, got ${values?.length ?? position}`)
   return values
 }
@@ -150,13 +188,15 @@ function positionsOf(
 function jsonCell(column: OutColumn): (row: number) => string {
   switch (column.kind) {
     case 'number':
-      return (row) => (Number.isNaN(column.values[row]) ? 'null' : numberText(column.values[row]))
+      return numberCell(ofRow(column.values), 'null')
     case 'integer':
-      return (row) => `${column.values[row]}`
-    case 'label': {
-      const labels = column.labels.map((label) => JSON.stringify(label))
-      return (row) => (column.codes[row] < 0 ? 'null' : labels[column.codes[row]])
-    }
+      return integerCell(ofRow(column.values))
+    case 'label':
+      return labelCell(
+        ofRow(column.codes),
+        column.labels.map((label) => JSON.stringify(label)),
+        'null',
+      )
     case 'text':
       return (row) => JSON.stringify(column.values[row])
   }
@@ -191,10 +231,16 @@ async function append(connection: DuckDBConnection, columns: readonly OutColumn[
 }
 
 function valuesOf(column: OutColumn, first: number, count: number): DuckDBValue[] {
-  return Array.from({ length: count }, (_, i): DuckDBValue => {
-    const row = first + i
-    if (column.kind === 'label') return column.codes[row] < 0 ? null : column.labels[column.codes[row]]
-    const value = column.values[row]
-    return typeof value === 'number' && Number.isNaN(value) ? null : value
-  })
+  const cell = valueCell(column)
+  return Array.from({ length: count }, (_, i) => cell(first + i))
+}
+
+function valueCell(column: OutColumn): (row: number) => DuckDBValue {
+  if (column.kind === 'text') return (row) => column.values[row]
+  if (column.kind === 'label') {
+    const codeAt = ofRow(column.codes)
+    return (row) => column.labels[codeAt(row)] ?? null
+  }
+  const numberAt = ofRow(column.values)
+  return (row) => (Number.isNaN(numberAt(row)) ? null : numberAt(row))
 }
