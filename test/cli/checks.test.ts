@@ -1,0 +1,120 @@
+/** Checks through the command line: quiet on a sound study, loud where something is planted. */
+import { readFileSync, rmSync } from 'node:fs'
+import { join } from 'node:path'
+import { afterAll, beforeAll, describe, expect, it } from 'vitest'
+import { seededRandom } from '../../src/math/index.js'
+import type { CheckResult, Results } from '../../src/results.js'
+import { newRoom, scarp, writeFiles } from './studies.js'
+
+const room = newRoom()
+afterAll(() => rmSync(room, { recursive: true, force: true }))
+
+const study = (checks: string, more = '') => `title: Grants in Marrowdale
+records: {file: r.csv}
+outcomes: [y]
+line: {score: score, cutoff: 50, treated: at-or-above}
+predetermined: [age, size]
+checks: ${checks}
+${more}`
+
+type Change = (row: { score: number; y: number; age: number; size: number }, noise: () => number) => void
+
+async function run(name: string, change: Change = () => {}, checks = 'standard', more = ''): Promise<Results> {
+  const random = seededRandom(21)
+  const rows = Array.from({ length: 3000 }, () => {
+    const score = 100 * random.next()
+    const row = {
+      score,
+      y: score / 50 + (score >= 50 ? 1 : 0) + random.normal(),
+      age: 40 + score / 10 + 5 * random.normal(),
+      size: 3 + random.normal(),
+    }
+    change(row, () => random.next())
+    return [row.score.toFixed(5), Number.isNaN(row.y) ? '' : row.y.toFixed(5), row.age.toFixed(3), row.size.toFixed(3)]
+  })
+  const text = `score,y,age,size\n${rows.map((row) => row.join(',')).join('\n')}\n`
+  writeFiles(join(room, name), { 'study.yaml': study(checks, more), 'r.csv': text })
+  const said = await scarp(['run', `${name}/study.yaml`, '--out', `${name}-out`, '--json'], { cwd: room })
+  expect(said).toMatchObject({ code: 0, stderr: '' })
+  return JSON.parse(said.stdout)
+}
+
+const named = ({ outcomes }: Results, name: string): CheckResult[] =>
+  outcomes[0].checks.filter(({ check }) => check === name)
+
+describe('checks', () => {
+  let clean: Results
+  beforeAll(async () => {
+    clean = await run('clean')
+  })
+
+  it('find nothing in a sound study', () => {
+    const [outcome] = clean.outcomes
+    expect(outcome.checks.length).toBeGreaterThan(10)
+    expect(outcome.checks.filter(({ verdict }) => verdict !== 'fine')).toEqual([])
+    expect(outcome.standards?.map(({ answer }) => answer)).not.toContain('not met')
+  })
+
+  it('have ladders in the results, the page and a table', () => {
+    const { ladders } = clean.outcomes[0]
+    expect(ladders?.bandwidth.map(({ scale }) => scale)).toEqual([0.5, 0.75, 1.25, 1.5, 2])
+    expect(ladders?.placebo_lines).toHaveLength(6)
+    const page = readFileSync(join(room, 'clean-out', 'report.html'), 'utf8')
+    expect(page).toContain('the pooled estimate with one choice changed')
+    expect(page).toContain('What Works Clearinghouse')
+    expect(readFileSync(join(room, 'clean-out', 'tables', 'ladders-y.md'), 'utf8')).toContain('line that is none at')
+  })
+
+  it('give a rung the numbers of a study run that way', async () => {
+    const rung = clean.outcomes[0].ladders?.order_kernel.find(
+      ({ order, kernel }) => order === 2 && kernel === 'triangular',
+    )
+    const alone = await run('squares', undefined, 'none', 'estimation: {order: 2}\n')
+    expect(rung).toMatchObject({
+      estimate: (alone.outcomes[0].pooled as { corrected: { estimate: number } }).corrected.estimate,
+    })
+  })
+
+  it('find a predetermined column that jumps, alone and jointly', async () => {
+    const results = await run('sorted', (row) => {
+      if (row.score >= 50) row.age += 4
+    })
+    expect(named(results, 'balance of age')).toMatchObject([{ verdict: 'doubt' }])
+    expect(named(results, 'balance of size')).toMatchObject([{ verdict: 'fine' }])
+    expect(named(results, 'balance, joint')).toMatchObject([{ verdict: 'doubt' }])
+    const answer = results.outcomes[0].standards?.find(
+      ({ requirement }) => requirement === 'Nothing else jumps at the line',
+    )
+    expect(answer).toMatchObject({ answer: 'not met' })
+  })
+
+  it('find outcomes that are missing more on one side', async () => {
+    const results = await run('lost', (row, noise) => {
+      if (row.score >= 50 && noise() < 0.3) row.y = Number.NaN
+    })
+    expect(named(results, 'missing outcome')).toMatchObject([{ verdict: 'doubt' }])
+  })
+
+  it('find a jump where there is no line', async () => {
+    const results = await run('elsewhere', (row) => {
+      if (row.score >= 25) row.y += 2
+    })
+    expect(named(results, 'placebo line').filter(({ verdict }) => verdict === 'doubt').length).toBeGreaterThan(0)
+  })
+
+  it('find an effect that only those at the very line show', async () => {
+    const results = await run('heaped', (row) => {
+      if (Math.abs(row.score - 50) < 1.5) row.y += row.score >= 50 ? 3 : -3
+    })
+    const unsteady = [...named(results, 'donut'), ...named(results, 'bandwidth')].map(({ verdict }) => verdict)
+    expect(unsteady).not.toEqual(['fine', 'fine'])
+  })
+
+  it('are left out where the study says so, and are more in full', async () => {
+    const none = await run('none', undefined, 'none')
+    expect(none.outcomes[0].checks).toEqual([])
+    expect(none.outcomes[0].ladders).toBeUndefined()
+    const full = await run('full', undefined, 'full')
+    expect(full.outcomes[0].ladders?.order_kernel).toHaveLength(11)
+  })
+})
