@@ -4,6 +4,7 @@
  * lines, and keeps the ledger. Knows no file and no page; `cli` reads what comes in, `report` draws what goes out.
  */
 import { alongGround, alongResult } from './analysis/along.js'
+import { auditOf } from './analysis/audit.js'
 import type { BorderFacts } from './analysis/border.js'
 import { outcomeChecks, sharedChecks } from './analysis/checks.js'
 import { entriesOf } from './analysis/entries.js'
@@ -76,6 +77,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     })
     drawn.push(outcomeExhibit(study, outcome, estimates))
   })
+  const audit = auditOf(study, inputs, placed.value)
   const shared = sharedUnits(placement, inputs.table, study.records.id)
   const used = placed.value.border?.pieces.filter(({ setAside }) => setAside === undefined)
   return {
@@ -97,6 +99,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
         },
         lines: lineSummaries(placement, used),
         ...(hasBorder(placed.value) ? { border: borderResult(placed.value) } : {}),
+        ...(audit ? { audit } : {}),
         ...(shared ? { shared_units: shared } : {}),
         outcomes,
         ledger,

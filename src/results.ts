@@ -20,10 +20,30 @@ export interface Results {
   readonly lines: readonly LineSummary[]
   /** Border studies. */
   readonly border?: BorderResult
+  /** Lines at which a column breaks elsewhere than said; where the study asks for it. */
+  readonly audit?: CutoffAudit
   /** Lines that share units; absent where none does. */
   readonly shared_units?: SharedUnits
   readonly outcomes: readonly OutcomeResult[]
   readonly ledger: readonly LedgerStep[]
+}
+
+export interface CutoffAudit {
+  readonly column: string
+  /** Lines with units enough. */
+  readonly audited: number
+  readonly not_possible: readonly { readonly line: string; readonly reason: string }[]
+  /** Found in one half of a line's units, tested in the other; `at` and `within` in units of x. */
+  readonly elsewhere: readonly {
+    readonly line: string
+    readonly at: number
+    readonly within: number
+    readonly jump: number
+    readonly p: number
+    readonly p_holm: number
+    readonly jump_at_line: number
+    readonly p_at_line: number
+  }[]
 }
 
 export interface GeometryUsed {

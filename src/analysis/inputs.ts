@@ -113,6 +113,7 @@ function ownColumns(study: Study, scheduleColumns: readonly string[]): WantedCol
     ask('number', outcome, `outcomes[${i}]`)
   })
   ask('number', study.takeUp, 'take_up')
+  ask('number', study.audit, 'audit')
   study.covariates.forEach((name, i) => {
     ask('number', name, `covariates[${i}]`)
   })

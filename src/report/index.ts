@@ -1,5 +1,6 @@
 /** Door of the report room: results in, text files out. It computes no estimate, and no record, id or unit coordinate passes it. */
 
+import { auditTable } from './auditTable.js'
 import { conflictTable, waterfallTable, whatElseTable } from './borderTables.js'
 import { checksCsv, linesCsv, pooledCsv } from './csv.js'
 import { alongFigure } from './figures/along.js'
@@ -56,6 +57,8 @@ export function drawReport(input: ReportInput): Map<string, string> {
   addTable(files, 'ledger', ledgerTable(view))
   const shared = sharedTable(view)
   if (shared) addTable(files, 'shared-units', shared)
+  const audit = auditTable(view)
+  if (audit) addTable(files, 'audit', audit)
   const borderTables = { waterfall: waterfallTable(view), 'what-else': whatElseTable(view), sides: conflictTable(view) }
   for (const [name, table] of Object.entries(borderTables)) if (table) addTable(files, name, table)
   files.set('lines.csv', linesCsv(view))

@@ -269,6 +269,7 @@ export const study = keyed({
   estimation: estimation.optional(),
   pooling: pooling.optional(),
   checks: oneOf(['none', 'standard', 'full']).optional(),
+  audit: columnName.optional(),
   disclosure: disclosure.optional(),
   variants: z.unknown().optional(),
   plan: plan.optional(),
@@ -295,7 +296,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|take_up|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
+  /^(title|take_up|audit|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

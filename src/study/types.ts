@@ -14,6 +14,8 @@ export interface Study {
   /** Columns that must not jump. */
   readonly predetermined: readonly string[]
   readonly checks: 'none' | 'standard' | 'full'
+  /** Column that should jump at every line, and at no other place: lines where it does not are listed. */
+  readonly audit?: string
   readonly disclosure: DisclosurePart
   readonly variants: readonly Variant[]
   readonly plan: PlanPart

@@ -1,4 +1,5 @@
 /** report.html: one page, no request, no script. The answer in words first, then what it rests on. */
+import { auditTable } from '../auditTable.js'
 import { conflictTable, waterfallTable, whatElseTable } from '../borderTables.js'
 import { escapeHtml } from '../escape.js'
 import { ladderTable, placeboTable, standardsTable } from '../ladderTable.js'
@@ -87,6 +88,7 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
   const setAside = setAsideTable(view)
   const ground = [waterfallTable(view), whatElseTable(view), conflictTable(view)].filter((table) => table !== undefined)
   const shared = sharedTable(view)
+  const audit = auditTable(view)
   const again = view.outcomes.flatMap((outcome) =>
     [ladderTable(view, outcome) ?? [], placeboTable(view, outcome) ?? []].flat(),
   )
@@ -122,7 +124,13 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
       ? [{ id: 'variants', title: 'Run otherwise', body: variants.map((table) => toHtml(table)).join('\n') }]
       : []),
     ...(checks
-      ? [{ id: 'checks', title: 'Checks', body: [checks, ...again].map((table) => toHtml(table)).join('\n') }]
+      ? [
+          {
+            id: 'checks',
+            title: 'Checks',
+            body: [checks, ...(audit ? [audit] : []), ...again].map((table) => toHtml(table)).join('\n'),
+          },
+        ]
       : []),
     ...(standards.length > 0
       ? [{ id: 'standards', title: 'Against the handbook', body: standards.map((table) => toHtml(table)).join('\n') }]
