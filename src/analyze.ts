@@ -11,6 +11,7 @@ import { entriesOf } from './analysis/entries.js'
 import { estimateOutcome, hasReason, type LineEstimate, type OutcomeEstimates } from './analysis/estimating.js'
 import { mapOf, scatterOf } from './analysis/exhibits.js'
 import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/inputs.js'
+import { movedCutoffs } from './analysis/movedCutoffs.js'
 import { type Placed, placeStudy } from './analysis/placing.js'
 import { sharedUnits } from './analysis/sharedUnits.js'
 import { sharesOfLines } from './analysis/shares.js'
@@ -68,7 +69,12 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     const beside = variantResults(variants.value, outcome, main, (done) =>
       context.progress?.('estimating variants', done, variants.value.length),
     )
-    const result = { ...outcomeResult(study, outcome, placement.lines, estimates), ...along }
+    const moved = movedCutoffs(study, inputs, placed.value, outcome)
+    const result = {
+      ...outcomeResult(study, outcome, placement.lines, estimates),
+      ...along,
+      ...(moved ? { moved_cutoffs: moved } : {}),
+    }
     const about = { entries, made: estimates, result }
     outcomes.push({
       ...result,

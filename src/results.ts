@@ -301,6 +301,25 @@ export type AlongAverage =
   | ({ readonly estimate: number; readonly standard_error: number; readonly p: number } & Interval)
   | NotEstimated
 
+/** Corrected jumps at a cutoff that moved; all at the bandwidths of the jump after the move. */
+export interface MovedCutoffs {
+  readonly moves: readonly {
+    readonly line: string
+    readonly periods: readonly [string, string]
+    readonly from: number
+    readonly to: number
+    /** At the new cutoff. */
+    readonly after: Estimate | NotEstimated
+    /** At the same place before. */
+    readonly before: Estimate | NotEstimated
+    readonly difference: Estimate | NotEstimated
+    /** At the old cutoff after the move. */
+    readonly old_cutoff: Estimate | NotEstimated
+  }[]
+  /** By precision, normal reference. */
+  readonly pooled: { readonly difference: AlongAverage; readonly old_cutoff: AlongAverage }
+}
+
 /** A pooled corrected estimate made again; `bandwidth` is h. */
 export type Rung =
   | ({
@@ -375,6 +394,8 @@ export interface OutcomeResult {
   readonly comparison: Comparison | null
   readonly comparison_reason?: string
   readonly checks: readonly CheckResult[]
+  /** Cutoffs that move between the schedule's periods. */
+  readonly moved_cutoffs?: MovedCutoffs
   readonly ladders?: Ladders
   readonly placebo_borders?: PlaceboBorders
   /** Requirements of the What Works Clearinghouse handbook, in our words. */

@@ -2,6 +2,7 @@
 
 import { centroidSuspicion, snapAgainstBandwidth } from '../borders/index.js'
 import {
+  type Bandwidths,
   type BiasAwareEstimated,
   bandwidthsFor,
   biasAware,
@@ -199,6 +200,22 @@ export function pooledOnly(study: Study, placed: Placed, entries: OutcomeEntries
   const isOne = placed.placement.lines.length === 1
   const basis = poolBasis(study, placed, entries, isOne ? lineVariance : pooledVariance)
   return bandwidthGuard(study, placed)(estimatePooled(basis, study.estimation.donut))
+}
+
+/** One line of entries brought from elsewhere, by the study's options, at given bandwidths or by its rule. */
+export function estimateEntries(
+  study: Study,
+  placed: Placed,
+  entries: Entries,
+  bandwidths?: Bandwidths,
+): OrReason<LineEstimate> {
+  const { lineVariance } = variancesOf(study, placed.cluster !== undefined)
+  const { estimation } = study
+  const options = jumpOptions(estimation, lineVariance, placed)
+  if (!bandwidths) return estimateLine(entries, estimation, options)
+  const sample = buildSample(entries, estimation.donut)
+  const made = jumpAt(sample, bandwidths, options)
+  return made.ok ? { jump: made.jump, sample } : { reason: made.reason }
 }
 
 function alone(line: OrReason<LineEstimate>): OutcomeEstimates['pooled'] {

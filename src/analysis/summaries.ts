@@ -113,7 +113,7 @@ function biasAwareResult(made: BiasAwareEstimated | undefined): Pick<Jump, 'bias
   }
 }
 
-function estimateResult(inference: Inference): Estimate {
+export function estimateResult(inference: Inference): Estimate {
   const { estimate, degreesOfFreedom, low, high, p } = inference
   const isNormal = degreesOfFreedom === Number.POSITIVE_INFINITY
   return {

@@ -12,6 +12,7 @@ import type { ReportInput } from './input.js'
 import { ladderTable, placeboTable, standardsTable } from './ladderTable.js'
 import { ledgerTable } from './ledgerTable.js'
 import { paperLineTable } from './lineTable.js'
+import { movedTable } from './movedTable.js'
 import { type PageFigures, pageHtml } from './page/page.js'
 import { pooledTable } from './pooledTable.js'
 import { sharedTable } from './sharedTable.js'
@@ -46,6 +47,7 @@ export function drawReport(input: ReportInput): Map<string, string> {
     addTable(files, `lines-${outcome.slug}`, paperLineTable(view, outcome))
     const more = {
       variants: variantTable(view, outcome),
+      moved: movedTable(view, outcome),
       ladders: ladderTable(view, outcome),
       placebos: placeboTable(view, outcome),
       standards: standardsTable(outcome),

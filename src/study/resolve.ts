@@ -108,7 +108,7 @@ function resolveCutoff(cutoff: z.infer<typeof scoreLine>['cutoff']): Cutoff {
   if ('column' in cutoff) return { kind: 'column', column: cutoff.column }
   if ('ladder' in cutoff) return { kind: 'ladder', steps: [...cutoff.ladder].sort((a, b) => a - b) }
   const by = typeof cutoff.by === 'string' ? [cutoff.by] : cutoff.by
-  return { kind: 'schedule', file: cutoff.schedule, by, value: cutoff.value }
+  return { kind: 'schedule', file: cutoff.schedule, by, value: cutoff.value, ...given({ period: cutoff.period }) }
 }
 
 function resolveBorder(line: z.infer<typeof borderLine>): BorderLine {

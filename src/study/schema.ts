@@ -59,7 +59,7 @@ export const records = keyed({
   cluster: oneOrTwoColumns.optional(),
 })
 
-const schedule = keyed({ schedule: fileName, by: nameOrNames, value: columnName })
+const schedule = keyed({ schedule: fileName, by: nameOrNames, value: columnName, period: columnName.optional() })
 const ladder = keyed({ ladder: listOf(finiteNumber, 'the steps') })
 const column = keyed({ column: columnName })
 
@@ -296,7 +296,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|take_up|audit|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value))|pooling\.target\.column)$/
+  /^(title|take_up|audit|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.target\.column)$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

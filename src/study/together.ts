@@ -73,6 +73,17 @@ export function togetherProblems(source: Source, file: string): Problem[] {
       'name the column that holds the cutoffs',
     )
   if (
+    isRecord(line.cutoff) &&
+    line.cutoff.period !== undefined &&
+    ![line.cutoff.by].flat().includes(line.cutoff.period)
+  )
+    say(
+      ['line', 'cutoff', 'period'],
+      ': is not a key of the schedule',
+      `got ${JSON.stringify(line.cutoff.period)}`,
+      'name the column of `by` that is time',
+    )
+  if (
     form === 'score' &&
     isRecord(line.cutoff) &&
     Object.hasOwn(line.cutoff, 'column') &&

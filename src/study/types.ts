@@ -53,7 +53,14 @@ export type TreatedSide = 'at-or-above' | 'above' | 'at-or-below' | 'below'
 export type Cutoff =
   | { readonly kind: 'value'; readonly value: number }
   | { readonly kind: 'column'; readonly column: string }
-  | { readonly kind: 'schedule'; readonly file: string; readonly by: readonly string[]; readonly value: string }
+  | {
+      readonly kind: 'schedule'
+      readonly file: string
+      readonly by: readonly string[]
+      readonly value: string
+      /** Which of `by` is time: cutoffs that move from one time to the next are compared at the same place. */
+      readonly period?: string
+    }
   | { readonly kind: 'ladder'; readonly steps: readonly number[] }
 
 export interface ScoreLine {

@@ -91,7 +91,7 @@ function writtenCutoff(cutoff: Cutoff): number | object {
     case 'column':
       return { column: cutoff.column }
     case 'schedule':
-      return { schedule: cutoff.file, by: cutoff.by, value: cutoff.value }
+      return { schedule: cutoff.file, by: cutoff.by, value: cutoff.value, period: cutoff.period }
     case 'ladder':
       return { ladder: cutoff.steps }
   }

@@ -17,5 +17,5 @@ export { placeByScore, type ScorePlacement, type ScorePlacementInput } from './p
 export { type Pooled, type PoolOptions, poolLines } from './pool.js'
 export { poolBiasAware } from './poolBiasAware.js'
 export { readSchedule, type Schedule, type ScheduleRows, scheduleKey } from './schedule.js'
-export type { TreatedSide } from './side.js'
+export { placeAgainst, type TreatedSide } from './side.js'
 export { type TargetEffect, type TargetKind, targetEffect } from './targets.js'

@@ -11,3 +11,15 @@ export function directionOf(treated: TreatedSide): 1 | -1 {
 export function isTreatedAtCutoff(treated: TreatedSide): boolean {
   return treated === 'at-or-above' || treated === 'at-or-below'
 }
+
+/** Signed distances of scores from one cutoff, positive where treated, and sides; no score may be missing. */
+export function placeAgainst(
+  score: Float64Array,
+  cutoff: number,
+  treated: TreatedSide,
+): { readonly x: Float64Array; readonly treated: Uint8Array } {
+  const direction = directionOf(treated)
+  const atCutoff = isTreatedAtCutoff(treated) ? 1 : 0
+  const x = score.map((value) => direction * (value - cutoff))
+  return { x, treated: Uint8Array.from(x, (value) => (value > 0 ? 1 : value < 0 ? 0 : atCutoff)) }
+}
