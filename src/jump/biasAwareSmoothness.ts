@@ -11,13 +11,15 @@ const order = 4
 
 export type Smoothness = { readonly ok: true; readonly bound: number } | { readonly ok: false; readonly reason: string }
 
-/** In units of y per x²; both sides have units. */
+/** In units of y per x². */
 export function smoothnessByRule(sample: Sample): Smoothness {
   let bound = 0
   for (const name of ['untreated', 'treated'] as const) {
+    const { t } = sample[name]
+    if (t.length === 0) return { ok: false, reason: `${name} side: no units` }
     const fitted = fitLocal(sample[name], order, Number.POSITIVE_INFINITY, 'uniform')
     if (!fitted.ok) return { ok: false, reason: `smoothness by rule of thumb, ${name} side: ${fitted.reason}` }
-    bound = Math.max(bound, steepestChange(fitted.fit, sample[name].t[0]))
+    bound = Math.max(bound, steepestChange(fitted.fit, t[0]))
   }
   return { ok: true, bound }
 }

@@ -1,5 +1,5 @@
 /**
- * Student, chi-square and folded distributions. Tails are accurate relative to themselves, quantiles come from
+ * Student, chi-square and folded normal distributions. Tails are accurate relative to themselves, quantiles come from
  * Newton steps on the logarithm of the smaller tail. Degrees of freedom are any positive real, Infinity included.
  * Relative error against R 4.2 (test/golden/math) under 1e-12, tails down to 1e-300 included.
  * Arguments out of range, NaN among them, throw RangeError.
@@ -7,7 +7,6 @@
 
 import jStat from 'jstat'
 import { normalCdf, normalDensity, normalQuantile, normalUpper } from './normal.js'
-import { rootBetween } from './optimise.js'
 import { betaFraction, halfStepGammaRatio, incompleteGamma } from './specialFunctions.js'
 
 /** Beyond this many degrees of freedom Student's t and the normal agree to every digit (they differ by z⁴/4ν). */
@@ -63,29 +62,6 @@ export function foldedNormalQuantile(probability: number, t: number): number {
     q = next
   }
   return q
-}
-
-/**
- * The q ≥ 0 with P(|T + t| ≤ q) = probability, T Student's with df degrees of freedom: foldedNormalQuantile where the standard
- * error is estimated and the bias is not. Even in t.
- */
-export function foldedStudentQuantile(probability: number, t: number, df: number): number {
-  checkDegrees(df)
-  if (df >= manyDegrees) return foldedNormalQuantile(probability, t)
-  checkProbability(probability)
-  if (Number.isNaN(t)) throw new RangeError('the folded Student needs a shift, not NaN')
-  const shift = Math.abs(t)
-  if (probability === 0) return 0
-  if (probability === 1 || shift === Number.POSITIVE_INFINITY) return Number.POSITIVE_INFINITY
-  const upper = (x: number) => (x > 0 ? studentTwoSidedP(x, df) / 2 : 1 - studentTwoSidedP(x, df) / 2)
-  const excess = (q: number) => upper(q - shift) + upper(q + shift) - (1 - probability)
-  const spread = -studentQuantile((1 - probability) / 2, df)
-  const low = Math.max(shift + studentQuantile(probability, df), spread)
-  const high = shift + spread
-  // where the two meet, to rounding, there is nothing to search
-  if (!(excess(low) > 0)) return low
-  if (!(excess(high) < 0)) return high
-  return rootBetween(excess, low, high, 4 * Number.EPSILON * high)
 }
 
 interface StudentTails {

@@ -3,7 +3,6 @@ import { describe, expect, test } from 'vitest'
 import {
   chiSquareUpper,
   foldedNormalQuantile,
-  foldedStudentQuantile,
   normalCdf,
   normalQuantile,
   normalUpper,
@@ -75,18 +74,6 @@ describe('folded normal quantile', () => {
       const lost = 1e-16 / outside
       expect(relativeError(foldedNormalQuantile(1 - outside, t), q)).toBeLessThan(1e-14 + lost)
     }
-  })
-  // Made by R 4.2.2: test/golden/math/folded-student.R.
-  test('with an estimated spread, against R’s root of pt', () => {
-    const { quantiles } = golden<{ quantiles: number[][] }>('folded-student.json')
-    expect(quantiles.length).toBeGreaterThan(400)
-    for (const [outside, t, df, q] of quantiles) {
-      expect(relativeError(foldedStudentQuantile(1 - outside, t, df), q)).toBeLessThan(1e-12)
-    }
-    expect(foldedStudentQuantile(0.95, 0.7, Number.POSITIVE_INFINITY)).toBe(foldedNormalQuantile(0.95, 0.7))
-    expect(foldedStudentQuantile(0.95, -0.7, 5)).toBe(foldedStudentQuantile(0.95, 0.7, 5))
-    expect(() => foldedStudentQuantile(0.95, Number.NaN, 5)).toThrow(RangeError)
-    expect(() => foldedStudentQuantile(0.95, 1, 0)).toThrow(RangeError)
   })
   // CHECKS: 95% quantile of |N(t, 1)| (Armstrong & Kolesár 2018, 2020), printed to six places.
   test('of the bias-aware table', () => {
