@@ -1,4 +1,5 @@
 /** Measures units against the border, once: no rule about pieces or sides enters here (METHODS sections 1 and 10). */
+import { equatorialMetres, flattening } from '../math/index.js'
 import type { Border } from './border.js'
 import { edgeArrays, pointOfEdge, setEdge } from './boundaries.js'
 import { edgeLengthMetres } from './geodesy.js'
@@ -45,6 +46,9 @@ export type MeasuredBorder = Pick<
   | 'positionMetres'
   | 'lengthMetres'
 >
+
+const eccentricitySquared = flattening * (2 - flattening)
+const radiansPerDegree = Math.PI / 180
 
 /** A foot nearer than this to the end of an edge is at that end. */
 const sameFootMetres = 1e-6
@@ -261,11 +265,40 @@ function ownEdge(border: MeasuredBorder, meetings: Meetings, edge: number, fract
   return meeting[0]
 }
 
-/** Position along the pair's border at a fraction of an edge; short edges are uniform in it to a few centimetres. */
-function positionAlong({ edges, positionMetres, lengthMetres }: MeasuredBorder, e: number, fraction: number): number {
-  if (lengthMetres[e] < 1000 || fraction === 1) return positionMetres[e] + fraction * lengthMetres[e]
+/** Edges shorter than this are uniform in their fraction to a few centimetres. */
+const uniformMetres = 1000
+/** Up to this length, and this latitude, three places of an edge give its length to 1e-8 m. */
+const mildMetres = 20_000
+const mildLatitude = 80
+
+/** Position along the pair's border at a fraction of an edge. */
+function positionAlong(border: MeasuredBorder, e: number, fraction: number): number {
+  const { edges, positionMetres, lengthMetres } = border
+  if (lengthMetres[e] < uniformMetres || fraction === 1) return positionMetres[e] + fraction * lengthMetres[e]
+  if (lengthMetres[e] < mildMetres && Math.abs(edges.lat0[e]) < mildLatitude)
+    return positionMetres[e] + mildMetresTo(edges, e, fraction)
   const [lon, lat] = pointOfEdge(edges, e, fraction)
   return positionMetres[e] + edgeLengthMetres(edges.lon0[e], edges.lat0[e], lon, lat)
+}
+
+/** Ground length of an edge up to a fraction of it. Gauss and Legendre's three points: Abramowitz & Stegun (1964), table 25.4. */
+function mildMetresTo({ lon0, lat0, lon1, lat1 }: Edges, e: number, fraction: number): number {
+  const north = (lat1[e] - lat0[e]) * fraction
+  const east = (lon1[e] - lon0[e]) * fraction
+  const middle = lat0[e] + north / 2
+  const off = (north / 2) * 0.7745966692414834
+  const sides = groundMetres(middle - off, north, east) + groundMetres(middle + off, north, east)
+  return (8 * groundMetres(middle, north, east) + 5 * sides) / 18
+}
+
+/** Length of a short step of so many degrees, as the ground is at a latitude. */
+function groundMetres(latDegrees: number, northDegrees: number, eastDegrees: number): number {
+  const lat = latDegrees * radiansPerDegree
+  const sine = Math.sin(lat)
+  const w2 = 1 - eccentricitySquared * sine * sine
+  const north = ((1 - eccentricitySquared) / w2) * northDegrees
+  const east = Math.cos(lat) * eastDegrees
+  return ((equatorialMetres * radiansPerDegree) / Math.sqrt(w2)) * Math.sqrt(north * north + east * east)
 }
 
 function positionOfEnd(

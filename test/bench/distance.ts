@@ -28,7 +28,7 @@ function jaggedLine(from: Position, to: Position, levels: number, uniform: () =>
     for (let k = 1; k < line.length; k++) {
       const [x0, y0] = line[k - 1]
       const [x1, y1] = line[k]
-      const shift = (uniform() - 0.5) * 0.3
+      const shift = (uniform() - 0.5) * 0.2
       finer.push([(x0 + x1) / 2 + shift * (y1 - y0), (y0 + y1) / 2 - shift * (x1 - x0)], line[k])
     }
     line = finer
