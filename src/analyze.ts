@@ -5,6 +5,7 @@
  */
 import { alongGround, alongResult } from './analysis/along.js'
 import { auditOf } from './analysis/audit.js'
+import { awayOf } from './analysis/awayFromLine.js'
 import type { BorderFacts } from './analysis/border.js'
 import { outcomeChecks, sharedChecks } from './analysis/checks.js'
 import { entriesOf } from './analysis/entries.js'
@@ -69,10 +70,12 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     const beside = variantResults(variants.value, outcome, main, (done) =>
       context.progress?.('estimating variants', done, variants.value.length),
     )
+    const away = awayOf(study, inputs.table, placed.value, outcome, estimates)
     const moved = movedCutoffs(study, inputs, placed.value, outcome)
     const result = {
       ...outcomeResult(study, outcome, placement.lines, estimates),
       ...along,
+      ...(away ? { away_from_line: away } : {}),
       ...(moved ? { moved_cutoffs: moved } : {}),
     }
     const about = { entries, made: estimates, result }

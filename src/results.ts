@@ -301,6 +301,27 @@ export type AlongAverage =
   | ({ readonly estimate: number; readonly standard_error: number; readonly p: number } & Interval)
   | NotEstimated
 
+/** Effects at scores between a low and a high cutoff, for units of the low one, if untreated curves are parallel. */
+export type AwayFromLine = { readonly low: string; readonly high: string } & (
+  | {
+      /** Of all local lines, in score units. */
+      readonly bandwidth: number
+      /** Standard errors that the band over all points reaches. */
+      readonly critical_value: number
+      readonly points: readonly {
+        readonly score: number
+        readonly estimate: number
+        readonly standard_error: number
+        readonly uniform_low: number
+        readonly uniform_high: number
+      }[]
+      /** Wald test of the untreated curves being parallel below the low cutoff. */
+      readonly parallel: { readonly statistic: number; readonly df: number; readonly p: number } | null
+      readonly parallel_reason?: string
+    }
+  | NotEstimated
+)
+
 /** Corrected jumps at a cutoff that moved; all at the bandwidths of the jump after the move. */
 export interface MovedCutoffs {
   readonly moves: readonly {
@@ -394,6 +415,8 @@ export interface OutcomeResult {
   readonly comparison: Comparison | null
   readonly comparison_reason?: string
   readonly checks: readonly CheckResult[]
+  /** Between two cutoffs that the study names. */
+  readonly away_from_line?: AwayFromLine
   /** Cutoffs that move between the schedule's periods. */
   readonly moved_cutoffs?: MovedCutoffs
   readonly ladders?: Ladders

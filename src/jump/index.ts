@@ -20,7 +20,7 @@ export {
 export { type CrossedClusters, crossClusters } from './clustersCrossed.js'
 export { type Estimated, type JumpFit, type JumpOptions, jumpAt } from './estimate.js'
 export { type Inference, infer, satterthwaite } from './inference.js'
-export { covarianceMatrix, type Influence, varianceOf } from './influence.js'
+export { covarianceMatrix, type Influence, influenceByKey, varianceOf } from './influence.js'
 export { countWithin, type Kernel, kernelValue } from './kernel.js'
 export { fitLocal, fittedAt, kernelCurve, type LocalFit } from './localPolynomial.js'
 export { neighbourResidualsOf } from './neighbours.js'

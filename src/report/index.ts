@@ -12,7 +12,7 @@ import type { ReportInput } from './input.js'
 import { ladderTable, placeboTable, standardsTable } from './ladderTable.js'
 import { ledgerTable } from './ledgerTable.js'
 import { paperLineTable } from './lineTable.js'
-import { movedTable } from './movedTable.js'
+import { awayTable, movedTable } from './movedTable.js'
 import { type PageFigures, pageHtml } from './page/page.js'
 import { pooledTable } from './pooledTable.js'
 import { sharedTable } from './sharedTable.js'
@@ -48,6 +48,7 @@ export function drawReport(input: ReportInput): Map<string, string> {
     const more = {
       variants: variantTable(view, outcome),
       moved: movedTable(view, outcome),
+      away: awayTable(view, outcome),
       ladders: ladderTable(view, outcome),
       placebos: placeboTable(view, outcome),
       standards: standardsTable(outcome),

@@ -1,7 +1,7 @@
 /** Jumps at cutoffs that moved, before and after. */
 import type { Estimate, NotEstimated } from '../results.js'
 import { intervalText } from './lineTable.js'
-import { fixed, p, sharedPlaces, wholeNumber } from './numbers.js'
+import { fixed, p, sharedPlaces, significant, wholeNumber } from './numbers.js'
 import type { TextTable } from './tables.js'
 import { isEstimated, type OutcomeView, reasonText, type View } from './view.js'
 
@@ -47,5 +47,42 @@ export function movedTable(view: View, { result }: OutcomeView): TextTable | und
       cell(move.old_cutoff),
     ]),
     notes: [`${pooled}${placebo}. No estimate uses units beyond the cutoff of their own time.`],
+  }
+}
+
+/** Effects between two cutoffs; nothing where the study asks for none. */
+export function awayTable(view: View, { result }: OutcomeView): TextTable | undefined {
+  const found = result.away_from_line
+  if (!found) return undefined
+  const caption = `${result.outcome}: the effect between the cutoffs of ${found.low} and ${found.high}, for units of ${found.low}`
+  const columns = [
+    { head: 'Score' },
+    { head: 'Effect' },
+    { head: 'Standard error' },
+    { head: `${view.words.level} band over all points` },
+  ]
+  if ('not_estimated' in found) {
+    return { caption, columns, rows: [], notes: [`Not estimated: ${reasonText(view, found.not_estimated)}.`] }
+  }
+  const { points, parallel } = found
+  const places = sharedPlaces(
+    points.map((point) => point.standard_error),
+    points.map(({ estimate }) => estimate),
+  )
+  const test = parallel
+    ? `Wald ${fixed(parallel.statistic, 1)} on ${parallel.df} degrees of freedom, p = ${p(parallel.p)}`
+    : 'not testable here'
+  return {
+    caption,
+    columns,
+    rows: points.map(({ score, estimate, standard_error: error, uniform_low: low, uniform_high: high }) => [
+      significant(score),
+      fixed(estimate, places),
+      fixed(error, places),
+      intervalText({ low, high }, places),
+    ]),
+    notes: [
+      `They hold if the untreated curves of the two lines are parallel between the cutoffs, as they can be seen to be or not below the low one: ${test}. Local lines with bandwidth ${significant(found.bandwidth)}.`,
+    ],
   }
 }

@@ -32,7 +32,7 @@ export function resolveStudy(written: WrittenStudy, file: string): Study {
     estimation: resolveEstimation(written.estimation ?? {}),
     pooling: { fixedEffects: pooling.fixed_effects ?? line.kind === 'border', target: pooling.target ?? 'units' },
     checks: written.checks ?? 'standard',
-    ...given({ audit: written.audit }),
+    ...given({ audit: written.audit, away: written.away_from_line }),
     disclosure: { coordinates: disclosure.coordinates ?? false, smallestCell: disclosure.smallest_cell ?? 10 },
     variants: [],
     plan: resolvePlan(written.plan ?? {}),

@@ -270,6 +270,11 @@ export const study = keyed({
   pooling: pooling.optional(),
   checks: oneOf(['none', 'standard', 'full']).optional(),
   audit: columnName.optional(),
+  away_from_line: keyed({
+    low: textFor('a line'),
+    high: textFor('a line'),
+    bandwidth: positive.optional(),
+  }).optional(),
   disclosure: disclosure.optional(),
   variants: z.unknown().optional(),
   plan: plan.optional(),
@@ -296,7 +301,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|take_up|audit|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.target\.column)$/
+  /^(title|take_up|audit|away_from_line\.(low|high)|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.target\.column)$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

@@ -47,6 +47,9 @@ export function togetherProblems(source: Source, file: string): Problem[] {
       'write order 1, or corrected',
     )
 
+  const away = isRecord(source.data) ? source.data.away_from_line : undefined
+  if (away !== undefined && form !== undefined && form !== 'score')
+    say(['away_from_line'], ': is for cutoffs on a score', `line has ${form}`, 'leave it out')
   if (form === 'zones') borderProblems(line, say)
   const narrowest = Math.min(...fixedWidths(estimation.bandwidth))
   errorProblem(line, narrowest, say)

@@ -16,6 +16,8 @@ export interface Study {
   readonly checks: 'none' | 'standard' | 'full'
   /** Column that should jump at every line, and at no other place: lines where it does not are listed. */
   readonly audit?: string
+  /** Two lines between whose cutoffs the effect is estimated too, under parallel untreated curves. */
+  readonly away?: { readonly low: string; readonly high: string; readonly bandwidth?: number }
   readonly disclosure: DisclosurePart
   readonly variants: readonly Variant[]
   readonly plan: PlanPart

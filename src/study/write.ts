@@ -40,6 +40,7 @@ export function resolvedStudy(study: Study): string {
     pooling: { fixed_effects: pooling.fixedEffects, target: pooling.target },
     checks: study.checks,
     audit: study.audit,
+    away_from_line: study.away,
     disclosure: { coordinates: disclosure.coordinates, smallest_cell: disclosure.smallestCell },
     variants:
       study.variants.length > 0

@@ -8,6 +8,7 @@ export {
   estimateAlong,
   type UnitsNearPoint,
 } from './along.js'
+export { type Away, type AwayOptions, awayFromLine, type CurveUnits } from './awayFromLine.js'
 export { type CompareOptions, type CompareOutcome, type ComparisonResult, compareLines } from './compare.js'
 export type { CutoffSource, MissingKey } from './cutoffs.js'
 export { type DistanceInput, placeByDistance } from './distance.js'

@@ -691,9 +691,9 @@ checks: all
     name: 'names that objects have of themselves',
     text: `${distance}__proto__: 1\nconstructor: 2\ntoString: 3\n`,
     problems: [
-      '4: __proto__: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, audit, disclosure, variants, plan, seed',
-      '5: constructor: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, audit, disclosure, variants, plan, seed',
-      '6: toString: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, audit, disclosure, variants, plan, seed',
+      '4: __proto__: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, audit, away_from_line, disclosure, variants, plan, seed',
+      '5: constructor: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, audit, away_from_line, disclosure, variants, plan, seed',
+      '6: toString: not a known key; known here: title, records, outcomes, line, take_up, covariates, predetermined, estimation, pooling, checks, audit, away_from_line, disclosure, variants, plan, seed',
     ],
   },
 ]

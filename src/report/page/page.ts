@@ -5,7 +5,7 @@ import { escapeHtml } from '../escape.js'
 import { ladderTable, placeboTable, standardsTable } from '../ladderTable.js'
 import { checksTable, ledgerTable, setAsideTable } from '../ledgerTable.js'
 import { capital, pageLineTable } from '../lineTable.js'
-import { movedTable } from '../movedTable.js'
+import { awayTable, movedTable } from '../movedTable.js'
 import { count, missing, significant } from '../numbers.js'
 import { comparisonTable, contrastTable, pooledTable } from '../pooledTable.js'
 import { sharedTable } from '../sharedTable.js'
@@ -95,7 +95,7 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
   )
   const standards = view.outcomes.flatMap((outcome) => standardsTable(outcome) ?? [])
   const variants = view.outcomes.flatMap((outcome) =>
-    [movedTable(view, outcome) ?? [], variantTable(view, outcome) ?? []].flat(),
+    [awayTable(view, outcome) ?? [], movedTable(view, outcome) ?? [], variantTable(view, outcome) ?? []].flat(),
   )
   const hasComparison = view.results.lines.length > 1
   const contrasts = view.outcomes.flatMap((outcome) => contrastTable(view, outcome) ?? [])
