@@ -3,6 +3,7 @@
  * Read it first. Places every unit against its line, estimates each outcome at every line and pooled, compares the
  * lines, and keeps the ledger. Knows no file and no page; `cli` reads what comes in, `report` draws what goes out.
  */
+import { acrossLines, slopeOf } from './analysis/acrossLines.js'
 import { alongGround, alongResult } from './analysis/along.js'
 import { auditOf } from './analysis/audit.js'
 import { awayOf } from './analysis/awayFromLine.js'
@@ -15,7 +16,7 @@ import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/in
 import { movedCutoffs } from './analysis/movedCutoffs.js'
 import { type Placed, placeStudy } from './analysis/placing.js'
 import { sharedUnits } from './analysis/sharedUnits.js'
-import { sharesOfLines } from './analysis/shares.js'
+import { attributeOfLines, sharesOfLines } from './analysis/shares.js'
 import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
 import { placeVariants, variantResults } from './analysis/variants.js'
 import { linesOfLayer, readLineLayer } from './borders/index.js'
@@ -52,6 +53,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
   const variants = placeVariants(study, inputs, placed.value, context.progress)
   if (!variants.ok) return variants
   const ground = alongGround(study, inputs, placed.value)
+  const attribute = attributeOfLines(study, inputs, placement)
   const checked = sharedChecks(study, inputs, placed.value, context.progress)
   const ledger = [...placed.value.ledger]
   const outcomes: OutcomeResult[] = []
@@ -73,7 +75,14 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     const away = awayOf(study, inputs.table, placed.value, outcome, estimates)
     const moved = movedCutoffs(study, inputs, placed.value, outcome)
     const result = {
-      ...outcomeResult(study, outcome, placement.lines, estimates),
+      ...outcomeResult(
+        study,
+        outcome,
+        placement.lines,
+        estimates,
+        slopeOf(estimates, attribute, study.estimation.level),
+      ),
+      ...acrossLines(estimates, placement.lines, study.estimation.level),
       ...along,
       ...(away ? { away_from_line: away } : {}),
       ...(moved ? { moved_cutoffs: moved } : {}),

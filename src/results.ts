@@ -257,6 +257,18 @@ export interface Comparison {
   readonly contrasts: readonly Contrast[]
   /** Number of pairs of lines. */
   readonly contrasts_of: number
+  /** Of effects in the cutoff or another attribute of the lines, true effects varying around it; absent where none differs. */
+  readonly slope?:
+    | ({
+        readonly attribute: string
+        readonly lines: number
+        readonly intercept: number
+        readonly estimate: number
+        readonly standard_error: number
+        readonly p: number
+        readonly tau_squared: number
+      } & Interval)
+    | ({ readonly attribute: string } & NotEstimated)
 }
 
 export interface CheckResult {
@@ -415,6 +427,14 @@ export interface OutcomeResult {
   readonly comparison: Comparison | null
   readonly comparison_reason?: string
   readonly checks: readonly CheckResult[]
+  /** The target with each line left out in turn. */
+  readonly leave_one_out?: readonly ({
+    readonly line: string
+    readonly estimate: number
+    readonly standard_error: number
+  } & Interval)[]
+  /** Over borders of unlike dose, with the target's weights. */
+  readonly per_dose?: { readonly estimate: number; readonly standard_error: number; readonly p: number } & Interval
   /** Between two cutoffs that the study names. */
   readonly away_from_line?: AwayFromLine
   /** Cutoffs that move between the schedule's periods. */

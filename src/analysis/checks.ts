@@ -62,6 +62,7 @@ export function outcomeChecks(
     ...shared.rows,
     ...missingOutcome(study, inputs.table, placed, outcome, entries),
     ...(ladders && isEstimated(pooled) ? ladderChecks(ladders, pooled.corrected, study.estimation.level, holm) : []),
+    ...withoutEachLine(result),
     ...(placebos?.checks ?? []),
     ...(isBorder ? shiftedLines(study, inputs, placed, outcome, made.pooled).checks : []),
     ...(isBorder ? likeNeighbours(study, inputs.table, made) : []),
@@ -82,6 +83,20 @@ function isEstimated(pooled: PooledJump): pooled is PooledJump & Jump {
 function fewestDistinct({ pooled }: MainEstimates): number | undefined {
   if (hasReason(pooled)) return undefined
   return Math.min(pooled.jump.distinct.untreated, pooled.jump.distinct.treated)
+}
+
+/** Does the target hang on one line? */
+function withoutEachLine({ target, leave_one_out: rows }: OutcomeResult): CheckResult[] {
+  const check = 'leave one line out'
+  if (!rows || rows.length === 0 || 'not_estimated' in target) return []
+  const far = (estimate: number) => Math.abs(estimate - target.estimate)
+  const most = rows.reduce((a, b) => (far(b.estimate) > far(a.estimate) ? b : a))
+  const estimates = rows.map(({ estimate }) => estimate)
+  const range = `without any one line the target runs from ${shown(Math.min(...estimates))} to ${shown(Math.max(...estimates))}`
+  const holds = !(most.estimate < target.low || most.estimate > target.high)
+  const words = holds ? 'inside' : 'outside'
+  const says = `${range}; ${most.line} moves it most, to ${shown(most.estimate)}, ${words} its own interval ${shown(target.low)} to ${shown(target.high)}`
+  return [{ check, verdict: holds ? 'fine' : 'doubt', says }]
 }
 
 /** Does the share of units that lack the outcome jump at the line? */

@@ -61,6 +61,7 @@ export interface OutcomeEstimates {
   readonly notes: readonly string[]
   /** Places of the lines that the target and the comparison use. */
   readonly compared: readonly number[]
+  readonly effects: LineEffects
   readonly target: ReturnType<typeof targetEffect>
   readonly comparison: ReturnType<typeof compareLines>
 }
@@ -70,7 +71,8 @@ export function hasReason<T extends object>(value: OrReason<T>): value is { read
 }
 
 /** What variants are put beside: no comparison of lines. */
-export type MainEstimates = Omit<OutcomeEstimates, 'comparison'>
+export type MainEstimates = Omit<OutcomeEstimates, 'comparison' | 'effects'>
+export type MainWithEffects = MainEstimates & Pick<OutcomeEstimates, 'effects'>
 
 /** Estimates one outcome; `shares` are the target's weights by line where the study gives a column. */
 export function estimateOutcome(
@@ -80,9 +82,9 @@ export function estimateOutcome(
   shares: Float64Array | undefined,
   progress: (done: number) => void,
 ): OutcomeEstimates {
-  const { effects, ...main } = estimateMain(study, placed, entries, shares, progress)
+  const main = estimateMain(study, placed, entries, shares, progress)
   const { level } = study.estimation
-  return { ...main, comparison: compareLines(effects, { level, random: streamOf(study.seed, 1) }) }
+  return { ...main, comparison: compareLines(main.effects, { level, random: streamOf(study.seed, 1) }) }
 }
 
 /** Lines, pooled and target, and the effects that can be compared. */
@@ -92,7 +94,7 @@ export function estimateMain(
   entries: OutcomeEntries,
   shares: Float64Array | undefined,
   progress: (done: number) => void = () => {},
-): MainEstimates & { readonly effects: LineEffects } {
+): MainWithEffects {
   const { placement } = placed
   const hasClusters = placed.cluster !== undefined
   const { lineVariance, pooledVariance } = variancesOf(study, hasClusters)

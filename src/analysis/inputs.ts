@@ -140,12 +140,12 @@ function ownColumns(study: Study, scheduleColumns: readonly string[]): WantedCol
       schedule.push({ name: value, kind: 'number', askedBy: 'line.cutoff.value' })
     }
   }
-  const { target } = study.pooling
-  if (typeof target === 'object') {
-    const askedBy = 'pooling.target.column'
-    if (schedule && scheduleColumns.includes(target.column)) {
-      schedule.push({ name: target.column, kind: 'number', askedBy })
-    } else ask('number', target.column, askedBy)
+  const { target, slope } = study.pooling
+  const askOfLines = (name: string, askedBy: string) => {
+    if (schedule && scheduleColumns.includes(name)) schedule.push({ name, kind: 'number', askedBy })
+    else ask('number', name, askedBy)
   }
+  if (typeof target === 'object') askOfLines(target.column, 'pooling.target.column')
+  if (slope !== undefined) askOfLines(slope, 'pooling.slope')
   return { records, schedule }
 }

@@ -14,19 +14,7 @@ export function sharesOfLines(
 ): Checked<Float64Array | undefined> {
   const { target } = study.pooling
   if (typeof target !== 'object') return { ok: true, value: undefined }
-  const { schedule, table } = inputs
-  const fromSchedule = schedule?.columns.has(target.column) === true
-  const file = fromSchedule ? schedule.file : table.file
-  const values = fromSchedule ? scheduleValues(study, schedule, table, target.column) : numbersOf(table, target.column)
-  const shares = new Float64Array(placement.lines.length).fill(Number.NaN)
-  const second = new Map<number, number>()
-  for (let e = 0; e < placement.unit.length; e++) {
-    const line = placement.line[e]
-    const value = values[placement.unit[e]]
-    if (Number.isNaN(value)) continue
-    if (Number.isNaN(shares[line])) shares[line] = value
-    else if (value !== shares[line]) second.set(line, value)
-  }
+  const { file, values: shares, second } = valuesOfLines(study, inputs, placement, target.column)
   const what = `pooling.target.column: ${target.column}`
   const problems = [...second].map(([line, value]) => ({
     file,
@@ -40,6 +28,38 @@ export function sharesOfLines(
     problems.push({ file, what, found, todo: 'give every line a share of 0 or more' })
   })
   return problems.length > 0 ? { ok: false, problems } : { ok: true, value: shares }
+}
+
+/** What the study relates effects to: a column with one value a line, or the cutoffs where they differ. NaN where unknown. */
+export function attributeOfLines(
+  study: Study,
+  inputs: AnalysisInputs,
+  placement: Placement,
+): { readonly name: string; readonly values: Float64Array } | undefined {
+  const { slope } = study.pooling
+  if (slope === undefined) {
+    const cutoffs = Float64Array.from(placement.lines, ({ cutoff }) => cutoff ?? Number.NaN)
+    const isKnown = new Set([...cutoffs].filter(Number.isFinite)).size > 1
+    return isKnown ? { name: 'cutoff', values: cutoffs } : undefined
+  }
+  const { values, second } = valuesOfLines(study, inputs, placement, slope)
+  return { name: slope, values: values.map((value, line) => (second.has(line) ? Number.NaN : value)) }
+}
+
+/** A column of the schedule or the records by line; `second`: lines at which it has another value too. */
+function valuesOfLines(study: Study, { schedule, table }: AnalysisInputs, placement: Placement, column: string) {
+  const fromSchedule = schedule?.columns.has(column) === true
+  const byUnit = fromSchedule ? scheduleValues(study, schedule, table, column) : numbersOf(table, column)
+  const values = new Float64Array(placement.lines.length).fill(Number.NaN)
+  const second = new Map<number, number>()
+  for (let e = 0; e < placement.unit.length; e++) {
+    const line = placement.line[e]
+    const value = byUnit[placement.unit[e]]
+    if (Number.isNaN(value)) continue
+    if (Number.isNaN(values[line])) values[line] = value
+    else if (value !== values[line]) second.set(line, value)
+  }
+  return { file: fromSchedule ? schedule.file : table.file, values, second }
 }
 
 /** The schedule's column carried to the records by their keys; NaN where a record's key is not in the schedule. */

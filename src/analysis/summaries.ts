@@ -6,6 +6,7 @@ import type { Line, Placement } from '../placement.js'
 import type {
   BorderResult,
   BySide,
+  Comparison,
   Estimate,
   Jump,
   LineSummary,
@@ -22,6 +23,7 @@ export function outcomeResult(
   outcome: string,
   lines: readonly Line[],
   estimates: OutcomeEstimates,
+  slope: Comparison['slope'],
 ): OutcomeResult {
   const { estimation } = study
   const { comparison } = estimates
@@ -36,7 +38,7 @@ export function outcomeResult(
     pooled: pooledResult(estimates, estimation, lines),
     target: targetResult(estimates, lines),
     ...(comparison.ok
-      ? { comparison: comparison.comparison }
+      ? { comparison: { ...comparison.comparison, ...(slope ? { slope } : {}) } }
       : { comparison: null, comparison_reason: comparison.reason }),
     checks: [],
   }

@@ -186,6 +186,7 @@ export function comparisonTable(view: View): TextTable {
     }),
     notes: [
       'All on the corrected estimates. Q is Cochran’s, on the degrees of freedom of the Wald test; τ is the standard deviation of true effects between lines by DerSimonian–Laird, REML and Paule–Mandel; the mean has the Knapp–Hartung interval.',
+      ...view.outcomes.flatMap((outcome) => slopeNote(view, outcome)),
       ...view.outcomes.flatMap(({ result }) =>
         result.comparison && !result.comparison.prediction && result.comparison.prediction_reason
           ? [`${result.outcome}: no prediction interval: ${result.comparison.prediction_reason}.`]
@@ -193,6 +194,15 @@ export function comparisonTable(view: View): TextTable {
       ),
     ],
   }
+}
+
+function slopeNote(view: View, { result }: OutcomeView): string[] {
+  const slope = result.comparison?.slope
+  if (!slope || 'not_estimated' in slope) return []
+  const places = sharedPlaces([slope.standard_error], [slope.estimate])
+  return [
+    `${result.outcome}: effects change by ${fixed(slope.estimate, places)} (${view.words.level} interval ${intervalText(slope, places)}, p = ${p(slope.p)}) for each unit of ${slope.attribute}, over ${count(slope.lines)} ${view.words.lines}.`,
+  ]
 }
 
 function tauText({ tau_squared: tau }: Comparison): string {

@@ -30,7 +30,11 @@ export function resolveStudy(written: WrittenStudy, file: string): Study {
     covariates: written.covariates ?? [],
     predetermined: written.predetermined ?? [],
     estimation: resolveEstimation(written.estimation ?? {}),
-    pooling: { fixedEffects: pooling.fixed_effects ?? line.kind === 'border', target: pooling.target ?? 'units' },
+    pooling: {
+      fixedEffects: pooling.fixed_effects ?? line.kind === 'border',
+      target: pooling.target ?? 'units',
+      ...given({ slope: pooling.slope }),
+    },
     checks: written.checks ?? 'standard',
     ...given({ audit: written.audit, away: written.away_from_line }),
     disclosure: { coordinates: disclosure.coordinates ?? false, smallestCell: disclosure.smallest_cell ?? 10 },

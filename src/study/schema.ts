@@ -219,7 +219,11 @@ export const estimation = keyed({
 const target = choose<'units' | 'equal' | 'precision' | { column: string }>((value) =>
   isRecord(value) ? column : oneOf(['units', 'equal', 'precision']),
 )
-export const pooling = keyed({ fixed_effects: trueOrFalse.optional(), target: target.optional() })
+export const pooling = keyed({
+  fixed_effects: trueOrFalse.optional(),
+  target: target.optional(),
+  slope: columnName.optional(),
+})
 
 export const disclosure = keyed({
   coordinates: trueOrFalse.optional(),
@@ -301,7 +305,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|take_up|audit|away_from_line\.(low|high)|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.target\.column)$/
+  /^(title|take_up|audit|away_from_line\.(low|high)|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.(target\.column|slope))$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

@@ -170,6 +170,8 @@ export interface EstimationPart {
 export interface PoolingPart {
   readonly fixedEffects: boolean
   readonly target: 'units' | 'equal' | 'precision' | { readonly column: string }
+  /** Column with one value a line that effects are related to; absent: the cutoff, where it differs. */
+  readonly slope?: string
 }
 
 export interface DisclosurePart {

@@ -37,7 +37,7 @@ export function resolvedStudy(study: Study): string {
       donut: estimation.donut,
       level: estimation.level,
     },
-    pooling: { fixed_effects: pooling.fixedEffects, target: pooling.target },
+    pooling: { fixed_effects: pooling.fixedEffects, target: pooling.target, slope: pooling.slope },
     checks: study.checks,
     audit: study.audit,
     away_from_line: study.away,

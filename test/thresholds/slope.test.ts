@@ -1,0 +1,90 @@
+import { describe, expect, it } from 'vitest'
+import { effectSlope, type LineEffects, leaveOneOut, perUnitOfDose, targetEffect } from '../../src/thresholds/index.js'
+
+/** Colditz et al. 1994, 13 BCG trials: log risk ratios and variances (the 5th by its counts: 0.0512101722), latitudes. */
+const y = [
+  -0.8893113339, -1.5853886572, -1.3480731483, -1.44155119, -0.2175473222, -0.7861155858, -1.6208982236, 0.0119523335,
+  -0.4694176487, -1.3713448035, -0.3393588283, 0.4459134006, -0.0173139482,
+]
+const v = [
+  0.325584765, 0.1945811214, 0.4153679654, 0.0200100319, 0.0512101722, 0.0069056185, 0.2230172476, 0.0039615793,
+  0.0564342105, 0.0730247936, 0.012412214, 0.5325058452, 0.0714046597,
+]
+const latitude = [44, 55, 42, 52, 13, 44, 19, 13, 27, 42, 18, 33, 33]
+
+const independent = (estimate: readonly number[], variance: readonly number[]): LineEffects => {
+  const covariance = new Float64Array(estimate.length ** 2)
+  variance.forEach((value, a) => {
+    covariance[a * estimate.length + a] = value
+  })
+  return {
+    ids: estimate.map((_, a) => `line ${a + 1}`),
+    estimate: Float64Array.from(estimate),
+    covariance,
+    isDiagonal: true,
+  }
+}
+
+describe('the slope of effects', () => {
+  it('on latitude in the BCG trials (CHECKS; a general-purpose meta-analysis library in R)', () => {
+    const made = effectSlope(independent(y, v), Float64Array.from(latitude), 0.95)
+    if (!made.ok) throw new Error(made.reason)
+    const { estimate, standardError, intercept } = made.slope
+    expect(Math.abs(estimate - -0.0291016609)).toBeLessThan(2e-6)
+    expect(Math.abs(standardError - 0.0071955548)).toBeLessThan(2e-6)
+    expect(Math.abs(intercept - 0.2514642944)).toBeLessThan(5e-5)
+  })
+
+  it('is weighted least squares where true effects do not vary', () => {
+    const made = effectSlope(independent([1, 2, 3, 4], [1, 1, 1, 1]), Float64Array.of(1, 2, 3, 4), 0.95)
+    expect(made).toMatchObject({ ok: true, slope: { tauSquared: 0, lines: 4 } })
+    if (made.ok) expect(made.slope.estimate).toBeCloseTo(1, 12)
+    if (made.ok) expect(made.slope.standardError).toBeCloseTo(1 / Math.sqrt(5), 12)
+  })
+
+  it('needs three lines that differ, and passes over those without the attribute', () => {
+    const effects = independent([1, 2, 3], [1, 1, 1])
+    expect(effectSlope(effects, Float64Array.of(1, 1, 1), 0.95)).toMatchObject({ ok: false })
+    expect(effectSlope(effects, Float64Array.of(1, 2, Number.NaN), 0.95)).toMatchObject({ ok: false })
+  })
+})
+
+/** Shared units: every pair of lines correlated. */
+function related(): { effects: LineEffects; weights: Float64Array } {
+  const covariance = Float64Array.of(2, 0.5, 0.3, 0.5, 1, -0.2, 0.3, -0.2, 3)
+  const effects = { ids: ['a', 'b', 'c'], estimate: Float64Array.of(1, 4, -2), covariance, isDiagonal: false }
+  return { effects, weights: Float64Array.of(0.5, 0.3, 0.2) }
+}
+
+describe('the mean without a line', () => {
+  it('is the target of the other lines', () => {
+    const { effects, weights } = related()
+    const found = leaveOneOut(effects, weights, 0.95)
+    expect(found.map(({ line }) => line)).toEqual(['a', 'b', 'c'])
+    const others: LineEffects = {
+      ids: ['a', 'c'],
+      estimate: Float64Array.of(1, -2),
+      covariance: Float64Array.of(2, 0.3, 0.3, 3),
+      isDiagonal: false,
+    }
+    const target = targetEffect(others, { kind: 'shares', name: 'w', shares: Float64Array.of(0.5, 0.2) }, 0.95)
+    if (!target.ok) throw new Error(target.reason)
+    expect(found[1].estimate).toBeCloseTo(target.estimate, 12)
+    expect(found[1].standardError).toBeCloseTo(target.standardError, 12)
+    expect(found[1].low).toBeCloseTo(target.low, 12)
+  })
+})
+
+describe('the effect per unit of dose', () => {
+  it('is the slope through 0 with the stated weights', () => {
+    const { effects, weights } = related()
+    const made = perUnitOfDose(effects, weights, Float64Array.of(1, 2, 3), 0.95)
+    const divisor = 0.5 + 0.3 * 4 + 0.2 * 9
+    expect(made?.estimate).toBeCloseTo((0.5 * 1 + 0.3 * 2 * 4 + 0.2 * 3 * -2) / divisor, 12)
+    const c = [0.5, 0.6, 0.6].map((share) => share / divisor)
+    const variance =
+      c[0] ** 2 * 2 + c[1] ** 2 + c[2] ** 2 * 3 + 2 * (c[0] * c[1] * 0.5 + c[0] * c[2] * 0.3 - c[1] * c[2] * 0.2)
+    expect(made?.standardError).toBeCloseTo(Math.sqrt(variance), 12)
+    expect(perUnitOfDose(effects, weights, new Float64Array(3), 0.95)).toBeUndefined()
+  })
+})
