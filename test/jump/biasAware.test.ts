@@ -380,4 +380,40 @@ describe('pooled', () => {
     close(made.interval.worstBias, Math.abs(made.interval.estimate), 0.02)
     expect(made.interval.worstBias).toBeGreaterThanOrEqual(Math.abs(made.interval.estimate) - 1e-6)
   })
+  it('where lines lie at different distances, from the weights that units have in that regression, one by one', () => {
+    const few = entriesOf(80, 31)
+    // lines of units far and near, on both sides
+    const near = Int32Array.from(few.x, (x, i) => (Math.abs(x) < 0.35 ? 0 : 1) + (i % 5 === 0 ? 1 : 0))
+    const h = { untreated: 0.8, treated: 0.8 }
+    const pooledWith = (y: Float64Array) => {
+      const sample = buildSample({ ...few, y, group: near })
+      const made = poolLines(sample, 3, {
+        ...options,
+        variance: 'hc0',
+        bandwidth: { kind: 'fixed', ...h },
+        sides: 'common',
+        clustered: false,
+        fixedEffects: true,
+      })
+      if (!made.ok) throw new Error(made.reason)
+      return made.jump.plain.estimate
+    }
+    const l = few.x.map((_, i) => pooledWith(Float64Array.from(few.x, (_, j) => (i === j ? 1 : 0))))
+    const biasOf = (side: 0 | 1) => {
+      const rows = Array.from(few.x.keys())
+        .filter((i) => few.treated[i] === side && Math.abs(few.x[i]) < 0.8)
+        .sort((i, j) => Math.abs(few.x[i]) - Math.abs(few.x[j]))
+      const t = Float64Array.from(rows, (i) => Math.abs(few.x[i]))
+      const own = Float64Array.from(rows, (i) => l[i])
+      return integral(t, own, 20_000)
+    }
+    const made = poolBiasAware(buildSample({ ...few, group: near }), 3, {
+      ...options,
+      smoothness: 2,
+      fixedBandwidth: h,
+      fixedEffects: true,
+    })
+    if (!made.ok) throw new Error(made.reason)
+    close(made.interval.worstBias, 2 * (biasOf(0) + biasOf(1)), 1e-4)
+  })
 })
