@@ -194,7 +194,9 @@ export interface TakeUp {
   /** Of take-up, corrected. */
   readonly jump: number
   readonly standard_error: number
-  readonly f: number
+  /** null where nothing is left of its error. */
+  readonly f: number | null
+  readonly f_reason?: string
   /** Ends are null where the set is unbounded there; an empty list is an empty set. */
   readonly anderson_rubin: readonly (readonly [number | null, number | null])[]
   readonly eligibility: { readonly plain: Estimate; readonly corrected: Estimate }
@@ -212,6 +214,8 @@ export interface CovariateReport {
 
 export interface NotEstimated {
   readonly not_estimated: string
+  /** Where it is the ratio that is withheld. */
+  readonly take_up?: TakeUp
 }
 
 export type LineJump = { readonly line: string } & (Jump | NotEstimated)

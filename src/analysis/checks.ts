@@ -4,11 +4,11 @@
  */
 import { holm, moranNearLine } from '../checks/index.js'
 import { numbersOf, type Table } from '../records/index.js'
-import type { CheckResult, Jump, OutcomeResult, PooledJump } from '../results.js'
+import type { CheckResult, OutcomeResult } from '../results.js'
 import type { Study } from '../study/index.js'
 import { balanceChecks } from './balance.js'
 import { entriesOfValues, type OutcomeEntries } from './entries.js'
-import { hasReason, type MainEstimates, pooledOnly } from './estimating.js'
+import { hasReason, type MainEstimates, ofEligibility, pooledOnly } from './estimating.js'
 import { type AnalysisInputs, type Progress, positionColumns } from './inputs.js'
 import { ladderChecks } from './ladderChecks.js'
 import { laddersOf } from './ladders.js'
@@ -50,21 +50,24 @@ export function outcomeChecks(
   placed: Placed,
   { entries, made, result }: { entries: OutcomeEntries; made: MainEstimates; result: OutcomeResult },
 ): Checked {
-  const { outcome, pooled } = result
+  const { outcome } = result
   const isBorder = study.line.kind === 'border'
-  const ladders = laddersOf(made.basis, made.pooled, {
+  const eligible = ofEligibility(made.pooled)
+  const ladders = laddersOf(made.basis, eligible, {
     donut: study.estimation.donut,
     isFull: study.checks === 'full',
     hasPlacebos: !isBorder,
   })
-  const placebos = shared.placebos && placeboBorders(study, inputs, shared.placebos, outcome, made.pooled)
+  const placebos = shared.placebos && placeboBorders(study, inputs, shared.placebos, outcome, eligible)
   const checks = [
     ...shared.rows,
     ...missingOutcome(study, inputs.table, placed, outcome, entries),
-    ...(ladders && isEstimated(pooled) ? ladderChecks(ladders, pooled.corrected, study.estimation.level, holm) : []),
+    ...(ladders && !hasReason(eligible)
+      ? ladderChecks(ladders, eligible.jump.corrected, study.estimation.level, holm)
+      : []),
     ...withoutEachLine(result),
     ...(placebos?.checks ?? []),
-    ...(isBorder ? shiftedLines(study, inputs, placed, outcome, made.pooled).checks : []),
+    ...(isBorder ? shiftedLines(study, inputs, placed, outcome, eligible).checks : []),
     ...(isBorder ? likeNeighbours(study, inputs.table, made) : []),
   ]
   const facts = { placed: placed.units, missing: entries.missing, distinct: fewestDistinct(made) }
@@ -74,10 +77,6 @@ export function outcomeChecks(
     ...(placebos?.exhibit ? { placebo_borders: placebos.exhibit } : {}),
     standards: standardsSheet(study, { ...result, checks }, facts),
   }
-}
-
-function isEstimated(pooled: PooledJump): pooled is PooledJump & Jump {
-  return !('not_estimated' in pooled)
 }
 
 function fewestDistinct({ pooled }: MainEstimates): number | undefined {

@@ -14,13 +14,24 @@ export interface OutcomeEntries {
   /** Units placed that lack the outcome, and those that have it and lack a covariate or the take-up. */
   readonly missing: number
   readonly incomplete: number
+  /** By row of the table. */
+  readonly takeUp?: NamedColumn
+  readonly covariates: readonly NamedColumn[]
+}
+
+export interface NamedColumn {
+  readonly name: string
+  readonly values: Float64Array
 }
 
 /** Entries with a finite outcome, covariates and take-up. */
 export function entriesOf(study: Study, table: Table, placed: Placed, outcome: string): OutcomeEntries {
-  const others = [...study.covariates, ...(study.takeUp === undefined ? [] : [study.takeUp])]
-  const needed = others.map((name) => numbersOf(table, name))
-  return entriesOfValues(study, table, placed, numbersOf(table, outcome), needed)
+  const column = (name: string): NamedColumn => ({ name, values: numbersOf(table, name) })
+  const covariates = study.covariates.map(column)
+  const takeUp = study.takeUp === undefined ? undefined : column(study.takeUp)
+  const needed = [...covariates, ...(takeUp ? [takeUp] : [])].map(({ values }) => values)
+  const entries = entriesOfValues(study, table, placed, numbersOf(table, outcome), needed)
+  return { ...entries, covariates, ...(takeUp ? { takeUp } : {}) }
 }
 
 /**
@@ -83,6 +94,7 @@ export function entriesOfValues(
     units,
     missing,
     incomplete,
+    covariates: [],
   }
 }
 

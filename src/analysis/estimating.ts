@@ -9,6 +9,7 @@ import {
   buildSample,
   covarianceMatrix,
   type Entries,
+  type Estimated,
   type Influence,
   type JumpFit,
   type JumpOptions,
@@ -17,7 +18,10 @@ import {
   outsideDonut,
   type Sample,
   type SpatialPlaces,
+  type TakeUpRatio,
+  takeUpRatio,
   type Variance,
+  withOutcomes,
 } from '../jump/index.js'
 import { streamOf } from '../math/index.js'
 import type { EstimationPart, Study } from '../study/index.js'
@@ -30,7 +34,7 @@ import {
   targetEffect,
 } from '../thresholds/index.js'
 import { metresPerUnit } from './border.js'
-import { entriesOfLine, type OutcomeEntries } from './entries.js'
+import { entriesOfLine, type NamedColumn, type OutcomeEntries } from './entries.js'
 import type { Placed } from './placing.js'
 
 export interface LineEstimate {
@@ -38,6 +42,13 @@ export interface LineEstimate {
   readonly sample: Sample
   /** Of the main estimates alone; for another order than 1 it has a reason. */
   readonly biasAware?: BiasAwareEstimated
+  /** With take-up: `jump` is the effect per unit of it, and this the effect of being eligible and the first stage. */
+  readonly takeUp?: TakeUpMade
+}
+
+export interface TakeUpMade {
+  readonly eligibility: JumpFit
+  readonly ratio: TakeUpRatio
 }
 
 /** All lines' entries on one distance, sorted; with the donut still in it. */
@@ -47,7 +58,13 @@ export interface PoolBasis {
   readonly options: PoolOptions
 }
 
-export type OrReason<T> = T | { readonly reason: string }
+export type OrReason<T> = T | NoEstimate
+
+export interface NoEstimate {
+  readonly reason: string
+  /** Where it is the ratio that is withheld. */
+  readonly takeUp?: TakeUpMade
+}
 
 export interface OutcomeEstimates {
   /** In the order of the placement's lines. */
@@ -66,7 +83,7 @@ export interface OutcomeEstimates {
   readonly comparison: ReturnType<typeof compareLines>
 }
 
-export function hasReason<T extends object>(value: OrReason<T>): value is { readonly reason: string } {
+export function hasReason<T extends object>(value: OrReason<T>): value is NoEstimate {
   return 'reason' in value
 }
 
@@ -99,14 +116,18 @@ export function estimateMain(
   const hasClusters = placed.cluster !== undefined
   const { lineVariance, pooledVariance } = variancesOf(study, hasClusters)
   const guard = bandwidthGuard(study, placed)
+  const { takeUp } = entries
   const lines = placement.lines.map((_, line) => {
     const options = jumpOptions(study.estimation, lineVariance, placed)
-    const estimate = guard(estimateLine(entriesOfLine(entries, line), study.estimation, options))
+    const made = estimateLine(entriesOfLine(entries, line), study.estimation, options)
+    const estimate = guard(
+      takeUp ? perTakeUp(made, takeUp, options, (sample, at) => jumpAt(sample, at, options)) : made,
+    )
     progress(line + 1)
     return estimate
   })
   const basis = poolBasis(study, placed, entries, lines.length === 1 ? lineVariance : pooledVariance)
-  const pooled = guard(lines.length === 1 ? alone(lines[0]) : withBiasAware(basis, study.estimation))
+  const pooled = guard(lines.length === 1 ? alone(lines[0]) : pooledWithMore(study, basis, takeUp))
   const ids = placement.lines.map((line) => line.id)
   const { effects, index } = effectsOf(ids, lines, placed.spatial)
   const target = targetOf(study, effects, index, lines, shares)
@@ -244,12 +265,66 @@ function poolBasis(study: Study, placed: Placed, entries: OutcomeEntries, varian
   }
 }
 
-/** The pooled estimate with its bias-aware interval, and the curve of that over smoothness. */
-function withBiasAware(basis: PoolBasis, { donut, smoothness }: EstimationPart): OutcomeEstimates['pooled'] {
+/** The pooled estimate with its bias-aware interval, and the curve of that over smoothness; or per unit of take-up. */
+function pooledWithMore(
+  { estimation }: Study,
+  basis: PoolBasis,
+  takeUp: NamedColumn | undefined,
+): OutcomeEstimates['pooled'] {
+  const { donut, smoothness } = estimation
   const pooled = estimatePooled(basis, donut)
   if (hasReason(pooled)) return pooled
+  if (takeUp) {
+    const again = { ...basis, sample: withColumn(basis.sample, takeUp) }
+    const made = perTakeUp(pooled, takeUp, basis.options, (_, { h, b }) => {
+      const options = { ...basis.options, bandwidth: { kind: 'fixed' as const, ...h, bias: b } }
+      const first = estimatePooled({ ...again, options }, donut)
+      return hasReason(first) ? { ok: false, reason: first.reason } : { ok: true, jump: first.jump }
+    })
+    return hasReason(made) ? made : { ...pooled, ...made }
+  }
   const sample = outsideDonut(basis.sample, donut)
   return { ...pooled, biasAware: poolBiasAware(sample, basis.lines, { ...basis.options, smoothness }) }
+}
+
+/** Below this first-stage F no ratio is shown. */
+export const leastFirstStage = 4
+
+/** The estimate per unit of take-up; withheld where the first stage is too weak for a ratio to mean anything. */
+function perTakeUp(
+  made: OrReason<LineEstimate>,
+  takeUp: NamedColumn,
+  { level, spatial }: JumpOptions,
+  estimate: (sample: Sample, bandwidths: Bandwidths) => Estimated,
+): OrReason<LineEstimate> {
+  if (hasReason(made)) return made
+  const { biasAware: _, ...outcome } = made
+  const first = estimate(withColumn(outcome.sample, takeUp), outcome.jump.bandwidths)
+  if (!first.ok) return { reason: `${takeUp.name}: ${first.reason}` }
+  const ratio = takeUpRatio(outcome.jump, first.jump, { level, ...(spatial ? { spatial } : {}) })
+  if (typeof ratio === 'string') return { reason: ratio }
+  const details = { eligibility: outcome.jump, ratio }
+  if (!(ratio.f >= leastFirstStage)) {
+    const f = Number(ratio.f.toPrecision(3))
+    return { reason: `take-up jumps too little for a ratio: F = ${f}, under ${leastFirstStage}`, takeUp: details }
+  }
+  const { plain, corrected, influence } = ratio
+  return { ...outcome, jump: { ...outcome.jump, plain, corrected, influence }, takeUp: details }
+}
+
+/** The same units with another column in place of the outcome. */
+function withColumn(sample: Sample, { values }: NamedColumn): Sample {
+  const sides = [sample.untreated, sample.treated].map(({ unit }) => Float64Array.from(unit, (row) => values[row]))
+  const count = sides[0].length + sides[1].length
+  const centre = sides.reduce((sum, side) => side.reduce((total, value) => total + value, sum), 0) / count
+  const [untreated, treated] = sides.map((side) => side.map((value) => value - centre))
+  return { ...withOutcomes(sample, untreated, treated), centre }
+}
+
+/** An estimate as it would be without take-up: the effect of being eligible. */
+export function ofEligibility<T extends LineEstimate>(made: OrReason<T>): OrReason<T> {
+  if (hasReason(made) || !made.takeUp) return made
+  return { ...made, jump: made.takeUp.eligibility }
 }
 
 /** Pools the entries with |x| at or above `donut`. */

@@ -5,6 +5,7 @@
  */
 import type { CheckResult, Jump, OutcomeResult, StandardsRow } from '../results.js'
 import type { Study } from '../study/index.js'
+import { shown } from './words.js'
 
 /** First-stage F below which the handbook holds a ratio for weak. */
 export const leastF = 16
@@ -141,8 +142,8 @@ function takeUp(pooled: Jump | undefined): Answer {
       exhibit: 'study.resolved.yaml',
     }
   return {
-    answer: found.f >= leastF ? 'met' : 'not met',
-    says: `take-up jumps by ${Number(found.jump.toPrecision(3))}, F = ${Number(found.f.toPrecision(3))}`,
+    answer: found.f === null || found.f >= leastF ? 'met' : 'not met',
+    says: `take-up jumps by ${shown(found.jump)}, ${found.f === null ? found.f_reason : `F = ${shown(found.f)}`}`,
     exhibit: 'pooled.csv',
   }
 }

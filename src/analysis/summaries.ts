@@ -10,13 +10,24 @@ import type {
   Estimate,
   Jump,
   LineSummary,
+  NotEstimated,
   OutcomeResult,
   PooledJump,
+  TakeUp,
   Target,
 } from '../results.js'
 import type { EstimationPart, Study } from '../study/index.js'
 import type { BorderFacts } from './border.js'
-import { hasReason, type LineEstimate, type MainEstimates, type OutcomeEstimates } from './estimating.js'
+import {
+  hasReason,
+  type LineEstimate,
+  type MainEstimates,
+  type NoEstimate,
+  type OutcomeEstimates,
+  type TakeUpMade,
+} from './estimating.js'
+import { leastF } from './standards.js'
+import { shown } from './words.js'
 
 export function outcomeResult(
   study: Study,
@@ -32,7 +43,7 @@ export function outcomeResult(
     lines: lines.map((line, i) => {
       const estimate = estimates.lines[i]
       return hasReason(estimate)
-        ? { line: line.id, not_estimated: estimate.reason }
+        ? { line: line.id, ...notEstimated(estimate) }
         : { line: line.id, ...jumpResult(estimate, estimation, estimates.lineVariance) }
     }),
     pooled: pooledResult(estimates, estimation, lines),
@@ -46,7 +57,7 @@ export function outcomeResult(
 
 export function pooledResult(estimates: MainEstimates, estimation: EstimationPart, lines: readonly Line[]): PooledJump {
   const { pooled } = estimates
-  if (hasReason(pooled)) return { not_estimated: pooled.reason }
+  if (hasReason(pooled)) return notEstimated(pooled)
   const variance = lines.length === 1 ? estimates.lineVariance : estimates.pooledVariance
   const jump = jumpResult(pooled, estimation, variance)
   const left = pooled.withoutEffect
@@ -75,8 +86,33 @@ function weightsByLine(lines: readonly Line[], weights: Float64Array): Record<st
   return Object.fromEntries(lines.map((line, i) => [line.id, weights[i]]))
 }
 
-export function jumpResult({ jump, biasAware }: LineEstimate, estimation: EstimationPart, variance: Variance): Jump {
-  const notes = notesOn(jump)
+function notEstimated({ reason, takeUp }: NoEstimate): NotEstimated {
+  return { not_estimated: reason, ...(takeUp ? { take_up: takeUpResult(takeUp) } : {}) }
+}
+
+function weakFirstStage(f: number): string {
+  return `take-up jumps weakly, F = ${shown(f)}, under ${leastF}: go by the Anderson–Rubin set, which needs no first stage`
+}
+
+function takeUpResult({ eligibility, ratio }: TakeUpMade): TakeUp {
+  const { firstStage, f, andersonRubin } = ratio
+  const end = (value: number) => (Number.isFinite(value) ? value : null)
+  return {
+    jump: firstStage.estimate,
+    standard_error: firstStage.standardError,
+    f: end(f),
+    ...(Number.isFinite(f) ? {} : { f_reason: 'all take up what they are assigned to' }),
+    anderson_rubin: andersonRubin.map(([low, high]) => [end(low), end(high)]),
+    eligibility: { plain: estimateResult(eligibility.plain), corrected: estimateResult(eligibility.corrected) },
+  }
+}
+
+export function jumpResult(
+  { jump, biasAware, takeUp }: LineEstimate,
+  estimation: EstimationPart,
+  variance: Variance,
+): Jump {
+  const notes = [...notesOn(jump), ...(takeUp && takeUp.ratio.f < leastF ? [weakFirstStage(takeUp.ratio.f)] : [])]
   return {
     order: estimation.order,
     kernel: estimation.kernel,
@@ -90,6 +126,7 @@ export function jumpResult({ jump, biasAware }: LineEstimate, estimation: Estima
     plain: estimateResult(jump.plain),
     corrected: estimateResult(jump.corrected),
     ...biasAwareResult(biasAware),
+    ...(takeUp ? { take_up: takeUpResult(takeUp) } : {}),
     ...(notes.length > 0 ? { notes } : {}),
   }
 }

@@ -28,6 +28,7 @@ export interface JumpFit {
   readonly corrected: Inference
   /** Of the corrected estimate. */
   readonly influence: Influence
+  readonly plainInfluence: Influence
   /** Of the corrected estimate; where two kinds of clusters cross, of the kind that has fewer. */
   readonly clusters?: number
   /** By the weights of the corrected estimate (clustersEffective.ts). */
@@ -87,6 +88,7 @@ export function jumpAt(
       plain: plain.inference,
       corrected: corrected.inference,
       influence: corrected.influence,
+      plainInfluence: plain.influence,
       clusters: corrected.clusters,
       effectiveClusters: corrected.effectiveClusters,
       distinct: {

@@ -39,6 +39,7 @@ export {
   withOutcomes,
 } from './sample.js'
 export { eachNeighbourhood, type SpatialPlaces, spatialPlaces } from './spatialPairs.js'
+export { type TakeUpRatio, takeUpRatio } from './takeUp.js'
 export {
   jumpAtPoint,
   type PlaneBandwidths,

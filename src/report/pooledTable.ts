@@ -1,5 +1,5 @@
 /** What all lines say together, by outcome: pooled plain and corrected, the stated target, the random-effects mean. */
-import type { Comparison, Jump } from '../results.js'
+import type { Comparison, Jump, TakeUp } from '../results.js'
 import { bandwidthHead, capital, intervalText, widthCell, widthPlaces } from './lineTable.js'
 import { cell, count, fixed, missing, type Places, p, sharedPlaces, significant } from './numbers.js'
 import type { TableRow, TextTable } from './tables.js'
@@ -57,7 +57,7 @@ function outcomeRows(view: View, outcome: OutcomeView): TableRow[] {
       cell(pooled.units_in_bandwidth.treated, view.smallestCell),
       widthCell(pooled.bandwidth, widthPlaces([pooled])),
     ]
-    rows.push(...firstStageRows(head, pooled, shared, places))
+    if (pooled.take_up) rows.push(...firstStageRows(head, pooled.take_up, shared, places))
     for (const name of ['plain', 'corrected'] as const) {
       const estimate = pooled[name]
       const what = pooled.take_up ? `pooled per unit of take-up, ${name}` : `pooled, ${name}`
@@ -66,6 +66,7 @@ function outcomeRows(view: View, outcome: OutcomeView): TableRow[] {
     if (pooled.bias_aware) rows.push(biasAwareRow(head, pooled.bias_aware, places))
   } else {
     rows.push({ head, across: `pooled: not estimated: ${reasonText(view, pooled.not_estimated)}` })
+    if (pooled.take_up) rows.push(...firstStageRows(head, pooled.take_up, [missing, missing, missing], places))
   }
   const none = [missing, missing, missing]
   if (isEstimated(target)) {
@@ -80,13 +81,7 @@ function outcomeRows(view: View, outcome: OutcomeView): TableRow[] {
 }
 
 /** Take-up first, then the effect of being eligible, which needs no first stage. */
-function firstStageRows(
-  head: string,
-  { take_up: takeUp }: Jump,
-  shared: readonly string[],
-  places: Places,
-): TableRow[] {
-  if (!takeUp) return []
+function firstStageRows(head: string, takeUp: TakeUp, shared: readonly string[], places: Places): TableRow[] {
   const { eligibility } = takeUp
   const set = takeUp.anderson_rubin.map(([low, high]) => `${end(low, '−∞', places)} to ${end(high, '∞', places)}`)
   return [
@@ -96,7 +91,7 @@ function firstStageRows(
       ...shared,
       significant(takeUp.jump),
       significant(takeUp.standard_error),
-      `F ${fixed(takeUp.f, 1)}`,
+      takeUp.f === null ? 'F –' : `F ${fixed(takeUp.f, 1)}`,
       missing,
     ],
     [

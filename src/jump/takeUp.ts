@@ -1,0 +1,104 @@
+/**
+ * Partial take-up: the jump of the outcome over that of take-up, at the same bandwidths.
+ * Source: Feir, Lemieux & Marmer 2016, J. Business & Economic Statistics; METHODS section 7.
+ * τ = τ_y/τ_d with influence (ψ_y − τ ψ_d)/τ_d; numerator and denominator are corrected for bias before they are divided. The
+ * Anderson–Rubin set needs no first stage: {t : |τ_y − t τ_d| ≤ z·se(τ_y − t τ_d)}, from the corrected jumps.
+ */
+import { normalQuantile, studentQuantile } from '../math/index.js'
+import type { JumpFit } from './estimate.js'
+import { type Inference, infer } from './inference.js'
+import { covarianceMatrix, type Influence, influenceByKey, varianceOf } from './influence.js'
+import type { SpatialPlaces } from './spatialPairs.js'
+
+export interface TakeUpOptions {
+  readonly level: number
+  readonly spatial?: SpatialPlaces
+}
+
+export interface TakeUpRatio {
+  /** Effects per unit of take-up. */
+  readonly plain: Inference
+  readonly corrected: Inference
+  /** Of the corrected ratio. */
+  readonly influence: Influence
+  /** Corrected jump of take-up. */
+  readonly firstStage: Inference
+  /** (jump/standard error)²; Infinity where all take up what they are assigned to. */
+  readonly f: number
+  /** Ascending; ends are infinite where the set is unbounded; none where it is empty. */
+  readonly andersonRubin: readonly (readonly [number, number])[]
+}
+
+/** The two jumps must come from the same units at the same bandwidths. A reason where take-up does not jump at all. */
+export function takeUpRatio(outcome: JumpFit, takeUp: JumpFit, options: TakeUpOptions): TakeUpRatio | string {
+  const { level, spatial } = options
+  const plain = ratioOf(outcome.plain, outcome.plainInfluence, takeUp.plain, takeUp.plainInfluence, options)
+  const corrected = ratioOf(outcome.corrected, outcome.influence, takeUp.corrected, takeUp.influence, options)
+  if (!plain || !corrected) return 'take-up does not jump at all'
+  const { matrix } = covarianceMatrix([outcome.influence, takeUp.influence], spatial)
+  const { degreesOfFreedom } = outcome.corrected
+  const tail = 1 - (1 - level) / 2
+  const quantile =
+    degreesOfFreedom === Number.POSITIVE_INFINITY ? normalQuantile(tail) : studentQuantile(tail, degreesOfFreedom)
+  return {
+    plain: plain.inference,
+    corrected: corrected.inference,
+    influence: corrected.influence,
+    firstStage: takeUp.corrected,
+    f: (takeUp.corrected.estimate / takeUp.corrected.standardError) ** 2,
+    andersonRubin: andersonRubinSet(
+      outcome.corrected.estimate,
+      takeUp.corrected.estimate,
+      { yy: matrix[0], yd: matrix[1], dd: matrix[3] },
+      quantile,
+    ),
+  }
+}
+
+function ratioOf(
+  y: Inference,
+  psiY: Influence,
+  d: Inference,
+  psiD: Influence,
+  { level, spatial }: TakeUpOptions,
+): { readonly inference: Inference; readonly influence: Influence } | undefined {
+  const ratio = y.estimate / d.estimate
+  if (!Number.isFinite(ratio)) return undefined
+  const influence = influenceByKey(
+    [psiY.key, psiD.key],
+    [psiY.psi.map((psi) => psi / d.estimate), psiD.psi.map((psi) => (-ratio * psi) / d.estimate)],
+  )
+  const variance = Math.max(0, varianceOf(influence, spatial))
+  return { inference: infer(ratio, variance, y.degreesOfFreedom, level), influence }
+}
+
+/** Where (τ_y − tτ_d)² − z²(V_yy − 2tV_yd + t²V_dd) ≤ 0: a quadratic in t. */
+export function andersonRubinSet(
+  jumpY: number,
+  jumpD: number,
+  { yy, yd, dd }: { readonly yy: number; readonly yd: number; readonly dd: number },
+  quantile: number,
+): (readonly [number, number])[] {
+  const z2 = quantile * quantile
+  const a = jumpD * jumpD - z2 * dd
+  const b = -2 * (jumpY * jumpD - z2 * yd)
+  const c = jumpY * jumpY - z2 * yy
+  const [low, high] = [Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY]
+  if (a === 0) {
+    if (b === 0) return c <= 0 ? [[low, high]] : []
+    return b > 0 ? [[low, -c / b]] : [[-c / b, high]]
+  }
+  const discriminant = b * b - 4 * a * c
+  if (discriminant < 0) return a > 0 ? [] : [[low, high]]
+  // the root of larger size first, so that nothing cancels
+  const q = -0.5 * (b + (b >= 0 ? 1 : -1) * Math.sqrt(discriminant))
+  const roots = q === 0 ? [0, 0] : [q / a, c / q]
+  const [first, last] = [Math.min(...roots), Math.max(...roots)]
+  if (a > 0) return [[first, last]]
+  return first === last
+    ? [[low, high]]
+    : [
+        [low, first],
+        [last, high],
+      ]
+}
