@@ -79,11 +79,11 @@ function finiteOrMissing(value: number): number {
   return value < Number.POSITIVE_INFINITY ? value : Number.NaN
 }
 
-/** The place of a row in `unit` (ascending), or -1: found at once where rows are asked for in their order. */
+/** The place of a row in `unit` (ascending), or -1: found by walking from that of the row asked for before. */
 function entryFinder(unit: Int32Array): NumberOfRow {
   let entry = 0
   return (row) => {
-    if (entry > 0 && unit[entry - 1] >= row) entry = 0
+    while (entry > 0 && unit[entry - 1] >= row) entry--
     while (entry < unit.length && unit[entry] < row) entry++
     return unit[entry] === row ? entry : -1
   }
