@@ -206,10 +206,10 @@ export interface CovariateReport {
   readonly coefficients: Readonly<Record<string, number>>
   /** Constant or a sum of others: left out. */
   readonly left_out: readonly string[]
-  /** Corrected estimate with covariates less without. */
-  readonly moved: number
+  /** Corrected estimate with covariates less without (for eligibility, where there is take-up); absent without one. */
+  readonly moved?: number
   /** Standard error with over without. */
-  readonly standard_error_ratio: number
+  readonly standard_error_ratio?: number
 }
 
 export interface NotEstimated {

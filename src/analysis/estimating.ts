@@ -42,8 +42,18 @@ export interface LineEstimate {
   readonly sample: Sample
   /** Of the main estimates alone; for another order than 1 it has a reason. */
   readonly biasAware?: BiasAwareEstimated
+  /** What covariates did. */
+  readonly covariates?: CovariatesMade
   /** With take-up: `jump` is the effect per unit of it, and this the effect of being eligible and the first stage. */
   readonly takeUp?: TakeUpMade
+}
+
+export interface CovariatesMade {
+  readonly names: readonly string[]
+  /** NaN where one is constant or a sum of others. */
+  readonly coefficients: Float64Array
+  /** The estimate without them; undefined where there is none. */
+  readonly without: JumpFit | undefined
 }
 
 export interface TakeUpMade {
@@ -66,10 +76,16 @@ export interface NoEstimate {
   readonly takeUp?: TakeUpMade
 }
 
+interface PooledFacts {
+  readonly weights: Float64Array
+  readonly withoutEffect: number
+  readonly coefficients: Float64Array
+}
+
 export interface OutcomeEstimates {
   /** In the order of the placement's lines. */
   readonly lines: readonly OrReason<LineEstimate>[]
-  readonly pooled: OrReason<LineEstimate & { readonly weights: Float64Array; readonly withoutEffect: number }>
+  readonly pooled: OrReason<LineEstimate & PooledFacts>
   readonly lineVariance: Variance
   readonly pooledVariance: Variance
   /** What the pooled estimate is made from, to make it again with one thing changed. */
@@ -119,15 +135,12 @@ export function estimateMain(
   const { takeUp } = entries
   const lines = placement.lines.map((_, line) => {
     const options = jumpOptions(study.estimation, lineVariance, placed)
-    const made = estimateLine(entriesOfLine(entries, line), study.estimation, options)
-    const estimate = guard(
-      takeUp ? perTakeUp(made, takeUp, options, (sample, at) => jumpAt(sample, at, options)) : made,
-    )
+    const estimate = guard(lineWithMore(study, entries, line, options))
     progress(line + 1)
     return estimate
   })
   const basis = poolBasis(study, placed, entries, lines.length === 1 ? lineVariance : pooledVariance)
-  const pooled = guard(lines.length === 1 ? alone(lines[0]) : pooledWithMore(study, basis, takeUp))
+  const pooled = guard(lines.length === 1 ? alone(lines[0]) : pooledWithMore(study, basis, takeUp, entries.covariates))
   const ids = placement.lines.map((line) => line.id)
   const { effects, index } = effectsOf(ids, lines, placed.spatial)
   const target = targetOf(study, effects, index, lines, shares)
@@ -204,6 +217,23 @@ function jumpOptions(estimation: EstimationPart, variance: Variance, { spatial, 
   }
 }
 
+/** One line, with what covariates and take-up make of it. */
+function lineWithMore(
+  study: Study,
+  entries: OutcomeEntries,
+  line: number,
+  options: JumpOptions,
+): OrReason<LineEstimate> {
+  const own = entriesOfLine(entries, line)
+  const { takeUp, covariates } = entries
+  if (covariates.length > 0) {
+    const basis = basisOf(study, { ...own, group: new Int32Array(own.x.length) }, 1, options, covariates)
+    return pooledWithMore(study, basis, takeUp, covariates)
+  }
+  const made = estimateLine(own, study.estimation, options)
+  return takeUp ? perTakeUp(made, takeUp, options, (sample, at) => jumpAt(sample, at, options)) : made
+}
+
 function estimateLine(entries: Entries, estimation: EstimationPart, options: JumpOptions): OrReason<LineEstimate> {
   const { variance } = options
   const sample = buildSample(entries, estimation.donut)
@@ -242,25 +272,39 @@ export function estimateEntries(
 }
 
 function alone(line: OrReason<LineEstimate>): OutcomeEstimates['pooled'] {
-  return hasReason(line) ? line : { ...line, weights: Float64Array.of(1), withoutEffect: 0 }
+  return hasReason(line)
+    ? line
+    : { ...line, weights: Float64Array.of(1), withoutEffect: 0, coefficients: new Float64Array(0) }
 }
 
 /** A single line has no other to differ from: no fixed effect. */
 function poolBasis(study: Study, placed: Placed, entries: OutcomeEntries, variance: Variance): PoolBasis {
-  const { estimation, pooling } = study
+  const { estimation } = study
   const hasClusters = placed.cluster !== undefined
   const lines = entries.start.length - 1
   const byPiece = (variance === 'clusters' || variance === 'few-clusters') && !hasClusters
   const all = byPiece ? { ...entries.all, cluster: entries.all.group } : entries.all
+  return basisOf(study, all, lines, jumpOptions(estimation, variance, placed), entries.covariates)
+}
+
+function basisOf(
+  { estimation, pooling }: Study,
+  entries: Entries,
+  lines: number,
+  options: JumpOptions,
+  covariates: readonly NamedColumn[],
+): PoolBasis {
+  const { variance } = options
   return {
-    sample: buildSample(all),
+    sample: buildSample(entries),
     lines,
     options: {
-      ...jumpOptions(estimation, variance, placed),
+      ...options,
       bandwidth: estimation.bandwidth,
       sides: estimation.sides,
       clustered: variance === 'clusters' || variance === 'few-clusters',
       fixedEffects: pooling.fixedEffects && lines > 1,
+      ...(covariates.length > 0 ? { covariates: covariates.map(({ values }) => values) } : {}),
     },
   }
 }
@@ -270,21 +314,40 @@ function pooledWithMore(
   { estimation }: Study,
   basis: PoolBasis,
   takeUp: NamedColumn | undefined,
+  covariates: readonly NamedColumn[],
 ): OutcomeEstimates['pooled'] {
   const { donut, smoothness } = estimation
   const pooled = estimatePooled(basis, donut)
   if (hasReason(pooled)) return pooled
-  if (takeUp) {
-    const again = { ...basis, sample: withColumn(basis.sample, takeUp) }
-    const made = perTakeUp(pooled, takeUp, basis.options, (_, { h, b }) => {
-      const options = { ...basis.options, bandwidth: { kind: 'fixed' as const, ...h, bias: b } }
-      const first = estimatePooled({ ...again, options }, donut)
-      return hasReason(first) ? { ok: false, reason: first.reason } : { ok: true, jump: first.jump }
-    })
-    return hasReason(made) ? made : { ...pooled, ...made }
+  const beside =
+    covariates.length > 0 ? { covariates: covariatesMade(basis, donut, covariates, pooled.coefficients) } : {}
+  if (!takeUp) {
+    const sample = outsideDonut(basis.sample, donut)
+    const interval = poolBiasAware(sample, basis.lines, { ...basis.options, smoothness })
+    return { ...pooled, ...beside, biasAware: interval }
   }
-  const sample = outsideDonut(basis.sample, donut)
-  return { ...pooled, biasAware: poolBiasAware(sample, basis.lines, { ...basis.options, smoothness }) }
+  const made = perTakeUp(pooled, takeUp, basis.options, (_, { h, b }) => {
+    const options = { ...basis.options, bandwidth: { kind: 'fixed' as const, ...h, bias: b } }
+    const first = estimatePooled({ ...basis, options, sample: withColumn(basis.sample, takeUp) }, donut)
+    return hasReason(first) ? { ok: false, reason: first.reason } : { ok: true, jump: first.jump }
+  })
+  return hasReason(made) ? made : { ...pooled, ...beside, ...made }
+}
+
+/** At bandwidths of its own, the estimate without covariates. */
+function covariatesMade(
+  basis: PoolBasis,
+  donut: number,
+  covariates: readonly NamedColumn[],
+  coefficients: Float64Array,
+): CovariatesMade {
+  const { covariates: _, ...options } = basis.options
+  const without = estimatePooled({ ...basis, options }, donut)
+  return {
+    names: covariates.map(({ name }) => name),
+    coefficients,
+    without: hasReason(without) ? undefined : without.jump,
+  }
 }
 
 /** Below this first-stage F no ratio is shown. */

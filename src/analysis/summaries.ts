@@ -7,6 +7,7 @@ import type {
   BorderResult,
   BySide,
   Comparison,
+  CovariateReport,
   Estimate,
   Jump,
   LineSummary,
@@ -19,6 +20,7 @@ import type {
 import type { EstimationPart, Study } from '../study/index.js'
 import type { BorderFacts } from './border.js'
 import {
+  type CovariatesMade,
   hasReason,
   type LineEstimate,
   type MainEstimates,
@@ -90,6 +92,21 @@ function notEstimated({ reason, takeUp }: NoEstimate): NotEstimated {
   return { not_estimated: reason, ...(takeUp ? { take_up: takeUpResult(takeUp) } : {}) }
 }
 
+/** Against the estimate without covariates, at bandwidths of its own. */
+function covariateResult({ names, coefficients, without }: CovariatesMade, { corrected }: JumpFit): CovariateReport {
+  const isUsed = (c: number) => !Number.isNaN(coefficients[c])
+  return {
+    coefficients: Object.fromEntries(names.flatMap((name, c) => (isUsed(c) ? [[name, coefficients[c]]] : []))),
+    left_out: names.filter((_, c) => !isUsed(c)),
+    ...(without
+      ? {
+          moved: corrected.estimate - without.corrected.estimate,
+          standard_error_ratio: corrected.standardError / without.corrected.standardError,
+        }
+      : {}),
+  }
+}
+
 function weakFirstStage(f: number): string {
   return `take-up jumps weakly, F = ${shown(f)}, under ${leastF}: go by the Anderson–Rubin set, which needs no first stage`
 }
@@ -108,7 +125,7 @@ function takeUpResult({ eligibility, ratio }: TakeUpMade): TakeUp {
 }
 
 export function jumpResult(
-  { jump, biasAware, takeUp }: LineEstimate,
+  { jump, biasAware, takeUp, covariates }: LineEstimate,
   estimation: EstimationPart,
   variance: Variance,
 ): Jump {
@@ -127,6 +144,7 @@ export function jumpResult(
     corrected: estimateResult(jump.corrected),
     ...biasAwareResult(biasAware),
     ...(takeUp ? { take_up: takeUpResult(takeUp) } : {}),
+    ...(covariates ? { covariates: covariateResult(covariates, takeUp?.eligibility ?? jump) } : {}),
     ...(notes.length > 0 ? { notes } : {}),
   }
 }

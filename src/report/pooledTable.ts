@@ -143,7 +143,17 @@ function pooledNote(view: View, outcome: OutcomeView): string {
     `variance ${pooled.variance}${pooled.clusters === undefined ? '' : `, ${count(pooled.clusters)} clusters`}`,
     view.choices.fixedEffects ? `with a fixed effect for each ${view.words.line}` : 'without fixed effects',
   ]
-  return `${parts.join('; ')}.`
+  return `${parts.join('; ')}.${covariateWords(pooled, pooledPlaces(outcome))}`
+}
+
+function covariateWords({ covariates: found }: Jump, places: Places): string {
+  if (!found) return ''
+  const out = found.left_out.length > 0 ? ` (${found.left_out.join(', ')} left out: constant, or a sum of others)` : ''
+  const effect =
+    found.moved === undefined
+      ? ''
+      : ` They move the estimate by ${fixed(found.moved, places)} and make its standard error ${fixed(found.standard_error_ratio, 2)} times what it is without them.`
+  return ` Covariates: ${Object.keys(found.coefficients).join(', ') || 'none'}${out}.${effect}`
 }
 
 /** How far the lines differ, one row an outcome. */

@@ -1,6 +1,6 @@
 /**
- * Line fixed effects, absorbed exactly.
- * Source: Black 1999; METHODS section 8. γ̂ comes from the joint kernel-weighted fit of y on side-specific
+ * Line fixed effects, absorbed exactly, and covariates with coefficients common to both sides.
+ * Source: Black 1999; Calonico, Cattaneo, Farrell & Titiunik 2019; METHODS section 8. γ̂ comes from the joint kernel-weighted fit of y on side-specific
  * polynomials of order p at h plus one dummy per line, in O(n) for thousands of lines (absorbed.ts).
  */
 import { type BySide, countWithin, type Kernel, kernelCurve, type Sample, type Side } from '../jump/index.js'
@@ -10,8 +10,10 @@ import { absorbedLeastSquares, type EachRow } from './absorbed.js'
 export type FixedEffects =
   | {
       readonly ok: true
-      /** γ̂ of each line, with kernel-weighted mean 0; NaN for a line without units of positive weight. */
+      /** γ̂ of each line, with kernel-weighted mean 0; NaN for a line without units of positive weight; 0 without line effects. */
       readonly effects: Float64Array
+      /** Of each covariate; NaN where it is constant or a sum of those before it. */
+      readonly coefficients: Float64Array
     }
   | { readonly ok: false; readonly reason: string }
 
@@ -37,21 +39,44 @@ function eachWeight(side: Side, h: number, kernel: Kernel, visit: (i: number, k:
   }
 }
 
+/** What is fitted beside the two curves. */
+export interface Nuisance {
+  readonly lines: number
+  /** A level for each line; else one for all. */
+  readonly fixedEffects: boolean
+  /** By row of the table. */
+  readonly covariates: readonly Float64Array[]
+}
+
 /**
- * γ̂ for `lines` lines from a sample whose sides carry `group`. The columns are the treated side's P_0 … P_p and the
- * untreated side's P_1 … P_p (shifted Legendre in t over the side's window); the common level is in the dummies.
+ * γ̂ from a sample whose sides carry `group`. The columns are the treated side's P_0 … P_p and the untreated side's P_1 … P_p
+ * (shifted Legendre in t over the side's window), then the covariates; the common level is in the dummies.
  */
 export function fitFixedEffects(
   sample: Sample,
   h: BySide<number>,
   order: number,
   kernel: Kernel,
-  lines: number,
+  { lines, fixedEffects, covariates }: Nuisance,
 ): FixedEffects {
-  const fit = absorbedLeastSquares(rowsOf(sample, h, order, kernel), lines, 2 * order + 1)
+  const groups = fixedEffects ? lines : 1
+  const fitWith = (used: readonly Float64Array[]) =>
+    absorbedLeastSquares(rowsOf(sample, h, order, kernel, fixedEffects, used), groups, 2 * order + 1 + used.length)
+  const varying = covariates
+    .map((_, place) => place)
+    .filter((place) => varies(sample, h, kernel, groups, covariates[place]))
+  const all = fitWith(varying.map((place) => covariates[place]))
+  const kept = all.ok ? varying : independentOf(varying, covariates, fitWith)
+  const fit = all.ok ? all : fitWith(kept.map((place) => covariates[place]))
   if (!fit.ok) {
-    return { ok: false, reason: 'line fixed effects: no line has enough units on both sides within the bandwidth' }
+    const what = fixedEffects ? 'line fixed effects: no line has' : 'covariates: there are not'
+    return { ok: false, reason: `${what} enough units on both sides within the bandwidth` }
   }
+  const coefficients = new Float64Array(covariates.length).fill(Number.NaN)
+  kept.forEach((place, k) => {
+    coefficients[place] = fit.slopes[2 * order + 1 + k]
+  })
+  if (!fixedEffects) return { ok: true, effects: new Float64Array(lines), coefficients }
   const weight = kernelWeightByLine(sample, h, kernel, lines)
   let level = 0
   let sum = 0
@@ -60,16 +85,59 @@ export function fitFixedEffects(
     level += weight[line] * fit.levels[line]
     sum += weight[line]
   }
-  return { ok: true, effects: fit.levels.map((effect) => effect - level / sum) }
+  return { ok: true, effects: fit.levels.map((effect) => effect - level / sum), coefficients }
 }
 
-function rowsOf(sample: Sample, h: BySide<number>, order: number, kernel: Kernel): EachRow {
+/** Places of the covariates that can be told apart: as many as can be added one by one. */
+function independentOf(
+  places: readonly number[],
+  covariates: readonly Float64Array[],
+  fitWith: (used: readonly Float64Array[]) => { readonly ok: boolean },
+): number[] {
+  const kept: number[] = []
+  for (const place of places) {
+    if (fitWith([...kept, place].map((one) => covariates[one])).ok) kept.push(place)
+  }
+  return kept
+}
+
+/** Whether a covariate is not the same for all units of a group near the line, beyond rounding. */
+function varies(sample: Sample, h: BySide<number>, kernel: Kernel, groups: number, covariate: Float64Array): boolean {
+  const sum = new Float64Array(groups)
+  const weight = new Float64Array(groups)
+  const each = (visit: (group: number, k: number, value: number) => void) => {
+    for (const name of ['untreated', 'treated'] as const) {
+      const { group, unit } = sample[name]
+      eachWeight(sample[name], h[name], kernel, (i, k) => {
+        visit(groups > 1 ? (group as Int32Array)[i] : 0, k, covariate[unit[i]])
+      })
+    }
+  }
+  each((group, k, value) => {
+    sum[group] += k * value
+    weight[group] += k
+  })
+  let [within, whole] = [0, 0]
+  each((group, k, value) => {
+    within += k * (value - sum[group] / weight[group]) ** 2
+    whole += k * value * value
+  })
+  return within > 1e-20 * whole
+}
+
+function rowsOf(
+  sample: Sample,
+  h: BySide<number>,
+  order: number,
+  kernel: Kernel,
+  fixedEffects: boolean,
+  covariates: readonly Float64Array[],
+): EachRow {
   const basis = new Float64Array(order + 1)
-  const row = new Float64Array(2 * order + 1)
+  const row = new Float64Array(2 * order + 1 + covariates.length)
   return (visit) => {
     for (const name of ['untreated', 'treated'] as const) {
       const side = sample[name]
-      const group = side.group as Int32Array
       const count = countWithin(side.t, h[name], kernel)
       const scale = count > 0 ? side.t[count - 1] : 1
       eachWeight(side, h[name], kernel, (i, k) => {
@@ -77,7 +145,8 @@ function rowsOf(sample: Sample, h: BySide<number>, order: number, kernel: Kernel
         row.fill(0)
         if (name === 'treated') row.set(basis)
         else for (let j = 1; j <= order; j++) row[order + j] = basis[j]
-        visit(group[i], k, row, side.y[i])
+        for (let c = 0; c < covariates.length; c++) row[2 * order + 1 + c] = covariates[c][side.unit[i]]
+        visit(fixedEffects ? (side.group as Int32Array)[i] : 0, k, row, side.y[i])
       })
     }
   }

@@ -24,6 +24,8 @@ export interface PoolOptions extends JumpOptions {
   readonly sides: 'common' | 'separate'
   readonly clustered: boolean
   readonly fixedEffects: boolean
+  /** Taken out with coefficients common to both sides; by row of the table. */
+  readonly covariates?: readonly Float64Array[]
 }
 
 export type Pooled =
@@ -36,6 +38,8 @@ export type Pooled =
       readonly sample: Sample
       /** Entries left out because their line has no unit within the bandwidth (fixed effects only). */
       readonly withoutEffect: number
+      /** Of the covariates; NaN where one is constant or a sum of others. */
+      readonly coefficients: Float64Array
     }
   | { readonly ok: false; readonly reason: string }
 
@@ -47,7 +51,8 @@ export type Pooled =
 export function poolLines(sample: Sample, lines: number, options: PoolOptions): Pooled {
   const pick = (on: Sample) => bandwidthsFor(on, options.bandwidth, options)
   let on = sample
-  if (options.fixedEffects && options.bandwidth.kind === 'rule') {
+  const isFreed = options.fixedEffects || (options.covariates ?? []).length > 0
+  if (isFreed && options.bandwidth.kind === 'rule') {
     const freed = freeAtPilot(sample, lines, options)
     if (!freed.ok) return freed
     on = freed.sample
@@ -57,11 +62,13 @@ export function poolLines(sample: Sample, lines: number, options: PoolOptions): 
   const bandwidths: Bandwidths = chosen.bandwidths
   let used = sample
   let withoutEffect = 0
-  if (options.fixedEffects) {
+  let coefficients = new Float64Array(0)
+  if (isFreed) {
     const freed = freeOfEffects(sample, bandwidths.h, lines, options)
     if (!freed.ok) return freed
     used = freed.sample
     withoutEffect = freed.dropped
+    coefficients = freed.coefficients
   }
   const estimated = jumpAt(used, bandwidths, { ...options, hasLineLevels: options.fixedEffects })
   if (!estimated.ok) return estimated
@@ -73,34 +80,67 @@ export function poolLines(sample: Sample, lines: number, options: PoolOptions): 
     weights: weights.map((weight) => weight / total),
     sample: used,
     withoutEffect,
+    coefficients,
   }
 }
 
 type Freed =
-  | { readonly ok: true; readonly sample: Sample; readonly dropped: number }
+  | {
+      readonly ok: true
+      readonly sample: Sample
+      readonly dropped: number
+      readonly coefficients: Float64Array<ArrayBuffer>
+    }
   | { readonly ok: false; readonly reason: string }
 
+type FreeOptions = Pick<PoolOptions, 'order' | 'kernel' | 'fixedEffects' | 'covariates'>
+
 /** y − γ̂ from the pilot bandwidth, which bandwidths are chosen on. */
-export function freeAtPilot(sample: Sample, lines: number, options: Pick<PoolOptions, 'order' | 'kernel'>): Freed {
+export function freeAtPilot(sample: Sample, lines: number, options: FreeOptions): Freed {
   const pilot = pilotBandwidth(sample, options.kernel, bandwidthRange(sample, options.order))
   return freeOfEffects(sample, { untreated: pilot, treated: pilot }, lines, options)
 }
 
 /** y − γ̂ from the fit at h; entries of lines without a unit of positive weight are dropped. */
-export function freeOfEffects(
-  sample: Sample,
-  h: BySide<number>,
-  lines: number,
-  options: Pick<PoolOptions, 'order' | 'kernel'>,
-): Freed {
-  const fit = fitFixedEffects(sample, h, options.order, options.kernel, lines)
+export function freeOfEffects(sample: Sample, h: BySide<number>, lines: number, options: FreeOptions): Freed {
+  const { order, kernel, fixedEffects, covariates = [] } = options
+  const fit = fitFixedEffects(sample, h, order, kernel, { lines, fixedEffects, covariates })
   if (!fit.ok) return fit
-  const { effects } = fit
+  const { effects, coefficients } = fit
   const untreated = keepEntries(sample.untreated, (group) => !Number.isNaN(effects[group]))
   const treated = keepEntries(sample.treated, (group) => !Number.isNaN(effects[group]))
-  const free = (side: Side) => side.y.map((y, i) => y - effects[(side.group as Int32Array)[i]])
+  const taken = takenOut(sample, covariates, coefficients)
+  const free = (side: Side) => side.y.map((y, i) => y - effects[(side.group as Int32Array)[i]] - taken(side.unit[i]))
   const dropped = sample.untreated.t.length + sample.treated.t.length - untreated.t.length - treated.t.length
-  return { ok: true, sample: withOutcomes({ ...sample, untreated, treated }, free(untreated), free(treated)), dropped }
+  return {
+    ok: true,
+    sample: withOutcomes({ ...sample, untreated, treated }, free(untreated), free(treated)),
+    dropped,
+    coefficients: Float64Array.from(coefficients),
+  }
+}
+
+/** Σ γ̂ (z − z̄) of a unit, z̄ over the entries of the sample, so that the level stays. */
+function takenOut(
+  { untreated, treated }: Sample,
+  covariates: readonly Float64Array[],
+  coefficients: Float64Array,
+): (unit: number) => number {
+  const used = covariates.flatMap((values, c) =>
+    Number.isNaN(coefficients[c]) ? [] : [{ values, by: coefficients[c] }],
+  )
+  if (used.length === 0) return () => 0
+  const count = untreated.unit.length + treated.unit.length
+  const means = used.map(({ values }) => {
+    let sum = 0
+    for (const side of [untreated, treated]) for (const unit of side.unit) sum += values[unit]
+    return sum / count
+  })
+  return (unit) => {
+    let sum = 0
+    for (let c = 0; c < used.length; c++) sum += used[c].by * (used[c].values[unit] - means[c])
+    return sum
+  }
 }
 
 function keepEntries(side: Side, keeps: (group: number) => boolean): Side {

@@ -11,10 +11,13 @@ import { freeAtPilot, freeOfEffects } from './pool.js'
 export function poolBiasAware(
   sample: Sample,
   lines: number,
-  options: BiasAwareOptions & { readonly fixedEffects: boolean },
+  options: BiasAwareOptions & { readonly fixedEffects: boolean; readonly covariates?: readonly Float64Array[] },
 ): BiasAwareEstimated {
-  if (!options.fixedEffects) return biasAware(sample, options)
+  const { fixedEffects, covariates = [] } = options
+  if (!fixedEffects && covariates.length === 0) return biasAware(sample, options)
   const pilot = freeAtPilot(sample, lines, options)
   if (!pilot.ok) return pilot
-  return biasAware(pilot.sample, { ...options, hasLineLevels: true }, (h) => freeOfEffects(sample, h, lines, options))
+  return biasAware(pilot.sample, { ...options, hasLineLevels: fixedEffects }, (h) =>
+    freeOfEffects(sample, h, lines, options),
+  )
 }
