@@ -8,6 +8,7 @@ import { normalQuantile, studentQuantile } from '../math/index.js'
 import type { JumpFit } from './estimate.js'
 import { type Inference, infer } from './inference.js'
 import { covarianceMatrix, type Influence, influenceByKey, varianceOf } from './influence.js'
+import { negativeVariance } from './spatial.js'
 import type { SpatialPlaces } from './spatialPairs.js'
 
 export interface TakeUpOptions {
@@ -29,12 +30,16 @@ export interface TakeUpRatio {
   readonly andersonRubin: readonly (readonly [number, number])[]
 }
 
-/** The two jumps must come from the same units at the same bandwidths. A reason where take-up does not jump at all. */
+/**
+ * The two jumps must come from the same units at the same bandwidths. A reason where take-up does not jump at all, or
+ * where a spatial or two-way clustered variance of the ratio is negative.
+ */
 export function takeUpRatio(outcome: JumpFit, takeUp: JumpFit, options: TakeUpOptions): TakeUpRatio | string {
   const { level, spatial } = options
   const plain = ratioOf(outcome.plain, outcome.plainInfluence, takeUp.plain, takeUp.plainInfluence, options)
   const corrected = ratioOf(outcome.corrected, outcome.influence, takeUp.corrected, takeUp.influence, options)
-  if (!plain || !corrected) return 'take-up does not jump at all'
+  if (typeof plain === 'string') return plain
+  if (typeof corrected === 'string') return corrected
   const { matrix } = covarianceMatrix([outcome.influence, takeUp.influence], spatial)
   const { degreesOfFreedom } = outcome.corrected
   const tail = 1 - (1 - level) / 2
@@ -61,15 +66,26 @@ function ratioOf(
   d: Inference,
   psiD: Influence,
   { level, spatial }: TakeUpOptions,
-): { readonly inference: Inference; readonly influence: Influence } | undefined {
+): { readonly inference: Inference; readonly influence: Influence } | string {
   const ratio = y.estimate / d.estimate
-  if (!Number.isFinite(ratio)) return undefined
-  const influence = influenceByKey(
-    [psiY.key, psiD.key],
-    [psiY.psi.map((psi) => psi / d.estimate), psiD.psi.map((psi) => (-ratio * psi) / d.estimate)],
-  )
-  const variance = Math.max(0, varianceOf(influence, spatial))
-  return { inference: infer(ratio, variance, y.degreesOfFreedom, level), influence }
+  if (!Number.isFinite(ratio)) return 'take-up does not jump at all'
+  const influence = combined(psiY, 1 / d.estimate, psiD, -ratio / d.estimate)
+  const variance = varianceOf(influence, spatial)
+  const scale = (y.standardError / d.estimate) ** 2 + ((ratio * d.standardError) / d.estimate) ** 2
+  // an outcome that is take-up times a number leaves a variance of rounding, of either sign
+  if (!(variance >= -1e-12 * scale)) {
+    return spatial ? negativeVariance(spatial) : 'the variance of the ratio, clustered two ways, is negative'
+  }
+  return { inference: infer(ratio, Math.max(0, variance), y.degreesOfFreedom, level), influence }
+}
+
+/** byY ψ_y + byD ψ_d; where clusters cross, of each kind too. */
+function combined(y: Influence, byY: number, d: Influence, byD: number): Influence {
+  const sum = influenceByKey([y.key, d.key], [y.psi.map((psi) => byY * psi), d.psi.map((psi) => byD * psi)])
+  if (!y.crossed || !d.crossed) return sum
+  const first = combined(y.crossed.first, byY, d.crossed.first, byD)
+  const second = combined(y.crossed.second, byY, d.crossed.second, byD)
+  return { ...sum, crossed: { first, second } }
 }
 
 /** Where (τ_y − tτ_d)² − z²(V_yy − 2tV_yd + t²V_dd) ≤ 0: a quadratic in t. */

@@ -1,7 +1,15 @@
 /** Ratios against kernel-weighted two-stage least squares and Anderson–Rubin ends by uniroot, both by base R 4.2.2. */
 import { readFileSync } from 'node:fs'
 import { describe, expect, it } from 'vitest'
-import { buildSample, jumpAt, takeUpRatio, withOutcomes } from '../../src/jump/index.js'
+import {
+  buildSample,
+  crossClusters,
+  jumpAt,
+  type Sample,
+  takeUpRatio,
+  varianceOf,
+  withOutcomes,
+} from '../../src/jump/index.js'
 import { andersonRubinSet } from '../../src/jump/takeUp.js'
 
 interface Case {
@@ -74,14 +82,75 @@ describe('the effect per unit of take-up', () => {
   })
 })
 
+describe('the variance of the ratio', () => {
+  // the ratio's linear form: the jump of y − τd over that of take-up
+  it('counts both kinds of clusters that cross', () => {
+    const { x, d, y } = golden.strong
+    const { cluster, crossed } = crossClusters(
+      Int32Array.from(x, (_, i) => (i * 7) % 15),
+      Int32Array.from(x, (_, i) => (i * i) % 12),
+    )
+    const sample = buildSample({
+      x: Float64Array.from(x),
+      treated: Uint8Array.from(x, (value) => (value >= 0 ? 1 : 0)),
+      unit: Int32Array.from(x, (_, i) => i),
+      y: Float64Array.from(y),
+      cluster,
+    })
+    const clustered = { ...options, variance: 'clusters', crossed } as const
+    const jumpOf = (one: Sample) => {
+      const made = jumpAt(one, bandwidths, clustered)
+      if (!made.ok) throw new Error(made.reason)
+      return made.jump
+    }
+    const other = (value: (row: number) => number) =>
+      jumpOf(
+        withOutcomes(
+          sample,
+          ...([sample.untreated, sample.treated].map(({ unit }) => Float64Array.from(unit, value)) as [
+            Float64Array,
+            Float64Array,
+          ]),
+        ),
+      )
+    const takeUp = other((row) => d[row])
+    const made = takeUpRatio(jumpOf(sample), takeUp, { level: 0.95 })
+    if (typeof made === 'string') throw new Error(made)
+    const rest = other((row) => y[row] - made.corrected.estimate * d[row])
+    expect(made.corrected.standardError * Math.abs(takeUp.corrected.estimate)).toBeCloseTo(
+      rest.corrected.standardError,
+      10,
+    )
+    const onPairs = { key: made.influence.key, psi: made.influence.psi }
+    expect(varianceOf(made.influence)).toBeCloseTo(made.corrected.standardError ** 2, 12)
+    expect(Math.abs(varianceOf(onPairs) / varianceOf(made.influence) - 1)).toBeGreaterThan(0.01)
+  })
+})
+
 describe('the Anderson–Rubin set', () => {
-  it('is an interval, two rays, all numbers, one ray or nothing', () => {
-    const apart = { yy: 1, yd: 0, dd: 1 }
-    expect(andersonRubinSet(5, 5, apart, 2)).toHaveLength(1)
-    expect(andersonRubinSet(5, 1, apart, 2)).toHaveLength(2)
-    expect(andersonRubinSet(1, 1, apart, 2)).toEqual([[Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY]])
-    expect(andersonRubinSet(3, 2, { yy: 1, yd: 0, dd: 1 }, 2)).toHaveLength(1)
-    // outcome and take-up move together without error of their own difference, which is far from 0 at every t
-    expect(andersonRubinSet(10, 4, { yy: 1, yd: 2, dd: 4 }, 1)).toHaveLength(1)
+  const [low, high] = [Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY]
+  const apart = { yy: 1, yd: 0, dd: 1 }
+
+  it('is an interval, two rays or all numbers, where its ends solve the equation', () => {
+    const on = (t: number, y: number, d: number) => Math.abs(y - t * d) - 2 * Math.sqrt(1 + t * t)
+    const bounded = andersonRubinSet(5, 5, apart, 2)
+    expect(bounded).toHaveLength(1)
+    for (const end of bounded[0]) expect(on(end, 5, 5)).toBeCloseTo(0, 12)
+    const [before, after] = andersonRubinSet(5, 1, apart, 2)
+    expect([before[0], after[1]]).toEqual([low, high])
+    for (const end of [before[1], after[0]]) expect(on(end, 5, 1)).toBeCloseTo(0, 12)
+    expect(andersonRubinSet(1, 1, apart, 2)).toEqual([[low, high]])
+  })
+
+  it('is one ray where F is the square of the quantile, and nothing where take-up neither jumps nor varies', () => {
+    expect(andersonRubinSet(3, 2, apart, 2)).toEqual([[5 / 12, high]])
+    expect(andersonRubinSet(-3, 2, apart, 2)).toEqual([[low, -5 / 12]])
+    expect(andersonRubinSet(3, 0, { yy: 1, yd: 0, dd: 0 }, 2)).toEqual([])
+  })
+
+  // F = 4 is above 1.96² = 3.84, F = 3.61 is not
+  it('is bounded when F is above the square of the quantile only', () => {
+    expect(andersonRubinSet(5, 2, apart, 1.96)).toHaveLength(1)
+    expect(andersonRubinSet(5, 1.9, apart, 1.96)).toHaveLength(2)
   })
 })
