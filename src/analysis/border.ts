@@ -2,6 +2,7 @@
 import {
   type Border,
   type Conflict,
+  type EligibilityRules,
   eligible,
   type Ground,
   type LayerShare,
@@ -30,6 +31,8 @@ export const metresPerUnit = { m: 1, km: 1000, ft: 0.3048, mi: 1609.344 } as con
 export interface BorderFacts {
   /** Its pieces carry what set them aside. */
   readonly border: Border
+  /** What decided which pieces and units count, but for the zone by the record. */
+  readonly rules: EligibilityRules
   /** What the same border and units need not be measured for again. */
   readonly known: KnownGround
   readonly ground: Ground
@@ -105,7 +108,7 @@ export function locateOnBorder(
     })
   const [nearBarriers, nearOverlaps] = [shares(barriers), shares(overlaps)]
   const side = line.side === undefined ? undefined : zonesByRecord(border.names, labelsOf(table, line.side))
-  const result = eligible(border, measured, {
+  const rules: EligibilityRules = {
     metresPerUnit: perUnit,
     reachMetres: line.reach === undefined ? undefined : line.reach * perUnit,
     barriers: nearBarriers,
@@ -113,6 +116,9 @@ export function locateOnBorder(
     largestTurnDegrees: line.largestTurn,
     cornerMetres: line.corner * perUnit,
     positionErrorMetres: line.positionError,
+  }
+  const result = eligible(border, measured, {
+    ...rules,
     side: side && { recordZone: side.recordZone, onConflict: line.onConflict },
   })
   const { placement, setAside, ground, reason, pieces, waterfall, conflicts } = result
@@ -123,6 +129,7 @@ export function locateOnBorder(
       placement,
       setAside,
       ground,
+      rules,
       known: { border, measured, shareOf },
       reason,
       border: { ...border, pieces },

@@ -7,6 +7,7 @@ import { numbersOf, type Table } from '../records/index.js'
 import type { CheckResult, OutcomeResult } from '../results.js'
 import type { Study } from '../study/index.js'
 import { balanceChecks } from './balance.js'
+import { densityChecks } from './density.js'
 import { entriesOfValues, type OutcomeEntries } from './entries.js'
 import { hasReason, type MainEstimates, ofEligibility, pooledOnly } from './estimating.js'
 import { type AnalysisInputs, type Progress, positionColumns } from './inputs.js'
@@ -35,7 +36,7 @@ export function sharedChecks(
   if (study.checks === 'none') return undefined
   progress?.('checking', 0, 1)
   return {
-    rows: balanceChecks(study, inputs, placed),
+    rows: [...densityChecks(study, placed), ...balanceChecks(study, inputs, placed)],
     placebos: study.line.kind === 'border' ? placePlacebos(study, inputs, placed, progress) : undefined,
   }
 }

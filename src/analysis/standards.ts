@@ -75,7 +75,7 @@ function byChecks(checks: readonly CheckResult[], names: readonly string[], with
 }
 
 function integrity(checks: readonly CheckResult[]): Answer {
-  const names = ['density', 'density, binned', 'density, discrete score', 'units per km²', 'heaping']
+  const names = ['density', 'density, line by line', 'units per km²']
   const counted = byChecks(checks, names, 'the counts of units at the line were not checked')
   return counted.answer === 'met'
     ? { ...counted, says: `${counted.says}; whether anyone could move a score is for people to say` }

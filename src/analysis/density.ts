@@ -1,0 +1,109 @@
+/** Do units pile up on one side? By score at every line and pooled; on the ground against the land there is. */
+import { randomGround } from '../borders/index.js'
+import { type DensityOutcome, densityTest, holm } from '../checks/index.js'
+import { normalUpper, quantileOfSorted, streamOf } from '../math/index.js'
+import type { CheckResult } from '../results.js'
+import type { Study } from '../study/index.js'
+import type { Placed } from './placing.js'
+import { shown } from './words.js'
+
+/** Lines with fewer units are not tested on their own. */
+const fewestAtLine = 100
+/** Random points drawn on the land. */
+const tries = 200_000
+/** Land is looked at as far as this share of the units lies from the border. */
+const shareNear = 0.9
+
+export function densityChecks(study: Study, placed: Placed): CheckResult[] {
+  return study.line.kind === 'border' ? groundChecks(study, placed) : scoreChecks(study, placed)
+}
+
+function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
+  const { kernel, level } = study.estimation
+  const alpha = 1 - level
+  const all = densityTest(placement.x, placement.treated, { kernel })
+  const pooled = rowOf('density', all, alpha)
+  if (placement.lines.length === 1) return [pooled]
+  const byLine = placement.lines.map((): number[] => [])
+  placement.line.forEach((line, e) => {
+    byLine[line].push(e)
+  })
+  const lines = placement.lines.flatMap((line, i) => {
+    const entries = byLine[i]
+    if (entries.length < fewestAtLine) return []
+    const made = densityTest(
+      Float64Array.from(entries, (e) => placement.x[e]),
+      Uint8Array.from(entries, (e) => placement.treated[e]),
+      { kernel },
+    )
+    return made.ok ? [{ line: line.id, made }] : []
+  })
+  const adjusted = holm(lines.map(({ made }) => made.p))
+  const bad = lines.flatMap(({ line, made }, i) =>
+    adjusted[i] < alpha ? [{ ...rowOf('density', made, alpha, adjusted[i]), line }] : [],
+  )
+  const tested = `${lines.length} of ${placement.lines.length} lines have units enough for a test of their own`
+  const none: CheckResult =
+    lines.length === 0
+      ? { check: 'density, line by line', verdict: 'not possible', says: tested }
+      : {
+          check: 'density, line by line',
+          p_holm: Math.min(...adjusted),
+          verdict: bad.length > 0 ? 'doubt' : 'fine',
+          says: `${tested}: ${bad.length === 0 ? 'none jumps' : `${bad.length} jump`} after adjusting for their number`,
+        }
+  return [pooled, none, ...bad]
+}
+
+function rowOf(check: string, made: DensityOutcome, alpha: number, pHolm?: number): CheckResult {
+  if (!made.ok) return { check, verdict: 'not possible', says: made.reason }
+  const jumps = (pHolm ?? made.p) < alpha
+  const ratio = made.corrected.treated.density / made.corrected.untreated.density
+  const size =
+    ratio > 0 && Number.isFinite(ratio)
+      ? `${shown(ratio)} times as dense on the treated side`
+      : 'one side is nearly empty'
+  const says = `units at the line are ${size}: ${jumps ? 'more than chance' : 'no more than chance'}`
+  const adjusted = pHolm === undefined ? {} : { p_holm: pHolm }
+  return { check, statistic: made.z, p: made.p, ...adjusted, verdict: jumps ? 'doubt' : 'fine', says }
+}
+
+/** Units per km² on the two sides: densities of units over those of random points on the same land. */
+function groundChecks(study: Study, { placement, known, border, rules }: Placed): CheckResult[] {
+  const check = 'units per km²'
+  const impossible = (says: string): CheckResult[] => [{ check, verdict: 'not possible', says }]
+  if (!known || !border || !rules) return impossible('the units were not measured on the ground')
+  if (placement.x.length === 0) return impossible('no unit is placed')
+  const sorted = placement.x.map(Math.abs).sort()
+  const radius = quantileOfSorted(sorted, shareNear)
+  if (!(radius > 0)) return impossible('the units lie on the border')
+  const { metresPerUnit } = rules
+  const ground = randomGround(
+    known.border,
+    border.pieces,
+    rules,
+    radius * metresPerUnit,
+    tries,
+    streamOf(study.seed, 5),
+  )
+  const { kernel, level } = study.estimation
+  const near = placement.x.map((_, e) => e).filter((e) => Math.abs(placement.x[e]) < radius)
+  const units = densityTest(
+    Float64Array.from(near, (e) => placement.x[e]),
+    Uint8Array.from(near, (e) => placement.treated[e]),
+    { kernel },
+  )
+  if (!units.ok) return impossible(units.reason)
+  const land = densityTest(ground.x, ground.treated, { kernel, bandwidth: units.bandwidth })
+  if (!land.ok) return impossible(`random points on the land: ${land.reason}`)
+  const log = ({ corrected }: typeof units) => Math.log(corrected.treated.density / corrected.untreated.density)
+  const spread = ({ corrected: { untreated, treated } }: typeof units) =>
+    (treated.standardError / treated.density) ** 2 + (untreated.standardError / untreated.density) ** 2
+  const difference = log(units) - log(land)
+  const z = difference / Math.sqrt(spread(units) + spread(land))
+  if (!Number.isFinite(z)) return impossible('one side is nearly empty at the border')
+  const p = 2 * normalUpper(Math.abs(z))
+  const jumps = p < 1 - level
+  const says = `at the border there are ${shown(Math.exp(difference))} times as many units per km² on the treated side: ${jumps ? 'more than chance' : 'no more than chance'} (land measured with ${ground.x.length} random points)`
+  return [{ check, statistic: z, p, verdict: jumps ? 'doubt' : 'fine', says }]
+}
