@@ -185,6 +185,7 @@ export interface BiasAware extends Interval {
   readonly smoothness: number
   readonly smoothness_from: 'rule' | 'study'
   readonly bandwidth: BySide
+  readonly units_in_bandwidth: BySide
   /** The interval over a range of smoothness. */
   readonly curve?: readonly ({ readonly smoothness: number } & Interval)[]
 }

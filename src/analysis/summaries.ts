@@ -153,6 +153,7 @@ function biasAwareResult(made: BiasAwareEstimated | undefined): Pick<Jump, 'bias
   if (!made) return {}
   if (!made.ok) return { bias_aware: null, bias_aware_reason: made.reason }
   const { estimate, standardError, worstBias, smoothness, smoothnessFrom, bandwidth, low, high, curve } = made.interval
+  const { unitsInBandwidth } = made.interval
   return {
     bias_aware: {
       estimate,
@@ -161,6 +162,7 @@ function biasAwareResult(made: BiasAwareEstimated | undefined): Pick<Jump, 'bias
       smoothness,
       smoothness_from: smoothnessFrom === 'rule' ? 'rule' : 'study',
       bandwidth,
+      units_in_bandwidth: unitsInBandwidth,
       low,
       high,
       ...(curve.length > 0

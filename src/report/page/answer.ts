@@ -76,12 +76,21 @@ function pooledSentence(view: View, outcome: OutcomeView, jump: Jump, places: Pl
   return `${start}, ${outcome.result.outcome} is ${way} just inside the treated side of ${view.words.theLine} than just outside it (corrected estimate; ${view.words.level} interval ${intervalText(corrected, places)}, ${pWords(corrected.p)}). ${verdict} ${means}`
 }
 
+/** Below this many units the interval is known to cover a few points less than it says (test/long/honest.test.ts). */
+const fewUnits = 1000
+
+function fewWords({ untreated, treated }: Jump['units_in_bandwidth']): string {
+  return untreated + treated < fewUnits
+    ? ' With so few units it can’t be promised to cover as often as it says: two or three points less is possible.'
+    : ''
+}
+
 function biasAwareSentence(view: View, jump: Jump | undefined, places: Places): string[] {
   const found = jump?.bias_aware
   if (!found) return []
   const from = found.smoothness_from === 'rule' ? 'by a rule of thumb from the data' : 'as the study says'
   return [
-    `If the curves bend by no more than ${significant(found.smoothness)} (second derivative, ${from}), the ${view.words.level} bias-aware interval is ${intervalText(found, places)}, about ${fixed(found.estimate, places)}, at its own bandwidth.`,
+    `If the curves bend by no more than ${significant(found.smoothness)} (second derivative, ${from}), the ${view.words.level} bias-aware interval is ${intervalText(found, places)}, about ${fixed(found.estimate, places)}, at its own bandwidth.${fewWords(found.units_in_bandwidth)}`,
   ]
 }
 
