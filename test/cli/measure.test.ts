@@ -31,10 +31,10 @@ describe('scarp measure', () => {
   it('writes the placement of every unit beside its own columns', async () => {
     const said = await measure('placed.csv', position)
     expect(said).toMatchObject({ code: 0, stderr: '' })
-    expect(said.stdout).toMatch(/^400 of 403 units placed, .*: placed\.csv\n$/)
+    expect(said.stdout).toMatch(/^400 of 403 units placed, .*: placed\.csv\n.*placed\.csv\.lines\n$/)
     const rows = rowsOf('placed.csv')
     expect(Object.keys(rows[0])).toEqual(
-      'row,lease,lon,lat,rent,zone,line,piece,side,x,foot_lon,foot_lat,position_m,reason'.split(','),
+      'row,lease,lon,lat,rent,zone,line,piece,side,x,foot_lon,foot_lat,position_m,distance_m,nearest,reason'.split(','),
     )
     expect(rows).toHaveLength(403)
     for (const [i, row] of rows.slice(0, 400).entries()) {
