@@ -10,7 +10,10 @@ export function withRoom<T extends Float64Array | Int32Array | Uint32Array>(valu
   return wider
 }
 
-/** The first `length` elements in memory of their own; the same array where it is full. */
+/**
+ * The first `length` elements, without a copy: room beyond them was never written to, and large arrays take memory from
+ * the system only where they are.
+ */
 export function trimmed<T extends Float64Array | Int32Array>(values: T, length: number): T {
-  return length === values.length ? values : (values.slice(0, length) as T)
+  return length === values.length ? values : (values.subarray(0, length) as T)
 }
