@@ -25,6 +25,8 @@ describe('frozen geometry', () => {
   let plain: Record<string, unknown>
   beforeAll(async () => {
     cpSync('boundaries/quillhaven', town, { recursive: true })
+    const leases = readFileSync('boundaries/quillhaven/leases.csv', 'utf8').split('\n')
+    writeFileSync(join(town, 'leases.csv'), `${leases.slice(0, 5001).join('\n')}\n`)
     plain = (await run('plain', checksOff)).results
     for (const file of ['placed.parquet', 'placed.csv', 'placed.geojson']) {
       const said = await scarp(['measure', 'town/plain.yaml', '--out', `town/${file}`], { cwd: room })
@@ -135,6 +137,6 @@ describe('runners-up', () => {
       expect(Number(cells[at('runner_up_m')])).toBeGreaterThanOrEqual(Number(cells[at('distance_m')]) - 1e-8)
       expect(cells[at('runner_up')].split(', piece')[0]).not.toBe(cells[at('nearest')].split(', piece')[0])
     }
-    expect(seen).toBeGreaterThan(1900)
+    expect(seen).toBeGreaterThan(1800)
   })
 })
