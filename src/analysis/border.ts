@@ -43,7 +43,8 @@ export interface BorderFacts {
   readonly layers?: LayersAlong
   /** Units by record and map where the two differ; absent without `line.side`. */
   readonly conflicts?: readonly Conflict[]
-  readonly repeated: RepeatedPoints
+  /** Worked out when first asked for. */
+  readonly repeated: () => RepeatedPoints
 }
 
 export interface LocatedOnBorder extends BorderFacts {
@@ -136,8 +137,16 @@ export function locateOnBorder(
       waterfall,
       conflicts,
       layers: all.length > 0 ? layersAlong(pieces, all) : undefined,
-      repeated: repeatedPoints(lon, lat),
+      repeated: once(() => repeatedPoints(lon, lat)),
     },
+  }
+}
+
+function once<T>(work: () => T): () => T {
+  let done: { readonly value: T } | undefined
+  return () => {
+    done ??= { value: work() }
+    return done.value
   }
 }
 

@@ -189,7 +189,7 @@ function bandwidthGuard(
       const width = Number(metres.toPrecision(4))
       return { reason: `the bandwidth of ${width} m is under twice the position error of ${line.positionError} m` }
     }
-    const suspicion = centroidSuspicion(repeated, metres)
+    const suspicion = centroidSuspicion(repeated(), metres)
     return suspicion === undefined ? made : { reason: suspicion }
   }
 }

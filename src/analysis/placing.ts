@@ -132,10 +132,10 @@ function usabilityOf(study: Study, table: Table, located: Located): Usability | 
   const [first, second] = clusterColumns(study).map((name) => labelsOf(table, name).codes)
   const pairs = second && pairsOfClusters(first, second)
   const byColumn = pairs?.cluster ?? first
-  const cluster = byColumn ?? (points === 'cluster' ? repeated?.point : undefined)
+  const cluster = byColumn ?? (points === 'cluster' ? repeated?.().point : undefined)
   const key = study.records.id === undefined ? undefined : labelsOf(table, study.records.id).codes
   const beyond =
-    typeof points === 'object' && repeated ? beyondCap(repeated, points.cap, streamOf(study.seed, 3), key) : undefined
+    typeof points === 'object' && repeated ? beyondCap(repeated(), points.cap, streamOf(study.seed, 3), key) : undefined
   if (!weight && !cluster && !beyond) return undefined
   return {
     cluster,

@@ -221,7 +221,7 @@ export const cornerTurn = 45
 export const hasCorner = (piece: Piece) => piece.largestTurnDegrees > cornerTurn
 
 export function borderResult({ waterfall, layers, conflicts, repeated, border }: BorderFacts): BorderResult {
-  const { units, distinct, repeatedShare, most } = repeated
+  const { units, distinct, repeatedShare, most } = repeated()
   const sharesOf = ({ km, shares }: { km: number; shares: readonly number[] }) => ({
     km,
     shares: shares.map((share) => (Number.isNaN(share) ? null : share)),
