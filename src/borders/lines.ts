@@ -41,7 +41,7 @@ export interface MeasuredColumns extends Omit<Measured, 'zone' | 'piece'> {
   readonly nearest: Texts
 }
 
-/** The units as they were measured; undefined where a zone or a piece is none of the border's. */
+/** The units as they were measured; undefined where a zone or a piece is none of the border's, or its name not its own. */
 export function measuredOfColumns(
   border: Border,
   lon: Float64Array,
@@ -50,6 +50,7 @@ export function measuredOfColumns(
 ): Measured | undefined {
   const zoneOf = new Map([...border.names.map((name, i) => [name, i] as const), [severalZones, manyZones]])
   const pieceOf = new Map(border.pieces.map(({ label }, p) => [label, p]))
+  if (zoneOf.size <= border.names.length || pieceOf.size < border.pieces.length) return undefined
   const zones = zone.labels.map((label) => zoneOf.get(label))
   const pieces = nearest.labels.map((label) => pieceOf.get(label))
   if (zones.includes(undefined) || pieces.includes(undefined)) return undefined

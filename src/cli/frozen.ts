@@ -5,7 +5,7 @@
 import { createHash } from 'node:crypto'
 import { createReadStream } from 'node:fs'
 import { writeFile } from 'node:fs/promises'
-import { dirname, resolve } from 'node:path'
+import { dirname, join, resolve } from 'node:path'
 import type { AnalysisInputs } from '../analyze.js'
 import type { BorderOptions, Lines, Zones } from '../borders/index.js'
 import { readTextFile } from '../layers/index.js'
@@ -15,6 +15,7 @@ import type { GeometryUsed } from '../results.js'
 import type { BorderLine, Study } from '../study/index.js'
 import type { StudyFile } from './inputs.js'
 import { severalZones } from './measuredColumns.js'
+import { factsOf } from './outFolder.js'
 import { packageVersion } from './version.js'
 
 const mostLinesBytes = 500_000_000
@@ -24,6 +25,8 @@ interface LinesFile extends MadeFrom {
   readonly format: 'scarp-lines/1'
   readonly version: string
   readonly placement: { readonly sha256: string; readonly rows: number }
+  /** SHA-256 of `lines` as JSON. */
+  readonly lines_sha256: string
   readonly lines: Lines
 }
 
@@ -75,9 +78,14 @@ export async function writeLinesFile(
     version: packageVersion(),
     ...madeFrom(study, study.line, inputs),
     placement: { sha256: await hashOfFile(placement), rows: inputs.table.rows },
+    lines_sha256: hashOfLines(lines),
     lines,
   }
   await writeFile(linesFileOf(placement), `${JSON.stringify(file)}\n`)
+}
+
+function hashOfLines(lines: Lines): string {
+  return createHash('sha256').update(JSON.stringify(lines)).digest('hex')
 }
 
 async function hashOfFile(path: string): Promise<string> {
@@ -98,18 +106,21 @@ export async function withFrozen(from: StudyFile, inputs: AnalysisInputs): Promi
   if (line.kind !== 'border' || line.measured === undefined) return { ok: true, value: { inputs } }
   const path = resolve(dirname(from.file), line.measured)
   const shownAs = linesFileOf(line.measured)
-  const text = await readTextFile(linesFileOf(path), { shownAs, askedBy: 'line.measured', mostBytes: mostLinesBytes })
-  if (!text.ok) return text
-  const file = parsed(text.value.text)
   const refuse = (found: string, todo: string): Checked<never> => {
     const problem: Problem = { file: shownAs, what: 'line.measured', found, todo }
     return { ok: false, problems: [problem] }
   }
-  if (!file) return refuse('not a .lines file of this program', 'write it again with scarp measure')
+  const again = `scarp measure ${from.file} --out ${join(dirname(from.file), line.measured)}`
+  if (!factsOf(linesFileOf(path))) return refuse('there is no such file', `write it: ${again}`)
+  const text = await readTextFile(linesFileOf(path), { shownAs, askedBy: 'line.measured', mostBytes: mostLinesBytes })
+  if (!text.ok) return text
+  const file = parsed(text.value.text)
+  if (!file) return refuse('not a .lines file of this program', `write it again: ${again}`)
   const anew = (because: string): Checked<WithGeometry> => ({
     ok: true,
     value: { inputs, geometry: { from: line.measured as string, reused: false, because } },
   })
+  if (hashOfLines(file.lines) !== file.lines_sha256) return anew(`${shownAs} has changed since it was written`)
   const changed = whatChanged(file, madeFrom(from.study, line, inputs), inputs.table.rows)
   if (changed !== undefined) return anew(changed)
   let hash: string
@@ -121,7 +132,7 @@ export async function withFrozen(from: StudyFile, inputs: AnalysisInputs): Promi
   if (hash !== file.placement.sha256) return anew(`${line.measured} has changed since it was measured`)
   const ground = await groundOf(path, from.study, line, inputs, file.lines)
   if (!ground.ok) return ground
-  if (!ground.value) return anew(`${line.measured} lacks what measure writes`)
+  if (!ground.value) return anew(`${line.measured} does not say which zone and piece each row has`)
   return {
     ok: true,
     value: { inputs: { ...inputs, ground: ground.value }, geometry: { from: line.measured, reused: true } },

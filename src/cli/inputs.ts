@@ -18,6 +18,8 @@ export interface StudyFile {
   readonly file: string
   /** Absolute paths of the study file and of every file it names. */
   readonly paths: readonly string[]
+  /** Those of them that `measure` wrote and may write anew: named by `line.measured` and nothing else. */
+  readonly placements: readonly string[]
 }
 
 export async function readStudyFile(file: string): Promise<Checked<StudyFile>> {
@@ -27,21 +29,27 @@ export async function readStudyFile(file: string): Promise<Checked<StudyFile>> {
   const study = readStudy(text.value.text, file)
   if (!study.ok) return study
   const studies = [study.value, ...study.value.variants.map((variant) => variant.study)]
-  const named = [...new Set(studies.flatMap(namedFiles))].map((name) => resolve(dirname(file), name))
-  const paths = [resolve(file), ...named, ...named.flatMap(filesBeside)]
-  return { ok: true, value: { study: study.value, file, paths } }
+  const pathsOf = (files: (study: Study) => string[]) => [
+    ...new Set(studies.flatMap(files).map((name) => resolve(dirname(file), name))),
+  ]
+  const named = pathsOf(namedFiles)
+  const others = [resolve(file), ...named, ...named.flatMap(filesBeside)]
+  const placements = pathsOf(placementFiles).filter((path) => !others.includes(path))
+  return { ok: true, value: { study: study.value, file, paths: [...others, ...placements], placements } }
 }
 
-/** Every file that a study names, as written there. */
+/** Every file that a study names but those of its placement, as written there. */
 function namedFiles(study: Study): string[] {
   const files = [study.records.file]
   const { line } = study
   if (line.kind === 'score' && line.cutoff.kind === 'schedule') files.push(line.cutoff.file)
-  if (line.kind === 'border') {
-    files.push(...[line.zones, ...line.barriers, ...line.overlaps].map(({ file }) => file))
-    if (line.measured !== undefined) files.push(line.measured, `${line.measured}.lines`)
-  }
+  if (line.kind === 'border') files.push(...[line.zones, ...line.barriers, ...line.overlaps].map(({ file }) => file))
   return files
+}
+
+function placementFiles({ line }: Study): string[] {
+  if (line.kind !== 'border' || line.measured === undefined) return []
+  return [line.measured, `${line.measured}.lines`]
 }
 
 export interface ReadOptions {

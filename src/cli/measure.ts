@@ -34,9 +34,10 @@ export interface MeasureOptions {
 /** `first`: a table of units, with zones beside it, or a study file that names both. */
 export async function measure(first: string, options: MeasureOptions): Promise<ExitCode> {
   const { progress, clear } = progressLine(false)
-  const isStudy = /\.(ya?ml|json)$/i.test(first) && options.zones === undefined
+  // records may be lines of JSON
+  const isStudy = /\.ya?ml$/i.test(first) || (/\.json$/i.test(first) && options.zones === undefined)
   const from = isStudy ? await readStudyFile(first) : await studyOfOptions(first, options)
-  const read = from.ok && isStudy ? from.value.paths : [first, ...(options.zones ? [options.zones] : [])]
+  const read = from.ok && isStudy ? readPaths(from.value) : [first, ...(options.zones ? [options.zones] : [])]
   const problems = [
     ...(from.ok ? [] : from.problems),
     ...(isStudy ? wordsBesideStudy(options) : []),
@@ -62,12 +63,17 @@ export async function measure(first: string, options: MeasureOptions): Promise<E
 
 async function studyOfOptions(records: string, options: MeasureOptions): Promise<Checked<StudyFile>> {
   const study = await measureStudy(records, options)
-  return study.ok ? { ok: true, value: { study: study.value, file: './measure', paths: [] } } : study
+  return study.ok ? { ok: true, value: { study: study.value, file: './measure', paths: [], placements: [] } } : study
+}
+
+/** The study's own placement is not read, and may be written anew. */
+function readPaths({ paths, placements }: StudyFile): string[] {
+  return paths.filter((path) => !placements.includes(path))
 }
 
 /** A study says all of that itself. */
 function wordsBesideStudy(options: MeasureOptions): Problem[] {
-  const given = (['position', 'zoneName', 'treated', 'dose', 'unit'] as const).filter(
+  const given = (['zones', 'position', 'zoneName', 'treated', 'dose', 'unit'] as const).filter(
     (key) => options[key] !== undefined,
   )
   return given.map((key) => ({
