@@ -70,7 +70,10 @@ function commands(done: (code: ExitCode) => void): Command {
     .option('--dose <property>', 'numeric property of the zones, instead of --treated: the higher side is treated')
     .option('--unit <unit>', 'm, km, ft or mi (default: m)')
     .option('--runner-up', 'add the nearest border of another pair of zones, and how far it is')
-    .option('--without-coordinates', 'leave out what says where a unit is, so that the file may be passed on')
+    .option(
+      '--without-coordinates',
+      'leave out positions and foot points; with the zones, x and position_m still place most units',
+    )
     .requiredOption('--out <file>', 'table to write (.csv, .parquet or .geojson)')
     .addOption(workersOption())
     .action(async (records, options) => done(await (await import('./measure.js')).measure(records, options)))

@@ -31,6 +31,10 @@ export interface MeasureOptions {
   readonly withoutCoordinates?: boolean
 }
 
+/** A foot and a distance from it leave two places, on a straight border exactly. */
+const stillPlaced =
+  'no coordinates are in it, but whoever has the zones can place most units by x and position_m; other columns of the records are as they were'
+
 /** `first`: a table of units, with zones beside it, or a study file that names both. */
 export async function measure(first: string, options: MeasureOptions): Promise<ExitCode> {
   const { progress, clear } = progressLine(false)
@@ -56,8 +60,11 @@ export async function measure(first: string, options: MeasureOptions): Promise<E
   const { table } = inputs.value
   const reasons = [...placed.value.setAside].map(([reason, units]) => `, ${units} ${reason}`).join('')
   process.stdout.write(`${placed.value.units} of ${table.rows} units placed${reasons}: ${options.out}\n`)
-  if (options.withoutCoordinates !== true)
-    process.stdout.write(`the border it was measured against: ${linesFileOf(options.out)}\n`)
+  process.stdout.write(
+    options.withoutCoordinates === true
+      ? `${stillPlaced}\n`
+      : `the border it was measured against: ${linesFileOf(options.out)}\n`,
+  )
   return exitCodes.done
 }
 

@@ -1,5 +1,5 @@
 /** Placements kept in files whose zones, names and units are odd ones, that are written again, or were changed by hand. */
-import { readFileSync, rmSync, writeFileSync } from 'node:fs'
+import { existsSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { borderStudy, newRoom, scarp, writeFiles } from './studies.js'
@@ -106,6 +106,24 @@ describe('a study that names its placement', () => {
     expect(results.geometry).toMatchObject({ reused: false, because: 'own.csv.lines has changed since it was written' })
     writeFileSync(path, text)
     expect((await run('own')).results.geometry).toMatchObject({ reused: true })
+  })
+})
+
+describe('a file without coordinates', () => {
+  it('has none in any column, has no lines beside it, and is not said to hide where units are', async () => {
+    const words = ['measure', 'treated.yaml', '--out', 'open.csv', '--runner-up', '--without-coordinates']
+    const said = await scarp(words, { cwd: room })
+    expect(said).toMatchObject({ code: 0, stderr: '' })
+    expect(said.stdout).toContain('whoever has the zones can place most units by x and position_m')
+    expect(existsSync(join(room, 'open.csv.lines'))).toBe(false)
+    const [head, ...rows] = readFileSync(join(room, 'open.csv'), 'utf8').trimEnd().split('\n')
+    expect(head).toBe(
+      'row,lease,rent,zone,line,piece,side,x,position_m,distance_m,nearest,runner_up,runner_up_m,reason',
+    )
+    expect(rows).toHaveLength(410)
+    const positions = new Set(files['leases.csv'].split('\n').flatMap((row) => row.split(',').slice(1, 3)))
+    const cells = rows.slice(0, 400).flatMap((row) => row.split(','))
+    expect(cells.filter((cell) => cell.includes('.') && positions.has(cell))).toEqual([])
   })
 })
 
