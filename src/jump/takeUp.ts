@@ -88,7 +88,10 @@ function combined(y: Influence, byY: number, d: Influence, byD: number): Influen
   return { ...sum, crossed: { first, second } }
 }
 
-/** Where (τ_y − tτ_d)² − z²(V_yy − 2tV_yd + t²V_dd) ≤ 0: a quadratic in t. */
+/**
+ * Where (τ_y − tτ_d)² − z²(V_yy − 2tV_yd + t²V_dd) = at² + 2bt + c ≤ 0. The matrix has no negative variance, so the ratio itself
+ * is in the set wherever take-up jumps; an outcome that is take-up times a number leaves that point alone, or all numbers.
+ */
 export function andersonRubinSet(
   jumpY: number,
   jumpD: number,
@@ -97,22 +100,28 @@ export function andersonRubinSet(
 ): (readonly [number, number])[] {
   const z2 = quantile * quantile
   const a = jumpD * jumpD - z2 * dd
-  const b = -2 * (jumpY * jumpD - z2 * yd)
+  const b = z2 * yd - jumpY * jumpD
   const c = jumpY * jumpY - z2 * yy
   const [low, high] = [Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY]
   if (a === 0) {
     if (b === 0) return c <= 0 ? [[low, high]] : []
-    return b > 0 ? [[low, -c / b]] : [[-c / b, high]]
+    return b > 0 ? [[low, -c / (2 * b)]] : [[-c / (2 * b), high]]
   }
-  const discriminant = b * b - 4 * a * c
-  if (discriminant < 0) return a > 0 ? [] : [[low, high]]
+  // b² − ac without its squares of jumps, which cancel
+  const plus = [jumpY * jumpY * dd, jumpD * jumpD * yy, z2 * yd * yd]
+  const minus = [2 * jumpY * jumpD * yd, z2 * yy * dd]
+  const sum = plus[0] + plus[1] + plus[2] - minus[0] - minus[1]
+  const rounding = 1e-13 * (plus[0] + plus[1] + plus[2] + Math.abs(minus[0]) + minus[1])
+  const isDouble = Math.abs(sum) <= rounding
+  if (a < 0 && (isDouble || sum < 0)) return [[low, high]]
+  if (isDouble) return [[-b / a, -b / a]]
+  if (sum < 0) return []
   // the root of larger size first, so that nothing cancels
-  const q = -0.5 * (b + (b >= 0 ? 1 : -1) * Math.sqrt(discriminant))
-  const roots = q === 0 ? [0, 0] : [q / a, c / q]
+  const q = -(b + (b >= 0 ? 1 : -1) * Math.sqrt(z2 * sum))
+  const roots = [q / a, c / q]
   const [first, last] = [Math.min(...roots), Math.max(...roots)]
-  if (a > 0) return [[first, last]]
-  return first === last
-    ? [[low, high]]
+  return a > 0
+    ? [[first, last]]
     : [
         [low, first],
         [last, high],

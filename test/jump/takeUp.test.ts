@@ -11,6 +11,7 @@ import {
   withOutcomes,
 } from '../../src/jump/index.js'
 import { andersonRubinSet } from '../../src/jump/takeUp.js'
+import { seededRandom } from '../../src/math/index.js'
 
 interface Case {
   readonly x: number[]
@@ -146,6 +147,24 @@ describe('the Anderson–Rubin set', () => {
     expect(andersonRubinSet(3, 2, apart, 2)).toEqual([[5 / 12, high]])
     expect(andersonRubinSet(-3, 2, apart, 2)).toEqual([[low, -5 / 12]])
     expect(andersonRubinSet(3, 0, { yy: 1, yd: 0, dd: 0 }, 2)).toEqual([])
+  })
+
+  // an outcome of c times take-up: (c − t)²(τ_d² − z²V_dd) ≤ 0
+  it('is the ratio alone, or all numbers, where the outcome is take-up times a number', () => {
+    const random = seededRandom(3)
+    for (let i = 0; i < 500; i++) {
+      const [c, jump, dd] = [3 * random.normal(), 0.3 + random.next(), 0.2 * random.next() ** 2]
+      const set = andersonRubinSet(c * jump, jump, { yy: c * c * dd, yd: c * dd, dd }, 1.96)
+      expect(set).toHaveLength(1)
+      const [[first, last]] = set
+      if (jump ** 2 < 1.96 ** 2 * dd) expect([first, last]).toEqual([low, high])
+      else for (const end of [first, last]) expect(Math.abs(end / c - 1)).toBeLessThan(1e-9)
+    }
+  })
+
+  it('keeps its width where that is a billionth of the ratio', () => {
+    const [[first, last]] = andersonRubinSet(2, 1, { yy: 1e-18, yd: 0, dd: 0 }, 2)
+    expect((last - first) / 4e-9).toBeCloseTo(1, 6)
   })
 
   // F = 4 is above 1.96² = 3.84, F = 3.61 is not
