@@ -1,3 +1,4 @@
+import { readFileSync } from 'node:fs'
 import { describe, expect, it } from 'vitest'
 import { effectSlope, type LineEffects, leaveOneOut, perUnitOfDose, targetEffect } from '../../src/thresholds/index.js'
 
@@ -25,6 +26,27 @@ const independent = (estimate: readonly number[], variance: readonly number[]): 
   }
 }
 
+/** Slope, intercept, τ², standard error, Knapp–Hartung standard error, its ends and p: base R (test/golden/thresholds/slope.R). */
+const golden = JSON.parse(readFileSync('test/golden/thresholds/slope.json', 'utf8')) as Record<string, number[]>
+
+function expectGolden(
+  effects: LineEffects,
+  attribute: readonly number[],
+  wanted: readonly number[],
+  tolerance: number,
+) {
+  const made = effectSlope(effects, Float64Array.from(attribute), 0.95)
+  if (!made.ok) throw new Error(made.reason)
+  const { estimate, intercept, tauSquared, standardError, knappHartung: scaled } = made.slope
+  const found = [
+    ...[estimate, intercept, tauSquared, standardError],
+    ...[scaled.standardError, scaled.low, scaled.high, scaled.p],
+  ]
+  found.forEach((value, i) => {
+    expect(Math.abs(value / wanted[i] - 1)).toBeLessThan(tolerance)
+  })
+}
+
 describe('the slope of effects', () => {
   it('on latitude in the BCG trials (CHECKS; a general-purpose meta-analysis library in R)', () => {
     const made = effectSlope(independent(y, v), Float64Array.from(latitude), 0.95)
@@ -35,16 +57,37 @@ describe('the slope of effects', () => {
     expect(Math.abs(intercept - 0.2514642944)).toBeLessThan(5e-5)
   })
 
+  // R's optimise finds the top of a likelihood to the root of its precision
+  it('has the restricted likelihood and the Knapp–Hartung interval of base R', () => {
+    expectGolden(independent(y, v), latitude, golden.bcg, 1e-6)
+  })
+
+  it('counts what lines share, in the variance and in that of true effects', () => {
+    const { effects, omega, attribute, shared } = golden
+    const related: LineEffects = {
+      ids: effects.map((_, a) => `line ${a + 1}`),
+      estimate: Float64Array.from(effects),
+      covariance: Float64Array.from(omega),
+      isDiagonal: false,
+    }
+    expectGolden(related, attribute, shared, 1e-9)
+  })
+
   it('is weighted least squares where true effects do not vary', () => {
     const made = effectSlope(independent([1, 2, 3, 4], [1, 1, 1, 1]), Float64Array.of(1, 2, 3, 4), 0.95)
-    expect(made).toMatchObject({ ok: true, slope: { tauSquared: 0, lines: 4 } })
+    expect(made).toMatchObject({
+      ok: true,
+      slope: { tauSquared: 0, lines: 4 },
+    })
     if (made.ok) expect(made.slope.estimate).toBeCloseTo(1, 12)
     if (made.ok) expect(made.slope.standardError).toBeCloseTo(1 / Math.sqrt(5), 12)
   })
 
   it('needs three lines that differ, and passes over those without the attribute', () => {
     const effects = independent([1, 2, 3], [1, 1, 1])
-    expect(effectSlope(effects, Float64Array.of(1, 1, 1), 0.95)).toMatchObject({ ok: false })
+    expect(effectSlope(effects, Float64Array.of(1, 1, 1), 0.95)).toMatchObject({
+      ok: false,
+    })
     expect(effectSlope(effects, Float64Array.of(1, 2, Number.NaN), 0.95)).toMatchObject({ ok: false })
   })
 })
@@ -52,7 +95,12 @@ describe('the slope of effects', () => {
 /** Shared units: every pair of lines correlated. */
 function related(): { effects: LineEffects; weights: Float64Array } {
   const covariance = Float64Array.of(2, 0.5, 0.3, 0.5, 1, -0.2, 0.3, -0.2, 3)
-  const effects = { ids: ['a', 'b', 'c'], estimate: Float64Array.of(1, 4, -2), covariance, isDiagonal: false }
+  const effects = {
+    ids: ['a', 'b', 'c'],
+    estimate: Float64Array.of(1, 4, -2),
+    covariance,
+    isDiagonal: false,
+  }
   return { effects, weights: Float64Array.of(0.5, 0.3, 0.2) }
 }
 
