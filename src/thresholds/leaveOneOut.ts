@@ -1,6 +1,7 @@
-/** The weighted mean of the lines' effects with each line left out in turn, and the effect per unit of dose. */
-import { normalQuantile, studentTwoSidedP } from '../math/index.js'
-import type { LineEffects } from './effects.js'
+/** The mean of the lines' effects with each line left out in turn, and the effect per unit of dose. */
+import { normalQuantile, studentQuantile, studentTwoSidedP } from '../math/index.js'
+import { type LineEffects, variancesOf } from './effects.js'
+import { weightedAt } from './heterogeneity.js'
 
 export interface WithoutLine {
   readonly line: string
@@ -31,6 +32,29 @@ export function leaveOneOut(effects: LineEffects, weights: Float64Array, level: 
     const standardError = Math.sqrt(Math.max(0, variance - 2 * weights[a] * withAll[a] + own)) / left
     const reach = quantile * standardError
     return [{ line, estimate: without, standardError, low: without - reach, high: without + reach }]
+  })
+}
+
+/**
+ * The random-effects mean of the other lines with its Knapp–Hartung interval, τ² held at that of all lines. O(L); none with
+ * fewer than three lines.
+ */
+export function meanWithoutEachLine(effects: LineEffects, tauSquared: number, level: number): WithoutLine[] {
+  const { ids, estimate } = effects
+  const freedom = ids.length - 2
+  if (freedom < 1) return []
+  const variance = variancesOf(effects)
+  const { mean, weight, spread } = weightedAt(tauSquared, estimate, variance)
+  const quantile = studentQuantile((1 + level) / 2, freedom)
+  return ids.map((line, a) => {
+    const own = 1 / (variance[a] + tauSquared)
+    const left = weight - own
+    const off = estimate[a] - mean
+    const without = mean - (own * off) / left
+    const others = Math.max(0, spread - (own * weight * off * off) / left)
+    const standardError = Math.sqrt(others / (freedom * left))
+    const reach = quantile * standardError
+    return { line, estimate: without, standardError, low: without - reach, high: without + reach }
   })
 }
 

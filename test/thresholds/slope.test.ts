@@ -1,6 +1,14 @@
 import { readFileSync } from 'node:fs'
 import { describe, expect, it } from 'vitest'
-import { effectSlope, type LineEffects, leaveOneOut, perUnitOfDose, targetEffect } from '../../src/thresholds/index.js'
+import {
+  effectSlope,
+  type LineEffects,
+  leaveOneOut,
+  meanWithoutEachLine,
+  perUnitOfDose,
+  targetEffect,
+} from '../../src/thresholds/index.js'
+import { randomEffectsMean } from '../../src/thresholds/randomEffects.js'
 
 /** Colditz et al. 1994, 13 BCG trials: log risk ratios and variances (the 5th by its counts: 0.0512101722), latitudes. */
 const y = [
@@ -75,19 +83,14 @@ describe('the slope of effects', () => {
 
   it('is weighted least squares where true effects do not vary', () => {
     const made = effectSlope(independent([1, 2, 3, 4], [1, 1, 1, 1]), Float64Array.of(1, 2, 3, 4), 0.95)
-    expect(made).toMatchObject({
-      ok: true,
-      slope: { tauSquared: 0, lines: 4 },
-    })
+    expect(made).toMatchObject({ ok: true, slope: { tauSquared: 0, lines: 4 } })
     if (made.ok) expect(made.slope.estimate).toBeCloseTo(1, 12)
     if (made.ok) expect(made.slope.standardError).toBeCloseTo(1 / Math.sqrt(5), 12)
   })
 
   it('needs three lines that differ, and passes over those without the attribute', () => {
     const effects = independent([1, 2, 3], [1, 1, 1])
-    expect(effectSlope(effects, Float64Array.of(1, 1, 1), 0.95)).toMatchObject({
-      ok: false,
-    })
+    expect(effectSlope(effects, Float64Array.of(1, 1, 1), 0.95)).toMatchObject({ ok: false })
     expect(effectSlope(effects, Float64Array.of(1, 2, Number.NaN), 0.95)).toMatchObject({ ok: false })
   })
 })
@@ -95,12 +98,7 @@ describe('the slope of effects', () => {
 /** Shared units: every pair of lines correlated. */
 function related(): { effects: LineEffects; weights: Float64Array } {
   const covariance = Float64Array.of(2, 0.5, 0.3, 0.5, 1, -0.2, 0.3, -0.2, 3)
-  const effects = {
-    ids: ['a', 'b', 'c'],
-    estimate: Float64Array.of(1, 4, -2),
-    covariance,
-    isDiagonal: false,
-  }
+  const effects = { ids: ['a', 'b', 'c'], estimate: Float64Array.of(1, 4, -2), covariance, isDiagonal: false }
   return { effects, weights: Float64Array.of(0.5, 0.3, 0.2) }
 }
 
@@ -120,6 +118,21 @@ describe('the mean without a line', () => {
     expect(found[1].estimate).toBeCloseTo(target.estimate, 12)
     expect(found[1].standardError).toBeCloseTo(target.standardError, 12)
     expect(found[1].low).toBeCloseTo(target.low, 12)
+  })
+})
+
+describe('the random-effects mean without a line', () => {
+  it('is that of the other lines at the same variance of true effects', () => {
+    const tauSquared = 0.313243326
+    const found = meanWithoutEachLine(independent(y, v), tauSquared, 0.95)
+    expect(found).toHaveLength(13)
+    found.forEach((one, a) => {
+      const others = (values: readonly number[]) => Float64Array.from(values.filter((_, i) => i !== a))
+      const wanted = randomEffectsMean(others(y), others(v), tauSquared, 0.95)
+      for (const name of ['estimate', 'standardError', 'low', 'high'] as const)
+        expect(one[name] / wanted[name]).toBeCloseTo(1, 10)
+    })
+    expect(meanWithoutEachLine(independent([1, 2], [1, 1]), 0, 0.95)).toEqual([])
   })
 })
 
