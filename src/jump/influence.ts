@@ -101,16 +101,16 @@ export function covarianceMatrix(
   const count = influences.length
   if (count === 1) return { matrix: Float64Array.of(varianceOf(influences[0])), isDiagonal: true }
   const matrix = new Float64Array(count * count)
-  let largest = -1
-  for (const { key } of influences) for (const k of key) if (k > largest) largest = k
-  const start = new Int32Array(largest + 2)
-  for (const { key } of influences) for (const k of key) start[k + 1]++
-  for (let k = 0; k <= largest; k++) start[k + 1] += start[k]
+  const { keys, distinct } = inOrderMet(influences)
+  const start = new Int32Array(distinct + 1)
+  for (const key of keys) for (const k of key) start[k + 1]++
+  for (let k = 0; k < distinct; k++) start[k + 1] += start[k]
   const next = start.slice()
-  const holder = new Int32Array(start[largest + 1])
+  const holder = new Int32Array(start[distinct])
   const value = new Float64Array(holder.length)
   for (let line = 0; line < count; line++) {
-    const { key, psi } = influences[line]
+    const { psi } = influences[line]
+    const key = keys[line]
     for (let i = 0; i < key.length; i++) {
       const at = next[key[i]]++
       holder[at] = line
@@ -119,7 +119,7 @@ export function covarianceMatrix(
     matrix[line * count + line] = varianceOf(influences[line])
   }
   let isDiagonal = true
-  for (let k = 0; k <= largest; k++) {
+  for (let k = 0; k < distinct; k++) {
     for (let a = start[k]; a < start[k + 1]; a++) {
       for (let b = start[k]; b < a; b++) {
         isDiagonal = false
@@ -129,6 +129,24 @@ export function covarianceMatrix(
     }
   }
   return { matrix, isDiagonal }
+}
+
+/**
+ * Keys numbered as they are first met. Sums over keys then run in an order that the distances from the line decide, not
+ * the rows of a file, so that reordering rows cannot change a single bit.
+ */
+function inOrderMet(influences: readonly Influence[]): { readonly keys: Int32Array[]; readonly distinct: number } {
+  let largest = -1
+  for (const { key } of influences) for (const k of key) if (k > largest) largest = k
+  const number = new Int32Array(largest + 1).fill(-1)
+  let distinct = 0
+  const keys = influences.map(({ key }) =>
+    key.map((k) => {
+      if (number[k] < 0) number[k] = distinct++
+      return number[k]
+    }),
+  )
+  return { keys, distinct }
 }
 
 /** V_1 + V_2 − V_12, covariances shrunk by the least that leaves no combination a negative variance. */

@@ -7,7 +7,6 @@
 import {
   buildPlaneSample,
   covarianceMatrix,
-  type Influence,
   jumpAtPoint,
   type PlaneBandwidths,
   type PlaneEntries,
@@ -157,31 +156,13 @@ function effectsOf(
   { variance, spatial }: AlongOptions,
 ): LineEffects {
   const influences = usable.map(({ jump }) => jump.influence)
-  const { matrix, isDiagonal } =
-    variance === 'spatial' ? covarianceMatrix(influences, spatial) : covarianceMatrix(inOrderMet(influences))
+  const { matrix, isDiagonal } = covarianceMatrix(influences, variance === 'spatial' ? spatial : undefined)
   return {
     ids: usable.map(({ point }) => point.id),
     estimate: Float64Array.from(usable, ({ jump }) => jump.corrected.estimate),
     covariance: matrix,
     isDiagonal,
   }
-}
-
-/**
- * The same influences with their keys numbered as they are first met. Sums over keys then run in an order that the
- * points and the ground decide, not the rows of a file, so that reordering rows cannot change a single bit.
- */
-function inOrderMet(influences: readonly Influence[]): Influence[] {
-  const number = new Map<number, number>()
-  return influences.map(({ key, psi }) => ({
-    psi,
-    key: key.map((k) => {
-      const known = number.get(k)
-      if (known !== undefined) return known
-      number.set(k, number.size)
-      return number.size - 1
-    }),
-  }))
 }
 
 function uniformBand({ corrected }: PointJump, criticalValue: number): { uniformLow: number; uniformHigh: number } {
