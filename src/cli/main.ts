@@ -70,10 +70,7 @@ function commands(done: (code: ExitCode) => void): Command {
     .option('--dose <property>', 'numeric property of the zones, instead of --treated: the higher side is treated')
     .option('--unit <unit>', 'm, km, ft or mi (default: m)')
     .option('--runner-up', 'add the nearest border of another pair of zones, and how far it is')
-    .option(
-      '--without-coordinates',
-      'leave out positions and foot points; with the zones, x and position_m still place most units',
-    )
+    .option('--without-coordinates', 'leave out positions, foot points and places along the border; the distances stay')
     .requiredOption('--out <file>', 'table to write (.csv, .parquet or .geojson)')
     .addOption(workersOption())
     .action(async (records, options) => done(await (await import('./measure.js')).measure(records, options)))

@@ -31,9 +31,9 @@ export interface MeasureOptions {
   readonly withoutCoordinates?: boolean
 }
 
-/** A foot and a distance from it leave two places, on a straight border exactly. */
+/** Distances from a known border leave a strip, and from two borders a few places. */
 const stillPlaced =
-  'no coordinates are in it, but whoever has the zones can place most units by x and position_m; other columns of the records are as they were'
+  'no coordinates are in it, but whoever has the zones learns from the distances how near to the border each unit is, and with runners-up where most are; other columns of the records are as they were'
 
 /** `first`: a table of units, with zones beside it, or a study file that names both. */
 export async function measure(first: string, options: MeasureOptions): Promise<ExitCode> {

@@ -10,7 +10,7 @@ export const severalZones = '(several)'
 export interface MeasuredExtras {
   /** The nearest border of another pair of zones, by row. */
   readonly runnerUp?: RunnerUps
-  /** Leave out what says where a unit is: these columns of the records, and its foot. */
+  /** Leave out what says where a unit is: these columns of the records, its foot, and the position along the border. */
   readonly withoutCoordinates?: readonly string[]
 }
 
@@ -55,8 +55,8 @@ export function measuredColumns(table: Table, placed: Placed, extras: MeasuredEx
       : [
           { kind: 'number', name: 'foot_lon', values: ground.footLon } as const,
           { kind: 'number', name: 'foot_lat', values: ground.footLat } as const,
+          { kind: 'number', name: 'position_m', values: ground.positionMetres } as const,
         ]),
-    { kind: 'number', name: 'position_m', values: ground.positionMetres },
     { kind: 'number', name: 'distance_m', values: (row) => finiteOrMissing(distanceMetres[row]) },
     { kind: 'label', name: 'nearest', codes: (row) => Math.max(ground.piece[row], -1), labels: pieces },
     ...(runnerUp

@@ -114,11 +114,11 @@ describe('a file without coordinates', () => {
     const words = ['measure', 'treated.yaml', '--out', 'open.csv', '--runner-up', '--without-coordinates']
     const said = await scarp(words, { cwd: room })
     expect(said).toMatchObject({ code: 0, stderr: '' })
-    expect(said.stdout).toContain('whoever has the zones can place most units by x and position_m')
+    expect(said.stdout).toContain('whoever has the zones learns from the distances how near to the border each unit is')
     expect(existsSync(join(room, 'open.csv.lines'))).toBe(false)
     const [head, ...rows] = readFileSync(join(room, 'open.csv'), 'utf8').trimEnd().split('\n')
     expect(head).toBe(
-      'row,lease,rent,zone,line,piece,side,x,position_m,distance_m,nearest,runner_up,runner_up_m,reason',
+      'row,lease,rent,zone,line,piece,side,x,distance_m,nearest,runner_up,runner_up_m,reason',
     )
     expect(rows).toHaveLength(410)
     const positions = new Set(files['leases.csv'].split('\n').flatMap((row) => row.split(',').slice(1, 3)))
