@@ -21,7 +21,7 @@ export function auditOf(study: Study, { table }: AnalysisInputs, placed: Placed)
     audited: tested.length,
     not_possible: found.flatMap((one) => (one.ok ? [] : [{ line: one.line, reason: one.reason }])),
     elsewhere: tested.flatMap((one, i) => {
-      const isElsewhere = Math.abs(one.at) > one.step && one.p < one.pAtLine
+      const isElsewhere = Math.abs(one.at) > one.step && one.isClearer
       if (!isElsewhere || !(adjusted[i] < 1 - study.estimation.level)) return []
       const { line, at, jump, p, jumpAtLine, pAtLine, step } = one
       return [{ line, at, within: step, jump, p, p_holm: adjusted[i], jump_at_line: jumpAtLine, p_at_line: pAtLine }]

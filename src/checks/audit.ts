@@ -18,6 +18,8 @@ export interface Audit {
   /** In the other half: the jump there, and its p. */
   readonly jump: number
   readonly p: number
+  /** In the other half: whether the break there is clearer than that at 0, where both p may be too small to tell. */
+  readonly isClearer: boolean
   /** In the other half: the jump at 0, and its p. */
   readonly jumpAtLine: number
   readonly pAtLine: number
@@ -48,7 +50,10 @@ export function auditLine(search: AuditHalf, test: AuditHalf): AuditOutcome {
   let best = { at: Number.NaN, t: -1 }
   for (const at of placesOf(low, high, step)) {
     const found = breakAt(search, sums, at, width)
-    if (found && Math.abs(found.t) > best.t) best = { at, t: Math.abs(found.t) }
+    if (!found) continue
+    const t = Math.abs(found.t)
+    // of places that break as clearly, as within a gap of the score, that nearest to the line
+    if (t > best.t || (t === best.t && Math.abs(at) < Math.abs(best.at))) best = { at, t }
   }
   const inTest = prefixSums(test)
   const testWidth = Math.max(fewestUnits, Math.floor(widthShare * test.x.length))
@@ -60,6 +65,7 @@ export function auditLine(search: AuditHalf, test: AuditHalf): AuditOutcome {
     at: best.at,
     jump: there.jump,
     p: studentTwoSidedP(there.t, there.freedom),
+    isClearer: Math.abs(there.t) > Math.abs(here.t),
     jumpAtLine: here.jump,
     pAtLine: studentTwoSidedP(here.t, here.freedom),
     step,
@@ -94,7 +100,10 @@ function prefixSums({ x, y }: AuditHalf): Sums {
   return { x: sx, xx: sxx, y: sy, xy: sxy, yy: syy }
 }
 
-/** The jump between the lines through `width` units on either side of a place; undefined where they leave no residual. */
+/**
+ * The jump between the lines through `width` units on either side of a place; undefined where all values are alike. Where
+ * everyone takes up on one side and no one on the other, nothing is left over and t is infinite.
+ */
 function breakAt({ x }: AuditHalf, sums: Sums, at: number, width: number) {
   const middle = firstAtOrAbove(x, at)
   if (middle < fewestUnits || x.length - middle < fewestUnits) return undefined
@@ -103,7 +112,7 @@ function breakAt({ x }: AuditHalf, sums: Sums, at: number, width: number) {
   if (!left || !right) return undefined
   const variance = left.variance + right.variance
   const jump = right.level - left.level
-  if (!(variance > 0)) return undefined
+  if (!(variance > 0) && !(Math.abs(jump) > 1e-9 * (Math.abs(left.level) + Math.abs(right.level)))) return undefined
   return { jump, t: jump / Math.sqrt(variance), freedom: left.units + right.units - 4 }
 }
 
