@@ -254,6 +254,12 @@ export interface Comparison {
   readonly i_squared: number
   readonly tau_squared: { readonly dl: number; readonly reml: number; readonly pm: number }
   readonly random_effects: { readonly estimate: number; readonly standard_error: number } & Interval
+  /** The same of the other lines, τ² held at that of all; empty with fewer than three lines. */
+  readonly random_effects_without: readonly ({
+    readonly line: string
+    readonly estimate: number
+    readonly standard_error: number
+  } & Interval)[]
   /** For the effect at a new line like these. */
   readonly prediction: Interval | null
   readonly prediction_reason?: string
@@ -271,6 +277,8 @@ export interface Comparison {
         readonly estimate: number
         readonly standard_error: number
         readonly p: number
+        /** Scaled by the residuals, t on lines − 2 degrees of freedom. */
+        readonly knapp_hartung: { readonly standard_error: number; readonly p: number } & Interval
         readonly tau_squared: number
       } & Interval)
     | ({ readonly attribute: string } & NotEstimated)

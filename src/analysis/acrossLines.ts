@@ -53,7 +53,8 @@ export function slopeOf(
     level,
   )
   if (!made.ok) return { attribute: name, not_estimated: made.reason }
-  const { lines, intercept, estimate, standardError, low, high, p, tauSquared } = made.slope
+  const { lines, intercept, estimate, standardError, low, high, p, knappHartung, tauSquared } = made.slope
+  const { standardError: scaled, ...knapp } = knappHartung
   return {
     attribute: name,
     lines,
@@ -63,6 +64,7 @@ export function slopeOf(
     low,
     high,
     p,
+    knapp_hartung: { ...knapp, standard_error: scaled },
     tau_squared: tauSquared,
   }
 }

@@ -3,6 +3,7 @@ import type { Random } from '../math/index.js'
 import { contrastsOf } from './contrasts.js'
 import { checkLevel, type LineEffects, reasonAgainst, variancesOf } from './effects.js'
 import { heterogeneityOf } from './heterogeneity.js'
+import { meanWithoutEachLine } from './leaveOneOut.js'
 import { type Interval, randomEffectsMean, shrunkenEffects } from './randomEffects.js'
 import { waldOfEquality } from './wald.js'
 
@@ -16,6 +17,12 @@ export interface ComparisonResult {
   readonly tau_squared: { readonly dl: number; readonly reml: number; readonly pm: number }
   /** With the restricted-likelihood τ² and the Knapp–Hartung standard error. */
   readonly random_effects: { readonly estimate: number; readonly standard_error: number } & Interval
+  /** The same of the other lines, τ² held at that of all; empty with fewer than three lines. */
+  readonly random_effects_without: readonly ({
+    readonly line: string
+    readonly estimate: number
+    readonly standard_error: number
+  } & Interval)[]
   readonly prediction: Interval
   readonly shrunken: readonly ({ readonly line: string; readonly estimate: number } & Interval)[]
   /** Ascending in p, at most 1,000; intervals are simultaneous over all `contrasts_of`. */
@@ -69,6 +76,9 @@ export function compareLines(effects: LineEffects, options: CompareOptions): Com
         low: mean.low,
         high: mean.high,
       },
+      random_effects_without: meanWithoutEachLine(effects, tauSquared.reml, level).map(
+        ({ standardError, ...without }) => ({ ...without, standard_error: standardError }),
+      ),
       prediction: mean.prediction,
       shrunken: shrunken.map((effect, a) => ({ line: ids[a], ...effect })),
       contrasts: contrasts.listed.map(({ lines, standardError, pHolm, estimate, low, high, p }) => ({
