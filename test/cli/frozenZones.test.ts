@@ -117,9 +117,7 @@ describe('a file without coordinates', () => {
     expect(said.stdout).toContain('whoever has the zones learns from the distances how near to the border each unit is')
     expect(existsSync(join(room, 'open.csv.lines'))).toBe(false)
     const [head, ...rows] = readFileSync(join(room, 'open.csv'), 'utf8').trimEnd().split('\n')
-    expect(head).toBe(
-      'row,lease,rent,zone,line,piece,side,x,distance_m,nearest,runner_up,runner_up_m,reason',
-    )
+    expect(head).toBe('row,lease,rent,zone,line,piece,side,x,distance_m,nearest,runner_up,runner_up_m,reason')
     expect(rows).toHaveLength(410)
     const positions = new Set(files['leases.csv'].split('\n').flatMap((row) => row.split(',').slice(1, 3)))
     const cells = rows.slice(0, 400).flatMap((row) => row.split(','))
