@@ -1,7 +1,6 @@
 /** Predetermined columns must not jump: each on its own, and all together by their joint covariance. */
-import { holm } from '../checks/index.js'
+import { holm, jointTest } from '../checks/index.js'
 import { covarianceMatrix, type JumpFit } from '../jump/index.js'
-import { chiSquareUpper, choleskyInPlace, choleskySolveInPlace } from '../math/index.js'
 import { numbersOf } from '../records/index.js'
 import type { CheckResult } from '../results.js'
 import type { Study } from '../study/index.js'
@@ -43,7 +42,7 @@ export function balanceChecks(study: Study, { table }: AnalysisInputs, placed: P
   ]
 }
 
-/** Wald statistic of all jumps being 0, with the covariance that shared units and clusters give them. */
+/** Hotelling's test of all jumps being 0, with the covariance that shared units and clusters give them. */
 function joint(jumps: readonly JumpFit[], placed: Placed, alpha: number): CheckResult[] {
   const check = 'balance, joint'
   const count = jumps.length
@@ -53,12 +52,13 @@ function joint(jumps: readonly JumpFit[], placed: Placed, alpha: number): CheckR
     placed.spatial,
   )
   const effect = Float64Array.from(jumps, ({ corrected }) => corrected.estimate)
-  const solved = effect.slice()
-  if (!(choleskyInPlace(matrix, count) > 1e-10))
-    return [{ check, verdict: 'not possible', says: 'the jumps depend on each other too closely to be tested jointly' }]
-  choleskySolveInPlace(matrix, count, solved)
-  const statistic = effect.reduce((sum, value, i) => sum + value * solved[i], 0)
-  const p = chiSquareUpper(statistic, count)
-  const says = `${count} columns together: ${p < alpha ? 'they jump by more than chance' : 'no more than chance'} (${shown(statistic)} on ${count} degrees of freedom)`
-  return [{ check, statistic, p, verdict: p < alpha ? 'doubt' : 'fine', says }]
+  const joint = jointTest(
+    effect,
+    matrix,
+    jumps.map(({ corrected }) => corrected.degreesOfFreedom),
+  )
+  if (!joint.ok) return [{ check, verdict: 'not possible', says: joint.reason }]
+  const { square, f, degreesOfFreedom, p } = joint
+  const says = `${count} columns together: ${p < alpha ? 'they jump by more than chance' : 'no more than chance'} (F = ${shown(f)} on ${count} and ${shown(degreesOfFreedom[1])} degrees of freedom)`
+  return [{ check, statistic: square, p, verdict: p < alpha ? 'doubt' : 'fine', says }]
 }

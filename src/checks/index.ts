@@ -5,6 +5,7 @@ export { type BinnedDensity, type BinnedDensityOutcome, binnedDensityTest } from
 export { type DensityOutcome, type DensityTest, densityTest } from './density.js'
 export { type DiscreteDensity, type DiscreteDensityOutcome, discreteDensityTest } from './discreteDensity.js'
 export { type Heap, type Heaping, type HeapingOutcome, type HeapingRow, heapingOf } from './heaping.js'
+export { type JointOutcome, type JointTest, jointTest } from './joint.js'
 export { type Moran, type MoranOutcome, moran, type Neighbourhood } from './moran.js'
 export { moranNearLine, type NearLine, residualsNearLine } from './moranNearLine.js'
 export { benjaminiHochberg, holm } from './multiplicity.js'

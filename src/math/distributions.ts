@@ -34,6 +34,23 @@ export function chiSquareUpper(x: number, df: number): number {
   return x <= 0 ? 1 : incompleteGamma(df / 2, x / 2).upper
 }
 
+/** P(X > x) of Fisher's F with a whole number of degrees of freedom above, any positive number below; 1 for x ≤ 0. */
+export function fisherUpper(x: number, above: number, below: number): number {
+  checkDegrees(below)
+  if (!(Number.isSafeInteger(above) && above >= 1))
+    throw new RangeError(`degrees of freedom above are 1, 2, 3, …, not ${above}`)
+  if (Number.isNaN(x)) throw new RangeError('F needs a number, not NaN')
+  if (x <= 0) return 1
+  const [a, b] = [below / 2, above / 2]
+  const share = below / (below + above * x)
+  const rest = (above * x) / (below + above * x)
+  // Γ(a + b)/(Γ(a)Γ(b)) in half steps, from Γ(½) = √π
+  let log = a * Math.log(share) + b * Math.log(rest) - Math.log(Math.PI) / 2 + Math.log(halfStepGammaRatio(a))
+  for (let k = 1; k < above; k++) log += Math.log(halfStepGammaRatio(a + k / 2) / halfStepGammaRatio(k / 2))
+  const front = Math.exp(log)
+  return x >= 1 ? front / betaFraction(a, b, share, rest) : 1 - front / betaFraction(b, a, rest, share)
+}
+
 /**
  * The q ≥ 0 with P(|N(t, 1)| ≤ q) = probability: the critical value of a bias-aware interval whose worst bias is
  * t standard errors (Armstrong & Kolesár 2018). Even in t; Newton steps kept inside a bracket.

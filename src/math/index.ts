@@ -1,6 +1,12 @@
 /** Distributions, random numbers, root finding, small linear algebra and sorting: numbers in, numbers out. */
 export { choleskyInPlace, choleskyInverse, choleskySolveInPlace } from './cholesky.js'
-export { chiSquareUpper, foldedNormalQuantile, studentQuantile, studentTwoSidedP } from './distributions.js'
+export {
+  chiSquareUpper,
+  fisherUpper,
+  foldedNormalQuantile,
+  studentQuantile,
+  studentTwoSidedP,
+} from './distributions.js'
 export { earthCentred, equatorialMetres, flattening, polarMetres, surfaceMetres } from './ellipsoid.js'
 export { inverseRootTimes } from './inverseRoot.js'
 export { normalCdf, normalQuantile, normalUpper } from './normal.js'
