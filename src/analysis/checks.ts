@@ -10,6 +10,7 @@ import { balanceChecks } from './balance.js'
 import { densityChecks } from './density.js'
 import { entriesOfValues, type OutcomeEntries } from './entries.js'
 import { hasReason, type MainEstimates, ofEligibility, pooledOnly } from './estimating.js'
+import { heapingChecks } from './heaping.js'
 import { type AnalysisInputs, type Progress, positionColumns } from './inputs.js'
 import { ladderChecks } from './ladderChecks.js'
 import { laddersOf } from './ladders.js'
@@ -17,6 +18,7 @@ import { type PlacedPlacebos, placeboBorders, placePlacebos } from './placeboBor
 import type { Placed } from './placing.js'
 import { shiftedLines } from './shiftedLines.js'
 import { standardsSheet } from './standards.js'
+import { type WindowFound, windowChecks, windowOf } from './windowTest.js'
 import { shown } from './words.js'
 
 /** What the checks of all outcomes share. */
@@ -24,6 +26,8 @@ export interface SharedChecks {
   /** Rows that are the same for every outcome. */
   readonly rows: readonly CheckResult[]
   readonly placebos: PlacedPlacebos | undefined
+  /** Of `checks: full`. */
+  readonly window: WindowFound | undefined
 }
 
 /** Undefined where the study asks for no checks. */
@@ -36,7 +40,12 @@ export function sharedChecks(
   if (study.checks === 'none') return undefined
   progress?.('checking', 0, 1)
   return {
-    rows: [...densityChecks(study, placed), ...balanceChecks(study, inputs, placed)],
+    rows: [
+      ...densityChecks(study, placed),
+      ...heapingChecks(study, inputs.table, placed),
+      ...balanceChecks(study, inputs, placed),
+    ],
+    window: study.checks === 'full' ? windowOf(study, inputs.table, placed) : undefined,
     placebos: study.line.kind === 'border' ? placePlacebos(study, inputs, placed, progress) : undefined,
   }
 }
@@ -65,6 +74,15 @@ export function outcomeChecks(
     ...missingOutcome(study, inputs.table, placed, outcome, entries),
     ...(ladders && !hasReason(eligible)
       ? ladderChecks(ladders, eligible.jump.corrected, study.estimation.level, holm)
+      : []),
+    ...(shared.window
+      ? windowChecks(
+          study,
+          inputs.table,
+          shared.window,
+          outcome,
+          hasReason(eligible) ? undefined : eligible.jump.corrected.estimate,
+        )
       : []),
     ...withoutEachLine(result),
     ...(placebos?.checks ?? []),

@@ -1,6 +1,14 @@
 /** Do units pile up on one side? By score at every line and pooled; on the ground against the land there is. */
 import { randomGround } from '../borders/index.js'
-import { type DensityOutcome, densityTest, holm } from '../checks/index.js'
+import {
+  binnedDensityTest,
+  type DensityOutcome,
+  type DiscreteDensity,
+  densityTest,
+  discreteDensityTest,
+  holm,
+} from '../checks/index.js'
+import type { Kernel } from '../jump/index.js'
 import { normalUpper, quantileOfSorted, streamOf } from '../math/index.js'
 import type { CheckResult } from '../results.js'
 import type { Study } from '../study/index.js'
@@ -21,9 +29,11 @@ export function densityChecks(study: Study, placed: Placed): CheckResult[] {
 function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
   const { kernel, level } = study.estimation
   const alpha = 1 - level
-  const all = densityTest(placement.x, placement.treated, { kernel })
-  const pooled = rowOf('density', all, alpha)
-  if (placement.lines.length === 1) return [pooled]
+  const pooled = [
+    rowOf('density', atLine(placement.x, placement.treated, kernel), alpha),
+    ...(study.checks === 'full' ? [binnedRow(placement.x, placement.treated, alpha)] : []),
+  ]
+  if (placement.lines.length === 1) return pooled
   const byLine = placement.lines.map((): number[] => [])
   placement.line.forEach((line, e) => {
     byLine[line].push(e)
@@ -31,10 +41,10 @@ function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
   const lines = placement.lines.flatMap((line, i) => {
     const entries = byLine[i]
     if (entries.length < fewestAtLine) return []
-    const made = densityTest(
+    const made = atLine(
       Float64Array.from(entries, (e) => placement.x[e]),
       Uint8Array.from(entries, (e) => placement.treated[e]),
-      { kernel },
+      kernel,
     )
     return made.ok ? [{ line: line.id, made }] : []
   })
@@ -52,20 +62,47 @@ function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
           verdict: bad.length > 0 ? 'doubt' : 'fine',
           says: `${tested}: ${bad.length === 0 ? 'none jumps' : `${bad.length} jump`} after adjusting for their number`,
         }
-  return [pooled, none, ...bad]
+  return [...pooled, none, ...bad]
 }
 
-function rowOf(check: string, made: DensityOutcome, alpha: number, pHolm?: number): CheckResult {
+type AtLine = DensityOutcome | DiscreteDensity
+
+/** By the empirical distribution function; by counts at the values next to the line where those are few. */
+function atLine(x: Float64Array, treated: Uint8Array, kernel: Kernel): AtLine {
+  const made = densityTest(x, treated, { kernel })
+  if (made.ok) return made
+  const discrete = discreteDensityTest(x, treated)
+  return discrete.ok ? discrete : made
+}
+
+function rowOf(check: string, made: AtLine, alpha: number, pHolm?: number): CheckResult {
   if (!made.ok) return { check, verdict: 'not possible', says: made.reason }
   const jumps = (pHolm ?? made.p) < alpha
-  const ratio = made.corrected.treated.density / made.corrected.untreated.density
-  const size =
-    ratio > 0 && Number.isFinite(ratio)
-      ? `${shown(ratio)} times as dense on the treated side`
-      : 'one side is nearly empty'
-  const says = `units at the line are ${size}: ${jumps ? 'more than chance' : 'no more than chance'}`
+  const verdict = jumps ? 'doubt' : 'fine'
+  const meaning = jumps ? 'more than chance' : 'no more than chance'
   const adjusted = pHolm === undefined ? {} : { p_holm: pHolm }
-  return { check, statistic: made.z, p: made.p, ...adjusted, verdict: jumps ? 'doubt' : 'fine', says }
+  if ('expected' in made) {
+    const says = `the score has few values: ${made.units[1]} units at the first treated one, ${shown(made.expected)} expected of ${made.units[0]} before it and ${made.units[2]} after: ${meaning}`
+    return { check, p: made.p, ...adjusted, verdict, says }
+  }
+  const says = `units at the line are ${densityRatio(made.corrected.treated.density / made.corrected.untreated.density)}: ${meaning}`
+  return { check, statistic: made.z, p: made.p, ...adjusted, verdict, says }
+}
+
+function densityRatio(ratio: number): string {
+  return ratio > 0 && Number.isFinite(ratio)
+    ? `${shown(ratio)} times as dense on the treated side`
+    : 'nearly all on one side'
+}
+
+/** McCrary's test, beside the other. */
+function binnedRow(x: Float64Array, treated: Uint8Array, alpha: number): CheckResult {
+  const check = 'density, binned'
+  const made = binnedDensityTest(x, treated)
+  if (!made.ok) return { check, verdict: 'not possible', says: made.reason }
+  const jumps = made.p < alpha
+  const says = `bins of ${shown(made.binWidth)}: units at the line are ${densityRatio(Math.exp(made.logDifference))}: ${jumps ? 'more than chance' : 'no more than chance'}`
+  return { check, statistic: made.z, p: made.p, verdict: jumps ? 'doubt' : 'fine', says }
 }
 
 /** Units per km² on the two sides: densities of units over those of random points on the same land. */

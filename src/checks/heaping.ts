@@ -3,7 +3,7 @@
  * neighbours up to two steps away on both sides. A density that is straight over five steps gives a multiple the mean of
  * its neighbours; what curvature adds cancels over the multiples of a whole distribution. Counts are taken as Poisson.
  * Source: common practice (Barreca, Guldi, Lindo & Waddell 2011, QJE 126 ask for it); the statistic is ours.
- * A multiple of 25 is one of 5 as well: heaping at 5 shows in both, and the smallest multiple flagged is where it begins.
+ * A multiple of 25 is one of 5 and of 1 as well: heaping at 5 shows in all three, most at 5 itself.
  */
 import { argsort, quantileOfSorted } from '../math/index.js'
 import { binomialTail } from './binomial.js'

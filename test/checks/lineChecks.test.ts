@@ -116,14 +116,38 @@ describe('window randomisation', () => {
       expect(Math.abs(made.p - golden.permutations[statistic][1])).toBeLessThan(0.01)
     }
   })
+  it('assigns within groups, as all their assignments do', () => {
+    // two lines, 3 of 6 and 2 of 5 treated: 20 × 10 assignments, counted here one by one
+    const outcome = Float64Array.of(1, 2.5, 3, 4, 6, 5, 12, 10, 14, 15, 13)
+    const side = Uint8Array.of(0, 0, 0, 1, 1, 1, 0, 0, 0, 1, 1)
+    const group = Int32Array.from(outcome, (_, i) => (i < 6 ? 0 : 1))
+    const at = Float64Array.from(side, (one) => (one === 1 ? 1 : -1))
+    const sumsOf = (values: readonly number[], count: number): number[] =>
+      Array.from({ length: 2 ** values.length }, (_, mask) => values.filter((_, i) => mask & (1 << i)))
+        .filter((chosen) => chosen.length === count)
+        .map(
+          (chosen) =>
+            chosen.reduce((sum, value) => sum + value, 0) - (count * values.reduce((a, b) => a + b)) / values.length,
+        )
+    const both = sumsOf([...outcome.subarray(0, 6)], 3).flatMap((a) =>
+      sumsOf([...outcome.subarray(6)], 2).map((b) => a + b),
+    )
+    const seen = 15 - (3 * 21.5) / 6 + 28 - (2 * 64) / 5
+    const exact = both.filter((sum) => Math.abs(sum) >= Math.abs(seen) - 1e-9).length / both.length
+    expect(both).toHaveLength(200)
+    const options = { window: 2, draws: 40_000, statistic: 'means', group } as const
+    const made = sure(randomisationTest(at, outcome, side, options, streamOf(3, 0)))
+    expect(made.statistic).toBeCloseTo(seen / (9 / 6 + 6 / 5), 12)
+    expect(Math.abs(made.p - exact)).toBeLessThan(0.01)
+  })
   it('stops where a predetermined column starts to differ', () => {
     const random = streamOf(2, 0)
     const x = Float64Array.from({ length: 1000 }, () => 2 * random.next() - 1)
     const column = x.map((value) => (Math.abs(value) > 0.05 ? 4 * Math.sign(value) : 0) + random.normal())
-    const made = sure(balancedWindow(x, [column], sideOf(x), 500, streamOf(2, 1)))
+    const made = sure(balancedWindow(x, [column], sideOf(x), { draws: 500 }, streamOf(2, 1)))
     expect(made.window).toBeLessThan(0.08)
     expect(made.tried[made.tried.length - 1].smallestP).toBeLessThan(0.15)
-    expect(sure(balancedWindow(x, [], sideOf(x), 500, streamOf(2, 1))).tried).toHaveLength(1)
+    expect(sure(balancedWindow(x, [], sideOf(x), { draws: 500 }, streamOf(2, 1))).tried).toHaveLength(1)
   })
   it('needs five units a side', () => {
     const made = randomisationTest(x, y, sideOf(x), { window: 1.02, draws: 10, statistic: 'means' }, streamOf(1, 0))

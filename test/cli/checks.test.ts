@@ -110,11 +110,40 @@ describe('checks', () => {
     expect(unsteady).not.toEqual(['fine', 'fine'])
   })
 
+  it('find scores rounded to fives, and a heap on the cutoff', async () => {
+    const results = await run('rounded', (row, noise) => {
+      row.score = noise() < 0.2 ? 5 * Math.round(row.score / 5) : Math.round(row.score * 2) / 2
+      if (row.score >= 49 && row.score <= 51 && noise() < 0.7) row.score = 50
+    })
+    expect(named(results, 'heaping')).toMatchObject([{ verdict: 'doubt' }])
+    expect(named(results, 'heaping')[0].says).toMatch(
+      /steps of 0.5; multiples of 5 hold .* heaps are at 50 .* one lies on the cutoff/,
+    )
+  })
+
+  it('count units at the values next to the line where the score has few', async () => {
+    const coarse: Change = (row) => {
+      row.score = 2 * Math.floor(row.score / 2)
+    }
+    const even = await run('coarse', coarse, 'full')
+    expect(named(even, 'density')).toMatchObject([{ verdict: 'fine', says: expect.stringContaining('few values') }])
+    const piled = await run('piled', (row, noise) => {
+      coarse(row, noise)
+      if (row.score === 48 && noise() < 0.5) row.score = 50
+    })
+    expect(named(piled, 'density')).toMatchObject([{ verdict: 'doubt' }])
+  })
+
   it('are left out where the study says so, and are more in full', async () => {
     const none = await run('none', undefined, 'none')
     expect(none.outcomes[0].checks).toEqual([])
     expect(none.outcomes[0].ladders).toBeUndefined()
     const full = await run('full', undefined, 'full')
     expect(full.outcomes[0].ladders?.order_kernel).toHaveLength(11)
+    expect(named(full, 'density, binned')).toMatchObject([{ verdict: 'fine' }])
+    expect(named(full, 'window randomisation')).toMatchObject([
+      { verdict: 'fine', says: expect.stringContaining('predetermined columns are balanced') },
+    ])
+    expect(named(full, 'window randomisation')[0].p).toBeLessThan(0.05)
   })
 })
