@@ -113,7 +113,10 @@ export function bandwidthsFor(
   return { ok: true, bandwidths: { h: times(chosen.bandwidths.h), b: bias ?? times(chosen.bandwidths.b) } }
 }
 
-/** Chooses h and b by the rule; a side that can't be fitted at some stage gives the reason. */
+/**
+ * Chooses h and b by the rule; a side that can't be fitted at some stage gives the reason. Where a stage meets too few
+ * distinct distances, the range begins at the distances that its fits need, if each side has as many (our choice; METHODS is silent).
+ */
 function plugIn(
   sample: Sample,
   neighbours: BySide<Float64Array>,
@@ -125,6 +128,31 @@ function plugIn(
     { side: sample.treated, residuals: neighbours.treated, sign: 1 },
   ]
   const range = bandwidthRange(sample, options.order)
+  const chosen = chooseWithin(range, sample, terms, rule, options)
+  const smallest = Math.max(...terms.map(({ side }) => distanceHolding(side.t, options.order + 4)))
+  if (chosen.ok || !(smallest > range.smallest)) return chosen
+  const wider = chooseWithin({ ...range, smallest }, sample, terms, rule, options)
+  return wider.ok ? wider : chosen
+}
+
+/** The distance within which a side has `count` distinct ones, itself left out; 0 where it has no more in all. */
+function distanceHolding(t: Float64Array, count: number): number {
+  let distinct = 0
+  for (let i = 0; i < t.length; i++) {
+    if (i > 0 && t[i] === t[i - 1]) continue
+    if (distinct === count) return t[i]
+    distinct++
+  }
+  return 0
+}
+
+function chooseWithin(
+  range: Range,
+  sample: Sample,
+  terms: readonly Term[],
+  rule: 'mse' | 'coverage',
+  options: BandwidthOptions,
+): Chosen {
   const pilot = pilotBandwidth(sample, options.kernel, range)
   const n = sample.untreated.t.length + sample.treated.t.length
   try {

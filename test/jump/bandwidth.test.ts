@@ -72,3 +72,26 @@ describe('plug-in bandwidth equals its literal version to 1e-9', () => {
     }
   }
 })
+
+describe('a score with few values', () => {
+  const coarse = (values: number) => {
+    const random = seededRandom(values)
+    const data: Data = { x: [], y: [], treated: [] }
+    for (let i = 0; i < 600; i++) {
+      const x = (Math.floor((2 * random.next() - 1) * values) + 0.5) / values
+      data.x.push(x)
+      data.treated.push(x >= 0)
+      data.y.push(x + (x >= 0 ? 0.4 : 0) + 0.3 * random.normal())
+    }
+    return ours(data, 1, 'triangular', 'mse', 'common')
+  }
+  it('of eight a side has bandwidths wide enough for every fit', () => {
+    const made = coarse(8)
+    // five values strictly inside the sixth, 5.5/8
+    expect(made.b.treated).toBeGreaterThanOrEqual(5.5 / 8)
+    expect(made.h.treated).toBeGreaterThanOrEqual(5.5 / 8)
+  })
+  it('of five a side has a reason', () => {
+    expect(() => coarse(5)).toThrow('only 2 distinct distances')
+  })
+})
