@@ -248,6 +248,8 @@ export interface Contrast extends Interval {
 /** Comparison of lines by their corrected estimates; null parts carry a reason. */
 export interface Comparison {
   readonly wald: { readonly statistic: number; readonly df: number; readonly p: number }
+  /** The same question with each line's degrees of freedom (Welch 1951), of lines that share no unit or cluster. */
+  readonly welch?: { readonly statistic: number; readonly df: readonly [number, number]; readonly p: number }
   /** Cochran's Q, on wald.df degrees of freedom. */
   readonly q: number
   /** Percent. */

@@ -405,15 +405,23 @@ function effectsOf(
   const index: number[] = []
   const influences: Influence[] = []
   const estimates: number[] = []
+  const freedom: number[] = []
   lines.forEach((line, i) => {
     if (hasReason(line) || !(line.jump.corrected.standardError > 0)) return
     index.push(i)
     influences.push(line.jump.influence)
     estimates.push(line.jump.corrected.estimate)
+    freedom.push(line.jump.corrected.degreesOfFreedom)
   })
   const { matrix, isDiagonal } = covarianceMatrix(influences, spatial)
   return {
-    effects: { ids: index.map((i) => ids[i]), estimate: Float64Array.from(estimates), covariance: matrix, isDiagonal },
+    effects: {
+      ids: index.map((i) => ids[i]),
+      estimate: Float64Array.from(estimates),
+      covariance: matrix,
+      isDiagonal,
+      degreesOfFreedom: Float64Array.from(freedom),
+    },
     index,
   }
 }

@@ -158,13 +158,14 @@ function covariateWords({ covariates: found }: Jump, places: Places): string {
 
 /** How far the lines differ, one row an outcome. */
 export function comparisonTable(view: View): TextTable {
+  const hasWelch = view.outcomes.some(({ result }) => result.comparison?.welch)
   return {
     caption: `Do the ${view.words.lines} differ?`,
     columns: [
       { head: 'Outcome', isText: true },
       { head: capital(view.words.lines) },
       { head: 'Wald test of equal effects' },
-      { head: 'p' },
+      { head: hasWelch ? 'p (Welch’s)' : 'p' },
       { head: 'Q' },
       { head: 'I²' },
       { head: 'τ, three ways' },
@@ -181,7 +182,7 @@ export function comparisonTable(view: View): TextTable {
         head,
         count(estimatedLines(outcome.result).length),
         `${fixed(comparison.wald.statistic, 2)} on ${count(comparison.wald.df)} df`,
-        p(comparison.wald.p),
+        `${p(comparison.wald.p)}${comparison.welch ? ` (${p(comparison.welch.p)})` : ''}`,
         fixed(comparison.q, 2),
         `${fixed(comparison.i_squared, 1)}%`,
         tauText(comparison),
@@ -190,7 +191,7 @@ export function comparisonTable(view: View): TextTable {
       ]
     }),
     notes: [
-      'All on the corrected estimates. Q is Cochran’s, on the degrees of freedom of the Wald test; τ is the standard deviation of true effects between lines by DerSimonian–Laird, REML and Paule–Mandel; the mean has the Knapp–Hartung interval.',
+      `All on the corrected estimates. ${hasWelch ? 'Welch’s p asks the same as the Wald test and allows for standard errors estimated from few units (Welch 1951), where lines share no unit or cluster. ' : ''}Q is Cochran’s, on the degrees of freedom of the Wald test; τ is the standard deviation of true effects between lines by DerSimonian–Laird, REML and Paule–Mandel; the mean has the Knapp–Hartung interval.`,
       ...view.outcomes.flatMap((outcome) => slopeNote(view, outcome)),
       ...view.outcomes.flatMap(({ result }) =>
         result.comparison && !result.comparison.prediction && result.comparison.prediction_reason

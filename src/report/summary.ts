@@ -52,7 +52,7 @@ function outcomeLines(outcome: Results['outcomes'][number]): string[] {
           `  units   ${count(jump.units_in_bandwidth.untreated)} untreated, ${count(jump.units_in_bandwidth.treated)} treated within ${[...new Set([jump.bandwidth.untreated, jump.bandwidth.treated].map(significant))].join(' / ')}`,
         ]
       : []),
-    `  lines   ${count(estimated)} of ${count(outcome.lines.length)} estimated${comparison ? `; equal effects ${pWords(comparison.wald.p)}, I² ${fixed(comparison.i_squared, 0)}%` : ''}`,
+    `  lines   ${count(estimated)} of ${count(outcome.lines.length)} estimated${comparison ? `; equal effects ${pWords((comparison.welch ?? comparison.wald).p)}, I² ${fixed(comparison.i_squared, 0)}%` : ''}`,
     ...(outcome.checks.length > 0 ? [`  checks  ${verdictWords(outcome.checks)}`] : []),
   ]
 }

@@ -6,10 +6,13 @@ import { heterogeneityOf } from './heterogeneity.js'
 import { meanWithoutEachLine } from './leaveOneOut.js'
 import { type Interval, randomEffectsMean, shrunkenEffects } from './randomEffects.js'
 import { waldOfEquality } from './wald.js'
+import { welchOfEquality } from './welch.js'
 
 /** The comparison under the names that results.json gives it. */
 export interface ComparisonResult {
   readonly wald: { readonly statistic: number; readonly df: number; readonly p: number }
+  /** Of lines that share no unit or cluster. */
+  readonly welch?: { readonly statistic: number; readonly df: readonly [number, number]; readonly p: number }
   /** Cochran's Q. */
   readonly q: number
   /** Percent. */
@@ -67,6 +70,9 @@ export function compareLines(effects: LineEffects, options: CompareOptions): Com
     ok: true,
     comparison: {
       wald: waldOfEquality(effects),
+      ...(effects.isDiagonal && effects.degreesOfFreedom
+        ? { welch: welchOfEquality(estimate, variance, effects.degreesOfFreedom) }
+        : {}),
       q,
       i_squared: iSquared,
       tau_squared: tauSquared,

@@ -9,6 +9,8 @@ export interface LineEffects {
   readonly covariance: Float64Array
   /** Lines share no unit, cluster or neighbour: everything off the diagonal is zero and is not looked at. */
   readonly isDiagonal: boolean
+  /** Of each line's variance, Infinity where the reference is normal; absent where not known. */
+  readonly degreesOfFreedom?: Float64Array
 }
 
 /** Variance of each line's estimate: the diagonal. */

@@ -100,17 +100,25 @@ function targetSentence(view: View, target: Target, places: Places): string {
 }
 
 function differenceSentence(view: View, comparison: Comparison, places: Places): string {
-  const { wald } = comparison
+  const { wald, welch } = comparison
   const alpha = 1 - view.choices.level
   const differ =
-    wald.p < alpha
+    (welch ?? wald).p < alpha
       ? `The ${view.words.lines} differ by more than chance alone would produce`
       : `Nothing here shows that the ${view.words.lines} differ: their estimates vary no more than chance could produce`
   const share = `${fixed(comparison.i_squared, 0)}% of the variation between estimates is beyond chance (I²)`
   const prediction = comparison.prediction
     ? ` At one more ${view.words.line} like these the effect would be expected between ${fixed(comparison.prediction.low, places)} and ${fixed(comparison.prediction.high, places)}.`
     : ''
-  return `${differ} (Wald ${fixed(wald.statistic, 1)} on ${count(wald.df)} degrees of freedom, ${pWords(wald.p)}); ${share}.${prediction}`
+  const waldWords = `Wald ${fixed(wald.statistic, 1)} on ${count(wald.df)} degrees of freedom, ${pWords(wald.p)}`
+  const welchWords = welch
+    ? `Welch’s F ${fixed(welch.statistic, 2)} on ${count(welch.df[0])} and ${count(Math.round(welch.df[1]))}, ${pWords(welch.p)}; `
+    : ''
+  const caution =
+    welch && welch.p >= alpha && wald.p < alpha
+      ? ' The Wald test takes the standard error of each as known, which with few units in each rejects too often; Welch’s does not.'
+      : ''
+  return `${differ} (${welchWords}${waldWords}); ${share}.${caution}${prediction}`
 }
 
 function factsOf(view: View, outcome: OutcomeView, jump: Jump | undefined): [string, string][] {

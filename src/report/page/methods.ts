@@ -22,6 +22,7 @@ const papers = {
   covariates: 'Calonico, Cattaneo, Farrell & Titiunik 2019, Review of Economics and Statistics',
   target: 'Bertanha 2020, Journal of Econometrics',
   random: 'DerSimonian & Laird 1986, Controlled Clinical Trials',
+  welch: 'Welch 1951, Biometrika',
   hartung: 'Knapp & Hartung 2003, Statistics in Medicine',
   spatial: 'Conley 1999, Journal of Econometrics',
   reduced: 'Bell & McCaffrey 2002, Survey Methodology',
@@ -160,8 +161,8 @@ function together(view: View): Method[] {
     ...(results.some((result) => result.comparison !== null)
       ? [
           {
-            text: 'Comparison: Wald test of equal effects with the covariances between lines; random effects with the Knapp–Hartung interval.',
-            papers: [papers.random, papers.hartung],
+            text: 'Comparison: Wald test of equal effects with the covariances between lines, Welch’s where lines share nothing; random effects with the Knapp–Hartung interval.',
+            papers: [papers.welch, papers.random, papers.hartung],
           },
         ]
       : []),
