@@ -23,6 +23,13 @@ const papers = {
   target: 'Bertanha 2020, Journal of Econometrics',
   random: 'DerSimonian & Laird 1986, Controlled Clinical Trials',
   welch: 'Welch 1951, Biometrika',
+  density: 'Cattaneo, Jansson & Ma 2020, Journal of the American Statistical Association',
+  binned: 'McCrary 2008, Journal of Econometrics',
+  discrete: 'Frandsen 2017, Advances in Econometrics',
+  joint: 'Hotelling 1931, Annals of Mathematical Statistics',
+  window: 'Cattaneo, Frandsen & Titiunik 2015, Journal of Causal Inference',
+  holm: 'Holm 1979, Scandinavian Journal of Statistics',
+  moran: 'Moran 1950, Biometrika',
   hartung: 'Knapp & Hartung 2003, Statistics in Medicine',
   spatial: 'Conley 1999, Journal of Econometrics',
   reduced: 'Bell & McCaffrey 2002, Survey Methodology',
@@ -43,6 +50,7 @@ export function methodsOf(view: View): Method[] {
     ...[...variances].map((variance) => varianceMethod(variance)),
     ...reference(view, variances),
     ...together(view),
+    ...checking(view),
   ]
 }
 
@@ -161,10 +169,50 @@ function together(view: View): Method[] {
     ...(results.some((result) => result.comparison !== null)
       ? [
           {
-            text: 'Comparison: Wald test of equal effects with the covariances between lines, Welch’s where lines share nothing; random effects with the Knapp–Hartung interval.',
-            papers: [papers.welch, papers.random, papers.hartung],
+            text: 'Comparison: Wald test of equal effects with the covariances between lines; random effects with the Knapp–Hartung interval.',
+            papers: [papers.random, papers.hartung],
           },
         ]
       : []),
   ]
+}
+
+/** The tests behind the checks, where they could be made. */
+function checking(view: View): Method[] {
+  const results = view.outcomes.map(({ result }) => result)
+  const made = results.flatMap(({ checks }) => checks.filter(({ verdict }) => verdict !== 'not possible'))
+  const hasWelch = results.some(({ comparison }) => comparison?.welch)
+  const has = (name: string) => made.some(({ check }) => check === name)
+  const isDiscrete = made.some(({ check, says }) => check.startsWith('density') && says.startsWith('the score has few'))
+  const all: [boolean, string, readonly string[]][] = [
+    [
+      hasWelch,
+      'Equal effects are tested by Welch’s F too, which allows for each line’s degrees of freedom.',
+      [papers.welch],
+    ],
+    [
+      has('density') || has('units per km²'),
+      'Density at the line: polynomials fitted to the empirical distribution function on each side.',
+      [papers.density],
+    ],
+    [
+      has('density, binned'),
+      'Density in bins: local linear fits to a histogram that no bin of which straddles the line.',
+      [papers.binned],
+    ],
+    [isDiscrete, 'Density of a score with few values: counts at the values next to the line.', [papers.discrete]],
+    [
+      has('balance, joint'),
+      'Predetermined columns jointly: Hotelling’s test with the covariance from influence values.',
+      [papers.joint],
+    ],
+    [
+      has('window randomisation'),
+      'Window randomisation: Fisher’s test by seeded permutations in a window with balanced predetermined columns.',
+      [papers.window],
+    ],
+    [has('spatial correlation'), 'Spatial correlation: Moran’s I of the residuals near the line.', [papers.moran]],
+    [made.some(({ p_holm: p }) => p !== undefined), 'Tests of one kind are adjusted for their number.', [papers.holm]],
+  ]
+  return all.filter(([used]) => used).map(([, text, sources]) => ({ text, papers: sources }))
 }
