@@ -26,10 +26,12 @@ import type { Analysis, Exhibits, InputFile, MapExhibit, OutcomeExhibit, Outcome
 import type { Study } from './study/index.js'
 
 export { borderOf, metresPerUnit } from './analysis/border.js'
+export { compareRuns } from './analysis/comparedRuns.js'
 export type { AnalysisInputs, LayerInput, Progress } from './analysis/inputs.js'
 export { positionColumns, readingKey } from './analysis/inputs.js'
 export type { Placed } from './analysis/placing.js'
 export { planFromAssumptions, planFromRecords } from './analysis/planning.js'
+export type { Run } from './analysis/runDifferences.js'
 export { placeStudy, wantedColumns }
 
 export interface AnalysisContext {

@@ -567,3 +567,58 @@ export type PlanRow = { readonly outcome?: string; readonly line: string } & (
     }
   | { readonly not_planned: string }
 )
+
+/** Two runs side by side. */
+export interface ComparedRuns {
+  readonly differs: readonly RunDifference[]
+  /** The largest move first: those in standard errors, then the others by their share of the larger of the two. */
+  readonly moved: readonly MovedNumber[]
+  /** Words that changed, as a verdict or a reason does, and numbers that became blank or stopped being so. */
+  readonly reworded: readonly Reworded[]
+  readonly only: { readonly first: readonly HeldAlone[]; readonly second: readonly HeldAlone[] }
+  readonly lines: { readonly appeared: readonly string[]; readonly disappeared: readonly string[] }
+  /** What one of the runs estimates and the other does not, with the reason of that one. */
+  readonly estimability: readonly {
+    readonly what: string
+    readonly now: 'estimated' | 'not estimated'
+    readonly reason: string
+  }[]
+  /** Numbers that are equal to the last bit. */
+  readonly equal: number
+}
+
+/** `key` is an option of the study, `input FILE`, `version` or `geometry`; null where a run has none. */
+export interface RunDifference {
+  readonly key: string
+  readonly first: string | null
+  readonly second: string | null
+}
+
+/** A place in results.json: `outcomes[soil_kept].pooled.corrected.estimate`, list members by what names them. */
+interface NamedLeaf {
+  readonly number: string
+  readonly path: readonly string[]
+  /** Pooled, target, of a line, of the comparison, or the verdict of a check. */
+  readonly main: boolean
+}
+
+export type LeafValue = number | string | boolean | null
+
+export interface MovedNumber extends NamedLeaf {
+  readonly first: number
+  readonly second: number
+  /** Second less first. */
+  readonly difference: number
+  /** Of the first run's estimate, or of the second's where that has none; null where neither has one. */
+  readonly standard_error: number | null
+  readonly in_standard_errors: number | null
+}
+
+export interface Reworded extends NamedLeaf {
+  readonly first: LeafValue
+  readonly second: LeafValue
+}
+
+export interface HeldAlone extends NamedLeaf {
+  readonly value: LeafValue
+}

@@ -80,6 +80,16 @@ function commands(done: (code: ExitCode) => void): Command {
     .argument('<study>', 'study file; with plan.assume and no records, assumptions alone')
     .option('--json', 'print the plan as JSON, with power curves')
     .action(async (study, options) => done(await (await import('./plan.js')).plan(study, options)))
+  program
+    .command('compare')
+    .description('what differs between two results folders, and every number that moved')
+    .argument('<first>', 'results folder')
+    .argument('<second>', 'results folder')
+    .option('--all', 'every number that moved, not the main ones alone')
+    .option('--json', 'print the comparison as JSON')
+    .action(async (first, second, options) =>
+      done(await (await import('./compare.js')).compare(first, second, options)),
+    )
   return program
 }
 

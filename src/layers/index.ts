@@ -11,7 +11,7 @@ import type { Box } from './suspicions.js'
 export type { LayerFacts } from './degrees.js'
 export { extentOf } from './extent.js'
 export { type Box, swappedAxes } from './suspicions.js'
-export { readTextFile } from './textFile.js'
+export { readJsonFile, readTextFile } from './textFile.js'
 
 export interface LayerRequest {
   /** The path as the user wrote it, for messages. */

@@ -20,6 +20,7 @@ import { type TextTable, toLatex, toMarkdown } from './tables.js'
 import { variantTable } from './variantTable.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View, viewOf } from './view.js'
 
+export { comparedLines } from './comparedText.js'
 export type { ReportInput } from './input.js'
 export { planLines } from './planText.js'
 export { geometryWords, summaryLines } from './summary.js'

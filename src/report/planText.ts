@@ -1,6 +1,7 @@
 /** A plan as aligned lines for the terminal. */
 import type { Plan } from '../results.js'
 import { count, significant } from './numbers.js'
+import { padded } from './padded.js'
 
 const linesShown = 40
 const barWidth = 40
@@ -26,7 +27,7 @@ export function planLines(plan: Plan): string[] {
   return [
     plan.title,
     from,
-    ...aligned([head, ...shown]),
+    ...padded([head, ...shown]),
     ...(leftOut > 0 ? [`and ${count(leftOut)} more; --json has them all`] : []),
     ...curveLines(plan),
     `two-sided tests at ${significant((1 - plan.level) * 100)}%; an effect is found with ${power} power if it is ${plan.multiple.toFixed(3)} standard errors`,
@@ -45,20 +46,5 @@ function curveLines({ rows }: Plan): string[] {
       '#'.repeat(Math.round(power * barWidth)),
     ])
   const name = row.outcome === undefined ? row.line : `${row.outcome}, ${row.line}`
-  return [`power by size of effect, ${name}`, ...aligned(text, [2])]
-}
-
-/** The first column to the left, the others to the right but for those named. */
-function aligned(rows: readonly (readonly string[])[], left: readonly number[] = []): string[] {
-  const widths: number[] = []
-  for (const row of rows) {
-    if (row.length === 2 && rows[0].length > 2) continue
-    for (const [i, cell] of row.entries()) widths[i] = Math.max(widths[i] ?? 0, cell.length)
-  }
-  return rows.map((row) =>
-    row
-      .map((cell, i) => (i === 0 || left.includes(i) ? cell.padEnd(widths[i]) : cell.padStart(widths[i])))
-      .join('  ')
-      .trimEnd(),
-  )
+  return [`power by size of effect, ${name}`, ...padded(text, [0, 2])]
 }
