@@ -2,7 +2,7 @@
 import type { Analysis } from '../results.js'
 
 export interface ReportInput {
-  readonly analysis: Analysis
+  readonly analysis: Omit<Analysis, 'units'>
   /** The study with every default filled in, as YAML: printed whole, and asked for the choices that words depend on. */
   readonly resolvedStudy: string
   readonly disclosure: {
