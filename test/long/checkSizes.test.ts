@@ -6,8 +6,10 @@ import {
   discreteDensityTest,
   heapingOf,
   holm,
+  jointTest,
   randomisationTest,
 } from '../../src/checks/index.js'
+import { bandwidthsFor, buildSample, covarianceMatrix, jumpAt } from '../../src/jump/index.js'
 import { type Random, streamOf } from '../../src/math/index.js'
 
 const sideOf = (x: Float64Array) => Uint8Array.from(x, (value) => (value >= 0 ? 1 : 0))
@@ -18,6 +20,36 @@ type Test = (random: Random) => number | undefined
 
 const pOf = (made: { ok: true; p: number } | { ok: false }) => (made.ok ? made.p : undefined)
 const onLine = (random: Random, n: number) => draw(n, () => random.normal() - 0.3)
+
+/** Predetermined columns that share a part, each at its own bandwidth, as a study tests them. */
+function balance(n: number, columns: number): Test {
+  return (random) => {
+    const x = draw(n, () => 2 * random.next() - 1)
+    const common = draw(n, () => random.normal())
+    const jumps = Array.from({ length: columns }, () => {
+      const y = x.map((value, i) => Math.sin(2 * value) + 0.5 * common[i] + random.normal() * (1 + 0.5 * value))
+      const sample = buildSample({ x, treated: sideOf(x), unit: Int32Array.from(x.keys()), y })
+      const options = { order: 1, kernel: 'triangular', variance: 'hc2', reference: 't', level: 0.95 } as const
+      const chosen = bandwidthsFor(
+        sample,
+        { kind: 'rule', rule: 'mse' },
+        { ...options, sides: 'common', clustered: false },
+      )
+      const made = chosen.ok ? jumpAt(sample, chosen.bandwidths, options) : chosen
+      if (!made.ok) throw new Error(made.reason)
+      return made.jump
+    })
+    const { matrix } = covarianceMatrix(jumps.map(({ influence }) => influence))
+    const estimates = Float64Array.from(jumps, ({ corrected }) => corrected.estimate)
+    return pOf(
+      jointTest(
+        estimates,
+        matrix,
+        jumps.map(({ corrected }) => corrected.degreesOfFreedom),
+      ),
+    )
+  }
+}
 
 const tests: readonly (readonly [string, number, Test])[] = [
   [
@@ -62,6 +94,9 @@ const tests: readonly (readonly [string, number, Test])[] = [
       return pOf(randomisationTest(x, y, sideOf(x), { window: 0.5, draws: 199, statistic: 'ranks' }, random))
     },
   ],
+  ['balance of 2 columns jointly, n = 500', 2000, balance(500, 2)],
+  ['balance of 5 columns jointly, n = 500', 1500, balance(500, 5)],
+  ['balance of 10 columns jointly, n = 2000', 1000, balance(2000, 10)],
   [
     'heaping, whole scores',
     1000,
@@ -90,7 +125,7 @@ describe('clean data', () => {
       sizes.set(name, size)
       expect(possible.length).toBe(draws)
       // those that bound or step by whole counts may flag less often
-      const isExact = /^(density|randomisation)/.test(name)
+      const isExact = /^(density|randomisation|balance)/.test(name)
       if (isExact) expect(size).toBeGreaterThanOrEqual(0.035)
       expect(size).toBeLessThanOrEqual(0.065)
     })
