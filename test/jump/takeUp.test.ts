@@ -72,6 +72,16 @@ describe('the effect per unit of take-up', () => {
     expect(unbounded.flat().some((end) => !Number.isFinite(end))).toBe(true)
   })
 
+  it('is bounded from an F of the squared quantile, 3.84, on', () => {
+    const setOf = (name: string) => ratioOf(golden[name], 0).made
+    expect(setOf('over_four').f).toBeCloseTo(4.86, 2)
+    expect(setOf('over_four').andersonRubin).toHaveLength(1)
+    expect(setOf('under_four').f).toBeCloseTo(3.62, 2)
+    const [first, second] = setOf('under_four').andersonRubin
+    expect(first[0]).toBe(Number.NEGATIVE_INFINITY)
+    expect(second[1]).toBe(Number.POSITIVE_INFINITY)
+  })
+
   it('is the jump itself where take-up jumps by exactly 1', () => {
     const { x, y } = golden.strong
     const { made, outcome } = ratioOf({ ...golden.strong, d: x.map((value) => (value >= 0 ? 1 : 0)), y })

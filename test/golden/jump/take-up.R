@@ -3,7 +3,7 @@
 options(digits = 17)
 set.seed(3)
 number <- function(v) paste0('[', paste(sprintf('%.17g', v), collapse = ', '), ']')
-cases <- list(strong = 0.6, weak = 0.12, none = 0)
+cases <- list(strong = 0.6, weak = 0.12, none = 0, under_four = 0.42, over_four = 0.28)
 out <- c()
 for (name in names(cases)) {
   n <- 500
