@@ -170,6 +170,8 @@ export interface Jump {
   /** Worst bias over all curves with a second derivative within `smoothness`; null with a reason where it has none. */
   readonly bias_aware?: BiasAware | null
   readonly bias_aware_reason?: string
+  /** The interval to go by: as the study says, else bias-aware where fewer than 10 distinct distances lie within the bandwidth. */
+  readonly quoted: 'corrected' | 'bias-aware'
   /** With take-up, plain and corrected are the effect per unit of it. */
   readonly take_up?: TakeUp
   /** What covariates did to the corrected estimate. */

@@ -143,6 +143,7 @@ export function jumpResult(
     plain: estimateResult(jump.plain),
     corrected: estimateResult(jump.corrected),
     ...biasAwareResult(biasAware),
+    quoted: quotedInterval(estimation.interval, jump, biasAware),
     ...(takeUp ? { take_up: takeUpResult(takeUp) } : {}),
     ...(covariates ? { covariates: covariateResult(covariates, takeUp?.eligibility ?? jump) } : {}),
     ...(notes.length > 0 ? { notes } : {}),
@@ -186,10 +187,23 @@ export function estimateResult(inference: Inference): Estimate {
   }
 }
 
+const fewDistinct = 10
+
+/** The bias-aware interval where the study asks for it, or leaves the choice open and the score has few values (METHODS section 5). */
+function quotedInterval(
+  asked: EstimationPart['interval'],
+  { distinct }: JumpFit,
+  biasAware: BiasAwareEstimated | undefined,
+): Jump['quoted'] {
+  if (!biasAware?.ok || asked === 'corrected') return 'corrected'
+  const isCoarse = Math.min(distinct.untreated, distinct.treated) < fewDistinct
+  return asked === 'bias-aware' || isCoarse ? 'bias-aware' : 'corrected'
+}
+
 function notesOn(jump: JumpFit): string[] {
   const notes: string[] = []
   for (const name of ['untreated', 'treated'] as const) {
-    if (jump.distinct[name] >= 10) continue
+    if (jump.distinct[name] >= fewDistinct) continue
     const values = `${jump.distinct[name]} distinct values within the bandwidth on the ${name} side`
     notes.push(`only ${values}: use the bias-aware interval, which allows for what may happen between them`)
   }

@@ -10,11 +10,11 @@ import { smoothnessByRule } from './biasAwareSmoothness.js'
 import { worstBiasOf } from './biasAwareWorst.js'
 import { jointFit } from './clustersJoint.js'
 import type { JumpOptions } from './estimate.js'
-import { countWithin, type Kernel } from './kernel.js'
+import { countWithin } from './kernel.js'
 import { type LinearPart, linearEstimate } from './linearEstimate.js'
 import { addWeights, fitLocal, functional } from './localPolynomial.js'
 import { neighbourResidualsOf } from './neighbours.js'
-import { type BySide, distinctWithin, type Sample } from './sample.js'
+import type { BySide, Sample } from './sample.js'
 
 export interface BiasAwareOptions extends JumpOptions {
   /** Bound M on |m''|, in units of y per x², or by rule of thumb. */
@@ -61,17 +61,6 @@ const mostGridPoints = 48
 const ownTolerance = 1e-3
 const curveTolerance = 1e-2
 const eighthToEightfold = [1 / 8, 1 / 4, 1 / 2, 1, 2, 4, 8]
-
-/** A score this coarse near the line leaves the corrected interval little to go by. */
-const fewestDistinct = 10
-
-/** Whether fewer than 10 distinct distances lie within h on a side: then the bias-aware interval is the one to offer. */
-export function fewDistinct(sample: Sample, h: BySide<number>, kernel: Kernel): boolean {
-  return (['untreated', 'treated'] as const).some((name) => {
-    const { t } = sample[name]
-    return distinctWithin(t, countWithin(t, h[name], kernel), fewestDistinct) < fewestDistinct
-  })
-}
 
 /**
  * The interval of a sample, or a reason. With `sampleAt`, smoothness and bandwidth are chosen on `sample`, and the interval is

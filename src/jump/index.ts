@@ -14,7 +14,6 @@ export {
   type BiasAwareInterval,
   type BiasAwareOptions,
   biasAware,
-  fewDistinct,
   type SampleAt,
 } from './biasAware.js'
 export { type CrossedClusters, crossClusters } from './clustersCrossed.js'

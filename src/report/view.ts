@@ -119,7 +119,7 @@ function choicesOf(resolvedStudy: string): Choices {
   return {
     level,
     reference: name(study.estimation?.reference) ?? 't',
-    interval: name(study.estimation?.interval) ?? 'corrected',
+    interval: name(study.estimation?.interval) ?? 'auto',
     bandwidth: ruleOf(study.estimation?.bandwidth),
     order: Number(study.estimation?.order ?? 1),
     donut: Number(study.estimation?.donut ?? 0),

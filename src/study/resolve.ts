@@ -50,7 +50,7 @@ export function resolveEstimation(estimation: NonNullable<WrittenStudy['estimati
     kernel: estimation.kernel ?? 'triangular',
     bandwidth: resolveBandwidth(estimation.bandwidth ?? 'mse'),
     sides: estimation.sides ?? 'common',
-    interval: estimation.interval ?? 'corrected',
+    interval: estimation.interval ?? 'auto',
     smoothness: estimation.smoothness ?? 'rule',
     ...given({ variance: estimation.variance }),
     reference: estimation.reference ?? 't',

@@ -199,7 +199,7 @@ export const estimation = keyed({
   kernel: oneOf(['triangular', 'epanechnikov', 'uniform']).optional(),
   bandwidth: bandwidth.optional(),
   sides: oneOf(['common', 'separate']).optional(),
-  interval: oneOf(['corrected', 'bias-aware']).optional(),
+  interval: oneOf(['auto', 'corrected', 'bias-aware']).optional(),
   smoothness: choose<'rule' | number>((value) =>
     typeof value === 'number'
       ? positive

@@ -154,8 +154,8 @@ export interface EstimationPart {
   readonly kernel: KernelName
   readonly bandwidth: Bandwidth
   readonly sides: 'common' | 'separate'
-  /** The one the report quotes; both are computed where they exist. */
-  readonly interval: 'corrected' | 'bias-aware'
+  /** The one to quote; both are computed where they exist. auto: corrected, but bias-aware where the score has few values. */
+  readonly interval: 'auto' | 'corrected' | 'bias-aware'
   /** Bound on the second derivative for the bias-aware interval: by rule of thumb, or given. */
   readonly smoothness: 'rule' | number
   /** Absent: `clusters` with records.cluster, else hc2 (and, pooled over border pieces, clustered by piece). */

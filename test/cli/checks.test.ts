@@ -3,7 +3,7 @@ import { readFileSync, rmSync } from 'node:fs'
 import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { seededRandom } from '../../src/math/index.js'
-import type { CheckResult, Results } from '../../src/results.js'
+import type { CheckResult, Jump, Results } from '../../src/results.js'
 import { newRoom, scarp, writeFiles } from './studies.js'
 
 const room = newRoom()
@@ -132,6 +132,21 @@ describe('checks', () => {
       if (row.score === 48 && noise() < 0.5) row.score = 50
     })
     expect(named(piled, 'density')).toMatchObject([{ verdict: 'doubt' }])
+  })
+
+  it('go with the bias-aware interval where a score has eight values a side', async () => {
+    const eighths: Change = (row) => {
+      row.score = 6.25 * Math.floor(row.score / 6.25) + 3.125
+    }
+    const results = await run('eighths', eighths, 'none')
+    const pooled = results.outcomes[0].pooled as Jump
+    expect(pooled.quoted).toBe('bias-aware')
+    expect(pooled.bias_aware?.low).toBeLessThan(1)
+    expect(pooled.bias_aware?.high).toBeGreaterThan(1)
+    const page = readFileSync(join(room, 'eighths-out', 'report.html'), 'utf8')
+    expect(page).toContain('fewer than 10 distinct distances lie within the bandwidth')
+    const asked = await run('asked', eighths, 'none', 'estimation: {interval: corrected}\n')
+    expect((asked.outcomes[0].pooled as Jump).quoted).toBe('corrected')
   })
 
   it('are left out where the study says so, and are more in full', async () => {

@@ -8,7 +8,6 @@ import {
   biasAware,
   buildSample,
   type Entries,
-  fewDistinct,
   jumpAt,
   type Kernel,
   type Sample,
@@ -317,13 +316,6 @@ describe('interval', () => {
     const x = entries.x.map((value, i) => (i % 4 === 0 ? 0 : value))
     const at = { ...entries, x, treated: Uint8Array.from(x, (value) => (value >= 0 ? 1 : 0)) }
     expect(interval(buildSample(at)).bandwidth.treated).toBeGreaterThan(0)
-  })
-  it('few distinct values within h', () => {
-    const h = { untreated: 0.5, treated: 0.5 }
-    expect(fewDistinct(sample, h, 'triangular')).toBe(false)
-    expect(fewDistinct(buildSample(entriesOf(400, 4, {}, 19)), h, 'triangular')).toBe(true)
-    // 10 of 20 values lie within half, and the one at 0.475 is in; with 0.525 as the edge only the uniform kernel has 11
-    expect(fewDistinct(buildSample(entriesOf(4000, 4, {}, 20)), h, 'triangular')).toBe(false)
   })
 })
 

@@ -48,7 +48,7 @@ export const goodCases: readonly GoodCase[] = [
         kernel: 'triangular',
         bandwidth: { kind: 'rule', rule: 'mse' },
         sides: 'common',
-        interval: 'corrected',
+        interval: 'auto',
         reference: 't',
         donut: 0,
         level: 0.95,

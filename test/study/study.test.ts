@@ -78,7 +78,7 @@ estimation:
   kernel: triangular
   bandwidth: mse
   sides: common
-  interval: corrected
+  interval: auto
   smoothness: rule
   reference: t
   donut: 0

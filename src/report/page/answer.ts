@@ -48,9 +48,14 @@ export function answerOf(view: View, outcome: OutcomeView): Answer {
   }
 }
 
-/** The interval that the study asks for; the bias-aware one comes without a p-value. */
+/** Where it is the interval to go by. */
+function quotedBiasAware(jump: Jump): Jump['bias_aware'] {
+  return jump.quoted === 'bias-aware' ? jump.bias_aware : undefined
+}
+
+/** The interval to go by; the bias-aware one comes without a p-value. */
 function headlineOf(view: View, jump: Jump, places: Places): NonNullable<Answer['headline']> {
-  const biasAware = view.choices.interval === 'bias-aware' ? jump.bias_aware : undefined
+  const biasAware = quotedBiasAware(jump)
   const { estimate } = biasAware ?? jump.corrected
   const sign = estimate > 0 ? '+' : ''
   const kind = biasAware ? 'bias-aware interval' : 'interval'
@@ -63,17 +68,25 @@ function headlineOf(view: View, jump: Jump, places: Places): NonNullable<Answer[
 }
 
 function pooledSentence(view: View, outcome: OutcomeView, jump: Jump, places: Places): string {
-  const { corrected } = jump
-  const size = fixed(Math.abs(corrected.estimate), places)
-  const way = corrected.estimate === 0 ? 'the same' : `${size} ${corrected.estimate > 0 ? 'higher' : 'lower'}`
+  const biasAware = quotedBiasAware(jump)
+  const { estimate, low, high } = biasAware ?? jump.corrected
+  const size = fixed(Math.abs(estimate), places)
+  const way = estimate === 0 ? 'the same' : `${size} ${estimate > 0 ? 'higher' : 'lower'}`
   const lines = estimatedLines(outcome.result).length
   const start = lines === 1 ? `At the one ${view.words.line} estimated` : `Taking ${howMany(view, lines)} together`
-  const includesZero = corrected.low <= 0 && corrected.high >= 0
+  const includesZero = low <= 0 && high >= 0
   const verdict = includesZero
     ? `The interval includes zero, so the data do not settle whether ${outcome.result.outcome} rises or falls there.`
     : `The interval excludes zero.`
   const means = `The fitted means there are ${fixed(jump.at_line.untreated, places)} untreated and ${fixed(jump.at_line.treated, places)} treated (plain fit).`
-  return `${start}, ${outcome.result.outcome} is ${way} just inside the treated side of ${view.words.theLine} than just outside it (corrected estimate; ${view.words.level} interval ${intervalText(corrected, places)}, ${pWords(corrected.p)}). ${verdict} ${means}`
+  const source = biasAware
+    ? `bias-aware estimate; ${view.words.level} interval ${intervalText(biasAware, places)}`
+    : `corrected estimate; ${view.words.level} interval ${intervalText(jump.corrected, places)}, ${pWords(jump.corrected.p)}`
+  const instead =
+    biasAware && view.choices.interval === 'auto'
+      ? ` The bias-aware interval is given because fewer than 10 distinct distances lie within the bandwidth on a side; the corrected one is ${intervalText(jump.corrected, places)}, about ${fixed(jump.corrected.estimate, places)}.`
+      : ''
+  return `${start}, ${outcome.result.outcome} is ${way} just inside the treated side of ${view.words.theLine} than just outside it (${source}). ${verdict} ${means}${instead}`
 }
 
 /** Below this many units the interval is known to cover a few points less than it says (test/long/honest.test.ts). */
