@@ -41,6 +41,7 @@ export interface CutoffAudit {
     readonly jump: number
     readonly p: number
     readonly p_holm: number
+    readonly p_bh: number
     readonly jump_at_line: number
     readonly p_at_line: number
   }[]
@@ -293,7 +294,9 @@ export interface CheckResult {
   readonly line?: string
   readonly statistic?: number
   readonly p?: number
+  /** Adjusted for the number of tests of its kind: by Holm, and by Benjamini & Hochberg where the tests stand in rows of their own. */
   readonly p_holm?: number
+  readonly p_bh?: number
   readonly verdict: 'fine' | 'doubt' | 'fail' | 'not possible'
   readonly says: string
 }

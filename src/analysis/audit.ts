@@ -1,9 +1,11 @@
 /** Lines at which take-up, or a named column, breaks elsewhere than the schedule says; nothing is changed. */
-import { auditLine, holm } from '../checks/index.js'
+
+import { auditLine } from '../checks/index.js'
 import { argsortBy, streamOf } from '../math/index.js'
 import { numbersOf } from '../records/index.js'
 import type { CutoffAudit } from '../results.js'
 import type { Study } from '../study/index.js'
+import { adjustedFor } from './adjusted.js'
 import { entriesOfLine, entriesOfValues, type OutcomeEntries } from './entries.js'
 import type { AnalysisInputs } from './inputs.js'
 import type { Placed } from './placing.js'
@@ -15,16 +17,16 @@ export function auditOf(study: Study, { table }: AnalysisInputs, placed: Placed)
   const { lines } = placed.placement
   const found = lines.map((line, i) => ({ line: line.id, ...auditLine(...halvesOf(entries, i, study.seed)) }))
   const tested = found.flatMap((one) => (one.ok ? [one] : []))
-  const adjusted = holm(tested.map(({ p }) => p))
+  const adjusted = adjustedFor(tested.map(({ p }) => p))
   return {
     column: study.audit,
     audited: tested.length,
     not_possible: found.flatMap((one) => (one.ok ? [] : [{ line: one.line, reason: one.reason }])),
     elsewhere: tested.flatMap((one, i) => {
       const isElsewhere = Math.abs(one.at) > one.step && one.isClearer
-      if (!isElsewhere || !(adjusted[i] < 1 - study.estimation.level)) return []
+      if (!isElsewhere || !(adjusted[i].p_holm < 1 - study.estimation.level)) return []
       const { line, at, jump, p, jumpAtLine, pAtLine, step } = one
-      return [{ line, at, within: step, jump, p, p_holm: adjusted[i], jump_at_line: jumpAtLine, p_at_line: pAtLine }]
+      return [{ line, at, within: step, jump, p, ...adjusted[i], jump_at_line: jumpAtLine, p_at_line: pAtLine }]
     }),
   }
 }

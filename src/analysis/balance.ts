@@ -1,9 +1,11 @@
 /** Predetermined columns must not jump: each on its own, and all together by their joint covariance. */
-import { holm, jointTest } from '../checks/index.js'
+
+import { jointTest } from '../checks/index.js'
 import { covarianceMatrix, type JumpFit } from '../jump/index.js'
 import { numbersOf } from '../records/index.js'
 import type { CheckResult } from '../results.js'
 import type { Study } from '../study/index.js'
+import { adjustedFor } from './adjusted.js'
 import { entriesOfValues } from './entries.js'
 import { hasReason, type OrReason, pooledOnly } from './estimating.js'
 import type { AnalysisInputs } from './inputs.js'
@@ -22,15 +24,15 @@ export function balanceChecks(study: Study, { table }: AnalysisInputs, placed: P
   })
   const alpha = 1 - study.estimation.level
   const fits = columns.flatMap(({ name, made }) => (hasReason(made) ? [] : [{ name, jump: made.jump }]))
-  const adjusted = holm(fits.map(({ jump }) => jump.corrected.p))
+  const adjusted = adjustedFor(fits.map(({ jump }) => jump.corrected.p))
   const rows = columns.map(({ name, made }): CheckResult => {
     const check = `balance of ${name}`
     if (hasReason(made)) return { check, verdict: 'not possible', says: made.reason }
     const { estimate, standardError, low, high, p } = made.jump.corrected
-    const pHolm = adjusted[fits.findIndex((fit) => fit.name === name)]
-    const jumps = pHolm < alpha
+    const both = adjusted[fits.findIndex((fit) => fit.name === name)]
+    const jumps = both.p_holm < alpha
     const says = `${jumps ? 'jumps' : 'moves'} by ${shown(estimate)} (${shown(low)} to ${shown(high)})`
-    return { check, statistic: estimate / standardError, p, p_holm: pHolm, verdict: jumps ? 'doubt' : 'fine', says }
+    return { check, statistic: estimate / standardError, p, ...both, verdict: jumps ? 'doubt' : 'fine', says }
   })
   return [
     ...rows,

@@ -1,5 +1,7 @@
 /** What the ladders say, as checks: does the estimate hold when one choice is changed, and does nothing jump elsewhere? */
+
 import type { CheckResult, Interval, Ladders, Rung } from '../results.js'
+import { adjustedFor } from './adjusted.js'
 import { shown } from './words.js'
 
 type Made = Extract<Rung, { estimate: number }>
@@ -18,7 +20,7 @@ export function ladderChecks(
     steadiness('bandwidth', 'between 0.5 and 2 times the bandwidth', ladders.bandwidth, study, level, holm),
     steadiness('donut', 'with up to a fifth of the bandwidth left out at the line', ladders.donut, study, level, holm),
     steadiness('order and kernel', 'at other orders and kernels', ladders.order_kernel, study, level, holm),
-    ...(ladders.placebo_lines.length > 0 ? placeboChecks(ladders.placebo_lines, level, holm) : []),
+    ...(ladders.placebo_lines.length > 0 ? placeboChecks(ladders.placebo_lines, level) : []),
   ]
 }
 
@@ -57,21 +59,21 @@ function steadiness(
 }
 
 /** One row for each line that is none, p-values adjusted for their number. */
-function placeboChecks(rungs: Ladders['placebo_lines'], level: number, holm: Holm): CheckResult[] {
+function placeboChecks(rungs: Ladders['placebo_lines'], level: number): CheckResult[] {
   const made = rungs.filter(isMade)
-  const adjusted = holm(made.map(({ p }) => p))
+  const adjusted = adjustedFor(made.map(({ p }) => p))
   return rungs.map((rung): CheckResult => {
     const check = 'placebo line'
     const place = `${rung.side} side, x = ${shown(rung.at)}`
     if (!isMade(rung)) return { check, verdict: 'not possible', says: `${place}: ${rung.not_estimated}` }
-    const pHolm = adjusted[made.indexOf(rung)]
-    const jumps = pHolm < 1 - level
+    const both = adjusted[made.indexOf(rung)]
+    const jumps = both.p_holm < 1 - level
     const interval = `${shown(rung.estimate)} (${shown(rung.low)} to ${shown(rung.high)})`
     return {
       check,
       statistic: rung.estimate / rung.standard_error,
       p: rung.p,
-      p_holm: pHolm,
+      ...both,
       verdict: jumps ? 'doubt' : 'fine',
       says: `${place}, where nothing changes: ${interval}${jumps ? ', a jump that should not be there' : ''}`,
     }

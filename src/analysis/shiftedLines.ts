@@ -1,10 +1,11 @@
 /** Lines shifted into either side, where nothing changes: the study's estimate made again on each. */
+
 import { type BorderSide, eligible, measureUnits, type ShiftedBorder, shiftedBorder } from '../borders/index.js'
-import { holm } from '../checks/index.js'
 import type { Placement } from '../placement.js'
 import { numbersOf } from '../records/index.js'
 import type { CheckResult } from '../results.js'
 import type { BorderLine, Study } from '../study/index.js'
+import { adjustedFor } from './adjusted.js'
 import { metresPerUnit } from './border.js'
 import { entriesOf } from './entries.js'
 import { hasReason, type OutcomeEstimates } from './estimating.js'
@@ -27,6 +28,7 @@ export interface ShiftedEffect {
   readonly high: number
   readonly p: number
   readonly p_holm: number
+  readonly p_bh: number
   /** Units within the bandwidth. */
   readonly units: number
   /** How far the curve, as drawn, strays from the distance. */
@@ -38,7 +40,7 @@ export interface ShiftedExhibit {
   readonly not_estimated: readonly { readonly side: BorderSide; readonly metres: number; readonly reason: string }[]
 }
 
-type Unadjusted = Omit<ShiftedEffect, 'p_holm'>
+type Unadjusted = Omit<ShiftedEffect, 'p_holm' | 'p_bh'>
 
 /**
  * One check for each side and distance. Units are those the study placed on that side, by its own rules; which polygon
@@ -70,8 +72,8 @@ export function shiftedLines(
       else made.push(effect)
     }
   }
-  const adjusted = holm(made.map(({ p }) => p))
-  const shifted = made.map((effect, i): ShiftedEffect => ({ ...effect, p_holm: adjusted[i] }))
+  const adjusted = adjustedFor(made.map(({ p }) => p))
+  const shifted = made.map((effect, i): ShiftedEffect => ({ ...effect, ...adjusted[i] }))
   const checks = [
     ...shifted.map((effect) => checkOf(effect, study.estimation.level)),
     ...notEstimated.map(({ side, metres: distance, reason }) => ({
@@ -147,7 +149,7 @@ function nameOf(side: BorderSide, metres: number): string {
 }
 
 function checkOf(effect: ShiftedEffect, level: number): CheckResult {
-  const { side, metres, estimate, standard_error, low, high, p, p_holm, units } = effect
+  const { side, metres, estimate, standard_error, low, high, p, p_holm, p_bh, units } = effect
   const short = (value: number) => String(Number(value.toPrecision(3)))
   const isDoubt = p_holm <= 1 - level
   const says =
@@ -159,6 +161,7 @@ function checkOf(effect: ShiftedEffect, level: number): CheckResult {
     statistic: estimate / standard_error,
     p,
     p_holm,
+    p_bh,
     verdict: isDoubt ? 'doubt' : 'fine',
     says,
   }

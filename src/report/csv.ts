@@ -128,7 +128,7 @@ function pooledRecord(view: View, outcome: OutcomeView | undefined): Fields {
 
 export function checksCsv(view: View): string {
   return csvText(
-    ['outcome', 'check', 'line', 'statistic', 'p', 'p_holm', 'verdict', 'says'],
+    ['outcome', 'check', 'line', 'statistic', 'p', 'p_holm', 'p_bh', 'verdict', 'says'],
     view.outcomes.flatMap(({ result }) =>
       result.checks.map((check) => [
         result.outcome,
@@ -137,6 +137,7 @@ export function checksCsv(view: View): string {
         check.statistic,
         check.p,
         check.p_holm,
+        check.p_bh,
         check.verdict,
         check.says,
       ]),

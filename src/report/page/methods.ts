@@ -29,6 +29,7 @@ const papers = {
   joint: 'Hotelling 1931, Annals of Mathematical Statistics',
   window: 'Cattaneo, Frandsen & Titiunik 2015, Journal of Causal Inference',
   holm: 'Holm 1979, Scandinavian Journal of Statistics',
+  hochberg: 'Benjamini & Hochberg 1995, Journal of the Royal Statistical Society B',
   moran: 'Moran 1950, Biometrika',
   hartung: 'Knapp & Hartung 2003, Statistics in Medicine',
   spatial: 'Conley 1999, Journal of Econometrics',
@@ -212,7 +213,11 @@ function checking(view: View): Method[] {
       [papers.window],
     ],
     [has('spatial correlation'), 'Spatial correlation: Moran’s I of the residuals near the line.', [papers.moran]],
-    [made.some(({ p_holm: p }) => p !== undefined), 'Tests of one kind are adjusted for their number.', [papers.holm]],
+    [
+      made.some(({ p_holm: p }) => p !== undefined),
+      'Tests of one kind are adjusted for their number, by Holm in the verdicts; checks.csv has Benjamini & Hochberg’s beside.',
+      [papers.holm, papers.hochberg],
+    ],
   ]
   return all.filter(([used]) => used).map(([, text, sources]) => ({ text, papers: sources }))
 }
