@@ -211,12 +211,14 @@ function unitRows({ placement, ground, border }: Placed): UnitRows {
   }
 }
 
-function inputFiles({ table, schedule, zones, barriers = [], overlaps = [] }: AnalysisInputs): InputFile[] {
-  const tables = [table, ...(schedule ? [schedule] : [])].map(({ file, sha256, rowsRead }) => ({
-    file,
-    sha256,
-    rows: rowsRead,
-  }))
+function inputFiles({ table, schedule, shares, zones, barriers = [], overlaps = [] }: AnalysisInputs): InputFile[] {
+  const tables = [table, ...(schedule ? [schedule] : []), ...(shares ? [shares] : [])].map(
+    ({ file, sha256, rowsRead }) => ({
+      file,
+      sha256,
+      rows: rowsRead,
+    }),
+  )
   const layers = [...(zones ? [zones] : []), ...barriers, ...overlaps].map(({ file, sha256, content, facts }) => ({
     file,
     sha256,

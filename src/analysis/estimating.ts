@@ -437,7 +437,11 @@ function targetOf(
   const { level } = study.estimation
   if (typeof target === 'object') {
     const used = Float64Array.from(index, (i) => (shares as Float64Array)[i])
-    return targetEffect(effects, { kind: 'shares', name: target.column, shares: used }, level)
+    return targetEffect(
+      effects,
+      { kind: 'shares', name: 'column' in target ? target.column : target.value, shares: used },
+      level,
+    )
   }
   if (target !== 'units') return targetEffect(effects, { kind: target }, level)
   const units = Float64Array.from(index, (i) => {

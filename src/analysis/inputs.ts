@@ -18,6 +18,8 @@ export interface AnalysisInputs {
   readonly table: Table
   /** The schedule of cutoffs, where the study has one. */
   readonly schedule?: Table
+  /** The target's shares, where the study has a file of them. */
+  readonly shares?: Table
   /** The zones of a border study. */
   readonly zones?: LayerInput
   /** In the order of the study's barriers. */
@@ -57,12 +59,13 @@ export function positionColumns({ records }: Study): readonly [string, string] {
   return [`${position} (longitude)`, `${position} (latitude)`]
 }
 
-/** Equal for studies that read the same table, schedule and zones; which columns of them is left open. */
-export function readingKey({ records, line }: Study): string {
+/** Equal for studies that read the same table, schedule, shares and zones; which columns of them is left open. */
+export function readingKey({ records, line, pooling: { target } }: Study): string {
   const { id: _, weight: __, cluster: ___, ...table } = records
   const files = line.kind === 'border' ? line.zones : line.kind === 'score' ? line.cutoff : ''
   const schedule = typeof files === 'object' && 'kind' in files && files.kind !== 'schedule' ? '' : files
-  return JSON.stringify([table, line.kind === 'border', schedule])
+  const shares = typeof target === 'object' && 'shares' in target ? target : ''
+  return JSON.stringify([table, line.kind === 'border', schedule, shares])
 }
 
 /**
@@ -145,7 +148,7 @@ function ownColumns(study: Study, scheduleColumns: readonly string[]): WantedCol
     if (schedule && scheduleColumns.includes(name)) schedule.push({ name, kind: 'number', askedBy })
     else ask('number', name, askedBy)
   }
-  if (typeof target === 'object') askOfLines(target.column, 'pooling.target.column')
+  if (typeof target === 'object' && 'column' in target) askOfLines(target.column, 'pooling.target.column')
   if (slope !== undefined) askOfLines(slope, 'pooling.slope')
   return { records, schedule }
 }

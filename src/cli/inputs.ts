@@ -41,8 +41,10 @@ export async function readStudyFile(file: string): Promise<Checked<StudyFile>> {
 /** Every file that a study names but those of its placement, as written there. */
 function namedFiles(study: Study): string[] {
   const files = [study.records.file]
-  const { line } = study
+  const { line, pooling } = study
+  const { target } = pooling
   if (line.kind === 'score' && line.cutoff.kind === 'schedule') files.push(line.cutoff.file)
+  if (typeof target === 'object' && 'shares' in target) files.push(target.shares)
   if (line.kind === 'border') files.push(...[line.zones, ...line.barriers, ...line.overlaps].map(({ file }) => file))
   return files
 }
@@ -58,7 +60,7 @@ export interface ReadOptions {
   readonly all?: boolean
 }
 
-/** Records, schedule, zones and barriers; the problems of all of them. */
+/** Records, schedule, shares, zones and barriers; the problems of all of them. */
 export async function readInputs(from: StudyFile, options: ReadOptions): Promise<Checked<AnalysisInputs>> {
   const { study } = from
   const { progress } = options
@@ -73,6 +75,7 @@ export async function readInputs(from: StudyFile, options: ReadOptions): Promise
 interface Parts {
   readonly table?: Table
   readonly schedule?: Table
+  readonly shares?: Table
   readonly zones?: LayerInput
   readonly barriers: readonly LayerInput[]
   readonly overlaps: readonly LayerInput[]
@@ -80,7 +83,7 @@ interface Parts {
 
 /** What could be read; the problems of the rest are added to `problems` in the order of the study. */
 async function readParts({ study, file }: StudyFile, { all }: ReadOptions, problems: Problem[]): Promise<Parts> {
-  const { line, records } = study
+  const { line, records, pooling } = study
   const at = (name: string) => resolve(dirname(file), name)
   const keep = <T>(checked: Checked<T>): T | undefined => {
     if (checked.ok) return checked.value
@@ -110,7 +113,21 @@ async function readParts({ study, file }: StudyFile, { all }: ReadOptions, probl
             ? await readTable(at(scheduleFile), { wanted: wanted.schedule ?? [], shownAs: scheduleFile })
             : header,
         )
-  if (line.kind !== 'border') return { table, schedule, barriers: [], overlaps: [] }
+  const { target } = pooling
+  const shares =
+    typeof target === 'object' && 'shares' in target
+      ? keep(
+          await readTable(at(target.shares), {
+            wanted: [
+              { name: target.line, kind: 'label', askedBy: 'pooling.target.line' },
+              { name: target.value, kind: 'number', askedBy: 'pooling.target.value' },
+            ],
+            shownAs: target.shares,
+          }),
+        )
+      : undefined
+  const tables = { table, schedule, shares }
+  if (line.kind !== 'border') return { ...tables, barriers: [], overlaps: [] }
   const { readGeoLayer } = await import('../layers/index.js')
   const units = table && (await unitsBox(study, table))
   const read = async (source: LayerSource, askedBy: string): Promise<LayerInput | undefined> => {
@@ -127,7 +144,7 @@ async function readParts({ study, file }: StudyFile, { all }: ReadOptions, probl
     }
     return layers
   }
-  return { table, zones, barriers: await readAll('barriers'), overlaps: await readAll('overlaps') }
+  return { ...tables, zones, barriers: await readAll('barriers'), overlaps: await readAll('overlaps') }
 }
 
 async function unitsBox(study: Study, table: Table): Promise<Box | undefined> {

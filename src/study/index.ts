@@ -17,6 +17,7 @@ export type {
   PoolingPart,
   RecordsPart,
   ScoreLine,
+  SharesFile,
   Study,
   TreatedSide,
   VarianceName,

@@ -216,9 +216,10 @@ export const estimation = keyed({
   level: numberWhere('must lie between 0 and 1', 'write 0.95 for 95%', (value) => value > 0 && value < 1).optional(),
 })
 
-const target = choose<'units' | 'equal' | 'precision' | { column: string }>((value) =>
-  isRecord(value) ? column : oneOf(['units', 'equal', 'precision']),
-)
+const shares = keyed({ shares: fileName, line: columnName, value: columnName })
+const target = choose<
+  'units' | 'equal' | 'precision' | { column: string } | { shares: string; line: string; value: string }
+>((value) => (isRecord(value) ? ('shares' in value ? shares : column) : oneOf(['units', 'equal', 'precision'])))
 export const pooling = keyed({
   fixed_effects: trueOrFalse.optional(),
   target: target.optional(),
@@ -305,7 +306,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|take_up|audit|away_from_line\.(low|high)|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.(target\.column|slope))$/
+  /^(title|take_up|audit|away_from_line\.(low|high)|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.(target\.(column|line|value)|slope))$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

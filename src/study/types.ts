@@ -149,6 +149,13 @@ export type Bandwidth =
   | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number; readonly scale?: number }
   | { readonly kind: 'fixed'; readonly untreated: number; readonly treated: number; readonly bias?: number }
 
+/** A table with one row a line: the column that names it, by its key or its label, and the one that holds its share. */
+export interface SharesFile {
+  readonly shares: string
+  readonly line: string
+  readonly value: string
+}
+
 export interface EstimationPart {
   readonly order: 0 | 1 | 2 | 3
   readonly kernel: KernelName
@@ -169,7 +176,7 @@ export interface EstimationPart {
 
 export interface PoolingPart {
   readonly fixedEffects: boolean
-  readonly target: 'units' | 'equal' | 'precision' | { readonly column: string }
+  readonly target: 'units' | 'equal' | 'precision' | { readonly column: string } | SharesFile
   /** Column with one value a line that effects are related to; absent: the cutoff, where it differs. */
   readonly slope?: string
 }
