@@ -5,7 +5,6 @@
  * Arguments out of range, NaN among them, throw RangeError.
  */
 
-import jStat from 'jstat'
 import { normalCdf, normalDensity, normalQuantile, normalUpper } from './normal.js'
 import { betaFraction, halfStepGammaRatio, incompleteGamma } from './specialFunctions.js'
 
@@ -138,16 +137,12 @@ function studentFromCentre(centre: number, df: number): number {
   return t
 }
 
-/**
- * |t| with P(|T| ≥ |t|) = both. Starts from jstat's quantile in its ordinary range, where that is right to about 1e-7
- * and one or two Newton steps finish; elsewhere from the normal quantile and the first terms of Fisher & Cornish (1960).
- */
+/** |t| with P(|T| ≥ |t|) = both, from the normal quantile and the first terms of Fisher & Cornish (1960). */
 function studentFromTail(both: number, df: number): number {
-  return fromTail(
-    both,
-    df,
-    both >= 1e-6 && df >= 1 && df <= 1e5 ? -jStat.studentt.inv(both / 2, df) : startOf(both, df),
-  )
+  return argumentOfTail(both, startOf(both, df), (t) => {
+    const tails = studentTails(t, df)
+    return { tail: tails.both, front: tails.front }
+  })
 }
 
 function startOf(both: number, df: number): number {
@@ -155,13 +150,6 @@ function startOf(both: number, df: number): number {
   const square = z * z
   const expansion = (square + 1) / (4 * df) + ((5 * square + 16) * square + 3) / (96 * df * df)
   return square < df ? z * (1 + expansion) : z
-}
-
-function fromTail(both: number, df: number, start: number): number {
-  return argumentOfTail(both, start, (t) => {
-    const tails = studentTails(t, df)
-    return { tail: tails.both, front: tails.front }
-  })
 }
 
 /**

@@ -1,4 +1,4 @@
-/** The few functions of jstat that the project and its tests call; the package carries no types of its own. */
+/** The few functions of jstat that the tests call; the package carries no types of its own. */
 declare module 'jstat' {
   const jStat: {
     normal: {
