@@ -70,7 +70,9 @@ function spreadOf(parts: readonly LinearPart[], options: InferenceOptions, repea
   const weights = parts.map((part) => part.weights)
   let estimate = 0
   const psi = parts.map(({ side, fit, weights: l, neighbours }) => {
-    for (let i = 0; i < l.length; i++) estimate += l[i] * side.y[i]
+    let sum = estimate
+    for (let i = 0; i < l.length; i++) sum += l[i] * side.y[i]
+    estimate = sum
     const residuals = neighbours ?? scaledResiduals(side, fit, l.length, variance)
     const values = new Float64Array(l.length)
     for (let i = 0; i < l.length; i++) values[i] = l[i] * residuals[i]

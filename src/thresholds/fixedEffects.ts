@@ -5,7 +5,7 @@
  */
 import { type BySide, countWithin, type Kernel, kernelCurve, type Sample, type Side } from '../jump/index.js'
 import { legendreShifted } from '../math/index.js'
-import { absorbedLeastSquares, type EachRow } from './absorbed.js'
+import { absorbedLeastSquares, type Rows } from './absorbed.js'
 
 export type FixedEffects =
   | {
@@ -16,6 +16,8 @@ export type FixedEffects =
       readonly coefficients: Float64Array
     }
   | { readonly ok: false; readonly reason: string }
+
+const sides = ['untreated', 'treated'] as const
 
 /** Kernel weight w K(t/h)/h, constants of the kernel left out, summed by line over both sides. */
 export function kernelWeightByLine(sample: Sample, h: BySide<number>, kernel: Kernel, lines: number): Float64Array {
@@ -143,22 +145,33 @@ function rowsOf(
   kernel: Kernel,
   fixedEffects: boolean,
   covariates: readonly Float64Array[],
-): EachRow {
-  const basis = new Float64Array(order + 1)
-  const row = new Float64Array(2 * order + 1 + covariates.length)
-  return (visit) => {
-    for (const name of ['untreated', 'treated'] as const) {
-      const side = sample[name]
-      const count = countWithin(side.t, h[name], kernel)
-      const scale = count > 0 ? side.t[count - 1] : 1
-      eachWeight(side, h[name], kernel, (i, k) => {
-        legendreShifted(order, side.t[i] / scale, basis)
-        row.fill(0)
-        if (name === 'treated') row.set(basis)
-        else for (let j = 1; j <= order; j++) row[order + j] = basis[j]
-        for (let c = 0; c < covariates.length; c++) row[2 * order + 1 + c] = covariates[c][side.unit[i]]
-        visit(fixedEffects ? (side.group as Int32Array)[i] : 0, k, row, side.y[i])
-      })
-    }
+): Rows {
+  const columns = 2 * order + 1 + covariates.length
+  const counts = sides.map((name) => countWithin(sample[name].t, h[name], kernel))
+  const size = counts[0] + counts[1]
+  const rows = {
+    group: new Int32Array(size),
+    weight: new Float64Array(size),
+    design: new Float64Array(size * columns),
+    y: new Float64Array(size),
   }
+  const basis = new Float64Array(order + 1)
+  let row = 0
+  sides.forEach((name, s) => {
+    const { t, w, y, unit, group } = sample[name]
+    const scale = counts[s] > 0 ? t[counts[s] - 1] : 1
+    const { linear, square } = kernelCurve(h[name], kernel)
+    for (let i = 0; i < counts[s]; i++, row++) {
+      const k = 1 + t[i] * (linear + t[i] * square)
+      rows.weight[row] = (k * (w === null ? 1 : w[i])) / h[name]
+      rows.group[row] = fixedEffects ? (group as Int32Array)[i] : 0
+      rows.y[row] = y[i]
+      legendreShifted(order, t[i] / scale, basis)
+      const at = row * columns
+      if (name === 'treated') for (let j = 0; j <= order; j++) rows.design[at + j] = basis[j]
+      else for (let j = 1; j <= order; j++) rows.design[at + order + j] = basis[j]
+      for (let c = 0; c < covariates.length; c++) rows.design[at + 2 * order + 1 + c] = covariates[c][unit[i]]
+    }
+  })
+  return rows
 }

@@ -2,21 +2,22 @@
 import { readFileSync } from 'node:fs'
 import { describe, expect, it } from 'vitest'
 import { seededRandom } from '../../src/math/index.js'
-import { type Absorbed, absorbedLeastSquares } from '../../src/thresholds/absorbed.js'
+import { type Absorbed, absorbedLeastSquares, type Rows } from '../../src/thresholds/absorbed.js'
 
 type Fit = Extract<Absorbed, { ok: true }>
 
+function rowsOf(rows: readonly number[][], y: readonly number[], weights?: readonly number[], groups?: number[]): Rows {
+  return {
+    group: Int32Array.from(rows, (_, i) => groups?.[i] ?? 0),
+    weight: Float64Array.from(rows, (_, i) => weights?.[i] ?? 1),
+    design: Float64Array.from(rows.flat()),
+    y: Float64Array.from(y),
+  }
+}
+
 function fitted(rows: readonly number[][], y: readonly number[], weights?: readonly number[], groups?: number[]): Fit {
   const count = groups ? Math.max(...groups) + 1 : 1
-  const fit = absorbedLeastSquares(
-    (visit) => {
-      rows.forEach((row, i) => {
-        visit(groups?.[i] ?? 0, weights?.[i] ?? 1, Float64Array.from(row), y[i])
-      })
-    },
-    count,
-    rows[0].length,
-  )
+  const fit = absorbedLeastSquares(rowsOf(rows, y, weights, groups), count, rows[0].length)
   if (!fit.ok) throw new Error('dependent columns')
   return fit
 }
@@ -66,15 +67,7 @@ describe('absorbed least squares', () => {
 
   it('refuses columns that depend on one another within groups', () => {
     const rows = [[1], [1], [4], [4]]
-    const fit = absorbedLeastSquares(
-      (visit) => {
-        rows.forEach((row, i) => {
-          visit(i < 2 ? 0 : 1, 1, Float64Array.from(row), i)
-        })
-      },
-      2,
-      1,
-    )
+    const fit = absorbedLeastSquares(rowsOf(rows, [0, 1, 2, 3], undefined, [0, 0, 1, 1]), 2, 1)
     expect(fit).toEqual({ ok: false })
   })
 })
