@@ -164,7 +164,8 @@ export function estimateMain(
 function variancesOf(study: Study, hasClusters: boolean): { lineVariance: Variance; pooledVariance: Variance } {
   const { variance, spatial } = study.estimation
   if (spatial !== undefined) return { lineVariance: 'spatial', pooledVariance: 'spatial' }
-  const byPiece = study.line.kind === 'border' && !hasClusters
+  const { line } = study
+  const byPiece = (line.kind === 'border' || (line.kind === 'distance' && line.pieces)) && !hasClusters
   if (variance === 'few-clusters') return { lineVariance: hasClusters ? variance : 'hc2', pooledVariance: variance }
   if (variance !== undefined && variance !== 'clusters') return { lineVariance: variance, pooledVariance: variance }
   return {

@@ -139,7 +139,7 @@ function resolveBorder(line: z.infer<typeof borderLine>): BorderLine {
 }
 
 function resolveDistance(line: z.infer<typeof distanceLine>): DistanceLine {
-  return { kind: 'distance', distance: line.distance, ...given({ name: line.name }) }
+  return { kind: 'distance', distance: line.distance, ...given({ name: line.name }), pieces: line.pieces ?? false }
 }
 
 function resolveBandwidth(written: NonNullable<NonNullable<WrittenStudy['estimation']>['bandwidth']>): Bandwidth {

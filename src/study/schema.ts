@@ -141,7 +141,7 @@ export const borderLine = keyed({
   repeated_points: repeatedPoints.optional(),
 })
 
-export const distanceLine = keyed({ distance: columnName, name: columnName.optional() })
+export const distanceLine = keyed({ distance: columnName, name: columnName.optional(), pieces: trueOrFalse.optional() })
 
 export const lineForms = { score: scoreLine, zones: borderLine, distance: distanceLine } as const
 export type LineForm = keyof typeof lineForms

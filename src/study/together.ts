@@ -20,7 +20,7 @@ export function togetherProblems(source: Source, file: string): Problem[] {
   const isClustered = estimation.variance === 'clusters' || estimation.variance === 'few-clusters'
   if ((form === 'score' || form === 'distance') && records.crs !== undefined)
     say(['records', 'crs'], ': is for borders only', `line has ${form}`, 'leave it out')
-  if (form !== 'zones' && form !== undefined && isClustered && records.cluster === undefined)
+  if (form !== 'zones' && form !== undefined && line.pieces !== true && isClustered && records.cluster === undefined)
     say(
       ['estimation', 'variance'],
       `: ${estimation.variance} needs a column`,
@@ -51,6 +51,8 @@ export function togetherProblems(source: Source, file: string): Problem[] {
   if (away !== undefined && form !== undefined && form !== 'score')
     say(['away_from_line'], ': is for cutoffs on a score', `line has ${form}`, 'leave it out')
   if (form === 'zones') borderProblems(line, say)
+  if (line.pieces === true && line.name === undefined)
+    say(['line', 'pieces'], ': needs the piece of each unit', 'no line.name', 'name the column in line.name')
   const narrowest = Math.min(...fixedWidths(estimation.bandwidth))
   errorProblem(line, narrowest, say)
   if (typeof estimation.donut === 'number' && estimation.donut >= narrowest)

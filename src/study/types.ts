@@ -136,6 +136,8 @@ export interface DistanceLine {
   readonly distance: string
   /** Column that says which line. */
   readonly name?: string
+  /** Whether the lines are pieces of one border: pooled estimates are then clustered by them, as those of a border are. */
+  readonly pieces: boolean
 }
 
 export type KernelName = 'triangular' | 'epanechnikov' | 'uniform'

@@ -61,7 +61,7 @@ function writtenLine(line: Study['line']): object {
       compare_by: line.compareBy,
       rescale: line.rescale,
     }
-  if (line.kind === 'distance') return { distance: line.distance, name: line.name }
+  if (line.kind === 'distance') return { distance: line.distance, name: line.name, pieces: line.pieces }
   return {
     zones: Object.keys(line.zones).length === 1 ? line.zones.file : line.zones,
     zone_name: line.zoneName,

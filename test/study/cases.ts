@@ -77,13 +77,20 @@ export const goodCases: readonly GoodCase[] = [
       pooling: { fixedEffects: true, target: 'units' },
     },
   },
-  { name: 'ready-made distances', text: distance, gives: { line: { kind: 'distance', distance: 'd' } } },
+  { name: 'ready-made distances', text: distance, gives: { line: { kind: 'distance', distance: 'd', pieces: false } } },
   {
     name: 'distances by line',
     text: distance.replace('d}', 'd, name: piece}'),
     gives: {
-      line: { kind: 'distance', distance: 'd', name: 'piece' },
+      line: { kind: 'distance', distance: 'd', name: 'piece', pieces: false },
       pooling: { fixedEffects: false, target: 'units' },
+    },
+  },
+  {
+    name: 'distances to the pieces of a border, clustered by piece',
+    text: `${distance.replace('d}', 'd, name: piece, pieces: true}')}estimation: {variance: few-clusters}\n`,
+    gives: {
+      line: { kind: 'distance', distance: 'd', name: 'piece', pieces: true },
     },
   },
   {
@@ -347,6 +354,11 @@ pooling:
     problems: [
       '4: line: mixes score and zones: got {"score":"s","cutoff":10,"treated":"below","zones":"z.geo...; keep one of them, and one study for each',
     ],
+  },
+  {
+    name: 'pieces without their names',
+    text: distance.replace('d}', 'd, pieces: true}'),
+    problems: ['3: line.pieces: needs the piece of each unit: no line.name; name the column in line.name'],
   },
   {
     name: 'two lines',
