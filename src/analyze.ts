@@ -32,6 +32,7 @@ export { positionColumns, readingKey } from './analysis/inputs.js'
 export type { Placed } from './analysis/placing.js'
 export { planFromAssumptions, planFromRecords } from './analysis/planning.js'
 export type { Run } from './analysis/runDifferences.js'
+export { type UnitsApart, unitsApart } from './analysis/unitsApart.js'
 export { placeStudy, wantedColumns }
 
 export interface AnalysisContext {

@@ -88,7 +88,8 @@ function hashOfLines(lines: Lines): string {
   return createHash('sha256').update(JSON.stringify(lines)).digest('hex')
 }
 
-async function hashOfFile(path: string): Promise<string> {
+/** SHA-256, hexadecimal. */
+export async function hashOfFile(path: string): Promise<string> {
   const hash = createHash('sha256')
   for await (const chunk of createReadStream(path)) hash.update(chunk as Uint8Array)
   return hash.digest('hex')

@@ -24,9 +24,13 @@ export interface StudyFile {
 
 export async function readStudyFile(file: string): Promise<Checked<StudyFile>> {
   const text = await readTextFile(file, { shownAs: file, askedBy: 'study', mostBytes: mostStudyBytes })
-  if (!text.ok) return text
+  return text.ok ? studyFileOf(text.value.text, file) : text
+}
+
+/** A study from its text; paths in it are relative to `file`, whether or not that is there. */
+export async function studyFileOf(text: string, file: string): Promise<Checked<StudyFile>> {
   const { readStudy } = await import('../study/index.js')
-  const study = readStudy(text.value.text, file)
+  const study = readStudy(text, file)
   if (!study.ok) return study
   const studies = [study.value, ...study.value.variants.map((variant) => variant.study)]
   const pathsOf = (files: (study: Study) => string[]) => [

@@ -27,18 +27,38 @@ export const resultNames: ReadonlySet<string> = new Set([
   'figures',
 ])
 
-/** `<folder>-results` for a file called study, `<file without extension>-results` for any other; in the working directory. */
-export function defaultOutFolder(studyFile: string): string {
-  const path = resolve(studyFile)
-  const stem = basename(path, extname(path))
-  return `${stem === 'study' ? basename(dirname(path)) || 'study' : stem}-results`
+/** A kind of folder that this program writes as a whole. */
+export interface FolderKind {
+  /** In messages. */
+  readonly name: string
+  readonly holding: string
+  /** Everything at its top. */
+  readonly names: ReadonlySet<string>
+  /** The file that tells it, and how that begins. */
+  readonly marker: string
+  readonly begins: RegExp
 }
 
-/** Why `out` can't be the results folder of a study that reads `inputs` (absolute paths); empty where it can. */
-export function outFolderProblems(out: string, inputs: readonly string[]): Problem[] {
+const resultsKind: FolderKind = {
+  name: 'results folder',
+  holding: 'earlier results',
+  names: resultNames,
+  marker: 'results.json',
+  begins: /^\s*\{\s*"format":\s*"scarp-results\/\d+"/,
+}
+
+/** `<folder>-ENDING` for a file called study, `<file without extension>-ENDING` for any other; in the working directory. */
+export function defaultOutFolder(studyFile: string, ending = 'results'): string {
+  const path = resolve(studyFile)
+  const stem = basename(path, extname(path))
+  return `${stem === 'study' ? basename(dirname(path)) || 'study' : stem}-${ending}`
+}
+
+/** Why `out` can't be the folder of a study that reads `inputs` (absolute paths); empty where it can. */
+export function outFolderProblems(out: string, inputs: readonly string[], kind = resultsKind): Problem[] {
   const path = realPath(resolve(out))
   const refuse = (found: string, todo = 'choose another folder with --out'): Problem[] => [
-    { file: out, what: 'results folder', found, todo },
+    { file: out, what: kind.name, found, todo },
   ]
   const held = inputs.find((input) => isInside(realPath(input), path))
   if (held !== undefined) return refuse(`it holds a file of the study (${basename(held)})`)
@@ -47,11 +67,11 @@ export function outFolderProblems(out: string, inputs: readonly string[]): Probl
   if (facts !== undefined && !facts.isDirectory()) return refuse('it is a file')
   if (facts !== undefined) {
     const names = readdirSync(path)
-    if (names.length > 0 && !isResultsFolder(path)) return refuse('it holds files, and not earlier results')
-    const own = names.filter((name) => !resultNames.has(name))
+    if (names.length > 0 && !isOfKind(path, kind)) return refuse(`it holds files, and not ${kind.holding}`)
+    const own = names.filter((name) => !kind.names.has(name))
     if (own.length > 0)
       return refuse(
-        `beside earlier results it holds ${own.slice(0, 3).join(', ')}`,
+        `beside ${kind.holding} it holds ${own.slice(0, 3).join(', ')}`,
         'move that away, or choose another --out',
       )
   }
@@ -98,15 +118,15 @@ function isWritable(folder: string): boolean {
   }
 }
 
-/** True if the folder's results.json begins as ours does. */
-function isResultsFolder(folder: string): boolean {
-  const file = join(folder, 'results.json')
+/** True if the folder's marker begins as ours does. */
+function isOfKind(folder: string, { marker, begins }: FolderKind): boolean {
+  const file = join(folder, marker)
   if (!factsOf(file)?.isFile()) return false
   const head = new Uint8Array(200)
   const descriptor = openSync(file, 'r')
   try {
     const length = readSync(descriptor, head)
-    return /^\s*\{\s*"format":\s*"scarp-results\/\d+"/.test(new TextDecoder().decode(head.subarray(0, length)))
+    return begins.test(new TextDecoder().decode(head.subarray(0, length)))
   } finally {
     closeSync(descriptor)
   }

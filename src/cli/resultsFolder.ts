@@ -13,7 +13,7 @@ import { basename, dirname, join, resolve } from 'node:path'
 import { factsOf, realPath } from './outFolder.js'
 
 /** Writes one file of the results; `path` is relative, with forward slashes. Parts are written one after another. */
-export type WriteFile = (path: string, parts: Iterable<string>) => Promise<void>
+export type WriteFile = (path: string, parts: Iterable<string | Uint8Array>) => Promise<void>
 
 /** Puts what `fill` writes at `target`, in place of what is there. Fails as a whole or not at all. */
 export async function writeResultsFolder(target: string, fill: (write: WriteFile) => Promise<void>): Promise<void> {
@@ -28,7 +28,7 @@ export async function writeResultsFolder(target: string, fill: (write: WriteFile
     const folders = new Set([stage])
     await fill(async (file, parts) => {
       const full = join(stage, file)
-      await mkdir(dirname(full), { recursive: true })
+      if (!folders.has(dirname(full))) await mkdir(dirname(full), { recursive: true })
       folders.add(dirname(full))
       await writeFlushed(full, parts)
     })
@@ -93,10 +93,10 @@ function exchange(stage: string, path: string): void {
   rmSync(stage, { recursive: true, force: true })
 }
 
-async function writeFlushed(file: string, parts: Iterable<string>): Promise<void> {
+async function writeFlushed(file: string, parts: Iterable<string | Uint8Array>): Promise<void> {
   const handle = await open(file, 'wx')
   try {
-    for (const part of parts) await handle.write(part)
+    for (const part of parts) await handle.writeFile(part)
     await handle.sync()
   } finally {
     await handle.close()

@@ -7,6 +7,12 @@ export function resultsJson(results: Results): string {
   return `${JSON.stringify(results, null, 2)}\n`
 }
 
+/** The same of any plain data, on one line: reading it gives equal data. */
+export function plainJson(data: object): string {
+  checkPlain(data, 'data')
+  return `${JSON.stringify(data)}\n`
+}
+
 function checkPlain(value: unknown, place: string): void {
   if (typeof value === 'number' && !Number.isFinite(value)) throw new RangeError(`${place} is ${value}`)
   if (typeof value !== 'object' || value === null) return

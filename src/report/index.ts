@@ -21,8 +21,10 @@ import { variantTable } from './variantTable.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View, viewOf } from './view.js'
 
 export { comparedLines } from './comparedText.js'
+export { exhibitsOf } from './exhibitList.js'
 export type { ReportInput } from './input.js'
 export { planLines } from './planText.js'
+export { type ReplicationFacts, replicationReadme } from './replicationReadme.js'
 export { geometryWords, summaryLines } from './summary.js'
 
 const mostLineFigures = 200
