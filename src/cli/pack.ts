@@ -87,13 +87,14 @@ export async function readManifest(folder: string): Promise<Checked<Manifest>> {
 
 /** What is not as it was: files that a rebuild needs and that changed or are gone. */
 export async function changedFiles(folder: string, { files }: Manifest): Promise<Problem[]> {
-  const asked = files.filter(({ file }) => !ofTheAuthor.has(file))
-  const found = await Promise.all(asked.map(({ file, sha256 }) => changeOf(join(folder, file), sha256)))
-  return found.flatMap((change, i): Problem[] => {
-    if (change === undefined) return []
+  const problems: Problem[] = []
+  // one after another: a folder may hold more files than can be open at once
+  for (const { file, sha256 } of files) {
+    const found = ofTheAuthor.has(file) ? undefined : await changeOf(join(folder, file), sha256)
     const todo = 'take the folder anew from where it was deposited'
-    return [{ file: join(folder, asked[i].file), what: 'replication', found: change, todo }]
-  })
+    if (found !== undefined) problems.push({ file: join(folder, file), what: 'replication', found, todo })
+  }
+  return problems
 }
 
 /** In words; undefined where the file has that hash. */

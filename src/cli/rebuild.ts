@@ -89,18 +89,14 @@ async function differences(out: string, folder: string, { files, version }: Mani
       : `it was made by scarp ${version}, and this is ${now}: take that version`
   const problem = (file: string, found: string): Problem => ({ file: join(out, file), what: 'rebuilt', found, todo })
   const made = filesUnder(out)
-  const compared = await Promise.all(
-    made.map(async (file) => {
-      const sha256 = published.get(file)
-      if (sha256 === undefined) return problem(file, 'no such file was published')
-      return (await changeOf(join(out, file), sha256)) && problem(file, 'it differs from the published file')
-    }),
-  )
+  const problems: Problem[] = []
+  for (const file of made) {
+    const sha256 = published.get(file)
+    if (sha256 === undefined) problems.push(problem(file, 'no such file was published'))
+    else if (await changeOf(join(out, file), sha256)) problems.push(problem(file, 'it differs from the published file'))
+  }
   const gone = [...published.keys()].filter((file) => !made.includes(file))
-  return [
-    ...compared.filter((one): one is Problem => typeof one === 'object'),
-    ...gone.map((file) => problem(file, 'it was published, and was not made again')),
-  ]
+  return [...problems, ...gone.map((file) => problem(file, 'it was published, and was not made again'))]
 }
 
 function sameWords(out: string, { files }: Manifest, different: number): string {

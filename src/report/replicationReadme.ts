@@ -98,13 +98,16 @@ function requirements({ results, machine, inputs }: ReplicationFacts): string[] 
   ]
 }
 
-function contents({ study, units, hasInputs }: ReplicationFacts): string[] {
+function contents({ results, study, units, hasInputs }: ReplicationFacts): string[] {
   return [
     [
       '| Path | Holds |',
       '| :--- | :--- |',
       `| \`${study}\` | the study as given${hasInputs ? ', beside the files it reads' : '; the files it reads belong beside it'} |`,
       '| `results/` | every exhibit and number as published; `results/study.resolved.yaml` is the study with every default filled in |',
+      ...(results.border
+        ? ['| `results/borders.geojson` | the geometry as it was used: every piece of border, in use or set aside |']
+        : []),
       '| `drawn.json` | what figures and maps are drawn from beside the numbers: binned means and the geometry as drawn |',
       ...(units ? ['| `units/` | the units without coordinates and ids, and the study that reads them |'] : []),
       '| `replication.json` | versions, seed, and the SHA-256 of every input and every file here |',
