@@ -87,3 +87,11 @@ function known(path: string): string {
   if (!resultNames.has(top)) throw new Error(`${path} is not a file of the results folder`)
   return path
 }
+
+/** Why no outcome has an estimate, pooled or at any line; undefined where one has. */
+export function whyNothing(results: Results): string | undefined {
+  const jumps = results.outcomes.flatMap((outcome) => [outcome.pooled, ...outcome.lines])
+  if (jumps.some((jump) => !('not_estimated' in jump))) return undefined
+  const [first] = jumps
+  return first !== undefined && 'not_estimated' in first ? first.not_estimated : 'no unit is placed against a line'
+}

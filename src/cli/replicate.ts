@@ -6,13 +6,13 @@ import type { Problem } from '../problem.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
 import { hashOfFile } from './frozen.js'
 import { readStudyFile, type StudyFile } from './inputs.js'
-import { analyzeStudy, type Job, readAllInputs } from './job.js'
+import { analyzeStudy, type Job, readAllInputs, whyNothing } from './job.js'
 import { defaultOutFolder, factsOf, outFolderProblems } from './outFolder.js'
 import { type Manifest, ownFiles, packKind } from './pack.js'
 import { writePack } from './packFiles.js'
 import { progressLine } from './progress.js'
 import { mendResultsFolder, writeResultsFolder } from './resultsFolder.js'
-import { sayProblems } from './say.js'
+import { say, sayProblems } from './say.js'
 
 export interface ReplicateOptions {
   readonly out?: string
@@ -55,7 +55,10 @@ export async function replicate(file: string, options: ReplicateOptions): Promis
   const hasInputs = options.withInputs === true
   await writeResultsFolder(out, (write) => writePack(write, { from, job: job.value, apart, inputs: names, hasInputs }))
   if (!options.quiet) process.stdout.write(`${said(out, job.value, apart, options).join('\n')}\n`)
-  return exitCodes.done
+  const reason = whyNothing(job.value.analysis.results)
+  if (reason === undefined) return exitCodes.done
+  say(`${file}: nothing can be estimated: ${reason}; see ${out}`)
+  return exitCodes.nothingEstimated
 }
 
 function refuse(problems: readonly Problem[]): ExitCode {

@@ -1,8 +1,7 @@
 /** `scarp run`: the whole job, from a study file to a results folder. */
-import type { Results } from '../results.js'
 import { type ExitCode, exitCodes } from './exitCodes.js'
 import { readStudyFile } from './inputs.js'
-import { analyzeStudy, readAllInputs, writeDrawn, writeUnits } from './job.js'
+import { analyzeStudy, readAllInputs, whyNothing, writeDrawn, writeUnits } from './job.js'
 import { defaultOutFolder, outFolderProblems } from './outFolder.js'
 import { progressLine } from './progress.js'
 import { mendResultsFolder, writeResultsFolder } from './resultsFolder.js'
@@ -59,12 +58,4 @@ export async function run(file: string, options: RunOptions): Promise<ExitCode> 
 function refuse(problems: Parameters<typeof sayProblems>[0]): ExitCode {
   sayProblems(problems)
   return exitCodes.unusable
-}
-
-/** Why no outcome has an estimate, pooled or at any line; undefined where one has. */
-function whyNothing(results: Results): string | undefined {
-  const jumps = results.outcomes.flatMap((outcome) => [outcome.pooled, ...outcome.lines])
-  if (jumps.some((jump) => !('not_estimated' in jump))) return undefined
-  const [first] = jumps
-  return first !== undefined && 'not_estimated' in first ? first.not_estimated : 'no unit is placed against a line'
 }

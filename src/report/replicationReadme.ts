@@ -89,7 +89,7 @@ function requirements({ results, machine, inputs }: ReplicationFacts): string[] 
   const megabytes = Math.ceil(inputs.reduce((sum, { bytes }) => sum + bytes, 0) / 1e6)
   return [
     [
-      `- Software: scarp ${results.version} on Node.js ${machine.node.replace(/^v/, '')}; no other program and no network.`,
+      `- Software: scarp ${results.version} on Node.js ${machine.node.replace(/^v/, '')}; no other program and no network. ${author('where this version can be had, or put it beside this folder')}`,
       `- Randomness: every draw follows from the seed ${results.seed} of the study; the same study, data and seed give the same bytes.`,
       `- Time: ${results.seconds.toFixed(1)} seconds to the numbers, on ${machine.system} with ${machine.cores} cores and ${machine.memoryGigabytes} GB of memory.`,
       `- Memory: ${count(machine.peakMegabytes)} MB at most. Inputs: ${megabytes} MB.`,

@@ -62,10 +62,11 @@ describe.each(['quillhaven', 'hedgerows'])('the replication folder of %s', (name
   })
 
   it('has units that give the estimates by themselves', async () => {
-    const said = await scarp(['run', join(folder, 'units', 'study.yaml'), '--out', `${name}-units`, '--quiet'], {
-      cwd: room,
-    })
-    expect(said).toEqual({ code: 0, stdout: '', stderr: '' })
+    cpSync(join(room, folder, 'units'), join(room, `${name}-alone`), { recursive: true })
+    const study = text(`${name}-alone`, 'study.yaml').replace('checks: standard', 'checks: none')
+    writeFileSync(join(room, `${name}-alone`, 'study.yaml'), study)
+    const words = ['run', `${name}-alone/study.yaml`, '--out', `${name}-units`, '--quiet']
+    expect(await scarp(words, { cwd: room })).toEqual({ code: 0, stdout: '', stderr: '' })
     pooled(`${name}-units`).forEach((jump, i) => {
       const { corrected } = pooled(folder, 'results')[i]
       // sums over clusters in another order: 1e-12 is some hundred roundings
@@ -240,6 +241,15 @@ describe('a replication folder', () => {
     expect(said.stderr).toMatch(
       /--with-inputs: \.\.\/stale\/units\/schedule\.csv lies outside the folder of the study; /,
     )
+  })
+
+  it('of a study without any estimate is made all the same, and says so', async () => {
+    const few = { ...scoreStudy(), 'households.csv': 'household,income,spending\na,10,1\nb,60,2\n' }
+    writeFiles(join(room, 'few'), few)
+    const said = await scarp(['replicate', 'few/study.yaml', '--quiet'], { cwd: room })
+    expect(said).toMatchObject({ code: 3, stdout: '' })
+    expect(said.stderr).toMatch(/^few\/study\.yaml: nothing can be estimated: .*; see few-replication\n$/)
+    expect(await rebuild('few-replication')).toMatchObject({ code: 0, stderr: '' })
   })
 
   it.each([
