@@ -14,7 +14,7 @@ export interface ClusteredSpread {
   readonly degreesOfFreedom: number
   /** Of the kind that has fewer, where two cross. */
   readonly clusters: number
-  readonly effectiveClusters: number
+  readonly effectiveClusters: () => number
 }
 
 /** From l and l times the residual, by side; two-way with `crossed`. A string is the reason why there is none. */
@@ -45,9 +45,10 @@ export function clusteredSpread(
     influence: crossed ? { ...byCode, crossed: { first, second } } : byCode,
     degreesOfFreedom: clusters - 1,
     clusters,
-    effectiveClusters: crossed
-      ? Math.min(...kinds.map((kind) => effectiveClusters(weights, codes, kind)))
-      : effectiveClusters(weights, codes),
+    effectiveClusters: () =>
+      crossed
+        ? Math.min(...kinds.map((kind) => effectiveClusters(weights, codes, kind)))
+        : effectiveClusters(weights, codes),
   }
 }
 
@@ -63,7 +64,7 @@ export function fewClustersSpread(
   if (typeof reduced === 'string') return reduced
   if (reduced.clusters < 2) return 'only 1 cluster near the line, a clustered variance needs 2'
   const codes = windows.map(({ side }) => side.cluster as Int32Array)
-  return { ...reduced, estimate: joint.estimate, effectiveClusters: effectiveClusters(joint.weights, codes) }
+  return { ...reduced, estimate: joint.estimate, effectiveClusters: () => effectiveClusters(joint.weights, codes) }
 }
 
 function clustersWithin(windows: readonly SideWindow[]): Int32Array {

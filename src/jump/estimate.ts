@@ -90,7 +90,7 @@ export function jumpAt(
       influence: corrected.influence,
       plainInfluence: plain.influence,
       clusters: corrected.clusters,
-      effectiveClusters: corrected.effectiveClusters,
+      effectiveClusters: corrected.effectiveClusters?.(),
       distinct: {
         untreated: distinctWithin(left.side.t, left.main.count, 10),
         treated: distinctWithin(right.side.t, right.main.count, 10),

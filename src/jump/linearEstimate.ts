@@ -37,7 +37,8 @@ export interface LinearEstimate {
   readonly inference: Inference
   readonly influence: Influence
   readonly clusters?: number
-  readonly effectiveClusters?: number
+  /** Worked out when it is asked for. */
+  readonly effectiveClusters?: () => number
 }
 
 /** From the untreated and the treated part; a string is the reason why there is no standard error. */
