@@ -16,7 +16,7 @@ import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/in
 import { movedCutoffs } from './analysis/movedCutoffs.js'
 import { type Placed, placeStudy } from './analysis/placing.js'
 import { sharedUnits } from './analysis/sharedUnits.js'
-import { attributeOfLines, sharesOfLines } from './analysis/shares.js'
+import { attributeOfLines, doubtfulShares, sharesOfLines } from './analysis/shares.js'
 import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
 import { placeVariants, variantResults } from './analysis/variants.js'
 import { linesOfLayer, readLineLayer } from './borders/index.js'
@@ -33,7 +33,7 @@ export type { Placed } from './analysis/placing.js'
 export { planFromAssumptions, planFromRecords } from './analysis/planning.js'
 export type { Run } from './analysis/runDifferences.js'
 export { type UnitsApart, unitsApart } from './analysis/unitsApart.js'
-export { placeStudy, wantedColumns }
+export { doubtfulShares, placeStudy, sharesOfLines, wantedColumns }
 
 export interface AnalysisContext {
   /** Version of the program, for the record. */
@@ -64,7 +64,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
   study.outcomes.forEach((outcome, i) => {
     const entries = entriesOf(study, inputs.table, placed.value, outcome)
     const total = study.outcomes.length * placement.lines.length
-    const estimates = estimateOutcome(study, placed.value, entries, shares.value, (done) =>
+    const estimates = estimateOutcome(study, placed.value, entries, shares.value?.values, (done) =>
       context.progress?.('estimating', i * placement.lines.length + done, total),
     )
     ledger.push(...outcomeSteps(outcome, placed.value.units, entries, estimates))
@@ -120,6 +120,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
         },
         lines: lineSummaries(placement, used),
         ...(hasBorder(placed.value) ? { border: borderResult(placed.value) } : {}),
+        ...(shares.value ? { target_population: shares.value.population } : {}),
         ...(audit ? { audit } : {}),
         ...(shared ? { shared_units: shared } : {}),
         outcomes,

@@ -20,6 +20,8 @@ export interface Results {
   readonly lines: readonly LineSummary[]
   /** Border studies. */
   readonly border?: BorderResult
+  /** Where the target is by stated shares. */
+  readonly target_population?: TargetPopulation
   /** Lines at which a column breaks elsewhere than said; where the study asks for it. */
   readonly audit?: CutoffAudit
   /** Lines that share units; absent where none does. */
@@ -230,9 +232,23 @@ export interface Interval {
   readonly high: number
 }
 
+/** Whose average a target by stated shares is. */
+export interface TargetPopulation {
+  /** The column of shares. */
+  readonly name: string
+  readonly file: string
+  /** Sum of the lines' shares. */
+  readonly total: number
+  /** Rows of a file of shares for no line of the study, and what they hold together; absent where none is. */
+  readonly rows_passed_over?: number
+  readonly passed_over?: number
+}
+
 export type Target =
   | ({
       readonly kind: string
+      /** Of all shares, the part at the lines estimated; where the target is by stated shares. */
+      readonly covers?: number
       readonly estimate: number
       readonly standard_error: number
       readonly p: number

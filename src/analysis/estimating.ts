@@ -23,7 +23,7 @@ import {
   type Variance,
   withOutcomes,
 } from '../jump/index.js'
-import { streamOf } from '../math/index.js'
+import { streamOf, sum } from '../math/index.js'
 import type { EstimationPart, Study } from '../study/index.js'
 import {
   compareLines,
@@ -96,6 +96,8 @@ export interface OutcomeEstimates {
   readonly compared: readonly number[]
   readonly effects: LineEffects
   readonly target: ReturnType<typeof targetEffect>
+  /** Of all stated shares, the part at `compared` lines. */
+  readonly targetCovers?: number
   readonly comparison: ReturnType<typeof compareLines>
 }
 
@@ -107,7 +109,7 @@ export function hasReason<T extends object>(value: OrReason<T>): value is NoEsti
 export type MainEstimates = Omit<OutcomeEstimates, 'comparison' | 'effects'>
 export type MainWithEffects = MainEstimates & Pick<OutcomeEstimates, 'effects'>
 
-/** Estimates one outcome; `shares` are the target's weights by line where the study gives a column. */
+/** Estimates one outcome; `shares` are the target's weights by line where the study states them. */
 export function estimateOutcome(
   study: Study,
   placed: Placed,
@@ -153,6 +155,7 @@ export function estimateMain(
     notes: snapNotes(study, [...lines, pooled]),
     compared: index,
     target,
+    ...(shares ? { targetCovers: sum(index.map((i) => shares[i])) / sum(shares) } : {}),
     effects,
   }
 }

@@ -28,7 +28,12 @@ export function planFromRecords(study: Study, inputs: AnalysisInputs, progress?:
   const shares = sharesOfLines(study, inputs, placed.value.placement)
   if (!shares.ok) return shares
   const rows = study.outcomes.flatMap((outcome) => {
-    const made = estimateMain(study, placed.value, entriesOf(study, inputs.table, placed.value, outcome), shares.value)
+    const made = estimateMain(
+      study,
+      placed.value,
+      entriesOf(study, inputs.table, placed.value, outcome),
+      shares.value?.values,
+    )
     const alone = made.lines.map((line, i) => rowOf(study, outcome, lines[i].label, line))
     return lines.length > 1 ? [rowOf(study, outcome, 'pooled', made.pooled), ...alone] : alone
   })

@@ -1,22 +1,58 @@
 /** Pooling shares: one number per line, from a column of the schedule or of the records, or from a file of their own. */
+import { sum } from '../math/index.js'
 import type { Placement } from '../placement.js'
-import type { Checked, Problem } from '../problem.js'
+import type { Checked } from '../problem.js'
 import { labelsOf, numbersOf, type Table } from '../records/index.js'
-import type { SharesFile, Study } from '../study/index.js'
+import type { TargetPopulation } from '../results.js'
+import type { Study } from '../study/index.js'
 import { scheduleKey } from '../thresholds/index.js'
 import type { AnalysisInputs } from './inputs.js'
+import { readShares, type SharesRead } from './sharesOfFile.js'
+
+/** The lines' shares of a stated target. */
+export interface Shares {
+  /** By line, 0 or more, of a sum above 0. */
+  readonly values: Float64Array
+  /** Whose they are. */
+  readonly population: TargetPopulation
+}
 
 /** The share of each line; undefined where the target needs none. Lines whose units disagree, or have none, are problems. */
-export function sharesOfLines(
-  study: Study,
-  inputs: AnalysisInputs,
-  placement: Placement,
-): Checked<Float64Array | undefined> {
+export function sharesOfLines(study: Study, inputs: AnalysisInputs, placement: Placement): Checked<Shares | undefined> {
   const { target } = study.pooling
   if (typeof target !== 'object') return { ok: true, value: undefined }
-  if ('shares' in target) return sharesOfFile(target, inputs, placement)
-  const { file, values: shares, second } = valuesOfLines(study, inputs, placement, target.column)
-  const what = `pooling.target.column: ${target.column}`
+  const read =
+    'shares' in target
+      ? readShares(target, inputs, placement.lines)
+      : sharesOfColumn(study, target.column, inputs, placement)
+  if (!read.ok) return read
+  const { file, name, shares, entries } = read.value
+  const total = sum(shares)
+  if (!(total > 0) && shares.length > 0) {
+    const todo = 'give at least one line a share above 0'
+    return { ok: false, problems: [{ file, what: `${name}: shares of the lines`, found: 'all are 0', todo }] }
+  }
+  const others = entries.filter(({ line }) => line === undefined).map(({ share }) => share)
+  const passed = others.length > 0 ? { rows_passed_over: others.length, passed_over: sum(others) } : {}
+  return { ok: true, value: { values: shares, population: { name, file, total, ...passed } } }
+}
+
+/** What is doubtful about the shares: rows for lines that the study has not. */
+export function doubtfulShares({ population }: Shares): string[] {
+  const { name, file, total, rows_passed_over: rows, passed_over: passed } = population
+  if (rows === undefined || passed === undefined) return []
+  const percent = Math.round((100 * passed) / (total + passed))
+  return [`${rows} ${rows === 1 ? 'row' : 'rows'} of ${file} for no line of the study: ${percent}% of all ${name}`]
+}
+
+function sharesOfColumn(
+  study: Study,
+  column: string,
+  inputs: AnalysisInputs,
+  placement: Placement,
+): Checked<SharesRead> {
+  const { file, values: shares, second } = valuesOfLines(study, inputs, placement, column)
+  const what = `pooling.target.column: ${column}`
   const problems = [...second].map(([line, value]) => ({
     file,
     what,
@@ -28,45 +64,8 @@ export function sharesOfLines(
     const found = Number.isNaN(shares[i]) ? `no value on line ${line.label}` : `${shares[i]} on line ${line.label}`
     problems.push({ file, what, found, todo: 'give every line a share of 0 or more' })
   })
-  return problems.length > 0 ? { ok: false, problems } : { ok: true, value: shares }
-}
-
-/** Rows that name no line of the study are problems too: a name written otherwise would be lost. */
-function sharesOfFile(
-  { line: lineColumn, value: valueColumn }: SharesFile,
-  { shares: table }: AnalysisInputs,
-  { lines }: Placement,
-): Checked<Float64Array> {
-  if (!table) throw new Error('the study has a file of shares, but none was read')
-  const { file, lineOfRow } = table
-  const names = labelsOf(table, lineColumn)
-  const values = numbersOf(table, valueColumn)
-  const known = new Map(lines.flatMap(({ id, label }, i) => [[label, i] as const, [id, i] as const]))
-  const rowOf = new Map<number, number>()
-  const problems: Problem[] = []
-  const refuse = (row: number, what: string, found: string, todo: string) =>
-    problems.push({ file, line: lineOfRow[row], what, found, todo })
-  for (let row = 0; row < table.rows; row++) {
-    const name = names.codes[row] < 0 ? '' : names.labels[names.codes[row]]
-    const line = known.get(name)
-    if (line === undefined)
-      refuse(row, `${lineColumn}: no line of the study`, name, `write ${lines[0]?.id ?? 'a line'}`)
-    else if (rowOf.has(line)) refuse(row, `${lineColumn}: line given twice`, name, 'keep one of the rows')
-    else rowOf.set(line, row)
-    if (values[row] >= 0 && values[row] < Number.POSITIVE_INFINITY) continue
-    const found = Number.isNaN(values[row]) ? 'an empty cell' : String(values[row])
-    refuse(row, `${valueColumn}: must be 0 or more`, found, 'give every line a share of 0 or more')
-  }
-  const missing = lines.filter((_, i) => !rowOf.has(i))
-  for (const { id } of missing)
-    problems.push({
-      file,
-      what: `${lineColumn}: no row for a line of the study`,
-      found: id,
-      todo: 'give it a share, 0 to leave it out',
-    })
   if (problems.length > 0) return { ok: false, problems }
-  return { ok: true, value: Float64Array.from(lines, (_, i) => values[rowOf.get(i) as number]) }
+  return { ok: true, value: { file, name: column, shares, entries: [] } }
 }
 
 /** What the study relates effects to: a column with one value a line, or the cutoffs where they differ. NaN where unknown. */

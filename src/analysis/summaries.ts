@@ -70,11 +70,12 @@ export function pooledResult(estimates: MainEstimates, estimation: EstimationPar
 }
 
 export function targetResult(estimates: MainEstimates, lines: readonly Line[]): Target {
-  const { target } = estimates
+  const { target, targetCovers: covers } = estimates
   if (!target.ok) return { not_estimated: target.reason }
   const compared = estimates.compared.map((i) => lines[i])
   return {
     kind: target.kind,
+    ...(covers === undefined ? {} : { covers }),
     estimate: target.estimate,
     standard_error: target.standardError,
     low: target.low,

@@ -4,11 +4,12 @@
  * out, clusters and ids that occur again become numbers, and rows are put in an order that is not the file's.
  */
 import { argsort } from '../math/index.js'
-import { type Column, labelsOf, numbersOf, type Table } from '../records/index.js'
-import type { UnitRows } from '../results.js'
+import { type Column, numbersOf, type Table } from '../records/index.js'
+import type { LineSummary, UnitRows } from '../results.js'
 import type { Study } from '../study/index.js'
 import { columnsApart, freeName, hiddenColumns, pointsOf, unitsFile } from './apartColumns.js'
 import { type AnalysisInputs, readingKey } from './inputs.js'
+import { readShares } from './sharesOfFile.js'
 
 export interface UnitsApart {
   /** Reads the tables by their names. */
@@ -27,7 +28,7 @@ export interface UnitsApart {
 const scheduleFile = 'schedule.csv'
 const sharesFile = 'shares.csv'
 
-type Named = readonly { readonly line: string; readonly label: string }[]
+type Named = readonly LineSummary[]
 
 /** `units`: as the study places them, against `lines`. */
 export function unitsApart(study: Study, inputs: AnalysisInputs, units: UnitRows, lines: Named): UnitsApart {
@@ -96,10 +97,12 @@ function apartByScore(study: Study, inputs: AnalysisInputs): Apart {
   }
 }
 
-function withShares(study: Study): Study {
+/** `columns`: how many of those that name a line are kept; absent: all. */
+function withShares(study: Study, columns?: number): Study {
   const { target } = study.pooling
   if (typeof target !== 'object' || !('shares' in target)) return study
-  return { ...study, pooling: { ...study.pooling, target: { ...target, shares: sharesFile } } }
+  const line = target.line.slice(0, columns)
+  return { ...study, pooling: { ...study.pooling, target: { ...target, shares: sharesFile, line } } }
 }
 
 function apartOnGround(study: Study, inputs: AnalysisInputs, units: UnitRows, lines: Named): Apart {
@@ -117,7 +120,7 @@ function apartOnGround(study: Study, inputs: AnalysisInputs, units: UnitRows, li
   const { spatial: _, ...estimation } = study.estimation
   return {
     study: {
-      ...withShares(study),
+      ...withShares(study, 1),
       records: points ? { ...records, cluster: points.name } : records,
       line: { kind: 'distance', distance: x, name: line, pieces: true },
       estimation,
@@ -139,17 +142,20 @@ function tableOf(columns: readonly Column[], rows: number): Table {
   }
 }
 
-/** The shares of lines, which are named by their ids or labels, under the numbers that the lines have. */
+/** The shares of lines under the numbers that the lines have; rows for other lines have the numbers after those. */
 function numberedShares({ pooling }: Study, { shares }: AnalysisInputs, lines: Named): Table[] {
   const { target } = pooling
   if (!shares || typeof target !== 'object' || !('shares' in target)) return []
-  const { codes, labels } = labelsOf(shares, target.line)
-  const numberOf = new Map(lines.flatMap(({ line, label }, i) => [[label, i + 1] as const, [line, i + 1] as const]))
-  const numbers = Float64Array.from(codes, (code) => numberOf.get(labels[code]) ?? Number.NaN)
-  const values = shares.columns.get(target.value) as Column
-  const columns: [string, Column][] = [
-    [target.line, { kind: 'number', name: target.line, values: numbers }],
-    [target.value, values],
+  const named = lines.map(({ line, label, zones, length_m }) => ({ id: line, label, zones, lengthMetres: length_m }))
+  const read = readShares(target, { shares }, named)
+  if (!read.ok) throw new Error('the shares of the lines could be read before')
+  const { entries } = read.value
+  let others = lines.length
+  const numbers = Float64Array.from(entries, ({ line }) => (line === undefined ? ++others : line + 1))
+  const [name] = target.line
+  const columns: Column[] = [
+    { kind: 'number', name, values: numbers },
+    { kind: 'number', name: target.value, values: Float64Array.from(entries, ({ share }) => share) },
   ]
-  return [{ ...shares, file: sharesFile, columns: new Map(columns) }]
+  return [{ ...tableOf(columns, entries.length), file: sharesFile }]
 }

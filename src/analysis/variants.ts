@@ -102,7 +102,7 @@ function placeVariant(
   if (!placed.ok) return placed
   const shares = sharesOfLines(study, inputs, placed.value.placement)
   if (!shares.ok) return shares
-  return { ok: true, value: { name, study, inputs, placed: placed.value, shares: shares.value } }
+  return { ok: true, value: { name, study, inputs, placed: placed.value, shares: shares.value?.values } }
 }
 
 /** Equal where two studies of the same files have the same numbers. */

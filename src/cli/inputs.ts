@@ -123,7 +123,7 @@ async function readParts({ study, file }: StudyFile, { all }: ReadOptions, probl
       ? keep(
           await readTable(at(target.shares), {
             wanted: [
-              { name: target.line, kind: 'label', askedBy: 'pooling.target.line' },
+              ...target.line.map((name) => ({ name, kind: 'label' as const, askedBy: 'pooling.target.line' })),
               { name: target.value, kind: 'number', askedBy: 'pooling.target.value' },
             ],
             shownAs: target.shares,

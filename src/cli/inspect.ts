@@ -29,29 +29,37 @@ export async function inspect(file: string, options: InspectOptions = {}): Promi
   const { study } = studyFile.value
   const readByStudy = await readInputs(studyFile.value, { progress })
   const inputs = readByStudy.ok ? await withVariants(studyFile.value, readByStudy.value, { progress }) : readByStudy
-  const { placeStudy } = await import('../analyze.js')
+  const { doubtfulShares, placeStudy, sharesOfLines } = await import('../analyze.js')
   const frozen = inputs.ok ? await withFrozen(studyFile.value, inputs.value) : inputs
   const ready = frozen.ok
     ? await withGround(study, frozen.value.inputs, { workers: options.workers, progress })
     : frozen
   const placed = ready.ok ? placeStudy(study, ready.value, progress) : ready
+  const shares = ready.ok && placed.ok ? sharesOfLines(study, ready.value, placed.value.placement) : undefined
   clear()
-  if (!placed.ok) {
-    sayProblems(placed.problems)
+  if (!placed.ok || !shares?.ok) {
+    sayProblems([placed, shares].flatMap((one) => (one && !one.ok ? one.problems : [])))
     return exitCodes.unusable
   }
   const read = (inputs as { value: AnalysisInputs }).value
   const { fabricAccount } = await import('./fabricAccount.js')
   const geometry = frozen.ok && 'geometry' in frozen.value ? frozen.value.geometry : undefined
+  const doubts = shares.value ? doubtfulShares(shares.value) : []
   const account = [
-    ...accountOf(study, read, placed.value, fabricAccount(study, read, placed.value)),
+    ...accountOf(study, read, placed.value, fabricAccount(study, read, placed.value), doubts),
     ...(geometry ? [geometryWords(geometry)] : []),
   ]
   process.stdout.write(`${account.join('\n')}\n`)
   return exitCodes.done
 }
 
-function accountOf(study: Study, inputs: AnalysisInputs, placed: Placed, fabric: FabricAccount): string[] {
+function accountOf(
+  study: Study,
+  inputs: AnalysisInputs,
+  placed: Placed,
+  fabric: FabricAccount,
+  doubtsMore: readonly string[],
+): string[] {
   const { table } = inputs
   const { placement } = placed
   const bySide = unitsBySide(placement)
@@ -61,7 +69,7 @@ function accountOf(study: Study, inputs: AnalysisInputs, placed: Placed, fabric:
     .map((line, i) => [`  ${line.label}`, count(bySide.untreated[i]), count(bySide.treated[i])])
   const more = placement.lines.length - linesShown
   const missing = placed.missingKeys.map(({ key, units }) => [`  ${key}`, count(units)])
-  const doubts = [...fabric.doubts, ...doubtsOf(study, inputs, placed)]
+  const doubts = [...fabric.doubts, ...doubtsOf(study, inputs, placed), ...doubtsMore]
   return [
     study.title,
     ...aligned([

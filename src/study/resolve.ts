@@ -10,6 +10,7 @@ import type {
   LengthUnit,
   PlanAssumptions,
   PlanPart,
+  PoolingPart,
   ScoreLine,
   Study,
 } from './types.js'
@@ -32,7 +33,7 @@ export function resolveStudy(written: WrittenStudy, file: string): Study {
     estimation: resolveEstimation(written.estimation ?? {}),
     pooling: {
       fixedEffects: pooling.fixed_effects ?? line.kind === 'border',
-      target: pooling.target ?? 'units',
+      target: resolveTarget(pooling.target ?? 'units'),
       ...given({ slope: pooling.slope }),
     },
     checks: written.checks ?? 'standard',
@@ -105,6 +106,11 @@ function resolveScore(line: z.infer<typeof scoreLine>): ScoreLine {
     ...given({ compareBy: typeof line.compare_by === 'string' ? [line.compare_by] : line.compare_by }),
     rescale: line.rescale ?? 'none',
   }
+}
+
+function resolveTarget(target: NonNullable<NonNullable<WrittenStudy['pooling']>['target']>): PoolingPart['target'] {
+  if (typeof target !== 'object' || 'column' in target) return target
+  return { ...target, line: typeof target.line === 'string' ? [target.line] : target.line }
 }
 
 function resolveCutoff(cutoff: z.infer<typeof scoreLine>['cutoff']): Cutoff {

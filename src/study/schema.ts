@@ -216,10 +216,15 @@ export const estimation = keyed({
   level: numberWhere('must lie between 0 and 1', 'write 0.95 for 95%', (value) => value > 0 && value < 1).optional(),
 })
 
-const shares = keyed({ shares: fileName, line: columnName, value: columnName })
-const target = choose<
-  'units' | 'equal' | 'precision' | { column: string } | { shares: string; line: string; value: string }
->((value) => (isRecord(value) ? ('shares' in value ? shares : column) : oneOf(['units', 'equal', 'precision'])))
+const shares = keyed({ shares: fileName, line: nameOrNames, value: columnName })
+const target = choose((value): z.ZodType<'units' | 'equal' | 'precision' | z.infer<typeof shares | typeof column>> => {
+  if (!isRecord(value)) return oneOf(['units', 'equal', 'precision'])
+  const forms = ['column', 'shares'].filter((key) => Object.hasOwn(value, key))
+  if (forms.length > 1) return refusal('mixes column and shares', 'keep one of them')
+  const near = forms[0] ?? Object.keys(value).map((key) => nearest(key, ['column', ...Object.keys(shares.shape)]))[0]
+  if (near === undefined) return refusal('must say where the shares are', 'write {column} or {shares, line, value}')
+  return near === 'column' ? column : shares
+})
 export const pooling = keyed({
   fixed_effects: trueOrFalse.optional(),
   target: target.optional(),
@@ -306,7 +311,7 @@ export const parts: Readonly<Record<string, readonly string[]>> = {
 }
 
 const NAMES =
-  /^(title|take_up|audit|away_from_line\.(low|high)|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.(target\.(column|line|value)|slope))$/
+  /^(title|take_up|audit|away_from_line\.(low|high)|(outcomes|covariates|predetermined)\.\d+|records\.(id|weight|cluster(\.\d+)?|position(\.\d+)?|layer|crs)|line\.(score|distance|name|zone_name|dose|side|zones\.(layer|geometry|crs)|(barriers|overlaps)\.\d+\.(layer|geometry|crs)|(cutoff\.by|compare_by|treated)(\.\d+)?|treated\.property|cutoff\.(column|value|period))|pooling\.(target\.(column|line(\.\d+)?|value)|slope))$/
 
 /** Places that hold a name: a number there is meant as text. */
 export function isNamePath(path: Path): boolean {

@@ -50,6 +50,14 @@ export function togetherProblems(source: Source, file: string): Problem[] {
   const away = isRecord(source.data) ? source.data.away_from_line : undefined
   if (away !== undefined && form !== undefined && form !== 'score')
     say(['away_from_line'], ': is for cutoffs on a score', `line has ${form}`, 'leave it out')
+  const target = isRecord(source.data) && isRecord(source.data.pooling) ? source.data.pooling.target : undefined
+  if (isRecord(target) && target.value !== undefined && [target.line].flat().includes(target.value))
+    say(
+      ['pooling', 'target', 'value'],
+      ': also names the line',
+      `got ${JSON.stringify(target.value)}`,
+      'name the column that holds the shares',
+    )
   if (form === 'zones') borderProblems(line, say)
   if (line.pieces === true && line.name === undefined)
     say(['line', 'pieces'], ': needs the piece of each unit', 'no line.name', 'name the column in line.name')

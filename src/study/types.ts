@@ -151,10 +151,11 @@ export type Bandwidth =
   | { readonly kind: 'rule'; readonly rule: 'mse' | 'coverage'; readonly bias?: number; readonly scale?: number }
   | { readonly kind: 'fixed'; readonly untreated: number; readonly treated: number; readonly bias?: number }
 
-/** A table with one row a line: the column that names it, by its key or its label, and the one that holds its share. */
+/** A table with one row a line: the columns that name it, and the one that holds its share. */
 export interface SharesFile {
   readonly shares: string
-  readonly line: string
+  /** One column with its key or label, the parts of its key, or the two zones of a border. */
+  readonly line: readonly string[]
   readonly value: string
 }
 

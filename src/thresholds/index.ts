@@ -13,7 +13,7 @@ export { type CompareOptions, type CompareOutcome, type ComparisonResult, compar
 export type { CutoffSource, MissingKey } from './cutoffs.js'
 export { type DistanceInput, placeByDistance } from './distance.js'
 export type { LineEffects } from './effects.js'
-export type { Labels } from './labels.js'
+export { type Labels, lineId } from './labels.js'
 export { leaveOneOut, meanWithoutEachLine, perUnitOfDose, type WithoutLine } from './leaveOneOut.js'
 export { placeByScore, type ScorePlacement, type ScorePlacementInput } from './placeByScore.js'
 export { type Pooled, type PoolOptions, poolLines } from './pool.js'

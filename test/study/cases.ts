@@ -201,6 +201,18 @@ pooling: {fixed_effects: false}
     },
   },
   {
+    name: 'shares from a file, by one column',
+    text: `${score}pooling: {target: {shares: people.csv, line: 7, value: 2020}}\n`,
+    gives: { pooling: { fixedEffects: false, target: { shares: 'people.csv', line: ['7'], value: '2020' } } },
+  },
+  {
+    name: 'shares from a file, by two columns',
+    text: `${score}pooling: {target: {shares: people.csv, line: [year, region], value: people}}\n`,
+    gives: {
+      pooling: { fixedEffects: false, target: { shares: 'people.csv', line: ['year', 'region'], value: 'people' } },
+    },
+  },
+  {
     name: 'a border between doses',
     text: border.replace('treated: [Inner]', 'dose: levy_rate'),
     gives: { line: { kind: 'border', dose: 'levy_rate', outside: 'set-aside' } },
@@ -474,6 +486,33 @@ pooling:
       '13: pooling.fixed_effects: must be true or false: got "yes"; write true',
       '14: pooling.target: must be one of units, equal, precision: got "population"; write one of units, equal, precision',
     ],
+  },
+  {
+    name: 'shares that mix two forms',
+    text: `${score}pooling: {target: {shares: people.csv, column: residents}}\n`,
+    problems: [
+      '8: pooling.target: mixes column and shares: got {"shares":"people.csv","column":"residents"}; keep one of them',
+    ],
+  },
+  {
+    name: 'shares with a key misspelt and one missing',
+    text: `${score}pooling: {target: {share: people.csv, line: town}}\n`,
+    problems: [
+      '8: pooling.target.value: missing; write the name of a column',
+      '8: pooling.target.share: not a known key; did you mean shares?',
+    ],
+  },
+  {
+    name: 'shares of nothing known',
+    text: `${score}pooling: {target: {by: town}}\n`,
+    problems: [
+      '8: pooling.target: must say where the shares are: got {"by":"town"}; write {column} or {shares, line, value}',
+    ],
+  },
+  {
+    name: 'shares in the column of names',
+    text: `${score}pooling: {target: {shares: people.csv, line: [town, people], value: people}}\n`,
+    problems: ['8: pooling.target.value: also names the line: got "people"; name the column that holds the shares'],
   },
   {
     name: 'keys of a border that do not go together',

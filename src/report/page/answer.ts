@@ -109,7 +109,23 @@ function biasAwareSentence(view: View, jump: Jump | undefined, places: Places): 
 
 function targetSentence(view: View, target: Target, places: Places): string {
   if (!isEstimated(target)) return `The stated target has no estimate: ${reasonText(view, target.not_estimated)}.`
-  return `The stated target, the average of each ${view.words.line}’s own estimate ${targetWords(target.kind)}, is ${fixed(target.estimate, places)} (${intervalText(target, places)}, ${pWords(target.p)}).`
+  return `The stated target, the average of each ${view.words.line}’s own estimate ${targetWords(target.kind)}, is ${fixed(target.estimate, places)} (${intervalText(target, places)}, ${pWords(target.p)}).${populationWords(view, target.covers)}`
+}
+
+/** Whose average a target by stated shares is, and how much of them the estimates reach. */
+function populationWords(view: View, covers = 1): string {
+  const population = view.results.target_population
+  if (!population) return ''
+  const { name, file, total, rows_passed_over: rows } = population
+  const passed =
+    rows === undefined
+      ? ''
+      : `; ${count(rows)} ${rows === 1 ? 'row' : 'rows'} there for no ${view.words.line} of the study left out`
+  const reached =
+    covers < 1
+      ? ` The ${view.words.lines} with an estimate hold ${fixed(100 * covers, 1)}% of it, and stand for it alone.`
+      : ''
+  return ` Its population: ${name} of ${file}, ${significant(total)} in all${passed}.${reached}`
 }
 
 function differenceSentence(view: View, comparison: Comparison, places: Places): string {
