@@ -11,16 +11,20 @@ export interface WithoutLine {
   readonly high: number
 }
 
-/** `weights`: by line, summing to 1; those of the others are scaled up. O(L²), once. A line with all the weight is left out. */
+/**
+ * `weights`: by line, summing to 1; those of the others are scaled up. One product of the covariance and the
+ * weights, O(L) where lines share nothing. A line with all the weight is left out.
+ */
 export function leaveOneOut(effects: LineEffects, weights: Float64Array, level: number): WithoutLine[] {
-  const { ids, estimate, covariance } = effects
+  const { ids, estimate, covariance, isDiagonal } = effects
   const count = ids.length
   if (count < 2) return []
   const quantile = normalQuantile((1 + level) / 2)
   const withAll = new Float64Array(count)
   let [mean, variance] = [0, 0]
   for (let a = 0; a < count; a++) {
-    for (let b = 0; b < count; b++) withAll[a] += covariance[a * count + b] * weights[b]
+    if (isDiagonal) withAll[a] = covariance[a * count + a] * weights[a]
+    else for (let b = 0; b < count; b++) withAll[a] += covariance[a * count + b] * weights[b]
     mean += weights[a] * estimate[a]
     variance += weights[a] * withAll[a]
   }

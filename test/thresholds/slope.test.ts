@@ -1,5 +1,6 @@
 import { readFileSync } from 'node:fs'
 import { describe, expect, it } from 'vitest'
+import { seededRandom } from '../../src/math/index.js'
 import {
   effectSlope,
   type LineEffects,
@@ -118,6 +119,41 @@ describe('the mean without a line', () => {
     expect(found[1].estimate).toBeCloseTo(target.estimate, 12)
     expect(found[1].standardError).toBeCloseTo(target.standardError, 12)
     expect(found[1].low).toBeCloseTo(target.low, 12)
+  })
+})
+
+describe('the mean without each of 40 lines', () => {
+  const random = seededRandom(11)
+  const count = 40
+  const estimate = Float64Array.from({ length: count }, () => random.normal())
+  const raw = Float64Array.from({ length: count }, () => random.next() ** 3)
+  const total = raw.reduce((sum, weight) => sum + weight, 0)
+  const weights = raw.map((weight) => weight / total)
+  // AA' + I: a covariance of lines that share units
+  const factor = Float64Array.from({ length: count * count }, () => random.normal())
+  const covariance = Float64Array.from({ length: count * count }, (_, cell) => {
+    const [a, b] = [Math.floor(cell / count), cell % count]
+    let product = a === b ? 1 : 0
+    for (let k = 0; k < count; k++) product += factor[a * count + k] * factor[b * count + k]
+    return product
+  })
+  const ids = Array.from(estimate, (_, a) => `line ${a}`)
+
+  it.each([false, true])('is the double sum over the others, each made anew (independent lines: %s)', (isDiagonal) => {
+    const known = covariance.map((value, cell) => (isDiagonal && Math.floor(cell / count) !== cell % count ? 0 : value))
+    const found = leaveOneOut({ ids, estimate, covariance: known, isDiagonal }, weights, 0.95)
+    expect(found).toHaveLength(count)
+    found.forEach((one, left) => {
+      const share = weights.map((weight, a) => (a === left ? 0 : weight))
+      const sum = share.reduce((all, weight) => all + weight, 0)
+      let [mean, variance] = [0, 0]
+      for (let a = 0; a < count; a++) {
+        mean += (share[a] / sum) * estimate[a]
+        for (let b = 0; b < count; b++) variance += (share[a] / sum) * (share[b] / sum) * known[a * count + b]
+      }
+      expect(Math.abs(one.estimate - mean)).toBeLessThan(1e-12)
+      expect(Math.abs(one.standardError / Math.sqrt(variance) - 1)).toBeLessThan(1e-12)
+    })
   })
 })
 
