@@ -261,7 +261,9 @@ export interface Contrast extends Interval {
   readonly estimate: number
   readonly standard_error: number
   readonly p: number
+  /** Adjusted for the number of pairs: by Holm, and by Benjamini & Hochberg. */
   readonly p_holm: number
+  readonly p_bh: number
 }
 
 /** Comparison of lines by their corrected estimates; null parts carry a reason. */

@@ -35,6 +35,7 @@ export interface ComparisonResult {
     readonly standard_error: number
     readonly p: number
     readonly p_holm: number
+    readonly p_bh: number
   } & Interval)[]
   readonly contrasts_of: number
 }
@@ -87,7 +88,7 @@ export function compareLines(effects: LineEffects, options: CompareOptions): Com
       ),
       prediction: mean.prediction,
       shrunken: shrunken.map((effect, a) => ({ line: ids[a], ...effect })),
-      contrasts: contrasts.listed.map(({ lines, standardError, pHolm, estimate, low, high, p }) => ({
+      contrasts: contrasts.listed.map(({ lines, standardError, pHolm, pBh, estimate, low, high, p }) => ({
         lines: [ids[lines[0]], ids[lines[1]]],
         estimate,
         standard_error: standardError,
@@ -95,6 +96,7 @@ export function compareLines(effects: LineEffects, options: CompareOptions): Com
         high,
         p,
         p_holm: pHolm,
+        p_bh: pBh,
       })),
       contrasts_of: contrasts.of,
     },

@@ -15,6 +15,8 @@ export interface ContrastOfLines {
   readonly p: number
   /** Adjusted over all contrasts by Holm's step-down (Holm 1979). */
   readonly pHolm: number
+  /** The same by the step-up of Benjamini & Hochberg 1995: the share of false alarms to expect. */
+  readonly pBh: number
 }
 
 export interface Contrasts {
@@ -46,14 +48,19 @@ export function contrastsOf(effects: LineEffects, level: number, random: Random,
   const isDrawn = of > 1 && effects.ids.length <= MOST_LINES_DRAWN
   const drawn = isDrawn ? drawnQuantile(effects, standardErrors, level, random, draws) : bound
   const criticalValue = Math.max(Math.min(bound, drawn), normalQuantile((1 + level) / 2))
+  const pBh = stepUp(
+    entries.map(({ ratio }) => ratio),
+    of,
+    of > entries.length ? ratiosBeyond(effects, standardErrors, entries.length) : new Float64Array(0),
+  )
   let pHolm = 0
   const listed = entries.map(({ first, second, ratio, standardError }, rank) => {
     const estimate = effects.estimate[first] - effects.estimate[second]
-    const p = Math.min(1, 2 * normalUpper(ratio))
+    const p = twoSided(ratio)
     pHolm = Math.min(1, Math.max(pHolm, (of - rank) * p))
     const reach = criticalValue * standardError
     const lines = [first, second] as const
-    return { lines, estimate, standardError, low: estimate - reach, high: estimate + reach, p, pHolm }
+    return { lines, estimate, standardError, low: estimate - reach, high: estimate + reach, p, pHolm, pBh: pBh[rank] }
   })
   return { listed, of, criticalValue }
 }
@@ -115,6 +122,41 @@ function largestRatios(
   }
   cut()
   return { entries, of }
+}
+
+function twoSided(ratio: number): number {
+  return Math.min(1, 2 * normalUpper(ratio))
+}
+
+/** `ratios`: the largest |t| of `of`, descending; `beyond`: the others, descending, which bound the adjusted p of those. */
+function stepUp(ratios: readonly number[], of: number, beyond: Float64Array): Float64Array {
+  let smallest = 1
+  for (let k = 0; k < beyond.length; k++) {
+    const p = twoSided(beyond[k])
+    // (of / rank) p is never under p, and p ascends from here on
+    if (p >= smallest) break
+    smallest = Math.min(smallest, (of / (ratios.length + k + 1)) * p)
+  }
+  const adjusted = new Float64Array(ratios.length)
+  for (let rank = ratios.length - 1; rank >= 0; rank--) {
+    smallest = Math.min(smallest, (of / (rank + 1)) * twoSided(ratios[rank]))
+    adjusted[rank] = smallest
+  }
+  return adjusted
+}
+
+/** |t| of all contrasts but the `listed` largest, descending. */
+function ratiosBeyond({ estimate }: LineEffects, standardErrors: Float64Array, listed: number): Float64Array {
+  const ratios = new Float64Array(standardErrors.length)
+  let [pair, of] = [0, 0]
+  for (let a = 0; a < estimate.length; a++) {
+    for (let b = a + 1; b < estimate.length; b++) {
+      const standardError = standardErrors[pair++]
+      if (standardError > 0) ratios[of++] = Math.abs(estimate[a] - estimate[b]) / standardError
+    }
+  }
+  const sorted = ratios.subarray(0, of).sort()
+  return sorted.subarray(0, of - listed).reverse()
 }
 
 /** The `level` quantile of the largest |t| over the contrasts, in draws of the estimates from N(0, Ω). */

@@ -1,6 +1,7 @@
 import { readFileSync } from 'node:fs'
 import { describe, expect, test } from 'vitest'
-import { choleskyInPlace, seededRandom } from '../../src/math/index.js'
+import { benjaminiHochberg } from '../../src/checks/index.js'
+import { choleskyInPlace, normalUpper, seededRandom } from '../../src/math/index.js'
 import { type Contrasts, contrastsOf, LARGEST_LIST } from '../../src/thresholds/contrasts.js'
 import type { LineEffects } from '../../src/thresholds/index.js'
 
@@ -32,7 +33,7 @@ describe('p-values', () => {
     1000,
   )
 
-  test('all 28 pairs against base R, Holm by p.adjust', () => {
+  test('all 28 pairs against base R, Holm and BH by p.adjust', () => {
     expect(contrasts.of).toBe(28)
     expect(contrasts.listed.length).toBe(28)
     const g = golden.correlated
@@ -43,12 +44,35 @@ describe('p-values', () => {
       expect(contrast.standardError / g.contrast_se[k]).toBeCloseTo(1, 13)
       expect(contrast.p / g.contrast_p[k]).toBeCloseTo(1, 11)
       expect(contrast.pHolm / g.contrast_p_holm[k]).toBeCloseTo(1, 11)
+      expect(contrast.pBh / g.contrast_p_bh[k]).toBeCloseTo(1, 11)
       expect(contrast.high - contrast.low).toBeCloseTo(2 * contrasts.criticalValue * contrast.standardError, 13)
     }
   })
 
   test('ascending', () => {
     for (let k = 1; k < 28; k++) expect(contrasts.listed[k].p).toBeGreaterThanOrEqual(contrasts.listed[k - 1].p)
+  })
+})
+
+describe('p-values by Benjamini and Hochberg where not all pairs are listed', () => {
+  // 60 lines have 1,770 pairs, of which 1,000 are listed; benjaminiHochberg of all is held to base R in ../checks.
+  test.each([0.1, 3])('are those among all pairs, spread of the effects %d', (spread) => {
+    const random = seededRandom(8)
+    const effects = exchangeable(60, 0)
+    effects.estimate.forEach((_, a) => {
+      effects.estimate[a] = spread * random.normal()
+    })
+    const { listed, of } = contrastsOf(effects, 0.95, seededRandom(1), 10)
+    expect([listed.length, of]).toEqual([1000, 1770])
+    const all: number[] = []
+    for (let a = 0; a < 60; a++)
+      for (let b = a + 1; b < 60; b++)
+        all.push(2 * normalUpper(Math.abs(effects.estimate[a] - effects.estimate[b]) / Math.sqrt(6)))
+    const wanted = benjaminiHochberg(all).sort((a, b) => a - b)
+    expect(wanted[0]).toBeLessThan(1)
+    listed.forEach(({ pBh }, k) => {
+      expect(pBh / wanted[k]).toBeCloseTo(1, 11)
+    })
   })
 })
 

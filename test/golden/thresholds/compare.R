@@ -124,7 +124,7 @@ cat(record(
     field("wald_p", pchisq(statistic, k - 1, lower.tail = FALSE)),
     field("contrast_first", pairs[, 1] - 1), field("contrast_second", pairs[, 2] - 1),
     field("contrast_estimate", estimate), field("contrast_se", se), field("contrast_p", p),
-    field("contrast_p_holm", p.adjust(p, "holm")),
+    field("contrast_p_holm", p.adjust(p, "holm")), field("contrast_p_bh", p.adjust(p, "BH")),
     field("target_weights", weights), field("target", target), field("target_se", target_se),
     field("target_p", 2 * pnorm(-abs(target / target_se))))),
   paste0("\"critical\": ", record(field("independent3", independent3), field("independent3_95", critical3(0.95, independent3)),
