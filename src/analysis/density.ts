@@ -6,12 +6,12 @@ import {
   type DiscreteDensity,
   densityTest,
   discreteDensityTest,
-  holm,
 } from '../checks/index.js'
 import type { Kernel } from '../jump/index.js'
 import { normalUpper, quantileOfSorted, streamOf } from '../math/index.js'
 import type { CheckResult } from '../results.js'
 import type { Study } from '../study/index.js'
+import { type Adjusted, adjustedFor } from './adjusted.js'
 import type { Placed } from './placing.js'
 import { shown } from './words.js'
 
@@ -48,9 +48,9 @@ function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
     )
     return made.ok ? [{ line: line.id, made }] : []
   })
-  const adjusted = holm(lines.map(({ made }) => made.p))
+  const adjusted = adjustedFor(lines.map(({ made }) => made.p))
   const bad = lines.flatMap(({ line, made }, i) =>
-    adjusted[i] < alpha ? [{ ...rowOf('density', made, alpha, adjusted[i]), line }] : [],
+    adjusted[i].p_holm < alpha ? [{ ...rowOf('density', made, alpha, adjusted[i]), line }] : [],
   )
   const tested = `${lines.length} of ${placement.lines.length} lines have units enough for a test of their own`
   const none: CheckResult =
@@ -58,7 +58,7 @@ function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
       ? { check: 'density, line by line', verdict: 'not possible', says: tested }
       : {
           check: 'density, line by line',
-          p_holm: Math.min(...adjusted),
+          p_holm: Math.min(...adjusted.map((one) => one.p_holm)),
           verdict: bad.length > 0 ? 'doubt' : 'fine',
           says: `${tested}: ${bad.length === 0 ? 'none jumps' : `${bad.length} jump`} after adjusting for their number`,
         }
@@ -75,12 +75,11 @@ function atLine(x: Float64Array, treated: Uint8Array, kernel: Kernel): AtLine {
   return discrete.ok ? discrete : made
 }
 
-function rowOf(check: string, made: AtLine, alpha: number, pHolm?: number): CheckResult {
+function rowOf(check: string, made: AtLine, alpha: number, adjusted?: Adjusted): CheckResult {
   if (!made.ok) return { check, verdict: 'not possible', says: made.reason }
-  const jumps = (pHolm ?? made.p) < alpha
+  const jumps = (adjusted?.p_holm ?? made.p) < alpha
   const verdict = jumps ? 'doubt' : 'fine'
   const meaning = jumps ? 'more than chance' : 'no more than chance'
-  const adjusted = pHolm === undefined ? {} : { p_holm: pHolm }
   if ('expected' in made) {
     const says = `the score has few values: ${made.units[1]} units at the first treated one, ${shown(made.expected)} expected of ${made.units[0]} before it and ${made.units[2]} after: ${meaning}`
     return { check, p: made.p, ...adjusted, verdict, says }

@@ -2,6 +2,7 @@
 import { readFileSync, rmSync } from 'node:fs'
 import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
+import { benjaminiHochberg, holm } from '../../src/checks/index.js'
 import { seededRandom } from '../../src/math/index.js'
 import type { CheckResult, Jump, Results } from '../../src/results.js'
 import { newRoom, scarp, writeFiles } from './studies.js'
@@ -63,6 +64,19 @@ describe('checks', () => {
     expect(page).toContain('the pooled estimate with one choice changed')
     expect(page).toContain('What Works Clearinghouse')
     expect(readFileSync(join(room, 'clean-out', 'tables', 'ladders-y.md'), 'utf8')).toContain('line that is none at')
+  })
+
+  it('have p-values adjusted for the tests of their kind, two ways', () => {
+    const rows = named(clean, 'placebo line')
+    const p = rows.map((row) => row.p as number)
+    expect(rows.map((row) => row.p_holm)).toEqual(holm(p))
+    expect(rows.map((row) => row.p_bh)).toEqual(benjaminiHochberg(p))
+    const [head, ...lines] = readFileSync(join(room, 'clean-out', 'checks.csv'), 'utf8').split('\n')
+    const at = head.split(',').indexOf('p_bh')
+    const written = lines
+      .filter((line) => line.startsWith('y,placebo line,'))
+      .map((line) => Number(line.split(',')[at]))
+    expect(written).toEqual(rows.map((row) => row.p_bh))
   })
 
   it('give a rung the numbers of a study run that way', async () => {
