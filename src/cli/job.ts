@@ -66,12 +66,17 @@ function withGeometry(results: Results, geometry: Results['geometry']): Results 
 /** Every file of the results folder but units.csv; they follow from `analysis` and the study alone. */
 export async function writeDrawn(write: WriteFile, { study }: StudyFile, analysis: Drawable): Promise<void> {
   const { resolvedStudy } = await import('../study/index.js')
-  const { drawReport } = await import('../report/index.js')
+  const { drawReport, reportTables } = await import('../report/index.js')
+  const { docxOf, xlsxOf } = await import('./documents.js')
   const resolved = resolvedStudy(study)
   await write('results.json', [resultsJson(analysis.results)])
   await write('study.resolved.yaml', [resolved])
-  const drawn = drawReport({ analysis, resolvedStudy: resolved, disclosure: study.disclosure })
+  const input = { analysis, resolvedStudy: resolved, disclosure: study.disclosure }
+  const drawn = drawReport(input)
   for (const [path, text] of drawn) if (!written.has(path)) await write(known(path), [text])
+  const tables = reportTables(input)
+  await write('tables/tables.docx', [await docxOf(study.title, tables)])
+  await write('tables/tables.xlsx', [await xlsxOf(tables)])
 }
 
 /** One row for each unit placed, with its id and its foot on the border. */

@@ -1,7 +1,5 @@
 /** Door of the report room: results in, text files out. It computes no estimate, and no record, id or unit coordinate passes it. */
 
-import { auditTable } from './auditTable.js'
-import { conflictTable, waterfallTable, whatElseTable } from './borderTables.js'
 import { checksCsv, linesCsv, pooledCsv } from './csv.js'
 import { alongFigure } from './figures/along.js'
 import { forestFigure } from './figures/forest.js'
@@ -9,23 +7,22 @@ import { mapFigure } from './figures/map.js'
 import { scatterFigure } from './figures/scatter.js'
 import { bordersGeojson } from './geojson.js'
 import type { ReportInput } from './input.js'
-import { ladderTable, placeboTable, standardsTable } from './ladderTable.js'
-import { ledgerTable } from './ledgerTable.js'
-import { paperLineTable } from './lineTable.js'
-import { awayTable, movedTable } from './movedTable.js'
 import { type PageFigures, pageHtml } from './page/page.js'
-import { pooledTable } from './pooledTable.js'
-import { sharedTable } from './sharedTable.js'
-import { type TextTable, toLatex, toMarkdown } from './tables.js'
-import { variantTable } from './variantTable.js'
+import { type NamedTable, paperTables } from './paperTables.js'
+import { splitTable } from './splitTable.js'
+import { toCsv, toLatex, toMarkdown } from './tables.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View, viewOf } from './view.js'
 
 export { comparedLines } from './comparedText.js'
 export { exhibitsOf } from './exhibitList.js'
 export type { ReportInput } from './input.js'
+export type { NamedTable } from './paperTables.js'
 export { planLines } from './planText.js'
 export { type ReplicationFacts, replicationReadme } from './replicationReadme.js'
+export { splitTable } from './splitTable.js'
 export { geometryWords, summaryLines } from './summary.js'
+export { type CellNumber, numberOfCell } from './tableCells.js'
+export type { TableRow, TextTable } from './tables.js'
 
 const mostLineFigures = 200
 
@@ -47,26 +44,14 @@ export function drawReport(input: ReportInput): Map<string, string> {
     if (along) files.set(`figures/${outcome.slug}-along.svg`, along)
     if (pooled) files.set(`figures/${outcome.slug}-pooled.svg`, pooled)
     files.set(`figures/${outcome.slug}-forest.svg`, forest)
-    addTable(files, `lines-${outcome.slug}`, paperLineTable(view, outcome))
-    const more = {
-      variants: variantTable(view, outcome),
-      moved: movedTable(view, outcome),
-      away: awayTable(view, outcome),
-      ladders: ladderTable(view, outcome),
-      placebos: placeboTable(view, outcome),
-      standards: standardsTable(outcome),
-    }
-    for (const [name, table] of Object.entries(more)) if (table) addTable(files, `${name}-${outcome.slug}`, table)
   })
   if (figures.map) files.set('figures/map.svg', figures.map)
-  addTable(files, 'pooled', pooledTable(view))
-  addTable(files, 'ledger', ledgerTable(view))
-  const shared = sharedTable(view)
-  if (shared) addTable(files, 'shared-units', shared)
-  const audit = auditTable(view)
-  if (audit) addTable(files, 'audit', audit)
-  const borderTables = { waterfall: waterfallTable(view), 'what-else': whatElseTable(view), sides: conflictTable(view) }
-  for (const [name, table] of Object.entries(borderTables)) if (table) addTable(files, name, table)
+  for (const { name, table } of paperTables(view)) {
+    files.set(`tables/${name}.csv`, toCsv(table))
+    const parts = splitTable(table)
+    files.set(`tables/${name}.md`, parts.map(toMarkdown).join('\n'))
+    files.set(`tables/${name}.tex`, parts.map(toLatex).join('\n'))
+  }
   files.set('lines.csv', linesCsv(view))
   files.set('pooled.csv', pooledCsv(view))
   files.set('checks.csv', checksCsv(view))
@@ -75,9 +60,9 @@ export function drawReport(input: ReportInput): Map<string, string> {
   return files
 }
 
-function addTable(files: Map<string, string>, name: string, table: TextTable): void {
-  files.set(`tables/${name}.md`, toMarkdown(table))
-  files.set(`tables/${name}.tex`, toLatex(table))
+/** The tables of tables/, for documents that hold them all. */
+export function reportTables(input: ReportInput): NamedTable[] {
+  return paperTables(viewOf(input))
 }
 
 function pooledFigure(view: View, outcome: OutcomeView): string | undefined {

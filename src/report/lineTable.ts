@@ -1,6 +1,6 @@
-/** Every line's estimate as rows: nine columns for a paper, all of them for the page. */
+/** Every line's estimate as rows, for a paper and for the page. */
 import type { Jump } from '../results.js'
-import { cell, fixed, missing, type Places, p, percent, sharedPlaces, wholeNumber } from './numbers.js'
+import { cell, count, fixed, missing, type Places, p, percent, sharedPlaces, wholeNumber } from './numbers.js'
 import type { TableRow, TextTable } from './tables.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, reasonText, type View } from './view.js'
 
@@ -31,17 +31,26 @@ export function widthCell(width: Jump['bandwidth'], places: Places): string {
   return width.untreated === width.treated ? left : `${left} / ${right}`
 }
 
-/** The table for a paper: nine columns. */
+/** The table for a paper: what each line rests on, then what it says; files break it after the first half. */
 export function paperLineTable(view: View, outcome: OutcomeView): TextTable {
   const places = linePlaces(outcome)
-  const widths = widthPlaces(estimatedLines(outcome.result))
+  const estimated = estimatedLines(outcome.result)
+  const widths = widthPlaces(estimated)
+  const hasClusters = estimated.some(({ clusters }) => clusters !== undefined)
+  const { pooled, target } = outcome.result
+  const pooledShare = isEstimated(pooled) ? pooled.weights : {}
+  const targetShare = isEstimated(target) ? target.weights : {}
   return {
     caption: `${outcome.result.outcome}: jump at each ${view.words.line}`,
     columns: [
       { head: capital(view.words.line), isText: true },
+      { head: view.words.isBorder ? 'Length, km' : 'Cutoff at' },
       { head: 'N untreated' },
       { head: 'N treated' },
       { head: bandwidthHead(view) },
+      ...(hasClusters ? [{ head: 'Clusters' }] : []),
+      { head: 'Pooled weight' },
+      { head: 'Target weight' },
       { head: 'Untreated mean' },
       { head: 'Estimate' },
       { head: 'Standard error' },
@@ -51,10 +60,15 @@ export function paperLineTable(view: View, outcome: OutcomeView): TextTable {
     rows: outcome.result.lines.map((line): TableRow => {
       const head = labelOf(view, line.line)
       if (!isEstimated<Jump>(line)) return { head, across: notEstimated(view, line.not_estimated) }
+      const { length_m: metres, cutoff } = view.lineOf.get(line.line) ?? {}
       return [
         head,
+        view.words.isBorder ? fixed(metres === undefined ? undefined : metres / 1000, 3) : wholeNumber(cutoff),
         ...unitCells(view, line),
         widthCell(line.bandwidth, widths),
+        ...(hasClusters ? [line.clusters === undefined ? missing : count(line.clusters)] : []),
+        percent(pooledShare[line.line]),
+        percent(targetShare[line.line]),
         fixed(line.at_line.untreated, places),
         fixed(line.corrected.estimate, places),
         fixed(line.corrected.standard_error, places),
@@ -80,7 +94,7 @@ export function pageLineTable(view: View, outcome: OutcomeView): TextTable {
     caption: `${outcome.result.outcome}: jump at each ${view.words.line}`,
     columns: [
       { head: capital(view.words.line), isText: true },
-      { head: view.words.isBorder ? 'Length, m' : 'Cutoff' },
+      { head: view.words.isBorder ? 'Length, m' : 'Cutoff at' },
       { head: 'N untreated' },
       { head: 'N treated' },
       { head: bandwidthHead(view) },

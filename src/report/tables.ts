@@ -1,6 +1,7 @@
-/** A table as plain text cells, and its three languages: Markdown, LaTeX (booktabs) and HTML. */
-import { escapeHtml, escapeLatex, escapeMarkdown } from './escape.js'
+/** A table as plain text cells, and its languages: Markdown, LaTeX (booktabs), HTML and CSV. */
+import { csvField, escapeHtml, escapeLatex, escapeMarkdown } from './escape.js'
 import { missing } from './numbers.js'
+import { plainCell } from './tableCells.js'
 
 export interface TableColumn {
   readonly head: string
@@ -36,6 +37,13 @@ export function toMarkdown(table: TextTable): string {
     ...notes.flatMap((note) => ['', escapeMarkdown(note)]),
     '',
   ].join('\n')
+}
+
+/** The columns and rows of the paper, numbers as a program reads them; notes are left to the others. */
+export function toCsv({ columns, rows }: TextTable): string {
+  const line = (cells: readonly string[]) => cells.map((text) => csvField(text)).join(',')
+  const body = rows.map((row) => line(isAcross(row) ? [row.head, row.across] : row.map(plainCell)))
+  return `${[line(columns.map(({ head }) => head)), ...body].join('\n')}\n`
 }
 
 const rowsOnOnePage = 40

@@ -28,6 +28,12 @@ export function readCsv(text: string): Record<string, string>[] {
 }
 
 /** Cells of the rows of a Markdown table, escapes undone, head and rule left out. */
+/** The tables of a file, one or the parts of a wide one, each without its head. */
+export function readMarkdownParts(text: string): string[][][] {
+  const parts = text.split(/^\*\*.*\*\*$/m).slice(1)
+  return parts.map(readMarkdown)
+}
+
 export function readMarkdown(text: string): string[][] {
   const lines = text.split('\n').filter((line) => line.startsWith('|'))
   return lines.slice(2).map((line) =>
