@@ -175,6 +175,8 @@ export interface Jump {
   readonly bias_aware_reason?: string
   /** The interval to go by: as the study says, else bias-aware where fewer than 10 distinct distances lie within the bandwidth. */
   readonly quoted: 'corrected' | 'bias-aware'
+  /** Why it is bias-aware where the study does not say. */
+  readonly quoted_because?: string
   /** With take-up, plain and corrected are the effect per unit of it. */
   readonly take_up?: TakeUp
   /** What covariates did to the corrected estimate. */

@@ -130,7 +130,10 @@ export function jumpResult(
   estimation: EstimationPart,
   variance: Variance,
 ): Jump {
-  const notes = [...notesOn(jump), ...(takeUp && takeUp.ratio.f < leastF ? [weakFirstStage(takeUp.ratio.f)] : [])]
+  const notes = [
+    ...fewValues(jump, estimation.interval, biasAware),
+    ...(takeUp && takeUp.ratio.f < leastF ? [weakFirstStage(takeUp.ratio.f)] : []),
+  ]
   return {
     order: estimation.order,
     kernel: estimation.kernel,
@@ -144,7 +147,7 @@ export function jumpResult(
     plain: estimateResult(jump.plain),
     corrected: estimateResult(jump.corrected),
     ...biasAwareResult(biasAware),
-    quoted: quotedInterval(estimation.interval, jump, biasAware),
+    ...quotedInterval(estimation.interval, jump, biasAware),
     ...(takeUp ? { take_up: takeUpResult(takeUp) } : {}),
     ...(covariates ? { covariates: covariateResult(covariates, takeUp?.eligibility ?? jump) } : {}),
     ...(notes.length > 0 ? { notes } : {}),
@@ -190,25 +193,37 @@ export function estimateResult(inference: Inference): Estimate {
 
 const fewDistinct = 10
 
+/** Sides with few values within the bandwidth, in words. */
+function coarseSides({ distinct }: JumpFit): string[] {
+  const sides = (['untreated', 'treated'] as const).filter((name) => distinct[name] < fewDistinct)
+  return sides.map((name) => `${distinct[name]} distinct values within the bandwidth on the ${name} side`)
+}
+
 /** The bias-aware interval where the study asks for it, or leaves the choice open and the score has few values (METHODS section 5). */
 function quotedInterval(
   asked: EstimationPart['interval'],
-  { distinct }: JumpFit,
+  jump: JumpFit,
   biasAware: BiasAwareEstimated | undefined,
-): Jump['quoted'] {
-  if (!biasAware?.ok || asked === 'corrected') return 'corrected'
-  const isCoarse = Math.min(distinct.untreated, distinct.treated) < fewDistinct
-  return asked === 'bias-aware' || isCoarse ? 'bias-aware' : 'corrected'
+): Pick<Jump, 'quoted' | 'quoted_because'> {
+  if (!biasAware?.ok || asked === 'corrected') return { quoted: 'corrected' }
+  if (asked === 'bias-aware') return { quoted: 'bias-aware' }
+  const [coarse] = coarseSides(jump)
+  return coarse ? { quoted: 'bias-aware', quoted_because: `only ${coarse}` } : { quoted: 'corrected' }
 }
 
-function notesOn(jump: JumpFit): string[] {
-  const notes: string[] = []
-  for (const name of ['untreated', 'treated'] as const) {
-    if (jump.distinct[name] >= fewDistinct) continue
-    const values = `${jump.distinct[name]} distinct values within the bandwidth on the ${name} side`
-    notes.push(`only ${values}: use the bias-aware interval, which allows for what may happen between them`)
-  }
-  return notes
+/** What few values mean for the interval to go by. */
+function fewValues(
+  jump: JumpFit,
+  asked: EstimationPart['interval'],
+  biasAware: BiasAwareEstimated | undefined,
+): string[] {
+  const allows = 'the bias-aware interval, which allows for what may happen between them'
+  const advice = !biasAware?.ok
+    ? `the corrected interval does not allow for what may happen between them, and a bias-aware one has not been made${biasAware ? ` (${biasAware.reason})` : ''}`
+    : asked === 'corrected'
+      ? `the study goes by the corrected interval; beside it is ${allows}`
+      : `go by ${allows}`
+  return coarseSides(jump).map((values) => `only ${values}: ${advice}`)
 }
 
 /** `pieces` are the border's pieces in use, in the order of the lines; none for scores. */

@@ -65,6 +65,10 @@ function jumpRecord(view: View, jump: Jump | undefined): Fields {
     ['at_line_treated', jump?.at_line.treated],
     ...estimateRecord('plain', jump?.plain),
     ...estimateRecord('corrected', jump?.corrected),
+    ['bias_aware_estimate', jump?.bias_aware?.estimate],
+    ['bias_aware_low', jump?.bias_aware?.low],
+    ['bias_aware_high', jump?.bias_aware?.high],
+    ['quoted', jump?.quoted],
   ]
 }
 

@@ -141,7 +141,17 @@ function lineNotes(view: View, outcome: OutcomeView): string[] {
     : ''
   return [
     `N counts units within the bandwidth; the untreated mean is the plain fit at ${view.words.theLine}. Estimate, standard error, interval and p are corrected (bias-corrected, with the robust standard error).${fit} Lines estimated: ${estimatedLines(outcome.result).length} of ${howMany(view, outcome.result.lines.length)}.`,
+    ...quotedNotes(view, outcome),
     ...(view.smallestCell > 1 ? [`Counts under ${view.smallestCell} are withheld.`] : []),
+  ]
+}
+
+/** Lines where another interval than the one in the table is to go by. */
+function quotedNotes(view: View, outcome: OutcomeView): string[] {
+  const coarse = estimatedLines(outcome.result).filter((line) => line.quoted_because !== undefined)
+  if (coarse.length === 0) return []
+  return [
+    `At ${howMany(view, coarse.length)} fewer than 10 distinct distances lie within the bandwidth on a side: go by the bias-aware interval there, which lines.csv has.`,
   ]
 }
 

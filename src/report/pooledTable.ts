@@ -63,7 +63,7 @@ function outcomeRows(view: View, outcome: OutcomeView): TableRow[] {
       const what = pooled.take_up ? `pooled per unit of take-up, ${name}` : `pooled, ${name}`
       rows.push([head, what, ...shared, ...estimateCells(estimate, places), p(estimate.p)])
     }
-    if (pooled.bias_aware) rows.push(biasAwareRow(head, pooled.bias_aware, places))
+    if (pooled.bias_aware) rows.push(biasAwareRow(head, pooled.bias_aware, pooled.quoted, places))
   } else {
     rows.push({ head, across: `pooled: not estimated: ${reasonText(view, pooled.not_estimated)}` })
     if (pooled.take_up) rows.push(...firstStageRows(head, pooled.take_up, [missing, missing, missing], places))
@@ -110,10 +110,15 @@ function end(value: number | null, none: string, places: Places): string {
 }
 
 /** At a bandwidth of its own, whose units are not counted here. */
-function biasAwareRow(head: string, found: NonNullable<Jump['bias_aware']>, places: Places): TableRow {
+function biasAwareRow(
+  head: string,
+  found: NonNullable<Jump['bias_aware']>,
+  quoted: Jump['quoted'],
+  places: Places,
+): TableRow {
   return [
     head,
-    `pooled, bias-aware (curvature up to ${significant(found.smoothness)})`,
+    `pooled, bias-aware (curvature up to ${significant(found.smoothness)})${quoted === 'bias-aware' ? ', quoted' : ''}`,
     missing,
     missing,
     significant(found.bandwidth.treated),

@@ -41,12 +41,12 @@ function outcomeLines(outcome: Results['outcomes'][number]): string[] {
   const estimated = outcome.lines.filter((line) => !('not_estimated' in line)).length
   const text = (estimate: { estimate: number; low: number; high: number; p: number }) =>
     `${fixed(estimate.estimate, places)} (${intervalText(estimate, places)}), ${pWords(estimate.p)}`
-  const biasAwareText = (found: NonNullable<Jump['bias_aware']>) =>
-    `${fixed(found.estimate, places)} (${intervalText(found, places)}), bias-aware`
+  const biasAwareText = (found: NonNullable<Jump['bias_aware']>, because: string | undefined) =>
+    `${fixed(found.estimate, places)} (${intervalText(found, places)}), bias-aware${because === undefined ? '' : `: ${because}`}`
   return [
     outcome.outcome,
     jump
-      ? `  pooled  ${jump.quoted === 'bias-aware' && jump.bias_aware ? biasAwareText(jump.bias_aware) : text(jump.corrected)}`
+      ? `  pooled  ${jump.quoted === 'bias-aware' && jump.bias_aware ? biasAwareText(jump.bias_aware, jump.quoted_because) : text(jump.corrected)}`
       : `  pooled  not estimated: ${'not_estimated' in pooled ? pooled.not_estimated : ''}`,
     ...(aim ? [`  target  ${text(aim)}`] : []),
     ...(jump

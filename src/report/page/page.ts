@@ -166,7 +166,7 @@ ${answer.sentences.map((sentence) => `<p>${tied(escapeHtml(sentence))}</p>`).joi
 </div>`
   })
   return `${answers.join('\n')}
-<p class="terms">A jump is the treated side minus the untreated side at ${view.words.theLine}. <b>Plain</b> is the difference of the two fitted curves there. <b>Corrected</b> takes out the plain fit’s estimated smoothing bias and widens the standard error for having estimated it; intervals and p-values quoted are corrected unless they say plain.</p>`
+<p class="terms">A jump is the treated side minus the untreated side at ${view.words.theLine}. <b>Plain</b> is the difference of the two fitted curves there. <b>Corrected</b> takes out the plain fit’s estimated smoothing bias and widens the standard error for having estimated it; intervals and p-values quoted are corrected unless they say plain or bias-aware.</p>`
 }
 
 /** Keeps `p = 0.012` on one line. */
