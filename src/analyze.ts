@@ -19,6 +19,7 @@ import { sharedUnits } from './analysis/sharedUnits.js'
 import { attributeOfLines, doubtfulShares, sharesOfLines } from './analysis/shares.js'
 import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
 import { placeVariants, variantResults } from './analysis/variants.js'
+import { whatIfOf } from './analysis/whatIf.js'
 import { linesOfLayer, readLineLayer } from './borders/index.js'
 import type { Checked } from './problem.js'
 import { type LedgerStep, ledgerStep } from './records/index.js'
@@ -96,7 +97,10 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
       ...(checked ? outcomeChecks(checked, study, inputs, placed.value, about) : {}),
       ...(beside.length > 0 ? { variants: beside } : {}),
     })
-    drawn.push(outcomeExhibit(study, outcome, estimates))
+    drawn.push({
+      ...outcomeExhibit(study, outcome, estimates),
+      whatIf: whatIfOf(study, placed.value, entries, estimates),
+    })
   })
   const audit = auditOf(study, inputs, placed.value)
   const shared = sharedUnits(placement, inputs.table, study.records.id)

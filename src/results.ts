@@ -501,6 +501,51 @@ export interface OutcomeExhibit {
   readonly pooled?: ScatterExhibit
   /** In the order of `lines`; null where the line has no estimate. */
   readonly lines: readonly (ScatterExhibit | null)[]
+  /** What the page re-estimates from; absent: the page has no such panel. */
+  readonly whatIf?: WhatIfExhibit
+}
+
+/** Null where there is no estimate, or too few units for one to be made again without telling of them one by one. */
+export interface WhatIfExhibit {
+  readonly pooled: WhatIfSubject | null
+  /** In the order of `lines`; empty with a single line, which is the pooled one. */
+  readonly lines: readonly (WhatIfSubject | null)[]
+}
+
+/**
+ * One estimate at a ladder of bandwidths (b = h), three kernels, orders 1 and 2, and some holes at the line. Bandwidths are
+ * edges of cells of |x|; no cell has fewer units on a side than half the numbers given about it, nor than the smallest cell.
+ */
+export interface WhatIfSubject {
+  /**
+   * `sides`: parts of each side, from which the page makes the estimate. `table`: estimates made beforehand, where the two
+   * sides share something: clusters, fixed effects, covariates, take-up, units.
+   */
+  readonly from: 'sides' | 'table'
+  /** Ascending, in x units. */
+  readonly bandwidths: readonly number[]
+  /** Ascending; the first is the study's own. */
+  readonly donuts: readonly number[]
+  /** `table` alone: which donut (its place), and which side's bandwidth is not the study's own. */
+  readonly variations: readonly { readonly donut: number; readonly side: 'both' | 'untreated' | 'treated' }[]
+  /**
+   * Doubles as base64, lowest byte first; NaN where there is no estimate. Kernels are triangular, Epanechnikov, uniform.
+   * `sides`: [donut][bandwidth][untreated, treated][kernel][order 1, 2, 3][level, variance, Σl², Σl⁴].
+   * `table`: [variation][bandwidth][kernel][order 1, 2][plain, corrected][estimate, standard error, degrees of freedom].
+   */
+  readonly sums: string
+  /** [donut][bandwidth][nearer than the bandwidth, that or at it] */
+  readonly units: BySide<readonly number[]>
+  /** Cells between neighbouring bandwidths, the first from the study's donut. */
+  readonly cells: BySide<WhatIfCells>
+}
+
+/** One double per cell, as base64; weighted where the study has weights. */
+export interface WhatIfCells {
+  /** Mean |x|. */
+  readonly x: string
+  readonly mean: string
+  readonly standardError: string
 }
 
 /** Binned means near a line, and the plain fit on both sides. x is signed; y is in outcome units. */

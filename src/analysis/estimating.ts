@@ -178,23 +178,27 @@ function variancesOf(study: Study, hasClusters: boolean): { lineVariance: Varian
 }
 
 /** Withholds an estimate whose bandwidth is too narrow for what is known of the positions. */
-function bandwidthGuard(
-  study: Study,
-  { repeated }: Placed,
-): <T extends LineEstimate>(made: OrReason<T>) => OrReason<T> {
-  const { line } = study
-  if (line.kind !== 'border' || !repeated) return (made) => made
-  const perUnit = metresPerUnit[line.unit]
+function bandwidthGuard(study: Study, placed: Placed): <T extends LineEstimate>(made: OrReason<T>) => OrReason<T> {
+  const against = reasonAgainstWidth(study, placed)
   return (made) => {
     if (hasReason(made)) return made
-    const { untreated, treated } = made.jump.bandwidths.h
+    const reason = against(made.jump.bandwidths.h)
+    return reason === undefined ? made : { reason }
+  }
+}
+
+/** Why a bandwidth is too narrow for what is known of the positions; undefined where it is not. */
+export function reasonAgainstWidth(
+  { line }: Study,
+  { repeated }: Placed,
+): (h: { readonly untreated: number; readonly treated: number }) => string | undefined {
+  if (line.kind !== 'border' || !repeated) return () => undefined
+  const perUnit = metresPerUnit[line.unit]
+  return ({ untreated, treated }) => {
     const metres = Math.min(untreated, treated) * perUnit
-    if (metres < 2 * line.positionError) {
-      const width = Number(metres.toPrecision(4))
-      return { reason: `the bandwidth of ${width} m is under twice the position error of ${line.positionError} m` }
-    }
-    const suspicion = centroidSuspicion(repeated(), metres)
-    return suspicion === undefined ? made : { reason: suspicion }
+    if (!(metres < 2 * line.positionError)) return centroidSuspicion(repeated(), metres)
+    const width = Number(metres.toPrecision(4))
+    return `the bandwidth of ${width} m is under twice the position error of ${line.positionError} m`
   }
 }
 
@@ -330,12 +334,39 @@ function pooledWithMore(
     const interval = poolBiasAware(sample, basis.lines, { ...basis.options, smoothness })
     return { ...pooled, ...beside, biasAware: interval }
   }
-  const made = perTakeUp(pooled, takeUp, basis.options, (_, { h, b }) => {
+  const made = pooledPerTakeUp(pooled, basis, donut, takeUp)
+  return hasReason(made) ? made : { ...pooled, ...beside, ...made }
+}
+
+function pooledPerTakeUp(
+  pooled: LineEstimate,
+  basis: PoolBasis,
+  donut: number,
+  takeUp: NamedColumn,
+): OrReason<LineEstimate> {
+  return perTakeUp(pooled, takeUp, basis.options, (_, { h, b }) => {
     const options = { ...basis.options, bandwidth: { kind: 'fixed' as const, ...h, bias: b } }
     const first = estimatePooled({ ...basis, options, sample: withColumn(basis.sample, takeUp) }, donut)
     return hasReason(first) ? { ok: false, reason: first.reason } : { ok: true, jump: first.jump }
   })
-  return hasReason(made) ? made : { ...pooled, ...beside, ...made }
+}
+
+/** The estimate of a basis, per unit of take-up where there is one; nothing beside it. */
+export function estimateAgain(
+  basis: PoolBasis,
+  donut: number,
+  takeUp: NamedColumn | undefined,
+): OrReason<LineEstimate> {
+  const pooled = estimatePooled(basis, donut)
+  return hasReason(pooled) || !takeUp ? pooled : pooledPerTakeUp(pooled, basis, donut, takeUp)
+}
+
+/** What the estimate of one line is made from: a pool of that line alone, which comes to the same. */
+export function basisOfLine(study: Study, placed: Placed, entries: OutcomeEntries, line: number): PoolBasis {
+  const own = entriesOfLine(entries, line)
+  const { lineVariance } = variancesOf(study, placed.cluster !== undefined)
+  const options = jumpOptions(study.estimation, lineVariance, placed)
+  return basisOf(study, { ...own, group: new Int32Array(own.x.length) }, 1, options, entries.covariates)
 }
 
 /** At bandwidths of its own, the estimate without covariates. */

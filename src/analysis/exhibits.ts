@@ -55,7 +55,7 @@ function binsOf(sample: Sample, name: 'untreated' | 'treated', h: number, smalle
 }
 
 /** Weighted means of t and y, and the standard error of the latter. */
-function meansOf(side: Side, from: number, to: number): { x: number; mean: number; standardError: number } {
+export function meansOf(side: Side, from: number, to: number): { x: number; mean: number; standardError: number } {
   let total = 0
   let x = 0
   let mean = 0

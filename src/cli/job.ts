@@ -6,6 +6,7 @@ import { withFrozen } from './frozen.js'
 import { withGround } from './ground.js'
 import { readInputs, type StudyFile } from './inputs.js'
 import { resultNames } from './outFolder.js'
+import { pageScript } from './pageScript.js'
 import type { WriteFile } from './resultsFolder.js'
 import { resultsJson } from './resultsJson.js'
 import { unitsCsv } from './unitsCsv.js'
@@ -71,7 +72,7 @@ export async function writeDrawn(write: WriteFile, { study }: StudyFile, analysi
   const resolved = resolvedStudy(study)
   await write('results.json', [resultsJson(analysis.results)])
   await write('study.resolved.yaml', [resolved])
-  const input = { analysis, resolvedStudy: resolved, disclosure: study.disclosure }
+  const input = { analysis, resolvedStudy: resolved, disclosure: study.disclosure, script: pageScript() }
   const drawn = drawReport(input)
   for (const [path, text] of drawn) if (!written.has(path)) await write(known(path), [text])
   const tables = reportTables(input)

@@ -35,8 +35,10 @@ export {
   type Sample,
   type Side,
   splitSide,
+  withinBandwidth,
   withOutcomes,
 } from './sample.js'
+export { jumpOfSides, type SideChoices, type SideSums, sideSums } from './sideSums.js'
 export { eachNeighbourhood, type SpatialPlaces, spatialPlaces } from './spatialPairs.js'
 export { type TakeUpRatio, takeUpRatio } from './takeUp.js'
 export {

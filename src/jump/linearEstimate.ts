@@ -71,8 +71,9 @@ function spreadOf(parts: readonly LinearPart[], options: InferenceOptions, repea
   const weights = parts.map((part) => part.weights)
   let estimate = 0
   const psi = parts.map(({ side, fit, weights: l, neighbours }) => {
+    const { y } = side
     let sum = estimate
-    for (let i = 0; i < l.length; i++) sum += l[i] * side.y[i]
+    for (let i = 0; i < l.length; i++) sum += l[i] * y[i]
     estimate = sum
     const residuals = neighbours ?? scaledResiduals(side, fit, l.length, variance)
     const values = new Float64Array(l.length)

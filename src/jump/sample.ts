@@ -4,6 +4,7 @@
  * cannot change a single bit of any sum.
  */
 import { argsort, argsortBy } from '../math/index.js'
+import { countWithin } from './kernel.js'
 
 export interface BySide<T> {
   readonly untreated: T
@@ -129,6 +130,12 @@ export function withOutcomes(sample: Sample, untreated: Float64Array, treated: F
 export function outsideDonut(sample: Sample, donut: number): Sample {
   const cut = (side: Side) => viewOf(side, firstAtOrAbove(side.t, donut), side.t.length)
   return donut > 0 ? { ...sample, untreated: cut(sample.untreated), treated: cut(sample.treated) } : sample
+}
+
+/** The entries with |x| at or below a bandwidth on each side, as views; the centre stays. */
+export function withinBandwidth(sample: Sample, { untreated, treated }: BySide<number>): Sample {
+  const cut = (side: Side, h: number) => viewOf(side, 0, countWithin(side.t, h, 'uniform'))
+  return { ...sample, untreated: cut(sample.untreated, untreated), treated: cut(sample.treated, treated) }
 }
 
 type SideArray = Float64Array | Int32Array

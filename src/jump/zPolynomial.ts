@@ -1,7 +1,7 @@
 /** Polynomials in z on [−1, 1] as coefficients of 1, z, z², …, and the change to and from Legendre polynomials. */
 
 /** Row j: coefficients of the Legendre polynomial P_j in powers of z (DLMF 18.9.1), side order+1, row-major. */
-function legendreCoefficients(order: number): Float64Array {
+function makeCoefficients(order: number): Float64Array {
   const size = order + 1
   const rows = new Float64Array(size * size)
   rows[0] = 1
@@ -13,6 +13,13 @@ function legendreCoefficients(order: number): Float64Array {
     }
   }
   return rows
+}
+
+/** Of the orders that fits have, made once. */
+const coefficients = Array.from({ length: 12 }, (_, order) => makeCoefficients(order))
+
+function legendreCoefficients(order: number): Float64Array {
+  return coefficients[order] ?? makeCoefficients(order)
 }
 
 /** From sums against powers, Σ f z^j, to sums against Legendre polynomials, Σ f P_j. */

@@ -1,4 +1,5 @@
 /** Distributions, random numbers, root finding, small linear algebra and sorting: numbers in, numbers out. */
+export { base64, base64OfNumbers, numbersOfBase64 } from './base64.js'
 export { choleskyInPlace, choleskyInverse, choleskySolveInPlace } from './cholesky.js'
 export {
   chiSquareUpper,

@@ -56,7 +56,7 @@ export function drawReport(input: ReportInput): Map<string, string> {
   files.set('pooled.csv', pooledCsv(view))
   files.set('checks.csv', checksCsv(view))
   if (view.exhibits.map) files.set('borders.geojson', bordersGeojson(view, view.exhibits.map))
-  files.set('report.html', pageHtml(view, figures))
+  files.set('report.html', pageHtml(view, figures, input.script))
   return files
 }
 

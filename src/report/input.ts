@@ -10,4 +10,6 @@ export interface ReportInput {
     /** Counts of units above 0 and under this are withheld, and bins with fewer units are not drawn. */
     readonly smallestCell: number
   }
+  /** The page's script, `scarp/page-script`: with it a reader can change the bandwidth in the page; without it there is none. */
+  readonly script?: string
 }

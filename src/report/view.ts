@@ -40,6 +40,7 @@ export interface Choices {
   readonly interval: string
   readonly bandwidth: string
   readonly order: number
+  readonly kernel: string
   readonly donut: number
   readonly fixedEffects: boolean
   readonly weight: string | undefined
@@ -122,6 +123,7 @@ function choicesOf(resolvedStudy: string): Choices {
     interval: name(study.estimation?.interval) ?? 'auto',
     bandwidth: ruleOf(study.estimation?.bandwidth),
     order: Number(study.estimation?.order ?? 1),
+    kernel: name(study.estimation?.kernel) ?? 'triangular',
     donut: Number(study.estimation?.donut ?? 0),
     fixedEffects: study.pooling?.fixed_effects === true,
     weight: name(study.records?.weight),

@@ -6,11 +6,12 @@
  */
 import { choleskyInPlace, choleskySolveInPlace } from '../math/index.js'
 
-/** Rows of positive weight, one after another; `design` has as many numbers a row as there are columns. */
+/** Rows of positive weight. */
 export interface Rows {
   readonly group: Int32Array
   readonly weight: Float64Array
-  readonly design: Float64Array
+  /** Column by column. */
+  readonly design: readonly Float64Array[]
   readonly y: Float64Array
 }
 
@@ -21,77 +22,78 @@ export type Absorbed =
       readonly slopes: Float64Array
       /** Coefficient of each group's dummy; NaN for a group without rows. */
       readonly levels: Float64Array
+      /** Weight of each group. */
+      readonly totals: Float64Array
     }
   | { readonly ok: false }
 
 const smallestCondition = 1e-13
 
 /**
- * Fits y on `columns` columns and `groups` dummies; not ok where the columns are dependent within groups. `design` and `y`
- * are changed: their groups' means are taken out.
+ * Fits y on the columns and `groups` dummies; not ok where the columns are dependent within groups. `design` and `y` are
+ * changed: their groups' means are taken out.
  */
-export function absorbedLeastSquares(rows: Rows, groups: number, columns: number): Absorbed {
-  const { means, totals } = meansByGroup(rows, groups, columns)
-  centre(rows, means, columns)
+export function absorbedLeastSquares({ group, weight, design, y }: Rows, groups: number): Absorbed {
+  const columns = design.length
+  const totals = new Float64Array(groups)
+  for (let i = 0; i < y.length; i++) totals[group[i]] += weight[i]
+  const means = [...design, y].map((values) => takeMeansOut(values, group, weight, totals))
   const gram = new Float64Array(columns * columns)
   const slopes = new Float64Array(columns)
-  const { weight, design, y } = rows
-  const count = y.length
-  for (let i = 0; i < count; i++) {
-    const at = i * columns
+  const weighted = new Float64Array(Math.min(y.length, block))
+  for (let start = 0; start < y.length; start += block) {
+    const end = Math.min(y.length, start + block)
     for (let a = 0; a < columns; a++) {
-      const weighted = weight[i] * design[at + a]
-      for (let b = 0; b <= a; b++) gram[a * columns + b] += weighted * design[at + b]
-      slopes[a] += weighted * y[i]
+      const column = design[a]
+      for (let i = start; i < end; i++) weighted[i - start] = weight[i] * column[i]
+      for (let b = 0; b <= a; b++)
+        gram[a * columns + b] = addProducts(gram[a * columns + b], weighted, design[b], start, end)
+      slopes[a] = addProducts(slopes[a], weighted, y, start, end)
     }
   }
   if (!(choleskyInPlace(gram, columns) > smallestCondition)) return { ok: false }
   choleskySolveInPlace(gram, columns, slopes)
   const correction = new Float64Array(columns)
-  for (let i = 0; i < count; i++) {
-    const at = i * columns
-    let residual = y[i]
-    for (let a = 0; a < columns; a++) residual -= design[at + a] * slopes[a]
-    for (let a = 0; a < columns; a++) correction[a] += weight[i] * design[at + a] * residual
+  for (let start = 0; start < y.length; start += block) {
+    const end = Math.min(y.length, start + block)
+    for (let i = start; i < end; i++) weighted[i - start] = y[i]
+    for (let a = 0; a < columns; a++) {
+      const column = design[a]
+      for (let i = start; i < end; i++) weighted[i - start] -= column[i] * slopes[a]
+    }
+    for (let i = start; i < end; i++) weighted[i - start] *= weight[i]
+    for (let a = 0; a < columns; a++) correction[a] = addProducts(correction[a], weighted, design[a], start, end)
   }
   choleskySolveInPlace(gram, columns, correction)
   for (let a = 0; a < columns; a++) slopes[a] += correction[a]
   const levels = new Float64Array(groups).fill(Number.NaN)
-  for (let group = 0; group < groups; group++) {
-    if (!(totals[group] > 0)) continue
-    const at = group * (columns + 1)
-    levels[group] = means[at + columns]
-    for (let a = 0; a < columns; a++) levels[group] -= means[at + a] * slopes[a]
+  for (let of = 0; of < groups; of++) {
+    if (!(totals[of] > 0)) continue
+    levels[of] = means[columns][of]
+    for (let a = 0; a < columns; a++) levels[of] -= means[a][of] * slopes[a]
   }
-  return { ok: true, slopes, levels }
+  return { ok: true, slopes, levels, totals }
 }
 
-/** Takes each group's means out of the design and the outcomes. */
-function centre({ group, design, y }: Rows, means: Float64Array, columns: number): void {
-  for (let i = 0; i < y.length; i++) {
-    const at = group[i] * (columns + 1)
-    for (let a = 0; a < columns; a++) design[i * columns + a] -= means[at + a]
-    y[i] -= means[at + columns]
-  }
+/** Rows that are gone through together, so that they stay near the processor. */
+const block = 4096
+
+/** `sum` and Σ a[i − start] b[i]. */
+function addProducts(sum: number, a: Float64Array, b: Float64Array, start: number, end: number): number {
+  for (let i = start; i < end; i++) sum += a[i - start] * b[i]
+  return sum
 }
 
-/** Weighted means of the columns and of y within each group (row-major, groups × (columns + 1)), and each group's weight. */
-function meansByGroup(
-  { group, weight, design, y }: Rows,
-  groups: number,
-  columns: number,
-): { means: Float64Array; totals: Float64Array } {
-  const means = new Float64Array(groups * (columns + 1))
-  const totals = new Float64Array(groups)
-  for (let i = 0; i < y.length; i++) {
-    const at = group[i] * (columns + 1)
-    totals[group[i]] += weight[i]
-    for (let a = 0; a < columns; a++) means[at + a] += weight[i] * design[i * columns + a]
-    means[at + columns] += weight[i] * y[i]
-  }
-  for (let group = 0; group < groups; group++) {
-    if (!(totals[group] > 0)) continue
-    for (let a = 0; a <= columns; a++) means[group * (columns + 1) + a] /= totals[group]
-  }
-  return { means, totals }
+/** Takes each group's weighted mean out of the values and returns these means. */
+function takeMeansOut(
+  values: Float64Array,
+  group: Int32Array,
+  weight: Float64Array,
+  totals: Float64Array,
+): Float64Array {
+  const means = new Float64Array(totals.length)
+  for (let i = 0; i < values.length; i++) means[group[i]] += weight[i] * values[i]
+  for (let of = 0; of < means.length; of++) if (totals[of] > 0) means[of] /= totals[of]
+  for (let i = 0; i < values.length; i++) values[i] -= means[group[i]]
+  return means
 }

@@ -12,6 +12,8 @@ export type FixedEffects =
       readonly ok: true
       /** γ̂ of each line, with kernel-weighted mean 0; NaN for a line without units of positive weight; 0 without line effects. */
       readonly effects: Float64Array
+      /** Kernel weight of each line, where there are line effects. */
+      readonly weight?: Float64Array
       /** Of each covariate; NaN where it is constant or a sum of those before it. */
       readonly coefficients: Float64Array
     }
@@ -63,7 +65,7 @@ export function fitFixedEffects(
 ): FixedEffects {
   const groups = fixedEffects ? lines : 1
   const fitWith = (used: readonly Float64Array[]) =>
-    absorbedLeastSquares(rowsOf(sample, h, order, kernel, fixedEffects, used), groups, 2 * order + 1 + used.length)
+    absorbedLeastSquares(rowsOf(sample, h, order, kernel, fixedEffects, used), groups)
   const varying = placesThatVary(sample, h, kernel, groups, covariates)
   const all = fitWith(varying.map((place) => covariates[place]))
   const kept = all.ok ? varying : independentOf(varying, covariates, fitWith)
@@ -77,15 +79,15 @@ export function fitFixedEffects(
     coefficients[place] = fit.slopes[2 * order + 1 + k]
   })
   if (!fixedEffects) return { ok: true, effects: new Float64Array(lines), coefficients }
-  const weight = kernelWeightByLine(sample, h, kernel, lines)
+  const { levels, totals } = fit
   let level = 0
   let sum = 0
   for (let line = 0; line < lines; line++) {
-    if (!(weight[line] > 0)) continue
-    level += weight[line] * fit.levels[line]
-    sum += weight[line]
+    if (!(totals[line] > 0)) continue
+    level += totals[line] * levels[line]
+    sum += totals[line]
   }
-  return { ok: true, effects: fit.levels.map((effect) => effect - level / sum), coefficients }
+  return { ok: true, effects: levels.map((effect) => effect - level / sum), weight: totals, coefficients }
 }
 
 /** Places of the covariates that can be told apart: as many as can be added one by one. */
@@ -152,7 +154,7 @@ function rowsOf(
   const rows = {
     group: new Int32Array(size),
     weight: new Float64Array(size),
-    design: new Float64Array(size * columns),
+    design: Array.from({ length: columns }, () => new Float64Array(size)),
     y: new Float64Array(size),
   }
   const basis = new Float64Array(order + 1)
@@ -167,10 +169,9 @@ function rowsOf(
       rows.group[row] = fixedEffects ? (group as Int32Array)[i] : 0
       rows.y[row] = y[i]
       legendreShifted(order, t[i] / scale, basis)
-      const at = row * columns
-      if (name === 'treated') for (let j = 0; j <= order; j++) rows.design[at + j] = basis[j]
-      else for (let j = 1; j <= order; j++) rows.design[at + order + j] = basis[j]
-      for (let c = 0; c < covariates.length; c++) rows.design[at + 2 * order + 1 + c] = covariates[c][unit[i]]
+      if (name === 'treated') for (let j = 0; j <= order; j++) rows.design[j][row] = basis[j]
+      else for (let j = 1; j <= order; j++) rows.design[order + j][row] = basis[j]
+      for (let c = 0; c < covariates.length; c++) rows.design[2 * order + 1 + c][row] = covariates[c][unit[i]]
     }
   })
   return rows

@@ -63,16 +63,18 @@ export function poolLines(sample: Sample, lines: number, options: PoolOptions): 
   let used = sample
   let withoutEffect = 0
   let coefficients = new Float64Array(0)
+  let weights: Float64Array | undefined
   if (isFreed) {
     const freed = freeOfEffects(sample, bandwidths.h, lines, options)
     if (!freed.ok) return freed
     used = freed.sample
     withoutEffect = freed.dropped
     coefficients = freed.coefficients
+    weights = freed.weight
   }
   const estimated = jumpAt(used, bandwidths, { ...options, hasLineLevels: options.fixedEffects })
   if (!estimated.ok) return estimated
-  const weights = kernelWeightByLine(used, bandwidths.h, options.kernel, lines)
+  weights ??= kernelWeightByLine(used, bandwidths.h, options.kernel, lines)
   const total = weights.reduce((sum, weight) => sum + weight, 0)
   return {
     ok: true,
@@ -89,6 +91,8 @@ type Freed =
       readonly ok: true
       readonly sample: Sample
       readonly dropped: number
+      /** Kernel weight of each line at h, where there are line effects. */
+      readonly weight?: Float64Array
       readonly coefficients: Float64Array<ArrayBuffer>
     }
   | { readonly ok: false; readonly reason: string }
@@ -106,7 +110,7 @@ export function freeOfEffects(sample: Sample, h: BySide<number>, lines: number, 
   const { order, kernel, fixedEffects, covariates = [] } = options
   const fit = fitFixedEffects(sample, h, order, kernel, { lines, fixedEffects, covariates })
   if (!fit.ok) return fit
-  const { effects, coefficients } = fit
+  const { effects, weight, coefficients } = fit
   const untreated = keepEntries(sample.untreated, (group) => !Number.isNaN(effects[group]))
   const treated = keepEntries(sample.treated, (group) => !Number.isNaN(effects[group]))
   const taken = takenOut(sample, covariates, coefficients)
@@ -116,6 +120,7 @@ export function freeOfEffects(sample: Sample, h: BySide<number>, lines: number, 
     ok: true,
     sample: withOutcomes({ ...sample, untreated, treated }, free(untreated), free(treated)),
     dropped,
+    weight,
     coefficients: Float64Array.from(coefficients),
   }
 }

@@ -1,4 +1,4 @@
-/** report.html: one page, no request, no script. The answer in words first, then what it rests on. */
+/** report.html: one page, no request, and no script but that of its one panel. The answer in words first, then what it rests on. */
 import { auditTable } from '../auditTable.js'
 import { conflictTable, waterfallTable, whatElseTable } from '../borderTables.js'
 import { escapeHtml } from '../escape.js'
@@ -18,6 +18,7 @@ import { cautionsOf } from './cautions.js'
 import { methodsOf } from './methods.js'
 import { contentPolicy } from './policy.js'
 import { pageStyle } from './style.js'
+import { whatIfHtml } from './whatIf.js'
 
 /** Figures of the page, as SVG. */
 export interface PageFigures {
@@ -35,24 +36,30 @@ interface Section {
   readonly id: string
   readonly title: string
   readonly body: string
+  /** Hidden until the script runs. */
+  readonly needsScript?: boolean
 }
 
 const tallForest = 60
 const tallTable = 40
 
-export function pageHtml(view: View, figures: PageFigures): string {
+/** `script`: text that runs at the end of the page, where there is something for it. */
+export function pageHtml(view: View, figures: PageFigures, script?: string): string {
   const { results } = view
-  const sections = sectionsOf(view, figures)
-  const links = sections.map(({ id, title }) => `<li><a href="#${id}">${escapeHtml(title)}</a></li>`).join('')
+  const panel = script === undefined ? undefined : whatIfHtml(view)
+  const sections = sectionsOf(view, figures, panel)
+  const links = sections
+    .map((one) => `<li${hiddenMark(one)}><a href="#${one.id}">${escapeHtml(one.title)}</a></li>`)
+    .join('')
   const body = sections.map(
-    ({ id, title, body }) =>
-      `<section id="${id}" aria-labelledby="${id}-head">\n<h2 id="${id}-head">${escapeHtml(title)}</h2>\n${body}\n</section>`,
+    (one) =>
+      `<section id="${one.id}" aria-labelledby="${one.id}-head"${hiddenMark(one)}>\n<h2 id="${one.id}-head">${escapeHtml(one.title)}</h2>\n${one.body}\n</section>`,
   )
   return `<!doctype html>
 <html lang="en">
 <head>
 <meta charset="utf-8">
-<meta http-equiv="Content-Security-Policy" content="${contentPolicy(pageStyle)}">
+<meta http-equiv="Content-Security-Policy" content="${contentPolicy(pageStyle, panel && script)}">
 <meta name="viewport" content="width=device-width, initial-scale=1">
 <meta name="generator" content="scarp ${escapeHtml(results.version)}">
 <title>${escapeHtml(results.title)}</title>
@@ -75,16 +82,20 @@ ${body.join('\n')}
 </div>
 <footer>Drawn by scarp ${escapeHtml(results.version)} from results.json beside this page, which has every number in full. Seed ${results.seed}.</footer>
 </div>
-</body>
+${panel ? `<script>${script}</script>\n` : ''}</body>
 </html>
 `
+}
+
+function hiddenMark({ needsScript }: Section): string {
+  return needsScript ? ' class="needs-script" hidden' : ''
 }
 
 /** A step: level ground, the line, higher ground. */
 const emblem =
   '<svg width="34" height="20" viewBox="0 0 34 20" aria-hidden="true"><path class="s-muted" d="M17 1V19" fill="none" stroke-width="1" stroke-dasharray="2 2"/><path class="s-untreated" d="M1 15L17 14" fill="none" stroke-width="3"/><path class="s-treated" d="M17 6L33 5" fill="none" stroke-width="3"/></svg>'
 
-function sectionsOf(view: View, figures: PageFigures): Section[] {
+function sectionsOf(view: View, figures: PageFigures, panel: string | undefined): Section[] {
   const checks = checksTable(view)
   const setAside = setAsideTable(view)
   const ground = [waterfallTable(view), whatElseTable(view), conflictTable(view)].filter((table) => table !== undefined)
@@ -103,6 +114,7 @@ function sectionsOf(view: View, figures: PageFigures): Section[] {
     { id: 'answer', title: 'The answer', body: answerHtml(view) },
     { id: 'cautions', title: 'Before you use it', body: cautionsHtml(view) },
     { id: 'figures', title: 'Figures', body: figuresHtml(view, figures) },
+    ...(panel ? [{ id: 'what-if', title: 'What if', body: panel, needsScript: true }] : []),
     { id: 'together', title: 'All together', body: toHtml(pooledTable(view)) },
     {
       id: 'lines',

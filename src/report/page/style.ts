@@ -89,6 +89,20 @@ pre { overflow: auto; margin: 0; padding: 1rem 1.2rem; background: var(--raised)
 .inputs td, .inputs th { font-size: .8125rem; }
 .hash { font-family: var(--mono); }
 footer { margin-top: 3rem; padding-top: 1rem; border-top: 1px solid var(--rule); font: .8125rem/1.5 var(--sans); color: var(--muted); }
+.choices { margin: 1.4rem 0 1.2rem; padding: 1rem 1.2rem; background: var(--raised); border: 1px solid var(--rule); font: .9375rem/1.4 var(--sans); }
+.choices .fields { display: grid; grid-template-columns: repeat(auto-fill, minmax(min(100%, 13rem), 1fr)); gap: .8rem 1.2rem; }
+.choices p { margin: 0; display: flex; flex-direction: column; gap: .2rem; }
+.choices label { font-size: .8125rem; color: var(--muted); }
+.choices select, .choices button { font: inherit; color: var(--ink); background: var(--paper); border: 1px solid var(--muted); border-radius: 3px; padding: .3rem .5rem; max-width: 100%; min-height: 2rem; }
+.choices button { cursor: pointer; }
+.choices button:disabled, .choices select:disabled { color: var(--muted); border-color: var(--rule); cursor: default; }
+.choices .slide { max-width: none; display: grid; grid-template-columns: auto minmax(8rem, 1fr) auto; align-items: center; gap: .2rem .9rem; margin: 1rem 0; }
+.choices input { width: 100%; height: 2rem; margin: 0; accent-color: var(--accent); }
+.choices output { font-variant-numeric: tabular-nums; min-width: 6em; }
+.now { font-size: 1.25rem; line-height: 1.4; min-height: 2.8em; max-width: 40em; }
+.pair figure { margin: 0; }
+.pair { margin: 1.5rem 0; display: grid; grid-template-columns: repeat(auto-fit, minmax(min(100%, 30rem), 1fr)); gap: 1rem; }
+.pair .drawing svg { min-width: 26rem; }
 .f-ink { fill: var(--ink); } .f-muted { fill: var(--muted); } .f-grid { fill: var(--grid); } .f-untreated { fill: var(--untreated); }
 .f-treated { fill: var(--treated); } .f-paper { fill: var(--raised); } .f-background { fill: none; }
 .f-land { fill: var(--land); } .f-landtreated { fill: var(--land-treated); }
@@ -104,12 +118,14 @@ footer { margin-top: 3rem; padding-top: 1rem; border-top: 1px solid var(--rule);
   body { font-size: 1rem; }
   .top { padding-top: 1.75rem; }
   .drawing { padding: .6rem; }
+  .choices .slide { grid-template-columns: minmax(0, 1fr); }
 }
 @media (prefers-reduced-motion: reduce) { html { scroll-behavior: auto; } }
 @media print {
   :root {${light} --paper: #ffffff; }
   body { font-size: 10pt; }
-  nav, .skip { display: none; }
+  nav, .skip, .choices button { display: none; }
+  .pair { display: block; }
   .sheet { max-width: none; padding: 0; }
   .body { display: block; }
   .drawing, .scroll, .drawing.tall, .scroll.tall { overflow: visible; max-height: none; border-color: #999999; }
