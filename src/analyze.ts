@@ -11,18 +11,19 @@ import type { BorderFacts } from './analysis/border.js'
 import { outcomeChecks, sharedChecks } from './analysis/checks.js'
 import { entriesOf } from './analysis/entries.js'
 import { estimateOutcome, hasReason, type LineEstimate, type OutcomeEstimates } from './analysis/estimating.js'
-import { mapOf, scatterOf } from './analysis/exhibits.js'
-import { type AnalysisInputs, type Progress, wantedColumns } from './analysis/inputs.js'
+import { mapOf, scatterOf, takeUpOf } from './analysis/exhibits.js'
+import { type AnalysisInputs, type Progress, positionColumns, wantedColumns } from './analysis/inputs.js'
 import { movedCutoffs } from './analysis/movedCutoffs.js'
 import { type Placed, placeStudy } from './analysis/placing.js'
 import { sharedUnits } from './analysis/sharedUnits.js'
 import { attributeOfLines, doubtfulShares, sharesOfLines } from './analysis/shares.js'
 import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
+import { unitCells } from './analysis/unitCells.js'
 import { placeVariants, variantResults } from './analysis/variants.js'
 import { whatIfOf } from './analysis/whatIf.js'
 import { linesOfLayer, readLineLayer } from './borders/index.js'
 import type { Checked } from './problem.js'
-import { type LedgerStep, ledgerStep } from './records/index.js'
+import { type LedgerStep, ledgerStep, numbersOf } from './records/index.js'
 import type { Analysis, Exhibits, InputFile, MapExhibit, OutcomeExhibit, OutcomeResult, UnitRows } from './results.js'
 import type { Study } from './study/index.js'
 
@@ -127,10 +128,14 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
         ...(shares.value ? { target_population: shares.value.population } : {}),
         ...(audit ? { audit } : {}),
         ...(shared ? { shared_units: shared } : {}),
+        ...(checked && checked.balance.length > 0 ? { balance: checked.balance } : {}),
         outcomes,
         ledger,
       },
-      exhibits: exhibitsOf(study, inputs, placed.value, drawn),
+      exhibits: {
+        ...exhibitsOf(study, inputs, placed.value, drawn),
+        ...(checked?.density ? { density: checked.density } : {}),
+      },
       units: unitRows(placed.value),
     },
   }
@@ -173,6 +178,7 @@ function outcomeExhibit(study: Study, outcome: string, { lines, pooled }: Outcom
   return {
     outcome,
     ...(hasReason(pooled) ? {} : { pooled: draw(pooled) }),
+    ...(pooled.takeUp ? { takeUp: takeUpOf(study, pooled.takeUp) } : {}),
     lines: lines.map((line) => (hasReason(line) ? null : draw(line))),
   }
 }
@@ -187,8 +193,20 @@ function exhibitsOf(study: Study, inputs: AnalysisInputs, placed: Placed, outcom
     xUnit: spread ? `standard deviations of ${xUnit}` : xUnit,
     isBorder: line.kind === 'border',
     outcomes,
-    ...(border ? { map: mapOf(border, ids, barrierShapes(inputs)) } : {}),
+    ...(border ? { map: { ...mapOf(border, ids, barrierShapes(inputs)), ...cellsOf(study, inputs, placed) } } : {}),
   }
+}
+
+/** Units placed, counted on a grid; nothing where no cell is large enough to be shown. */
+function cellsOf(study: Study, { table }: AnalysisInputs, { placement, border }: Placed): Pick<MapExhibit, 'cells'> {
+  const near = border?.pieces[0]?.coordinates[0]
+  if (study.line.kind !== 'border' || !near) return {}
+  const [lon, lat] = positionColumns(study).map((name) => {
+    const values = numbersOf(table, name)
+    return Float64Array.from(placement.unit, (unit) => values[unit])
+  })
+  const cells = unitCells(lon, lat, near, study.disclosure.smallestCell)
+  return cells ? { cells } : {}
 }
 
 function barrierShapes(inputs: AnalysisInputs): MapExhibit['barriers'] {

@@ -26,9 +26,30 @@ export interface Results {
   readonly audit?: CutoffAudit
   /** Lines that share units; absent where none does. */
   readonly shared_units?: SharedUnits
+  /** Jumps of predetermined columns, which should be none; where the study names some and asks for checks. */
+  readonly balance?: readonly BalanceRow[]
   readonly outcomes: readonly OutcomeResult[]
   readonly ledger: readonly LedgerStep[]
 }
+
+/** Corrected pooled jump of a predetermined column, in its own units and in standard deviations of its untreated units. */
+export type BalanceRow = { readonly column: string } & (
+  | (Interval & {
+      readonly estimate: number
+      readonly standard_error: number
+      readonly p: number
+      /** Over all columns. */
+      readonly p_holm: number
+      readonly p_bh: number
+      readonly bandwidth: BySide
+      readonly units: BySide
+      /** Of the column among untreated units within the bandwidth. */
+      readonly standard_deviation: number
+      /** Estimate and interval over that; absent where it is 0. */
+      readonly standardised?: Interval & { readonly estimate: number }
+    })
+  | NotEstimated
+)
 
 export interface CutoffAudit {
   readonly column: string
@@ -438,6 +459,32 @@ export interface PlaceboBorders {
   readonly p_by_estimate?: number
 }
 
+/** Corrected estimate at a line shifted into one side, where nothing changes; the land nearer to the treated counts as treated. */
+export interface ShiftedEffect extends Interval {
+  readonly side: 'untreated' | 'treated'
+  readonly metres: number
+  /** Signed distance from the real line, in the study's unit. */
+  readonly at: number
+  readonly estimate: number
+  readonly standard_error: number
+  readonly p: number
+  readonly p_holm: number
+  readonly p_bh: number
+  /** Units within the bandwidth. */
+  readonly units: number
+  /** How far the curve, as drawn, strays from the distance. */
+  readonly error_metres: number
+}
+
+export interface ShiftedLines {
+  readonly shifted: readonly ShiftedEffect[]
+  readonly not_estimated: readonly {
+    readonly side: 'untreated' | 'treated'
+    readonly metres: number
+    readonly reason: string
+  }[]
+}
+
 /** The study with some keys written otherwise. */
 export interface VariantResult {
   readonly variant: string
@@ -481,6 +528,7 @@ export interface OutcomeResult {
   readonly moved_cutoffs?: MovedCutoffs
   readonly ladders?: Ladders
   readonly placebo_borders?: PlaceboBorders
+  readonly shifted_lines?: ShiftedLines
   /** Requirements of the What Works Clearinghouse handbook, in our words. */
   readonly standards?: readonly StandardsRow[]
   readonly variants?: readonly VariantResult[]
@@ -494,11 +542,38 @@ export interface Exhibits {
   readonly isBorder: boolean
   readonly outcomes: readonly OutcomeExhibit[]
   readonly map?: MapExhibit
+  /** Where the study asks for checks and has units enough. */
+  readonly density?: DensityExhibit
+}
+
+/** Units near the line: in bins of x on both sides, and the densities that the test compares at the line itself. */
+export interface DensityExhibit {
+  /** Units per km² of land; else per unit of x. */
+  readonly perSquareKm: boolean
+  /** From the line outwards on each side; units and density are null where there are fewer units than the smallest cell, but some. */
+  readonly bins: readonly {
+    readonly side: 'untreated' | 'treated'
+    readonly low: number
+    readonly high: number
+    readonly units: number | null
+    readonly density: number | null
+  }[]
+  readonly atLine: BySide<{ readonly density: number; readonly standardError: number }>
+  /** Treated over untreated, at the line. */
+  readonly ratio: number
+  readonly p: number
+  readonly bandwidth: number
+  readonly units: BySide
 }
 
 export interface OutcomeExhibit {
   readonly outcome: string
   readonly pooled?: ScatterExhibit
+  /** Take-up in place of the outcome, at the pooled estimate's bandwidth, also where the ratio is withheld. */
+  readonly takeUp?: ScatterExhibit & { readonly column: string } & Pick<
+      Jump,
+      'bandwidth' | 'units_in_bandwidth' | 'order' | 'kernel'
+    >
   /** In the order of `lines`; null where the line has no estimate. */
   readonly lines: readonly (ScatterExhibit | null)[]
   /** What the page re-estimates from; absent: the page has no such panel. */
@@ -587,6 +662,23 @@ export interface MapExhibit {
   readonly barriers: readonly {
     readonly name: string
     readonly coordinates: readonly (readonly (readonly number[])[])[]
+  }[]
+  /** Units placed, counted in squares of a grid that no unit's place decides; absent where none is drawn. */
+  readonly cells?: UnitCells
+}
+
+export interface UnitCells {
+  readonly sideMetres: number
+  /** Units in the cells below, and all. */
+  readonly shown: number
+  readonly units: number
+  /** Edges in degrees; only cells with as many units as the smallest cell. */
+  readonly cells: readonly {
+    readonly west: number
+    readonly south: number
+    readonly east: number
+    readonly north: number
+    readonly units: number
   }[]
 }
 

@@ -1,23 +1,27 @@
 /** Predetermined columns must not jump: each on its own, and all together by their joint covariance. */
-
 import { jointTest } from '../checks/index.js'
-import { covarianceMatrix, type JumpFit } from '../jump/index.js'
+import { covarianceMatrix, type JumpFit, type Side } from '../jump/index.js'
 import { numbersOf } from '../records/index.js'
-import type { CheckResult } from '../results.js'
+import type { BalanceRow, CheckResult } from '../results.js'
 import type { Study } from '../study/index.js'
-import { adjustedFor } from './adjusted.js'
+import { type Adjusted, adjustedFor } from './adjusted.js'
 import { entriesOfValues } from './entries.js'
-import { hasReason, type OrReason, pooledOnly } from './estimating.js'
+import { hasReason, type LineEstimate, type OrReason, pooledOnly } from './estimating.js'
 import type { AnalysisInputs } from './inputs.js'
 import type { Placed } from './placing.js'
 import { shown } from './words.js'
 
 interface Column {
   readonly name: string
-  readonly made: OrReason<{ readonly jump: JumpFit }>
+  readonly made: OrReason<LineEstimate>
 }
 
-export function balanceChecks(study: Study, { table }: AnalysisInputs, placed: Placed): CheckResult[] {
+/** Rows for the sheet of checks, and the jumps themselves; empty where the study names no predetermined column. */
+export function balanceChecks(
+  study: Study,
+  { table }: AnalysisInputs,
+  placed: Placed,
+): { readonly checks: readonly CheckResult[]; readonly rows: readonly BalanceRow[] } {
   const columns = study.predetermined.map((name): Column => {
     const entries = entriesOfValues(study, table, placed, numbersOf(table, name))
     return { name, made: pooledOnly(study, placed, entries) }
@@ -34,14 +38,46 @@ export function balanceChecks(study: Study, { table }: AnalysisInputs, placed: P
     const says = `${jumps ? 'jumps' : 'moves'} by ${shown(estimate)} (${shown(low)} to ${shown(high)})`
     return { check, statistic: estimate / standardError, p, ...both, verdict: jumps ? 'doubt' : 'fine', says }
   })
-  return [
-    ...rows,
-    ...joint(
-      fits.map(({ jump }) => jump),
-      placed,
-      alpha,
-    ),
-  ]
+  const all = fits.map(({ jump }) => jump)
+  return {
+    checks: [...rows, ...joint(all, placed, alpha)],
+    rows: columns.map(({ name, made }): BalanceRow => {
+      if (hasReason(made)) return { column: name, not_estimated: made.reason }
+      return { column: name, ...jumpOf(made, adjusted[fits.findIndex((fit) => fit.name === name)]) }
+    }),
+  }
+}
+
+function jumpOf({ jump, sample }: LineEstimate, adjusted: Adjusted) {
+  const { estimate, standardError, low, high, p } = jump.corrected
+  const deviation = spreadWithin(sample.untreated, jump.unitsInBandwidth.untreated)
+  return {
+    estimate,
+    standard_error: standardError,
+    low,
+    high,
+    p,
+    ...adjusted,
+    bandwidth: jump.bandwidths.h,
+    units: jump.unitsInBandwidth,
+    standard_deviation: deviation,
+    ...(deviation > 0
+      ? { standardised: { estimate: estimate / deviation, low: low / deviation, high: high / deviation } }
+      : {}),
+  }
+}
+
+/** Standard deviation of the first units of a side, weighted where they have weights. */
+function spreadWithin({ y, w }: Side, count: number): number {
+  let [total, mean, squares] = [0, 0, 0]
+  for (let i = 0; i < count; i++) {
+    const weight = w === null ? 1 : w[i]
+    total += weight
+    mean += weight * y[i]
+  }
+  mean /= total
+  for (let i = 0; i < count; i++) squares += (w === null ? 1 : w[i]) * (y[i] - mean) ** 2
+  return count > 1 ? Math.sqrt((squares / total) * (count / (count - 1))) : 0
 }
 
 /** Hotelling's test of all jumps being 0, with the covariance that shared units and clusters give them. */

@@ -4,7 +4,7 @@
  */
 import { holm, moranNearLine } from '../checks/index.js'
 import { numbersOf, type Table } from '../records/index.js'
-import type { CheckResult, OutcomeResult } from '../results.js'
+import type { BalanceRow, CheckResult, DensityExhibit, OutcomeResult } from '../results.js'
 import type { Study } from '../study/index.js'
 import { balanceChecks } from './balance.js'
 import { densityChecks } from './density.js'
@@ -25,6 +25,8 @@ import { shown } from './words.js'
 export interface SharedChecks {
   /** Rows that are the same for every outcome. */
   readonly rows: readonly CheckResult[]
+  readonly balance: readonly BalanceRow[]
+  readonly density: DensityExhibit | undefined
   readonly placebos: PlacedPlacebos | undefined
   /** Of `checks: full`. */
   readonly window: WindowFound | undefined
@@ -39,18 +41,18 @@ export function sharedChecks(
 ): SharedChecks | undefined {
   if (study.checks === 'none') return undefined
   progress?.('checking', 0, 1)
+  const density = densityChecks(study, placed)
+  const balance = balanceChecks(study, inputs, placed)
   return {
-    rows: [
-      ...densityChecks(study, placed),
-      ...heapingChecks(study, inputs.table, placed),
-      ...balanceChecks(study, inputs, placed),
-    ],
+    rows: [...density.checks, ...heapingChecks(study, inputs.table, placed), ...balance.checks],
+    balance: balance.rows,
+    density: density.exhibit,
     window: study.checks === 'full' ? windowOf(study, inputs.table, placed) : undefined,
     placebos: study.line.kind === 'border' ? placePlacebos(study, inputs, placed, progress) : undefined,
   }
 }
 
-type Checked = Pick<OutcomeResult, 'checks' | 'ladders' | 'placebo_borders' | 'standards'>
+type Checked = Pick<OutcomeResult, 'checks' | 'ladders' | 'placebo_borders' | 'shifted_lines' | 'standards'>
 
 /** `result`: the outcome as far as it is estimated. */
 export function outcomeChecks(
@@ -69,6 +71,7 @@ export function outcomeChecks(
     hasPlacebos: !isBorder,
   })
   const placebos = shared.placebos && placeboBorders(study, inputs, shared.placebos, outcome, eligible)
+  const shifted = isBorder ? shiftedLines(study, inputs, placed, outcome, eligible) : undefined
   const checks = [
     ...shared.rows,
     ...missingOutcome(study, inputs.table, placed, outcome, entries),
@@ -86,7 +89,7 @@ export function outcomeChecks(
       : []),
     ...withoutEachLine(result),
     ...(placebos?.checks ?? []),
-    ...(isBorder ? shiftedLines(study, inputs, placed, outcome, eligible).checks : []),
+    ...(shifted?.checks ?? []),
     ...(isBorder ? likeNeighbours(study, inputs.table, made) : []),
   ]
   const facts = { placed: placed.units, missing: entries.missing, distinct: fewestDistinct(made) }
@@ -94,6 +97,7 @@ export function outcomeChecks(
     checks,
     ...(ladders ? { ladders } : {}),
     ...(placebos?.exhibit ? { placebo_borders: placebos.exhibit } : {}),
+    ...(shifted?.exhibit ? { shifted_lines: shifted.exhibit } : {}),
     standards: standardsSheet(study, { ...result, checks }, facts),
   }
 }

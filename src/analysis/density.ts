@@ -9,9 +9,10 @@ import {
 } from '../checks/index.js'
 import type { Kernel } from '../jump/index.js'
 import { normalUpper, quantileOfSorted, streamOf } from '../math/index.js'
-import type { CheckResult } from '../results.js'
+import type { CheckResult, DensityExhibit } from '../results.js'
 import type { Study } from '../study/index.js'
 import { type Adjusted, adjustedFor } from './adjusted.js'
+import { groundExhibit, scoreExhibit } from './densityExhibit.js'
 import type { Placed } from './placing.js'
 import { shown } from './words.js'
 
@@ -22,18 +23,26 @@ const tries = 200_000
 /** Land is looked at as far as this share of the units lies from the border. */
 const shareNear = 0.9
 
-export function densityChecks(study: Study, placed: Placed): CheckResult[] {
+/** Rows for the sheet of checks, and what is drawn of them where the test could be made. */
+export interface DensityFound {
+  readonly checks: readonly CheckResult[]
+  readonly exhibit?: DensityExhibit
+}
+
+export function densityChecks(study: Study, placed: Placed): DensityFound {
   return study.line.kind === 'border' ? groundChecks(study, placed) : scoreChecks(study, placed)
 }
 
-function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
+function scoreChecks(study: Study, { placement }: Placed): DensityFound {
   const { kernel, level } = study.estimation
   const alpha = 1 - level
+  const made = atLine(placement.x, placement.treated, kernel)
   const pooled = [
-    rowOf('density', atLine(placement.x, placement.treated, kernel), alpha),
+    rowOf('density', made, alpha),
     ...(study.checks === 'full' ? [binnedRow(placement.x, placement.treated, alpha)] : []),
   ]
-  if (placement.lines.length === 1) return pooled
+  const drawn = made.ok && !('expected' in made) ? { exhibit: scoreExhibit(study, placement, made) } : {}
+  if (placement.lines.length === 1) return { checks: pooled, ...drawn }
   const byLine = placement.lines.map((): number[] => [])
   placement.line.forEach((line, e) => {
     byLine[line].push(e)
@@ -62,7 +71,7 @@ function scoreChecks(study: Study, { placement }: Placed): CheckResult[] {
           verdict: bad.length > 0 ? 'doubt' : 'fine',
           says: `${tested}: ${bad.length === 0 ? 'none jumps' : `${bad.length} jump`} after adjusting for their number`,
         }
-  return [...pooled, none, ...bad]
+  return { checks: [...pooled, none, ...bad], ...drawn }
 }
 
 type AtLine = DensityOutcome | DiscreteDensity
@@ -105,9 +114,9 @@ function binnedRow(x: Float64Array, treated: Uint8Array, alpha: number): CheckRe
 }
 
 /** Units per km² on the two sides: densities of units over those of random points on the same land. */
-function groundChecks(study: Study, { placement, known, border, rules }: Placed): CheckResult[] {
+function groundChecks(study: Study, { placement, known, border, rules }: Placed): DensityFound {
   const check = 'units per km²'
-  const impossible = (says: string): CheckResult[] => [{ check, verdict: 'not possible', says }]
+  const impossible = (says: string): DensityFound => ({ checks: [{ check, verdict: 'not possible', says }] })
   if (!known || !border || !rules) return impossible('the units were not measured on the ground')
   if (placement.x.length === 0) return impossible('no unit is placed')
   const sorted = placement.x.map(Math.abs).sort()
@@ -141,5 +150,8 @@ function groundChecks(study: Study, { placement, known, border, rules }: Placed)
   const p = 2 * normalUpper(Math.abs(z))
   const jumps = p < 1 - level
   const says = `at the border there are ${shown(Math.exp(difference))} times as many units per km² on the treated side: ${jumps ? 'more than chance' : 'no more than chance'} (land measured with ${ground.x.length} random points)`
-  return [{ check, statistic: z, p, verdict: jumps ? 'doubt' : 'fine', says }]
+  return {
+    checks: [{ check, statistic: z, p, verdict: jumps ? 'doubt' : 'fine', says }],
+    exhibit: groundExhibit(study, placement, ground, { units, land, ratio: Math.exp(difference), p }),
+  }
 }

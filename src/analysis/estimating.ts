@@ -59,6 +59,9 @@ export interface CovariatesMade {
 export interface TakeUpMade {
   readonly eligibility: JumpFit
   readonly ratio: TakeUpRatio
+  /** Take-up in place of the outcome, at the same bandwidths. */
+  readonly first: LineEstimate
+  readonly column: string
 }
 
 /** All lines' entries on one distance, sorted; with the donut still in it. */
@@ -239,7 +242,7 @@ function lineWithMore(
     return pooledWithMore(study, basis, takeUp, covariates)
   }
   const made = estimateLine(own, study.estimation, options)
-  return takeUp ? perTakeUp(made, takeUp, options, (sample, at) => jumpAt(sample, at, options)) : made
+  return takeUp ? perTakeUp(made, takeUp, options, (sample, at) => firstOf(sample, jumpAt(sample, at, options))) : made
 }
 
 function estimateLine(entries: Entries, estimation: EstimationPart, options: JumpOptions): OrReason<LineEstimate> {
@@ -347,7 +350,7 @@ function pooledPerTakeUp(
   return perTakeUp(pooled, takeUp, basis.options, (_, { h, b }) => {
     const options = { ...basis.options, bandwidth: { kind: 'fixed' as const, ...h, bias: b } }
     const first = estimatePooled({ ...basis, options, sample: withColumn(basis.sample, takeUp) }, donut)
-    return hasReason(first) ? { ok: false, reason: first.reason } : { ok: true, jump: first.jump }
+    return first
   })
 }
 
@@ -393,21 +396,25 @@ function perTakeUp(
   made: OrReason<LineEstimate>,
   takeUp: NamedColumn,
   { level, spatial }: JumpOptions,
-  estimate: (sample: Sample, bandwidths: Bandwidths) => Estimated,
+  estimate: (sample: Sample, bandwidths: Bandwidths) => OrReason<LineEstimate>,
 ): OrReason<LineEstimate> {
   if (hasReason(made)) return made
   const { biasAware: _, ...outcome } = made
   const first = estimate(withColumn(outcome.sample, takeUp), outcome.jump.bandwidths)
-  if (!first.ok) return { reason: `${takeUp.name}: ${first.reason}` }
+  if (hasReason(first)) return { reason: `${takeUp.name}: ${first.reason}` }
   const ratio = takeUpRatio(outcome.jump, first.jump, { level, ...(spatial ? { spatial } : {}) })
   if (typeof ratio === 'string') return { reason: ratio }
-  const details = { eligibility: outcome.jump, ratio }
+  const details = { eligibility: outcome.jump, ratio, first, column: takeUp.name }
   if (!(ratio.f >= leastFirstStage)) {
     const f = Number(ratio.f.toPrecision(3))
     return { reason: `take-up jumps too little for a ratio: F = ${f}, under ${leastFirstStage}`, takeUp: details }
   }
   const { plain, corrected, influence } = ratio
   return { ...outcome, jump: { ...outcome.jump, plain, corrected, influence }, takeUp: details }
+}
+
+function firstOf(sample: Sample, made: Estimated): OrReason<LineEstimate> {
+  return made.ok ? { jump: made.jump, sample } : { reason: made.reason }
 }
 
 /** The same units with another column in place of the outcome. */

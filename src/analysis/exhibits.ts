@@ -1,8 +1,9 @@
 /** What the report draws beside the numbers: binned means, fitted curves, the map. No record leaves through here. */
 import type { Border } from '../borders/index.js'
 import { fittedAt, type LocalFit, type Sample, type Side } from '../jump/index.js'
-import type { MapExhibit, ScatterBin, ScatterExhibit } from '../results.js'
-import type { LineEstimate } from './estimating.js'
+import type { MapExhibit, OutcomeExhibit, ScatterBin, ScatterExhibit } from '../results.js'
+import type { Study } from '../study/index.js'
+import type { LineEstimate, TakeUpMade } from './estimating.js'
 
 /** Bins within one bandwidth; as many again are drawn beyond it. */
 const binsWithinBandwidth = 10
@@ -23,6 +24,21 @@ export function scatterOf({ jump, sample }: LineEstimate, smallestCell: number):
       untreated: curveOf(jump.fits.untreated, h.untreated, -1, sample.centre),
       treated: curveOf(jump.fits.treated, h.treated, 1, sample.centre),
     },
+  }
+}
+
+/** Take-up in place of the outcome. */
+export function takeUpOf(
+  { estimation, disclosure }: Study,
+  { first, column }: TakeUpMade,
+): NonNullable<OutcomeExhibit['takeUp']> {
+  return {
+    ...scatterOf(first, disclosure.smallestCell),
+    column,
+    bandwidth: first.jump.bandwidths.h,
+    units_in_bandwidth: first.jump.unitsInBandwidth,
+    order: estimation.order,
+    kernel: estimation.kernel,
   }
 }
 
@@ -75,7 +91,9 @@ export function meansOf(side: Side, from: number, to: number): { x: number; mean
 }
 
 function curveOf(fit: LocalFit, h: number, sign: number, centre: number): { x: number[]; y: number[] } {
-  const end = Math.min(h, fit.scale)
+  // the farthest unit's own distance is not for drawing: the curve ends at the edge of a bin before it
+  const bin = h / binsWithinBandwidth
+  const end = fit.scale >= h ? h : Math.max(bin, Math.floor(fit.scale / bin) * bin)
   const x: number[] = []
   const y: number[] = []
   for (let i = 0; i < pointsOfCurve; i++) {

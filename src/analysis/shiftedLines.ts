@@ -3,7 +3,7 @@
 import { type BorderSide, eligible, measureUnits, type ShiftedBorder, shiftedBorder } from '../borders/index.js'
 import type { Placement } from '../placement.js'
 import { numbersOf } from '../records/index.js'
-import type { CheckResult } from '../results.js'
+import type { CheckResult, ShiftedEffect, ShiftedLines } from '../results.js'
 import type { BorderLine, Study } from '../study/index.js'
 import { adjustedFor } from './adjusted.js'
 import { metresPerUnit } from './border.js'
@@ -17,28 +17,6 @@ export const shiftedCheck = 'shifted lines'
 
 /** Lines are shifted by these many pooled bandwidths where no distances are given. */
 const usualBandwidths = [1, 1.5, 2]
-
-/** Corrected estimate at one shifted line; whichever land is nearer to the treated land counts as treated. */
-export interface ShiftedEffect {
-  readonly side: BorderSide
-  readonly metres: number
-  readonly estimate: number
-  readonly standard_error: number
-  readonly low: number
-  readonly high: number
-  readonly p: number
-  readonly p_holm: number
-  readonly p_bh: number
-  /** Units within the bandwidth. */
-  readonly units: number
-  /** How far the curve, as drawn, strays from the distance. */
-  readonly error_metres: number
-}
-
-export interface ShiftedExhibit {
-  readonly shifted: readonly ShiftedEffect[]
-  readonly not_estimated: readonly { readonly side: BorderSide; readonly metres: number; readonly reason: string }[]
-}
 
 type Unadjusted = Omit<ShiftedEffect, 'p_holm' | 'p_bh'>
 
@@ -54,7 +32,7 @@ export function shiftedLines(
   outcome: string,
   pooled: OutcomeEstimates['pooled'],
   metres?: readonly number[],
-): { readonly checks: readonly CheckResult[]; readonly exhibit?: ShiftedExhibit } {
+): { readonly checks: readonly CheckResult[]; readonly exhibit?: ShiftedLines } {
   const { line } = study
   const impossible = (says: string): CheckResult => ({ check: shiftedCheck, verdict: 'not possible', says })
   if (line.kind !== 'border' || !placed.border)
@@ -115,7 +93,8 @@ function shiftedEffect(
   const { untreated, treated } = pooled.jump.unitsInBandwidth
   const units = untreated + treated
   const { errorMetres } = made.value
-  return { side, metres, estimate, standard_error: standardError, low, high, p, units, error_metres: errorMetres }
+  const at = ((side === 'treated' ? 1 : -1) * metres) / perUnit
+  return { side, metres, at, estimate, standard_error: standardError, low, high, p, units, error_metres: errorMetres }
 }
 
 /** The study's units of one side, where the map has them there, too, placed against the shifted line. */
