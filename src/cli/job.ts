@@ -7,6 +7,7 @@ import { withGround } from './ground.js'
 import { readInputs, type StudyFile } from './inputs.js'
 import { resultNames } from './outFolder.js'
 import { pageScript } from './pageScript.js'
+import { pdfOf } from './pdf.js'
 import type { WriteFile } from './resultsFolder.js'
 import { resultsJson } from './resultsJson.js'
 import { unitsCsv } from './unitsCsv.js'
@@ -67,14 +68,19 @@ function withGeometry(results: Results, geometry: Results['geometry']): Results 
 /** Every file of the results folder but units.csv; they follow from `analysis` and the study alone. */
 export async function writeDrawn(write: WriteFile, { study }: StudyFile, analysis: Drawable): Promise<void> {
   const { resolvedStudy } = await import('../study/index.js')
-  const { drawReport, reportTables } = await import('../report/index.js')
+  const { drawReport, pdfPath, reportTables } = await import('../report/index.js')
   const { docxOf, xlsxOf } = await import('./documents.js')
   const resolved = resolvedStudy(study)
   await write('results.json', [resultsJson(analysis.results)])
   await write('study.resolved.yaml', [resolved])
   const input = { analysis, resolvedStudy: resolved, disclosure: study.disclosure, script: pageScript() }
   const drawn = drawReport(input)
-  for (const [path, text] of drawn) if (!written.has(path)) await write(known(path), [text])
+  for (const [path, text] of drawn) {
+    if (written.has(path)) continue
+    await write(known(path), [text])
+    const pdf = pdfPath(path)
+    if (pdf !== undefined) await write(known(pdf), [await pdfOf(text)])
+  }
   const tables = reportTables(input)
   await write('tables/tables.docx', [await docxOf(study.title, tables)])
   await write('tables/tables.xlsx', [await xlsxOf(tables)])

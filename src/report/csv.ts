@@ -4,7 +4,7 @@ import { csvField } from './escape.js'
 import { isSmall } from './numbers.js'
 import { estimatedLines, isEstimated, type OutcomeView, reasonText, type View } from './view.js'
 
-type Value = string | number | null | undefined
+export type Value = string | number | null | undefined
 type Fields = readonly (readonly [column: string, value: Value])[]
 
 export function linesCsv(view: View): string {
@@ -150,10 +150,11 @@ export function checksCsv(view: View): string {
 }
 
 /** The count, or nothing where it is withheld; the column `counts_withheld_under` says so. */
-function openCount(view: View, units: number | undefined): number | undefined {
+export function openCount(view: View, units: number | undefined): number | undefined {
   return isSmall(units, view.smallestCell) ? undefined : units
 }
 
-function csvText(columns: readonly string[], rows: readonly (readonly Value[])[]): string {
+/** A head and rows of CSV, each field the shortest text that reads back as the same value. */
+export function csvText(columns: readonly string[], rows: readonly (readonly Value[])[]): string {
   return `${[columns, ...rows].map((row) => row.map(csvField).join(',')).join('\n')}\n`
 }

@@ -1,17 +1,16 @@
 /** Door of the report room: results in, text files out. It computes no estimate, and no record, id or unit coordinate passes it. */
 
 import { checksCsv, linesCsv, pooledCsv } from './csv.js'
-import { alongFigure } from './figures/along.js'
-import { forestFigure } from './figures/forest.js'
-import { mapFigure } from './figures/map.js'
-import { scatterFigure } from './figures/scatter.js'
+import { escapeMarkdown } from './escape.js'
+import { mainFigures, type ReportFigures, reportFigures } from './figures/all.js'
+import { withMore } from './figures/figure.js'
 import { bordersGeojson } from './geojson.js'
 import type { ReportInput } from './input.js'
-import { type PageFigures, pageHtml } from './page/page.js'
+import { pageHtml } from './page/page.js'
 import { type NamedTable, paperTables } from './paperTables.js'
 import { splitTable } from './splitTable.js'
 import { toCsv, toLatex, toMarkdown } from './tables.js'
-import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View, viewOf } from './view.js'
+import { viewOf } from './view.js'
 
 export { comparedLines } from './comparedText.js'
 export { exhibitsOf } from './exhibitList.js'
@@ -24,28 +23,18 @@ export { geometryWords, summaryLines } from './summary.js'
 export { type CellNumber, numberOfCell } from './tableCells.js'
 export type { TableRow, TextTable } from './tables.js'
 
-const mostLineFigures = 200
+/** Path of the PDF that a figure's SVG is to have, made where files are written; nothing for figures of single lines. */
+export function pdfPath(svgPath: string): string | undefined {
+  const isMain = /^figures\/.*\.svg$/.test(svgPath) && !/-line-\d+(?:-fit)?\.svg$/.test(svgPath)
+  return isMain ? svgPath.replace(/svg$/, 'pdf') : undefined
+}
 
 /** All text files of the results folder but results.json, units.csv and study.resolved.yaml: path -> text. */
 export function drawReport(input: ReportInput): Map<string, string> {
   const view = viewOf(input)
   const files = new Map<string, string>()
-  const figures: PageFigures = {
-    map: view.exhibits.map ? mapFigure(view, 'figure-map') : undefined,
-    byOutcome: view.outcomes.map((outcome) => ({
-      pooled: pooledFigure(view, outcome),
-      forest: forestFigure(view, outcome, `figure-${outcome.slug}-forest`),
-      along: alongFigure(view, outcome, `figure-${outcome.slug}-along`),
-    })),
-    lineFigures: addLineFigures(view, files),
-  }
-  view.outcomes.forEach((outcome, index) => {
-    const { pooled, forest, along } = figures.byOutcome[index]
-    if (along) files.set(`figures/${outcome.slug}-along.svg`, along)
-    if (pooled) files.set(`figures/${outcome.slug}-pooled.svg`, pooled)
-    files.set(`figures/${outcome.slug}-forest.svg`, forest)
-  })
-  if (figures.map) files.set('figures/map.svg', figures.map)
+  const figures = reportFigures(view)
+  addFigures(files, figures)
   for (const { name, table } of paperTables(view)) {
     files.set(`tables/${name}.csv`, toCsv(table))
     const parts = splitTable(table)
@@ -65,45 +54,15 @@ export function reportTables(input: ReportInput): NamedTable[] {
   return paperTables(viewOf(input))
 }
 
-function pooledFigure(view: View, outcome: OutcomeView): string | undefined {
-  const jump = outcome.result.pooled
-  const exhibit = outcome.exhibit?.pooled
-  if (!exhibit || !isEstimated(jump)) return undefined
-  const lines = estimatedLines(outcome.result).length
-  return scatterFigure(view, {
-    id: `figure-${outcome.slug}-pooled`,
-    outcome: outcome.result.outcome,
-    of: lines === 1 ? `the one ${view.words.line}` : `${howMany(view, lines)} pooled`,
-    jump,
-    exhibit,
-  })
-}
-
-/** Figures of single lines, numbered by the line's place in the study; at most 200 over all outcomes. */
-function addLineFigures(view: View, files: Map<string, string>): PageFigures['lineFigures'] {
-  let drawn = 0
-  let leftOut = 0
-  for (const outcome of view.outcomes) {
-    outcome.result.lines.forEach((jump, index) => {
-      const exhibit = outcome.exhibit?.lines[index]
-      if (!exhibit || 'not_estimated' in jump) return
-      if (drawn >= mostLineFigures) {
-        leftOut++
-        return
-      }
-      const name = `${outcome.slug}-line-${index + 1}`
-      files.set(
-        `figures/${name}.svg`,
-        scatterFigure(view, {
-          id: `figure-${name}`,
-          outcome: outcome.result.outcome,
-          of: labelOf(view, jump.line),
-          jump,
-          exhibit,
-        }),
-      )
-      drawn++
-    })
+/** SVG and CSV of every figure, and all captions in one file. */
+function addFigures(files: Map<string, string>, figures: ReportFigures): void {
+  const main = mainFigures(figures)
+  for (const { name, svg, csv } of [...main, ...figures.lines.flatMap(withMore)]) {
+    files.set(`figures/${name}.svg`, svg)
+    files.set(`figures/${name}.csv`, csv)
   }
-  return { drawn, leftOut }
+  const captions = main.map(({ name, title, caption }) =>
+    [`## ${name}`, '', `**${escapeMarkdown(title)}.** ${escapeMarkdown(caption)}`, ''].join('\n'),
+  )
+  files.set('figures/captions.md', ['# Captions of the figures', '', ...captions].join('\n'))
 }

@@ -5,11 +5,35 @@ import { cell, fixed, missing, type Places, p, sharedPlaces, significant } from 
 import type { TableRow, TextTable } from './tables.js'
 import { isEstimated, type OutcomeView, reasonText, type View, widthText } from './view.js'
 
+export type RungMade = Extract<Rung, { readonly estimate: number }>
+
+/** The study's own estimate beside its ladders: with take-up, of eligibility, as they are. */
+export function ownRung(pooled: Jump): RungMade {
+  const { bandwidth, units_in_bandwidth: units, take_up: takeUp, corrected } = pooled
+  return { ...(takeUp ? takeUp.eligibility.corrected : corrected), bandwidth, units }
+}
+
+/** Places that all estimates of an outcome's ladders share. */
+export function ladderPlaces({ result: { ladders, pooled } }: OutcomeView): Places {
+  const rungs = ladders
+    ? [...ladders.bandwidth, ...ladders.donut, ...ladders.order_kernel, ...ladders.placebo_lines]
+    : []
+  const made: { readonly estimate: number; readonly standard_error: number }[] = rungs.flatMap((rung) =>
+    'not_estimated' in rung ? [] : [rung],
+  )
+  if (isEstimated<Jump>(pooled)) made.unshift(ownRung(pooled))
+  return sharedPlaces(
+    made.map((rung) => rung.standard_error),
+    made.map(({ estimate }) => estimate),
+  )
+}
+
 /** Nothing where no checks were run. */
-export function ladderTable(view: View, { result }: OutcomeView): TextTable | undefined {
+export function ladderTable(view: View, outcome: OutcomeView): TextTable | undefined {
+  const { result } = outcome
   const { ladders, pooled } = result
   if (!ladders || !isEstimated<Jump>(pooled)) return undefined
-  const own = { ...pooled.corrected, bandwidth: pooled.bandwidth, units: pooled.units_in_bandwidth }
+  const own = ownRung(pooled)
   const rungs: readonly (readonly [string, Rung])[] = [
     ['the study', own],
     ...ladders.bandwidth.map((rung) => [`${rung.scale} times the bandwidth`, rung] as const),
@@ -17,11 +41,7 @@ export function ladderTable(view: View, { result }: OutcomeView): TextTable | un
     ...ladders.order_kernel.map((rung) => [`order ${rung.order}, ${rung.kernel}`, rung] as const),
     ...ladders.placebo_lines.map((rung) => [`line that is none at ${significant(rung.at)}`, rung] as const),
   ]
-  const made = rungs.flatMap(([, rung]) => ('not_estimated' in rung ? [] : [rung]))
-  const places = sharedPlaces(
-    made.map((rung) => rung.standard_error),
-    made.map(({ estimate }) => estimate),
-  )
+  const places = ladderPlaces(outcome)
   return {
     caption: `${result.outcome}: the pooled estimate with one choice changed`,
     columns: [

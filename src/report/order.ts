@@ -3,7 +3,9 @@ import type { LineSummary } from '../results.js'
 
 const collator = new Intl.Collator('en', { numeric: true })
 
-export function inReadingOrder<T>(items: readonly T[], lineOf: (item: T) => LineSummary): T[] {
+type Named = Pick<LineSummary, 'line' | 'label' | 'cutoff'>
+
+export function inReadingOrder<T>(items: readonly T[], lineOf: (item: T) => Named): T[] {
   const allCutoffs = items.every((item) => lineOf(item).cutoff !== undefined)
   return [...items].sort((a, b) => {
     const [first, second] = [lineOf(a), lineOf(b)]

@@ -4,6 +4,7 @@ import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { seededRandom } from '../../src/math/index.js'
 import type { Jump, NotEstimated, Results } from '../../src/results.js'
+import { readCsv } from '../report/reading.js'
 import { newRoom, scarp, writeFiles } from './studies.js'
 
 const room = newRoom()
@@ -66,5 +67,20 @@ describe('take-up', () => {
     expect(ledger?.reasons).toEqual({ 'covariate or take-up missing': 90 })
     const table = readFileSync(join(room, 'out', 'tables', 'pooled.md'), 'utf8')
     expect(table.indexOf('jump in take-up')).toBeLessThan(table.indexOf('pooled per unit of take-up'))
+  })
+
+  it('is drawn first: binned take-up and its jump at every line, also where the ratio is withheld', () => {
+    const read = (file: string) => readFileSync(join(room, 'out', file), 'utf8')
+    const rows = readCsv(read('figures/y-take-up-lines.csv'))
+    const jumps = [...results.outcomes[0].lines, results.outcomes[0].pooled].map((jump) => jump.take_up)
+    expect(rows.map((row) => [Number(row.jump), Number(row.standard_error), Number(row.f)])).toEqual(
+      jumps.map((stage) => [stage?.jump, stage?.standard_error, stage?.f]),
+    )
+    const bins = readCsv(read('figures/y-take-up.csv'))
+    const treated = bins.filter(({ side }) => side === 'treated')
+    for (const { y } of treated) expect(Math.abs(Number(y) - 0.42)).toBeLessThan(0.15)
+    const page = read('report.html')
+    expect(page.indexOf('id="figure-y-take-up-title"')).toBeLessThan(page.indexOf('id="figure-y-pooled-title"'))
+    expect(page).toContain('Effect on y per unit of take-up')
   })
 })

@@ -28,7 +28,14 @@ describe('the folder', () => {
     const names = [...scoreFiles.keys()].filter((name) => !name.includes('-line-')).sort()
     expect(names).toEqual([
       'checks.csv',
+      'figures/captions.md',
+      'figures/ledger.csv',
+      'figures/ledger.svg',
+      'figures/weeks-in-work-forest.csv',
       'figures/weeks-in-work-forest.svg',
+      'figures/weeks-in-work-pooled-fit.csv',
+      'figures/weeks-in-work-pooled-fit.svg',
+      'figures/weeks-in-work-pooled.csv',
       'figures/weeks-in-work-pooled.svg',
       'lines.csv',
       'pooled.csv',
@@ -42,7 +49,7 @@ describe('the folder', () => {
   })
 
   it('has one figure for each line that has an estimate', () => {
-    expect([...scoreFiles.keys()].filter((name) => name.includes('-line-')).length).toBe(24)
+    expect([...scoreFiles.keys()].filter((name) => /-line-\d+\.svg$/.test(name)).length).toBe(24)
     expect(scoreFiles.has('figures/weeks-in-work-line-18.svg')).toBe(false)
   })
 

@@ -1,9 +1,13 @@
 /** Effects at points along the border: estimates, pointwise intervals, the band for the whole curve, blanks. */
 import { extent, quantile } from 'd3-array'
-import { type ScaleLinear, scaleLinear } from 'd3-scale'
+import { scaleLinear } from 'd3-scale'
 import type { AlongResult } from '../../results.js'
-import { isEstimated, type OutcomeView, type View } from '../view.js'
-import { drawing, element, filled, heading, stroked, textAt, textWidth, wrapText } from './svg.js'
+import { openCount } from '../csv.js'
+import { significant } from '../numbers.js'
+import { isEstimated, type OutcomeView, type View, widthText } from '../view.js'
+import { leftAxis, type Plane, roomForNumbers, type Scale, tenth, upright } from './axes.js'
+import { type Figure, type FigureData, figureOf } from './figure.js'
+import { element, filled, stroked, textAt, wrapText } from './svg.js'
 
 const width = 720
 const plotHeight = 300
@@ -15,49 +19,105 @@ interface Group {
   readonly to: number
 }
 
-export function alongFigure(view: View, outcome: OutcomeView, id: string): string | undefined {
+/** Nothing where no point has an estimate. */
+export function alongFigure(view: View, outcome: OutcomeView): Figure | undefined {
   const points = outcome.result.along
   const drawn = points?.filter(({ estimate }) => estimate !== null) ?? []
   if (!points || drawn.length === 0) return undefined
-  const title = `${outcome.result.outcome}: jump at ${points.length} points along the border`
   const blanks = points.length - drawn.length
-  const top = heading(
-    title,
-    [
-      `Thick: ${view.words.level} interval of each point. Thin: band for all points at once. Dashed: pooled estimate against distance alone. ${blanks > 0 ? `Crosses: ${blanks} points without enough units. ` : ''}Bars are cut at the edge.`,
-    ],
-    width,
-  )
-  const plotTop = top.height + 14
-  const scales = scalesOf(points, plotTop)
-  const groups = groupsOf(view, points)
-  const body = [
-    ...top.marks,
-    ...grid(scales, outcome.result.outcome),
-    ...groups.flatMap((group) => groupMarks(group, scales, plotTop)),
-    ...pooledMark(outcome, scales),
-    ...points.flatMap((point, i) => pointMarks(point, i, scales)),
-  ]
   const [low, high] = extent(drawn, ({ estimate }) => estimate as number)
-  const description = `Estimates at ${drawn.length} points from ${low?.toPrecision(3)} to ${high?.toPrecision(3)}; ${blanks} points are blank. Points stand in the order of the border between ${groups.map(({ name }) => name).join(', ')}.`
-  return drawing({ id, width, height: plotTop + plotHeight + 76, title, description, body })
+  const groups = groupsOf(view, points)
+  return figureOf({
+    name: `${outcome.slug}-along`,
+    width,
+    title: titleOf(outcome, drawn),
+    lines: [
+      `Thick: ${view.words.level} interval of each point. Thin, with ends: band for all points at once. Dashed: pooled estimate against distance alone. ${blanks > 0 ? `Crosses: ${blanks} points without enough units. ` : ''}Bars without an end run on past the edge.`,
+    ],
+    description: `Estimates at ${drawn.length} points from ${low?.toPrecision(3)} to ${high?.toPrecision(3)}; ${blanks} points are blank. Points stand in the order of the border between ${groups.map(({ name }) => name).join(', ')}.`,
+    caption: captionOf(view, outcome, drawn.length, blanks),
+    data: dataOf(view, points),
+    draw: (top) => {
+      const plotTop = top + 14
+      const scales = scalesOf(points, plotTop)
+      const marks = [
+        ...leftAxis(scales, `Jump in ${outcome.result.outcome}`),
+        ...xAxis(scales),
+        ...groups.flatMap((group) => groupMarks(group, scales)),
+        ...pooledMark(outcome, scales),
+        ...points.flatMap((point, i) => pointMarks(point, i, scales)),
+      ]
+      return { marks, end: plotTop + plotHeight + 76 }
+    },
+  })
 }
 
-interface Scales {
-  readonly x: ScaleLinear<number, number>
-  readonly y: ScaleLinear<number, number>
+/** Where the band for the whole curve leaves zero, that holds for all points at once. */
+function titleOf({ result }: OutcomeView, drawn: readonly AlongResult[]): string {
+  const clear = drawn.filter(
+    ({ uniform_low: low, uniform_high: high }) => (low !== null && low > 0) || (high !== null && high < 0),
+  ).length
+  const seen =
+    clear === 0
+      ? `at none of ${drawn.length} points along the border does the band exclude zero`
+      : `the band excludes zero at ${clear} of ${drawn.length} points along the border`
+  return `${result.outcome}: ${seen}`
+}
+
+function captionOf(view: View, { result }: OutcomeView, drawn: number, blanks: number): string {
+  const average = result.along_average?.length
+  const width = result.along_bandwidth
+  const mean =
+    average && 'estimate' in average
+      ? ` Weighted by length of border the points average ${significant(average.estimate)} (${significant(average.low)} to ${significant(average.high)}).`
+      : ''
+  const rule = width ? ` Bandwidth ${widthText(view, width)}: ${width.rule}.` : ''
+  const critical = result.along_critical_value
+  const band = critical
+    ? ` The band reaches ${significant(critical)} standard errors and covers all points at once.`
+    : ''
+  return `The jump in ${result.outcome} at ${drawn} points along the border, fitted in two coordinates, which bends of the border do not bias as they do distance alone; treated minus untreated.${band}${mean}${rule}${blanks > 0 ? ` ${blanks} points lack units for an estimate.` : ''}`
+}
+
+/** By piece and place along it; no coordinate. */
+function dataOf(view: View, points: readonly AlongResult[]): FigureData {
+  return {
+    columns: [
+      'piece',
+      'position_m',
+      'estimate',
+      'standard_error',
+      'low',
+      'high',
+      'uniform_low',
+      'uniform_high',
+      'units_untreated',
+      'units_treated',
+    ],
+    rows: points.map((point) => [
+      point.piece,
+      point.position_m,
+      point.estimate,
+      point.standard_error,
+      point.low,
+      point.high,
+      point.uniform_low,
+      point.uniform_high,
+      openCount(view, point.units.untreated),
+      openCount(view, point.units.treated),
+    ]),
+  }
 }
 
 /** The vertical range follows the pointwise intervals, the widest tenth left aside. */
-function scalesOf(points: readonly AlongResult[], plotTop: number): Scales {
+function scalesOf(points: readonly AlongResult[], plotTop: number): Plane {
   const lows = points.flatMap(({ low }) => (low === null ? [] : [low]))
   const highs = points.flatMap(({ high }) => (high === null ? [] : [high]))
   const estimates = points.flatMap(({ estimate }) => (estimate === null ? [] : [estimate]))
   const [least = -1, most = 1] = extent([quantile(lows, 0.1) ?? 0, quantile(highs, 0.9) ?? 0, 0, ...estimates])
   const pad = 0.06 * (most - least || 1)
   const y = scaleLinear([least - pad, most + pad], [plotTop + plotHeight, plotTop]).clamp(true)
-  const left = Math.max(...y.ticks(6).map((tick) => textWidth(y.tickFormat(6)(tick), 12))) + 38
-  return { x: scaleLinear([-0.5, points.length - 0.5], [left, width - 12]), y }
+  return { x: scaleLinear([-0.5, points.length - 0.5], [roomForNumbers(y), width - 12]), y }
 }
 
 function groupsOf(view: View, points: readonly AlongResult[]): Group[] {
@@ -71,40 +131,29 @@ function groupsOf(view: View, points: readonly AlongResult[]): Group[] {
   return groups
 }
 
-function grid({ x, y }: Scales, outcome: string): string[] {
+function xAxis({ x, y }: Plane): string[] {
   const [left, right] = x.range()
-  const format = y.tickFormat(6)
-  const across = (at: number) => `M${left} ${Math.round(at * 10) / 10}H${right}`
-  const [bottom, top] = y.range()
+  const [bottom] = y.range()
   return [
-    ...y
-      .ticks(6)
-      .flatMap((tick) => [
-        element('path', { d: across(y(tick)), ...stroked('grid', 1) }),
-        textAt(left - 8, y(tick) + 4, format(tick), { anchor: 'end', color: 'muted' }),
-      ]),
-    element('path', { d: across(y(0)), ...stroked('ink', 1.2) }),
-    textAt(13, (top + bottom) / 2, `Jump in ${outcome}`, { anchor: 'middle', turned: true }),
+    element('path', { d: `M${tenth(left)} ${tenth(y(0))}H${tenth(right)}`, ...stroked('ink', 1.2) }),
     textAt(
       (left + right) / 2,
-      bottom + 50,
+      bottom + 66,
       'Points in the order of the border, by pair of zones (untreated | treated)',
-      {
-        anchor: 'middle',
-      },
+      { anchor: 'middle' },
     ),
   ]
 }
 
-function groupMarks({ name, from, to }: Group, { x, y }: Scales, plotTop: number): string[] {
-  const [bottom] = y.range()
+function groupMarks({ name, from, to }: Group, { x, y }: Plane): string[] {
+  const [bottom, top] = y.range()
   const room = x(to + 0.5) - x(from - 0.5)
   const lines = wrapText(name, room - 6, 10.5)
   const middle = (x(from - 0.5) + x(to + 0.5)) / 2
   const fits = lines.length <= 3
   return [
     element('path', {
-      d: `M${Math.round(x(from - 0.5) * 10) / 10} ${plotTop}V${bottom + 8}`,
+      d: upright(x(from - 0.5), top, bottom + 8),
       ...stroked('grid', 1),
     }),
     ...(fits
@@ -115,14 +164,14 @@ function groupMarks({ name, from, to }: Group, { x, y }: Scales, plotTop: number
   ]
 }
 
-function pooledMark({ result }: OutcomeView, { x, y }: Scales): string[] {
+function pooledMark({ result }: OutcomeView, { x, y }: Plane): string[] {
   if (!isEstimated(result.pooled)) return []
   const at = Math.round(y(result.pooled.corrected.estimate) * 10) / 10
   const [left, right] = x.range()
   return [element('path', { d: `M${left} ${at}H${right}`, ...stroked('muted', 1.2), 'stroke-dasharray': '5 4' })]
 }
 
-function pointMarks(point: AlongResult, i: number, { x, y }: Scales): string[] {
+function pointMarks(point: AlongResult, i: number, { x, y }: Plane): string[] {
   const at = Math.round(x(i) * 10) / 10
   const { estimate, low, high, uniform_low: uniformLow, uniform_high: uniformHigh } = point
   if (estimate === null || low === null || high === null || uniformLow === null || uniformHigh === null) {
@@ -134,10 +183,19 @@ function pointMarks(point: AlongResult, i: number, { x, y }: Scales): string[] {
       }),
     ]
   }
-  const bar = (from: number, to: number) => `M${at} ${Math.round(y(from) * 10) / 10}V${Math.round(y(to) * 10) / 10}`
+  const bar = (from: number, to: number) => upright(at, y(from), y(to))
+  const end = (value: number) => (isInside(value, y) ? `M${at - 3} ${tenth(y(value))}h6` : '')
   return [
-    element('path', { d: bar(uniformLow, uniformHigh), ...stroked('muted', 0.8) }),
-    element('path', { d: bar(low, high), ...stroked('treated', 2.2) }),
+    element('path', {
+      d: `${bar(uniformLow, uniformHigh)}${end(uniformLow)}${end(uniformHigh)}`,
+      ...stroked('muted', 1),
+    }),
+    element('path', { d: bar(low, high), ...stroked('treated', 3) }),
     element('circle', { cx: at, cy: y(estimate), r: 3.4, ...filled('ink') }),
   ]
+}
+
+function isInside(value: number, y: Scale): boolean {
+  const [low, high] = y.domain()
+  return value >= low && value <= high
 }

@@ -1,68 +1,100 @@
-/** All lines of an outcome, one under another, above what they say together. */
-import { extent, max, quantile } from 'd3-array'
-import { type ScaleLinear, scaleLinear } from 'd3-scale'
-import type { Interval, Jump, LineJump } from '../../results.js'
-import { intervalText, linePlaces } from '../lineTable.js'
+/** All lines of an outcome, one under another, above what they say together; page by page where they are many. */
+import { extent } from 'd3-array'
+import type { Jump, LineJump } from '../../results.js'
+import { linePlaces } from '../lineTable.js'
 import { fixed, type Places, wholeNumber } from '../numbers.js'
 import { inReadingOrder } from '../order.js'
 import { targetWords } from '../pooledTable.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, type View } from '../view.js'
-import { drawing, element, filled, heading, hollow, type Ink, stroked, textAt, textWidth, wrapText } from './svg.js'
-
-interface Row {
-  readonly label: string
-  readonly mark: 'line' | 'pooled' | 'target' | 'mean'
-  readonly estimate?: { readonly estimate: number } & Interval
-  readonly prediction?: Interval
-}
-
-type Scale = ScaleLinear<number, number>
+import { type Figure, type FigureData, figureOf } from './figure.js'
+import { differenceWords, excludesZero, unitsWords } from './findings.js'
+import { drawRows, numbersText, type Row, type RowsLayout, rowAxis, rowScale } from './rows.js'
+import { element, stroked, textAt } from './svg.js'
 
 const width = 760
-const size = 12
 const labelWidth = 220
-const mostLabels = 200
+/** More lines than this are named page by page, behind a view of all. */
+const mostOnOne = 60
+const onPage = 50
+const mostPages = 10
+/** Height that the bare rows of all lines fill at most. */
+const tallest = 900
 
-export function forestFigure(view: View, outcome: OutcomeView, id: string): string {
-  const places = linePlaces(outcome)
-  const isLabelled = outcome.result.lines.length <= mostLabels
-  const ordered = inReadingOrder(
+type Numbered = Row & { readonly line: LineJump }
+
+export function forestFigure(view: View, outcome: OutcomeView): Figure {
+  const layout: RowsLayout = { width, labelWidth, places: linePlaces(outcome) }
+  const rows = inReadingOrder(
     outcome.result.lines,
-    (line) => view.lineOf.get(line.line) ?? { ...line, label: line.line, units: noUnits },
+    (line) => view.lineOf.get(line.line) ?? { line: line.line, label: line.line },
+  ).map((line) => lineRow(view, outcome, line))
+  const name = `${outcome.slug}-forest`
+  if (rows.length <= mostOnOne) return forestOf(view, outcome, name, rows, layout, layout)
+  const estimated = rows.filter((row) => row.estimate !== undefined)
+  const bare = Math.min(3, tallest / Math.max(estimated.length, 1))
+  const all = forestOf(view, outcome, name, estimated, layout, { ...layout, bare })
+  const pages = Array.from({ length: Math.ceil(rows.length / onPage) }, (_, page) =>
+    rows.slice(page * onPage, (page + 1) * onPage),
   )
-  const rows = ordered.map((line) => lineRow(view, line)).filter((row) => isLabelled || row.estimate !== undefined)
-  const together = togetherRows(view, outcome)
-  const x = scaleOf([...rows, ...together], places)
-  const top = heading(
-    `${outcome.result.outcome}: jump at ${howMany(view, estimatedLines(outcome.result).length)}, and together`,
-    [
-      `Corrected estimates with ${view.words.level} intervals, ${orderWords(view)}. An arrow marks an interval that runs on past the edge.`,
-      ...(isLabelled
-        ? []
-        : [`${outcome.result.lines.length} are too many to name here: labels are left out and lines.csv has them.`]),
-    ],
-    width,
+  const figures = pages.slice(0, mostPages).map((part, page) =>
+    forestOf(view, outcome, `${name}-${page + 1}`, part, layout, layout, rows, {
+      page: page + 1,
+      of: pages.length,
+    }),
   )
-  const start = top.height + 14
-  const first = drawRows(rows, x, places, start, isLabelled)
-  const second = drawRows(together, x, places, first.end + 10, true)
-  return drawing({
-    id,
-    width,
-    height: second.end + 52,
-    title: `${outcome.result.outcome}: jump at each ${view.words.line} and together`,
-    description: describe(view, outcome, places),
-    body: [
-      ...top.marks,
-      ...axis(x, start, second.end, outcome.result.outcome),
-      element('path', { d: `M0 ${first.end + 5}H${width}`, ...stroked('muted', 1) }),
-      ...first.marks,
-      ...second.marks,
-    ],
-  })
+  const left = pages.length > mostPages ? `, the first ${mostPages * onPage}; lines.csv has the others` : ''
+  return { ...all, more: { says: `every ${view.words.line} by name${left}`, figures } }
 }
 
-const noUnits = { untreated: 0, treated: 0 }
+interface Page {
+  readonly page: number
+  readonly of: number
+}
+
+/** `scaled`: rows that settle the scale, so that all pages share it. */
+function forestOf(
+  view: View,
+  outcome: OutcomeView,
+  name: string,
+  rows: readonly Numbered[],
+  named: RowsLayout,
+  layout: RowsLayout,
+  scaled: readonly Row[] = rows,
+  page?: Page,
+): Figure {
+  const together = togetherRows(view, outcome)
+  const x = rowScale([...scaled, ...together], named)
+  const isBare = layout.bare !== undefined
+  const hasShrunken = !isBare && rows.some((row) => row.shrunken)
+  const total = outcome.result.lines.length
+  return figureOf({
+    name,
+    width,
+    title: titleOf(view, outcome, page),
+    lines: [
+      `Corrected estimates with ${view.words.level} intervals, ${orderWords(view)}. An arrow marks an interval that runs on past the edge.`,
+      ...(hasShrunken
+        ? ['Circle and dots below each: the effect shrunken towards the mean of all, with its interval.']
+        : []),
+      ...(isBare ? [`${total} are too many to name here: the pages of this figure and lines.csv name them.`] : []),
+    ],
+    description: describe(view, outcome, named.places),
+    caption: captionOf(view, outcome, hasShrunken, isBare, page),
+    data: dataOf(rows, together),
+    draw: (top) => {
+      const start = top + 14
+      const first = drawRows(rows, x, layout, start)
+      const second = drawRows(together, x, named, first.end + 10)
+      const axis = rowAxis(x, start, second.end, `${effectWords(outcome)}, treated minus untreated`, width)
+      const rule = element('path', { d: `M0 ${first.end + 5}H${width}`, ...stroked('muted', 1) })
+      const shown = rows.length
+      const names = isBare
+        ? [textAt(0, start + 12, `${view.words.lines}:`), textAt(0, start + 28, `${shown} with an estimate`)]
+        : []
+      return { marks: [...axis.marks, rule, ...names, ...first.marks, ...second.marks], end: axis.end }
+    },
+  })
+}
 
 function orderWords(view: View): string {
   return view.results.lines.every((line) => line.cutoff !== undefined)
@@ -70,15 +102,37 @@ function orderWords(view: View): string {
     : 'in order of their labels'
 }
 
-function lineRow(view: View, line: LineJump): Row {
+function titleOf(view: View, outcome: OutcomeView, page: Page | undefined): string {
+  const { comparison } = outcome.result
+  const lines = estimatedLines(outcome.result)
+  const above = lines.filter(({ corrected }) => corrected.estimate > 0).length
+  const clear = lines.filter(({ corrected }) => excludesZero(corrected)).length
+  const part = page ? `, page ${page.page} of ${page.of}` : ''
+  if (lines.length === 0) return `${outcome.result.outcome}: no ${view.words.line} could be estimated${part}`
+  const differ = comparison ? `; they ${differenceWords(view, comparison.wald.p)}` : ''
+  return `${outcome.result.outcome} rises at ${above} of ${howMany(view, lines.length)} and falls at ${lines.length - above}; ${clearWords(clear)}${differ}${part}`
+}
+
+/** With take-up, lines are compared by their effects per unit of it. */
+function effectWords({ result }: OutcomeView): string {
+  const isRatio = [...result.lines, result.pooled].some((jump) => 'take_up' in jump)
+  return isRatio ? `Effect on ${result.outcome} per unit of take-up` : `Jump in ${result.outcome}`
+}
+
+function clearWords(clear: number): string {
+  if (clear === 0) return 'no interval excludes zero'
+  return clear === 1 ? '1 interval excludes zero' : `${clear} intervals exclude zero`
+}
+
+function lineRow(view: View, { result }: OutcomeView, line: LineJump): Numbered {
   const label = labelWithCutoff(view, line.line)
-  return isEstimated<Jump & { line: string }>(line)
-    ? { label, mark: 'line', estimate: line.corrected }
-    : { label, mark: 'line' }
+  if (!isEstimated<Jump & { line: string }>(line)) return { label, mark: 'line', line }
+  const shrunken = result.comparison?.shrunken.find((effect) => effect.line === line.line)
+  return { label, mark: 'line', line, estimate: line.corrected, ...(shrunken ? { shrunken } : {}) }
 }
 
 /** The label, with the cutoff where it does not say it already. */
-function labelWithCutoff(view: View, line: string): string {
+export function labelWithCutoff(view: View, line: string): string {
   const label = labelOf(view, line)
   const cutoff = view.lineOf.get(line)?.cutoff
   if (cutoff === undefined) return label
@@ -112,114 +166,53 @@ function togetherRows(view: View, outcome: OutcomeView): Row[] {
   ]
 }
 
-/** Every point estimate and what stands for all of them is inside; the widest twentieth of the intervals may run on. */
-function scaleOf(rows: readonly Row[], places: Places): Scale {
-  const shown = rows.flatMap((row) => (row.estimate ? [row.estimate] : []))
-  const finite = shown.filter((estimate) => Number.isFinite(estimate.low) && Number.isFinite(estimate.high))
-  const edges = [
-    quantile(finite, 0.05, (estimate) => estimate.low),
-    quantile(finite, 0.95, (estimate) => estimate.high),
-    ...shown.map((estimate) => estimate.estimate),
-    ...rows.filter((row) => row.mark !== 'line').flatMap((row) => [row.estimate?.low, row.estimate?.high]),
-    ...rows.flatMap((row) => [row.prediction?.low, row.prediction?.high]),
-    0,
-  ].filter((value): value is number => value !== undefined && Number.isFinite(value))
-  const [low, high] = extent(edges) as [number, number]
-  const pad = high > low ? 0.03 * (high - low) : 1
-  const numbers = max(shown, (estimate) => textWidth(numbersText(estimate, places), size)) ?? 90
-  return scaleLinear([low - pad, high + pad], [labelWidth + 12, width - Math.min(numbers, 260) - 14])
+function captionOf(view: View, outcome: OutcomeView, hasShrunken: boolean, isBare: boolean, page?: Page): string {
+  const { lines, pooled, comparison } = outcome.result
+  const missing = lines.length - estimatedLines(outcome.result).length
+  const lost = missing === 0 ? '' : ` ${howMany(view, missing)} could not be estimated; the table says why.`
+  const shrunken = hasShrunken
+    ? ' Hollow circles: each effect shrunken towards the mean, fit for ranking where the raw estimates are not.'
+    : ''
+  const n = isEstimated<Jump>(pooled)
+    ? ` N within the pooled bandwidth: ${unitsWords(view, pooled.units_in_bandwidth)}.`
+    : ''
+  const prediction = comparison?.prediction
+    ? ` The thin bar is the ${view.words.level} interval for the effect at one more ${view.words.line} like these.`
+    : ''
+  const part = page ? ` Page ${page.page} of ${page.of}, all on one scale.` : ''
+  return `${effectWords(outcome)} at every ${view.words.line}, each with its own bandwidth (${isBare ? 'dots' : 'filled squares'}, corrected estimates, ${view.words.level} intervals), above three ways of taking them together: pooled in one fit (filled diamond), the stated target (hollow diamond) and the random-effects mean (hollow circle).${prediction}${shrunken}${n}${lost}${part}`
 }
 
-function numbersText(estimate: { readonly estimate: number } & Interval, places: Places): string {
-  return `${fixed(estimate.estimate, places)} (${intervalText(estimate, places)})`
-}
-
-function drawRows(
-  rows: readonly Row[],
-  x: Scale,
-  places: Places,
-  from: number,
-  isLabelled: boolean,
-): { marks: string[]; end: number } {
-  const marks: string[] = []
-  let y = from
-  for (const row of rows) {
-    const lines = isLabelled ? wrapText(row.label, labelWidth, size) : []
-    const height = isLabelled ? Math.max(lines.length * 15 + 4, 19) : 3
-    const middle = y + height / 2
-    lines.forEach((text, index) => {
-      const at = middle + 4 + (index - (lines.length - 1) / 2) * 15
-      marks.push(textAt(0, at, text, row.mark === 'line' ? {} : { weight: 'bold' }))
-    })
-    if (row.estimate) marks.push(...estimateMarks(row, row.estimate, x, middle, isLabelled))
-    if (isLabelled) {
-      const numbers = row.estimate ? numbersText(row.estimate, places) : 'not estimated'
-      marks.push(textAt(width, middle + 4, numbers, { anchor: 'end', color: row.estimate ? 'ink' : 'muted' }))
-    }
-    y += height
+function dataOf(rows: readonly Numbered[], together: readonly Row[]): FigureData {
+  const cells = (row: Row) => [
+    row.estimate?.estimate,
+    row.estimate?.low,
+    row.estimate?.high,
+    row.shrunken?.estimate,
+    row.shrunken?.low,
+    row.shrunken?.high,
+    row.prediction?.low,
+    row.prediction?.high,
+  ]
+  return {
+    columns: [
+      'row',
+      'line',
+      'label',
+      'estimate',
+      'low',
+      'high',
+      'shrunken_estimate',
+      'shrunken_low',
+      'shrunken_high',
+      'prediction_low',
+      'prediction_high',
+    ],
+    rows: [
+      ...rows.map((row) => ['line', row.line.line, row.label, ...cells(row)]),
+      ...together.map((row) => [row.mark, null, row.label, ...cells(row)]),
+    ],
   }
-  return { marks, end: y }
-}
-
-function estimateMarks(
-  row: Row,
-  estimate: { readonly estimate: number } & Interval,
-  x: Scale,
-  y: number,
-  isLabelled: boolean,
-): string[] {
-  const color: Ink = row.mark === 'line' ? 'ink' : 'treated'
-  const marks: string[] = []
-  if (!Number.isFinite(estimate.estimate)) return marks
-  if (row.prediction) marks.push(...intervalMarks(row.prediction, x, y, color, 1))
-  marks.push(...intervalMarks(estimate, x, y, color, row.mark === 'line' ? (isLabelled ? 1.3 : 0.8) : 2.6))
-  const at = x(estimate.estimate)
-  if (!isLabelled) return [...marks, element('circle', { cx: at, cy: y, r: 1.2, ...filled(color) })]
-  if (row.mark === 'line')
-    return [...marks, element('rect', { x: at - 3.5, y: y - 3.5, width: 7, height: 7, ...filled(color) })]
-  if (row.mark === 'mean') return [...marks, element('circle', { cx: at, cy: y, r: 4.5, ...hollow(color, 1.8) })]
-  const diamond = `M${at} ${y - 6.5}L${at + 6.5} ${y}L${at} ${y + 6.5}L${at - 6.5} ${y}Z`.replace(
-    /\d+\.\d+/g,
-    (digits) => Number(digits).toFixed(2),
-  )
-  return [...marks, element('path', { d: diamond, ...(row.mark === 'pooled' ? filled(color) : hollow(color, 1.8)) })]
-}
-
-/** The bar, cut at the edges of the plot, with an arrow head where it was cut. */
-function intervalMarks(interval: Interval, x: Scale, y: number, color: Ink, thickness: number): string[] {
-  if (!Number.isFinite(interval.low) || !Number.isFinite(interval.high)) return []
-  const [left, right] = x.range()
-  const isCutLeft = !(x(interval.low) >= left)
-  const isCutRight = !(x(interval.high) <= right)
-  const [from, to] = [isCutLeft ? left : x(interval.low), isCutRight ? right : x(interval.high)]
-  const arrow = (at: number, step: number) =>
-    `M${at + step} ${(y - 3).toFixed(2)}L${at} ${y.toFixed(2)}L${at + step} ${(y + 3).toFixed(2)}`
-  return [
-    element('path', { d: `M${from.toFixed(2)} ${y.toFixed(2)}H${to.toFixed(2)}`, ...stroked(color, thickness) }),
-    ...(isCutLeft ? [element('path', { d: arrow(left, 4), ...stroked(color, 1.2) })] : []),
-    ...(isCutRight ? [element('path', { d: arrow(right, -4), ...stroked(color, 1.2) })] : []),
-  ]
-}
-
-function axis(x: Scale, top: number, bottom: number, outcome: string): string[] {
-  const [left, right] = x.range()
-  const base = bottom + 8
-  const tickFormat = x.tickFormat(5)
-  const ticks = x.ticks(5)
-  return [
-    ...ticks.map((tick) =>
-      element('path', { d: `M${x(tick).toFixed(2)} ${top}V${base.toFixed(2)}`, ...stroked('grid', 1) }),
-    ),
-    element('path', { d: `M${x(0).toFixed(2)} ${top}V${base.toFixed(2)}`, ...stroked('ink', 1.4) }),
-    element('path', { d: `M${left.toFixed(2)} ${base.toFixed(2)}H${right.toFixed(2)}`, ...stroked('ink', 1) }),
-    ...ticks.map((tick) => textAt(x(tick), base + 16, tickFormat(tick), { anchor: 'middle', color: 'muted' })),
-    textAt(
-      (left + right) / 2,
-      base + 34,
-      wrapText(`Jump in ${outcome}, treated minus untreated`, right - left + 200, size)[0],
-      { anchor: 'middle' },
-    ),
-  ]
 }
 
 function describe(view: View, outcome: OutcomeView, places: Places): string {

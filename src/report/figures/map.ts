@@ -7,9 +7,11 @@ import { interpolateCividis } from 'd3-scale-chromatic'
 import type { Jump, MapExhibit } from '../../results.js'
 import { linePlaces } from '../lineTable.js'
 import { isEstimated, type OutcomeView, type View } from '../view.js'
+import { type Figure, figureOf } from './figure.js'
 import { colorKey, type KeyItem, keyRows, northArrow, scaleBar } from './mapKey.js'
+import { describeMap, mapCaption, mapData, mapTitle, type Piece } from './mapWords.js'
 import { frameAround, type MapFrame, projectLine } from './projection.js'
-import { drawing, element, heading, stroked } from './svg.js'
+import { element, stroked } from './svg.js'
 import { hatchPattern, zoneMarks } from './zones.js'
 
 export interface ColorScale {
@@ -21,12 +23,10 @@ export interface ColorScale {
   readonly color: (value: number) => string
 }
 
-type Piece = MapExhibit['pieces'][number]
-
 const width = 760
 
 /** Nothing where there is no piece to draw. */
-export function mapFigure(view: View, id: string): string | undefined {
+export function mapFigure(view: View): Figure | undefined {
   const map = view.exhibits.map
   const outcome = view.outcomes[0]
   if (!map || !outcome || map.pieces.every((piece) => piece.coordinates.length === 0)) return undefined
@@ -37,39 +37,51 @@ export function mapFigure(view: View, id: string): string | undefined {
   )
   const estimates = estimatesByLine(outcome)
   const scale = colorScale([...estimates.values()])
-  const hatch = `${id}-hatch`
-  const zones = zoneMarks(map, frame, hatch)
-  const title = `Border pieces used and set aside${scale ? `, coloured by the jump in ${outcome.result.outcome}` : ''}`
-  const top = heading(title, [], width)
-  const key = keyMarks(view, outcome, map, scale, frame, hatch, top.height + 8 + frame.height + 14)
-  const clip = `${id}-frame`
-  return drawing({
-    id,
+  return figureOf({
+    name: 'map',
     width,
-    height: key.end,
-    title,
-    description: describe(map, outcome, estimates.size),
-    body: [
-      element(
-        'defs',
-        {},
-        hatchPattern(hatch),
-        element('clipPath', { id: clip }, element('rect', { width, height: frame.height })),
-      ),
-      ...top.marks,
-      element(
-        'g',
-        { transform: `translate(0 ${top.height + 8})`, 'clip-path': `url(#${clip})` },
+    title: mapTitle(map, outcome, estimates),
+    lines: [],
+    description: describeMap(map, outcome, estimates.size),
+    caption: mapCaption(map, outcome),
+    data: mapData(map, outcome),
+    draw: (top, id) => {
+      const hatch = `${id}-hatch`
+      const zones = zoneMarks(map, frame, hatch)
+      const key = keyMarks(view, outcome, map, scale, frame, hatch, top + 8 + frame.height + 14)
+      const inside = [
         ...zones.fills,
         ...map.barriers.flatMap((barrier) => barrier.coordinates.map((part) => barrierMark(pathThrough(part, frame)))),
         ...map.pieces.filter((piece) => piece.line === null).map((piece) => setAsideMark(piecePath(piece, frame))),
         ...usedMarks(map, frame, estimates, scale),
         ...zones.names,
-      ),
-      element('rect', { x: 0.5, y: top.height + 8, width: width - 1, height: frame.height, ...stroked('muted', 1) }),
-      ...key.marks,
-    ],
+      ]
+      return {
+        marks: [...framed(frame, top + 8, `${id}-frame`, [hatchPattern(hatch)], inside), ...key.marks],
+        end: key.end,
+      }
+    },
   })
+}
+
+/** Marks cut at the edge of the map, and the edge. */
+export function framed(
+  frame: MapFrame,
+  top: number,
+  clip: string,
+  definitions: readonly string[],
+  inside: readonly string[],
+): string[] {
+  return [
+    element(
+      'defs',
+      {},
+      ...definitions,
+      element('clipPath', { id: clip }, element('rect', { width: frame.width, height: frame.height })),
+    ),
+    element('g', { transform: `translate(0 ${top})`, 'clip-path': `url(#${clip})` }, ...inside),
+    element('rect', { x: 0.5, y: top, width: frame.width - 1, height: frame.height, ...stroked('muted', 1) }),
+  ]
 }
 
 function estimatesByLine(outcome: OutcomeView): Map<string, number> {
@@ -107,7 +119,7 @@ function pathThrough(part: readonly (readonly number[])[], frame: MapFrame): str
     .join('')
 }
 
-function piecePath(piece: Piece, frame: MapFrame): string {
+export function piecePath(piece: Piece, frame: MapFrame): string {
   return piece.coordinates.map((part) => pathThrough(part, frame)).join('')
 }
 
@@ -197,10 +209,4 @@ function keyMarks(
     ],
     end: rows.end + 2,
   }
-}
-
-function describe(map: MapExhibit, outcome: OutcomeView, estimated: number): string {
-  const used = map.pieces.filter((piece) => piece.line !== null).length
-  const treated = map.zones.filter((zone) => zone.treated).map((zone) => zone.name)
-  return `Map of ${map.zones.length} zones, ${treated.length} of them treated, and ${map.pieces.length} border pieces: ${used} used, ${map.pieces.length - used} set aside, ${estimated} with an estimate of the jump in ${outcome.result.outcome}. The table of lines gives every number.`
 }

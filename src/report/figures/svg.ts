@@ -79,11 +79,11 @@ const capital = /[A-Z0-9−–+<>=]/
 export function textWidth(text: string, size: number): number {
   let ems = 0
   for (const character of text) {
-    if (narrow.test(character)) ems += 0.34
+    if (narrow.test(character)) ems += 0.37
     else if (broad.test(character)) ems += 0.95
-    else if (capital.test(character)) ems += 0.66
+    else if (capital.test(character)) ems += 0.67
     else if (character > '\u2e7f') ems += 1.05
-    else ems += 0.58
+    else ems += 0.615
   }
   return ems * size
 }
@@ -141,11 +141,14 @@ export function drawing({ id, width, height, title, description, body }: Drawing
   )
 }
 
+/** Bold letters are wider than those that `textWidth` knows. */
+const boldFactor = 1.13
+
 /** The heading of a figure: a bold title and quieter lines below, wrapped; returns the marks and the height they take. */
 export function heading(title: string, lines: readonly string[], width: number): { marks: string[]; height: number } {
   const marks: string[] = []
   let y = 20
-  for (const line of wrapText(title, width, 15)) {
+  for (const line of wrapText(title, width / boldFactor, 15)) {
     marks.push(textAt(0, y, line, { size: 15, weight: 'bold' }))
     y += 19
   }

@@ -8,8 +8,8 @@ import { element, textAt, textWidth } from './svg.js'
 
 const labelSize = 12
 
-/** Fills first, then names: two layers, so that borders can be drawn between them. */
-export function zoneMarks(map: MapExhibit, frame: MapFrame, patternId: string): { fills: string[]; names: string[] } {
+/** Fills first, then names: two layers, so that borders can be drawn between them. `patternId`: hatch of treated zones. */
+export function zoneMarks(map: MapExhibit, frame: MapFrame, patternId?: string): { fills: string[]; names: string[] } {
   const clip = geoIdentity().clipExtent([
     [-2, -2],
     [frame.width + 2, frame.height + 2],
@@ -23,7 +23,7 @@ export function zoneMarks(map: MapExhibit, frame: MapFrame, patternId: string): 
     const d = path(shape)
     if (!d) continue
     fills.push(element('path', { d, class: 'f-land s-zone', fill: '#f3f1ec', stroke: '#a9a59b', 'stroke-width': 1 }))
-    if (zone.treated) fills.push(element('path', { d, fill: `url(#${patternId})` }))
+    if (zone.treated && patternId !== undefined) fills.push(element('path', { d, fill: `url(#${patternId})` }))
     const place = placeForName(zone.name, shape, path.centroid(shape), frame, obstacles)
     if (place) names.push(nameMark(zone.name, place))
   }

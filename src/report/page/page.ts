@@ -2,35 +2,25 @@
 import { auditTable } from '../auditTable.js'
 import { conflictTable, waterfallTable, whatElseTable } from '../borderTables.js'
 import { escapeHtml } from '../escape.js'
+import type { ReportFigures } from '../figures/all.js'
 import { ladderTable, placeboTable, standardsTable } from '../ladderTable.js'
 import { checksTable, ledgerTable, setAsideTable } from '../ledgerTable.js'
 import { capital, pageLineTable } from '../lineTable.js'
 import { awayTable, movedTable } from '../movedTable.js'
-import { count, missing, significant } from '../numbers.js'
+import { count, missing } from '../numbers.js'
 import { comparisonTable, contrastTable, pooledTable } from '../pooledTable.js'
 import { sharedTable } from '../sharedTable.js'
 import { geometryWords } from '../summary.js'
-import { toHtml } from '../tables.js'
+import { type TextTable, toHtml } from '../tables.js'
 import { variantTable } from '../variantTable.js'
-import { estimatedLines, howMany, type OutcomeView, type View, widthText } from '../view.js'
+import { howMany, type OutcomeView, type View } from '../view.js'
 import { answerOf } from './answer.js'
 import { cautionsOf } from './cautions.js'
+import { numberedFigures, type ShowFigures } from './figures.js'
 import { methodsOf } from './methods.js'
 import { contentPolicy } from './policy.js'
 import { pageStyle } from './style.js'
 import { whatIfHtml } from './whatIf.js'
-
-/** Figures of the page, as SVG. */
-export interface PageFigures {
-  readonly map: string | undefined
-  readonly byOutcome: readonly {
-    readonly pooled: string | undefined
-    readonly forest: string
-    readonly along: string | undefined
-  }[]
-  /** Lines that have a figure of their own in the folder, and those left out. */
-  readonly lineFigures: { readonly drawn: number; readonly leftOut: number }
-}
 
 interface Section {
   readonly id: string
@@ -40,11 +30,11 @@ interface Section {
   readonly needsScript?: boolean
 }
 
-const tallForest = 60
 const tallTable = 40
+const whatIfId = 'what-if'
 
 /** `script`: text that runs at the end of the page, where there is something for it. */
-export function pageHtml(view: View, figures: PageFigures, script?: string): string {
+export function pageHtml(view: View, figures: ReportFigures, script?: string): string {
   const { results } = view
   const panel = script === undefined ? undefined : whatIfHtml(view)
   const sections = sectionsOf(view, figures, panel)
@@ -95,70 +85,69 @@ function hiddenMark({ needsScript }: Section): string {
 const emblem =
   '<svg width="34" height="20" viewBox="0 0 34 20" aria-hidden="true"><path class="s-muted" d="M17 1V19" fill="none" stroke-width="1" stroke-dasharray="2 2"/><path class="s-untreated" d="M1 15L17 14" fill="none" stroke-width="3"/><path class="s-treated" d="M17 6L33 5" fill="none" stroke-width="3"/></svg>'
 
-function sectionsOf(view: View, figures: PageFigures, panel: string | undefined): Section[] {
-  const checks = checksTable(view)
-  const setAside = setAsideTable(view)
-  const ground = [waterfallTable(view), whatElseTable(view), conflictTable(view)].filter((table) => table !== undefined)
-  const shared = sharedTable(view)
-  const audit = auditTable(view)
-  const again = view.outcomes.flatMap((outcome) =>
-    [ladderTable(view, outcome) ?? [], placeboTable(view, outcome) ?? []].flat(),
-  )
-  const standards = view.outcomes.flatMap((outcome) => standardsTable(outcome) ?? [])
-  const variants = view.outcomes.flatMap((outcome) =>
-    [awayTable(view, outcome) ?? [], movedTable(view, outcome) ?? [], variantTable(view, outcome) ?? []].flat(),
-  )
-  const hasComparison = view.results.lines.length > 1
-  const contrasts = view.outcomes.flatMap((outcome) => contrastTable(view, outcome) ?? [])
-  return [
-    { id: 'answer', title: 'The answer', body: answerHtml(view) },
-    { id: 'cautions', title: 'Before you use it', body: cautionsHtml(view) },
-    { id: 'figures', title: 'Figures', body: figuresHtml(view, figures) },
-    ...(panel ? [{ id: 'what-if', title: 'What if', body: panel, needsScript: true }] : []),
-    { id: 'together', title: 'All together', body: toHtml(pooledTable(view)) },
-    {
-      id: 'lines',
-      title: 'Line by line',
-      body: [...view.outcomes.map((outcome) => lineTableHtml(view, outcome)), ...(shared ? [toHtml(shared)] : [])].join(
-        '\n',
-      ),
-    },
-    ...(hasComparison
-      ? [
-          {
-            id: 'comparison',
-            title: 'Comparison',
-            body: [comparisonTable(view), ...contrasts].map((table) => toHtml(table)).join('\n'),
-          },
-        ]
-      : []),
-    ...(ground.length > 0
-      ? [{ id: 'ground', title: 'The border', body: ground.map((table) => toHtml(table)).join('\n') }]
-      : []),
-    ...(variants.length > 0
-      ? [{ id: 'variants', title: 'Run otherwise', body: variants.map((table) => toHtml(table)).join('\n') }]
-      : []),
-    ...(checks
-      ? [
-          {
-            id: 'checks',
-            title: 'Checks',
-            body: [checks, ...(audit ? [audit] : []), ...again].map((table) => toHtml(table)).join('\n'),
-          },
-        ]
-      : []),
-    ...(standards.length > 0
-      ? [{ id: 'standards', title: 'Against the handbook', body: standards.map((table) => toHtml(table)).join('\n') }]
-      : []),
-    {
-      id: 'ledger',
-      title: 'From rows to units',
-      body: [ledgerTable(view), ...(setAside ? [setAside] : [])].map((table) => toHtml(table)).join('\n'),
-    },
-    { id: 'methods', title: 'Methods used', body: methodsHtml(view) },
-    { id: 'study', title: 'The study, in full', body: studyHtml(view) },
-    { id: 'inputs', title: 'Inputs and run', body: inputsHtml(view) },
+/** Sections in the order of the page; one without a part is left out. `panel`: what the script fills in. */
+function sectionsOf(view: View, figures: ReportFigures, panel: string | undefined): Section[] {
+  const show = numberedFigures()
+  const ofOutcomes = (table: (view: View, outcome: OutcomeView) => TextTable | undefined) =>
+    tablesHtml(view.outcomes.map((outcome) => table(view, outcome)))
+  const sections: readonly [id: string, title: string, parts: readonly string[]][] = [
+    ['answer', 'The answer', [answerHtml(view)]],
+    ['together', 'What it rests on', [tablesHtml([pooledTable(view)])]],
+    ['cautions', 'Before you use it', [cautionsHtml(view)]],
+    ['figures', 'Figures', [figuresHtml(view, figures, show)]],
+    [whatIfId, 'What if', panel === undefined ? [] : [panel]],
+    [
+      'lines',
+      'Line by line',
+      [...view.outcomes.map((outcome) => lineTableHtml(view, outcome)), tablesHtml([sharedTable(view)])],
+    ],
+    [
+      'comparison',
+      'Comparison',
+      view.results.lines.length > 1 ? [tablesHtml([comparisonTable(view)]), ofOutcomes(contrastTable)] : [],
+    ],
+    [
+      'ground',
+      'The border',
+      [show(figures.waterfall), tablesHtml([waterfallTable(view), whatElseTable(view), conflictTable(view)])],
+    ],
+    ['variants', 'Run otherwise', [ofOutcomes(awayTable), ofOutcomes(movedTable), ofOutcomes(variantTable)]],
+    [
+      'checks',
+      'Checks',
+      [
+        tablesHtml([checksTable(view), auditTable(view)]),
+        show(figures.shared),
+        ...view.outcomes.flatMap((outcome, index) => [
+          figures.checks[index].length > 0 ? subhead(view, outcome) : '',
+          show(figures.checks[index]),
+          tablesHtml([ladderTable(view, outcome), placeboTable(view, outcome)]),
+        ]),
+      ],
+    ],
+    ['standards', 'Against the handbook', [ofOutcomes((_, outcome) => standardsTable(outcome))]],
+    ['ledger', 'From rows to units', [tablesHtml([ledgerTable(view), setAsideTable(view)]), show(figures.ledger)]],
+    ['methods', 'Methods used', [methodsHtml(view)]],
+    ['study', 'The study, in full', [studyHtml(view)]],
+    ['inputs', 'Inputs and run', [inputsHtml(view)]],
   ]
+  return sections
+    .map(([id, title, parts]) => ({
+      id,
+      title,
+      body: parts.filter((part) => part !== '').join('\n'),
+      needsScript: id === whatIfId,
+    }))
+    .filter(({ body }) => body !== '')
+}
+
+function tablesHtml(tables: readonly (TextTable | undefined)[]): string {
+  return tables.flatMap((table) => (table ? [toHtml(table)] : [])).join('\n')
+}
+
+/** The outcome's name above what is its own, where there are several. */
+function subhead(view: View, { result }: OutcomeView): string {
+  return view.outcomes.length > 1 ? `<h3>${escapeHtml(result.outcome)}</h3>` : ''
 }
 
 function answerHtml(view: View): string {
@@ -193,59 +182,11 @@ function cautionsHtml(view: View): string {
   return `<ul class="cautions">\n${items.join('\n')}\n</ul>`
 }
 
-function figuresHtml(view: View, figures: PageFigures): string {
-  let number = 0
-  const figure = (svg: string, name: string, caption: string, isTall = false) =>
-    `<figure><div class="drawing${isTall ? ' tall' : ''}" tabindex="0" role="region" aria-label="${escapeHtml(name)}">${svg}</div><figcaption><b>Figure ${++number}.</b> ${escapeHtml(caption)}</figcaption></figure>`
-  const parts = view.outcomes.flatMap((outcome, index) => {
-    const { pooled, forest, along } = figures.byOutcome[index]
-    const name = outcome.result.outcome
-    return [
-      ...(view.outcomes.length > 1 ? [`<h3>${escapeHtml(name)}</h3>`] : []),
-      ...(pooled ? [figure(pooled, `Figure: ${name}, pooled`, scatterCaption(view, outcome))] : []),
-      figure(
-        forest,
-        `Figure: ${name}, every ${view.words.line}`,
-        forestCaption(view, outcome),
-        outcome.result.lines.length > tallForest,
-      ),
-      ...(along ? [figure(along, `Figure: ${name}, along the border`, alongCaption(view, outcome))] : []),
-    ]
-  })
-  const map = figures.map
-    ? [
-        figure(
-          figures.map,
-          'Figure: map',
-          `Border pieces on the ground. Light and dark follow the corrected estimates of ${view.outcomes[0].result.outcome}; noisy pieces look extreme by chance, so read the map with the intervals above. No unit is drawn.`,
-        ),
-      ]
-    : []
-  const { drawn, leftOut } = figures.lineFigures
-  const folder = `<p class="note">${count(drawn)} figures of single ${view.words.lines} are in the folder figures/.${leftOut > 0 ? ` ${count(leftOut)} more were left out.` : ''}</p>`
-  return [...parts, ...map, folder].join('\n')
-}
-
-function scatterCaption(view: View, outcome: OutcomeView): string {
-  return `Mean ${outcome.result.outcome} by distance from ${view.words.theLine}, all ${view.words.lines} pooled. Hollow: untreated; filled: treated. Look at the points before the curves: the curves are a model, and the plain one.`
-}
-
-function forestCaption(view: View, outcome: OutcomeView): string {
-  const missingLines = outcome.result.lines.length - estimatedLines(outcome.result).length
-  const missingWords =
-    missingLines === 0 ? '' : ` ${howMany(view, missingLines)} could not be estimated; the table says why.`
-  return `Every ${view.words.line} with its own bandwidth, above three ways of taking them together: pooled in one fit, the stated target, and the random-effects mean.${missingWords}`
-}
-
-function alongCaption(view: View, { result }: OutcomeView): string {
-  const average = result.along_average?.length
-  const width = result.along_bandwidth
-  const mean =
-    average && 'estimate' in average
-      ? ` Weighted by length of border the points average ${significant(average.estimate)} (${significant(average.low)} to ${significant(average.high)}).`
-      : ''
-  const rule = width ? ` Bandwidth ${widthText(view, width)}: ${width.rule}.` : ''
-  return `The jump at points along the border, fitted in two coordinates, which bends of the border do not bias as they do distance alone.${mean}${rule}`
+function figuresHtml(view: View, figures: ReportFigures, show: ShowFigures): string {
+  const effects = view.outcomes.flatMap((outcome, index) => [subhead(view, outcome), show(figures.effects[index])])
+  const more = figures.leftOut > 0 ? ` ${count(figures.leftOut)} more were left out.` : ''
+  const folder = `<p class="note">Every figure is in the folder figures/ beside this page as SVG and PDF, with its numbers as CSV; captions.md has the captions. ${count(figures.lines.length)} figures of single ${view.words.lines} are there too.${more}</p>`
+  return [...effects, show(figures.ground), folder].join('\n')
 }
 
 function lineTableHtml(view: View, outcome: OutcomeView): string {

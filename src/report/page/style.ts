@@ -3,12 +3,12 @@
 const light = `
   --paper: #fbfaf6; --raised: #ffffff; --ink: #1d2126; --muted: #565d66; --rule: #d9d5ca; --accent: #9a3a0d;
   --grid: #e2dfd6; --untreated: #2b5c86; --treated: #a5400f; --land: #f3f1ec; --land-treated: #e4dfd3;
-  --hatch: #bdb5a3; --zone: #a9a59b; --barrier: #8fb9cf; --wash: #f3efe5;`
+  --hatch: #bdb5a3; --zone: #a9a59b; --barrier: #8fb9cf; --wash: #f3efe5; --band: #e4e6e9;`
 
 const dark = `
   --paper: #15181b; --raised: #1b1f23; --ink: #e8e5de; --muted: #a6acb3; --rule: #363c43; --accent: #f0a27a;
   --grid: #2c3238; --untreated: #8fbbe0; --treated: #f0935f; --land: #20252a; --land-treated: #2c3137;
-  --hatch: #4a525b; --zone: #59616a; --barrier: #3f7390; --wash: #20242a;`
+  --hatch: #4a525b; --zone: #59616a; --barrier: #3f7390; --wash: #20242a; --band: #2f353c;`
 
 export const pageStyle = `
 :root { color-scheme: light dark;${light}
@@ -56,6 +56,10 @@ p { margin: 0 0 .9rem; max-width: 42em; }
 figure { margin: 1.5rem 0 2.25rem; }
 figcaption { font-size: .9375rem; line-height: 1.5; color: var(--muted); max-width: 46em; margin-top: .7rem; }
 figcaption b { color: var(--ink); font-weight: 600; }
+.files { font: .8125rem/1.5 var(--sans); white-space: nowrap; }
+details { margin: .9rem 0 0; max-width: 62rem; }
+summary { font: 600 .875rem/1.5 var(--sans); color: var(--accent); cursor: pointer; padding: .25rem 0; }
+details figure { margin: .9rem 0 1.25rem; }
 .drawing { overflow: auto; max-width: 62rem; padding: 1.1rem 1.4rem; background: var(--raised); border: 1px solid var(--rule); }
 .drawing.tall { max-height: 85vh; }
 .drawing svg { display: block; width: 100%; min-width: 37rem; height: auto; }
@@ -105,6 +109,7 @@ footer { margin-top: 3rem; padding-top: 1rem; border-top: 1px solid var(--rule);
 .pair .drawing svg { min-width: 26rem; }
 .f-ink { fill: var(--ink); } .f-muted { fill: var(--muted); } .f-grid { fill: var(--grid); } .f-untreated { fill: var(--untreated); }
 .f-treated { fill: var(--treated); } .f-paper { fill: var(--raised); } .f-background { fill: none; }
+.f-band { fill: var(--band); }
 .f-land { fill: var(--land); } .f-landtreated { fill: var(--land-treated); }
 .s-ink { stroke: var(--ink); } .s-muted { stroke: var(--muted); } .s-grid { stroke: var(--grid); } .s-untreated { stroke: var(--untreated); }
 .s-treated { stroke: var(--treated); } .s-paper { stroke: var(--raised); } .s-hatch { stroke: var(--hatch); } .s-zone { stroke: var(--zone); }
@@ -130,7 +135,9 @@ footer { margin-top: 3rem; padding-top: 1rem; border-top: 1px solid var(--rule);
   .body { display: block; }
   .drawing, .scroll, .drawing.tall, .scroll.tall { overflow: visible; max-height: none; border-color: #999999; }
   .drawing { border: 0; padding: 0; }
-  .drawing svg { min-width: 0; max-width: 100%; }
+  .files { display: none; }
+  details:not([open]) { display: none; }
+  .drawing svg { min-width: 0; max-width: min(100%, 14.5cm); }
   .tall thead th { position: static; }
   table { font-size: 7.5pt; }
   th, td { padding-left: .6em; white-space: normal; }
