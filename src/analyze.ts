@@ -7,6 +7,7 @@ import { acrossLines, slopeOf } from './analysis/acrossLines.js'
 import { alongGround, alongResult } from './analysis/along.js'
 import { auditOf } from './analysis/audit.js'
 import { awayOf } from './analysis/awayFromLine.js'
+import { balanceAtLines } from './analysis/balance.js'
 import type { BorderFacts } from './analysis/border.js'
 import { outcomeChecks, sharedChecks } from './analysis/checks.js'
 import { entriesOf } from './analysis/entries.js'
@@ -104,6 +105,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
     })
   })
   const audit = auditOf(study, inputs, placed.value)
+  const balance = balanceAtLines(study, inputs, placed.value)
   const shared = sharedUnits(placement, inputs.table, study.records.id)
   const used = placed.value.border?.pieces.filter(({ setAside }) => setAside === undefined)
   return {
@@ -123,7 +125,7 @@ export function analyze(study: Study, inputs: AnalysisInputs, context: AnalysisC
           placed: placed.value.units,
           set_aside: Object.fromEntries([...placed.value.setAside].sort(([a], [b]) => (a < b ? -1 : 1))),
         },
-        lines: lineSummaries(placement, used),
+        lines: lineSummaries(placement, used).map((line, i) => (balance ? { ...line, balance: balance[i] } : line)),
         ...(hasBorder(placed.value) ? { border: borderResult(placed.value) } : {}),
         ...(shares.value ? { target_population: shares.value.population } : {}),
         ...(audit ? { audit } : {}),

@@ -125,7 +125,14 @@ export interface LineSummary {
   /** Treated less untreated. */
   readonly dose?: number
   readonly units: BySide
+  /** Jumps of predetermined columns, corrected; absent without them, and where there are very many. */
+  readonly balance?: readonly LineBalance[]
 }
+
+export type LineBalance = { readonly column: string } & (
+  | { readonly estimate: number; readonly standard_error: number; readonly p: number }
+  | NotEstimated
+)
 
 /** What the rules of a border study cost and what they found. No coordinate is in it. */
 export interface BorderResult {

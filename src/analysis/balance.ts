@@ -2,11 +2,11 @@
 import { jointTest } from '../checks/index.js'
 import { covarianceMatrix, type JumpFit, type Side } from '../jump/index.js'
 import { numbersOf } from '../records/index.js'
-import type { BalanceRow, CheckResult } from '../results.js'
+import type { BalanceRow, CheckResult, LineBalance } from '../results.js'
 import type { Study } from '../study/index.js'
 import { type Adjusted, adjustedFor } from './adjusted.js'
-import { entriesOfValues } from './entries.js'
-import { hasReason, type LineEstimate, type OrReason, pooledOnly } from './estimating.js'
+import { entriesOfLine, entriesOfValues } from './entries.js'
+import { estimateEntries, hasReason, type LineEstimate, type OrReason, pooledOnly } from './estimating.js'
 import type { AnalysisInputs } from './inputs.js'
 import type { Placed } from './placing.js'
 import { shown } from './words.js'
@@ -99,4 +99,29 @@ function joint(jumps: readonly JumpFit[], placed: Placed, alpha: number): CheckR
   const { square, f, degreesOfFreedom, p } = joint
   const says = `${count} columns together: ${p < alpha ? 'they jump by more than chance' : 'no more than chance'} (F = ${shown(f)} on ${count} and ${shown(degreesOfFreedom[1])} degrees of freedom)`
   return [{ check, statistic: square, p, verdict: p < alpha ? 'doubt' : 'fine', says }]
+}
+
+/** Beyond this many estimates the lines go without. */
+const mostAtLines = 2000
+
+/** The jump of each predetermined column at each line, each at its own bandwidth; undefined where there are none or too many. */
+export function balanceAtLines(
+  study: Study,
+  { table }: AnalysisInputs,
+  placed: Placed,
+): readonly (readonly LineBalance[])[] | undefined {
+  const { lines } = placed.placement
+  const columns = study.predetermined
+  if (study.checks === 'none' || columns.length === 0 || lines.length < 2) return undefined
+  if (lines.length * columns.length > mostAtLines) return undefined
+  const byColumn = columns.map((column) => {
+    const entries = entriesOfValues(study, table, placed, numbersOf(table, column))
+    return lines.map((_, i): LineBalance => {
+      const made = estimateEntries(study, placed, entriesOfLine(entries, i))
+      if (hasReason(made)) return { column, not_estimated: made.reason }
+      const { estimate, standardError, p } = made.jump.corrected
+      return { column, estimate, standard_error: standardError, p }
+    })
+  })
+  return lines.map((_, i) => byColumn.map((rows) => rows[i]))
 }

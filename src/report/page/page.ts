@@ -1,4 +1,4 @@
-/** report.html: one page, no request, and no script but that of its one panel. The answer in words first, then what it rests on. */
+/** report.html: one page, no request, and no script but that of its panel and of its list of lines. The answer in words first, then what it rests on. */
 import { auditTable } from '../auditTable.js'
 import { conflictTable, waterfallTable, whatElseTable } from '../borderTables.js'
 import { escapeHtml } from '../escape.js'
@@ -8,6 +8,7 @@ import { checksTable, ledgerTable, setAsideTable } from '../ledgerTable.js'
 import { capital, pageLineTable } from '../lineTable.js'
 import { awayTable, movedTable } from '../movedTable.js'
 import { count, missing } from '../numbers.js'
+import { passportsHtml } from '../passports/passports.js'
 import { comparisonTable, contrastTable, pooledTable } from '../pooledTable.js'
 import { sharedTable } from '../sharedTable.js'
 import { geometryWords } from '../summary.js'
@@ -37,7 +38,9 @@ const whatIfId = 'what-if'
 export function pageHtml(view: View, figures: ReportFigures, script?: string): string {
   const { results } = view
   const panel = script === undefined ? undefined : whatIfHtml(view)
-  const sections = sectionsOf(view, figures, panel)
+  const passports = passportsHtml(view)
+  const hasScript = script !== undefined && (panel !== undefined || passports !== '')
+  const sections = sectionsOf(view, figures, { panel, passports })
   const links = sections
     .map((one) => `<li${hiddenMark(one)}><a href="#${one.id}">${escapeHtml(one.title)}</a></li>`)
     .join('')
@@ -49,7 +52,7 @@ export function pageHtml(view: View, figures: ReportFigures, script?: string): s
 <html lang="en">
 <head>
 <meta charset="utf-8">
-<meta http-equiv="Content-Security-Policy" content="${contentPolicy(pageStyle, panel && script)}">
+<meta http-equiv="Content-Security-Policy" content="${contentPolicy(pageStyle, hasScript ? script : undefined)}">
 <meta name="viewport" content="width=device-width, initial-scale=1">
 <meta name="generator" content="scarp ${escapeHtml(results.version)}">
 <title>${escapeHtml(results.title)}</title>
@@ -72,7 +75,7 @@ ${body.join('\n')}
 </div>
 <footer>Drawn by scarp ${escapeHtml(results.version)} from results.json beside this page, which has every number in full. Seed ${results.seed}.</footer>
 </div>
-${panel ? `<script>${script}</script>\n` : ''}</body>
+${hasScript ? `<script>${script}</script>\n` : ''}</body>
 </html>
 `
 }
@@ -86,7 +89,11 @@ const emblem =
   '<svg width="34" height="20" viewBox="0 0 34 20" aria-hidden="true"><path class="s-muted" d="M17 1V19" fill="none" stroke-width="1" stroke-dasharray="2 2"/><path class="s-untreated" d="M1 15L17 14" fill="none" stroke-width="3"/><path class="s-treated" d="M17 6L33 5" fill="none" stroke-width="3"/></svg>'
 
 /** Sections in the order of the page; one without a part is left out. `panel`: what the script fills in. */
-function sectionsOf(view: View, figures: ReportFigures, panel: string | undefined): Section[] {
+function sectionsOf(
+  view: View,
+  figures: ReportFigures,
+  { panel, passports }: { readonly panel: string | undefined; readonly passports: string },
+): Section[] {
   const show = numberedFigures()
   const ofOutcomes = (table: (view: View, outcome: OutcomeView) => TextTable | undefined) =>
     tablesHtml(view.outcomes.map((outcome) => table(view, outcome)))
@@ -101,6 +108,7 @@ function sectionsOf(view: View, figures: ReportFigures, panel: string | undefine
       'Line by line',
       [...view.outcomes.map((outcome) => lineTableHtml(view, outcome)), tablesHtml([sharedTable(view)])],
     ],
+    ['passports', `A passport for each ${view.words.line}`, [passports]],
     [
       'comparison',
       'Comparison',

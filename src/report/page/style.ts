@@ -90,6 +90,19 @@ td.words:nth-child(2), th.words:nth-child(2) { min-width: 13em; }
 .methods li:first-child { border-top: 0; padding-top: 0; }
 .methods cite { display: block; font: .8125rem/1.5 var(--sans); color: var(--muted); }
 pre { overflow: auto; margin: 0; padding: 1rem 1.2rem; background: var(--raised); border: 1px solid var(--rule); font: .8125rem/1.55 var(--mono); tab-size: 2; }
+.passports { border-top: 1px solid var(--rule); }
+.passport { border-bottom: 1px solid var(--rule); content-visibility: auto; contain-intrinsic-size: auto 2.6rem; }
+.passport summary { padding: .55rem 0; cursor: pointer; font: .9375rem/1.4 var(--sans); }
+.passport summary .name { font-weight: 600; }
+.passport summary .gist { color: var(--muted); margin-left: .75rem; font-variant-numeric: tabular-nums; }
+.passport .inside { padding: 0 0 1rem 1rem; }
+.passport:target summary { outline: 2px solid var(--ink); outline-offset: 2px; }
+.pictures { display: flex; flex-wrap: wrap; gap: 1.25rem; margin: .75rem 0; }
+.pictures figure { margin: 0; }
+.pictures figcaption { font: .8125rem/1.4 var(--sans); color: var(--muted); }
+svg.shared { position: absolute; }
+.passport-controls { display: flex; flex-wrap: wrap; gap: .75rem 1.25rem; align-items: end; margin: .75rem 0; font: .875rem/1.4 var(--sans); }
+.passport-controls input, .passport-controls select, .passport-controls button { font: inherit; padding: .3rem .5rem; color: var(--ink); background: var(--raised); border: 1px solid var(--muted); border-radius: 3px; }
 .inputs td, .inputs th { font-size: .8125rem; }
 .hash { font-family: var(--mono); }
 footer { margin-top: 3rem; padding-top: 1rem; border-top: 1px solid var(--rule); font: .8125rem/1.5 var(--sans); color: var(--muted); }
