@@ -27,9 +27,9 @@ const mostStops = { pooled: 40, line: 24 }
 /** Fewer are no ladder. */
 const leastStops = 3
 /** Bytes for all pooled estimates together, and for all lines. */
-const mostBytes = { pooled: 900_000, line: 1_000_000 }
+const mostBytes = { pooled: 900_000, line: 2_000_000 }
 /** Fits times units, for one outcome's pooled estimate and for its lines together: so many, and so many for each unit. */
-const work = { sides: [1e7, 60], table: [7e5, 20] } as const
+const work = { sides: [1e7, 60], table: [8e5, 15] } as const
 
 interface Share {
   readonly wanted: number

@@ -5,7 +5,7 @@ import { addressOf, type State, stateOf } from './address.js'
 import { controlsOf } from './controls.js'
 import { curveFigure } from './curve.js'
 import { make } from './dom.js'
-import { forestFigure } from './forest.js'
+import { forestIn } from './forest.js'
 import { isStudyChoice, kernelOf, type Model, orderOf, settled } from './model.js'
 import { scatterFigure } from './scatter.js'
 import { answerParts, detailWords, routeWords } from './words.js'
@@ -39,6 +39,7 @@ export function startPanel(root: HTMLElement, model: Model): void {
     `Every ${data.line} with the same choices, at the nearest bandwidth that it has. Bars: ${data.levelWords} intervals; filled: zero excluded. Wide ones are cut at the edge.`,
     true,
   )
+  const drawForest = forestIn(forest.box)
   const controls = controlsOf(model, (state) => {
     show(state)
     history.replaceState(null, '', addressOf(state))
@@ -121,16 +122,9 @@ export function startPanel(root: HTMLElement, model: Model): void {
     }
     if (data.all.length === 0) return
     const rows = data.all.map(({ label }, i) => ({ label, shown: model.shown(state, lines[i]) }))
-    const { levelWords, lines: name, unit } = data
-    forest.box.innerHTML = forestFigure({
-      rows,
-      pooled: model.shown(state, pooled),
-      outcome,
-      lines: name,
-      levelWords,
-      unit,
-      places,
-    })
+    const together = { label: 'pooled', shown: model.shown(state, pooled) }
+    const { levelWords, lines: name } = data
+    drawForest({ rows: [...rows, together], outcome, lines: name, levelWords, places })
   }
 
   const start: State = { outcome: names[0], side: 'both' }
