@@ -103,6 +103,12 @@ describe.each([
       await page.getByRole('button', { name: 'Back to the study’s choice' }).click()
       expect(await answer(page)).toBe(before)
       expect(await hash(page)).toBe(`#what-if?outcome=${outcome}`)
+      await slider(page).press('End')
+      const widest = await answer(page)
+      await page.evaluate(() => {
+        location.hash = '#what-if'
+      })
+      expect(await answer(page)).toBe(widest)
       expect(seen).toEqual({ requests: [], messages: [] })
     })
   })

@@ -72,7 +72,7 @@ export function controlsOf(model: Model, change: (state: State) => void): Contro
     )
     offer(line, lines, state.line ?? '')
     offer(kernel, now ? kernels.map((name) => ({ value: name, label: capital(name) })) : [], kernelOf(data, state))
-    offer(order, now ? ['1', '2'].map((value) => ({ value, label: value })) : [], String(orderOf(data, state)))
+    offer(order, now ? orders(state) : [], String(isStudyChoice(state) ? data.order : orderOf(data, state)))
     const donuts = now?.subject.donuts ?? []
     const holes = donuts.map((value) => ({ value: String(value), label: holeWords(value) }))
     offer(donut, holes, String(state.donut ?? donuts[0] ?? ''))
@@ -80,6 +80,12 @@ export function controlsOf(model: Model, change: (state: State) => void): Contro
     places = model.placesOf(state)
     showSlider()
     reset.disabled = isStudyChoice(state)
+  }
+
+  /** 1 and 2, and at the study's choice its own. */
+  function orders(of: State): Option[] {
+    const own = isStudyChoice(of) && data.order !== 1 && data.order !== 2 ? [data.order] : []
+    return [1, 2, ...own].map((value) => ({ value: String(value), label: String(value) }))
   }
 
   function holeWords(value: number): string {

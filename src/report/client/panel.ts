@@ -32,7 +32,7 @@ export function startPanel(root: HTMLElement, model: Model): void {
   )
   const scatter = drawing(
     'means by distance',
-    'Means of the units between neighbouring bandwidths, bars ±1.96 standard errors. Hollow: untreated; filled: treated. Dashed: the bandwidth in use.',
+    'Means of the units between neighbouring bandwidths, bars ±1.96 standard errors. Hollow: untreated; filled: treated. Dashed: the bandwidth in use. Nothing is taken out of the means, be it fixed effects or covariates.',
   )
   const forest = drawing(
     `every ${data.line}`,
@@ -129,7 +129,8 @@ export function startPanel(root: HTMLElement, model: Model): void {
 
   const start: State = { outcome: names[0], side: 'both' }
   function fromAddress(): void {
-    const read = stateOf(location.hash, names, ids)
+    // the link to the section alone changes nothing in it
+    const read = location.hash.includes('?') ? stateOf(location.hash, names, ids) : undefined
     if (!read) return
     show(settled(model, read), read.bandwidth)
     root.closest('section')?.scrollIntoView()
