@@ -5,7 +5,9 @@
 import type { NamedTable, TableRow, TextTable } from '../report/index.js'
 import { numberOfCell, splitTable } from '../report/index.js'
 
-const fixedDate = '1980-01-01T00:00:00Z'
+const fixedDate = '1980-01-01T12:00:00Z'
+/** The same for a zip archive, which keeps local time: these hours and minutes wherever the machine stands. */
+const fixedLocalDate = () => new Date(1980, 0, 1, 12)
 
 const isAcross = (row: TableRow): row is { readonly head: string; readonly across: string } => 'across' in row
 
@@ -129,5 +131,5 @@ async function atFixedDate(archive: Uint8Array): Promise<Uint8Array> {
     const text = strFromU8(bytes).replace(/(<dcterms:(?:created|modified)[^>]*>)[^<]*/g, `$1${fixedDate}`)
     return [name, strToU8(text)]
   })
-  return zipSync(Object.fromEntries(dated), { mtime: fixedDate })
+  return zipSync(Object.fromEntries(dated), { mtime: fixedLocalDate() })
 }
