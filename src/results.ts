@@ -612,10 +612,13 @@ export interface WhatIfSubject {
   readonly variations: readonly { readonly donut: number; readonly side: 'both' | 'untreated' | 'treated' }[]
   /**
    * Doubles as base64, lowest byte first; NaN where there is no estimate. Kernels are triangular, Epanechnikov, uniform.
-   * `sides`: [donut][bandwidth][untreated, treated][kernel][order 1, 2, 3][level, variance, Σl², Σl⁴].
+   * `sides`: [donut][bandwidth][untreated, treated][kernel], in each the [level less `centre`, variance, Σl², Σl⁴] of the
+   * orders 1, 2 and 3, and the coefficients of |x|, of |x| and of x² in the curves of order 1 and 2.
    * `table`: [variation][bandwidth][kernel][order 1, 2][plain, corrected][estimate, standard error, degrees of freedom].
    */
   readonly sums: string
+  /** Mean outcome, which levels are given without. */
+  readonly centre: number
   /** [donut][bandwidth][nearer than the bandwidth, that or at it] */
   readonly units: BySide<readonly number[]>
   /** Cells between neighbouring bandwidths, the first from the study's donut. */

@@ -47,12 +47,12 @@ export function whatIfOf(
   { lines, pooled, basis }: OutcomeEstimates,
 ): WhatIfExhibit {
   const outcomes = study.outcomes.length
-  const share = Math.floor(mostBytes.pooled / outcomes / 1800)
+  const share = Math.floor(mostBytes.pooled / outcomes / 2200)
   const again = (of: PoolBasis, made: OrReason<LineEstimate>, how: Share) =>
     hasReason(made) ? null : subjectOf(study, placed, of, entries.takeUp, made, how)
   const all = again(basis, pooled, { wanted: Math.min(mostStops.pooled, share), part: 1, isFull: true })
   if (lines.length === 1) return { pooled: all, lines: [] }
-  const wanted = Math.min(mostStops.line, Math.floor(mostBytes.line / outcomes / lines.length / 630))
+  const wanted = Math.min(mostStops.line, Math.floor(mostBytes.line / outcomes / lines.length / 780))
   const each = { wanted, part: 1 / lines.length, isFull: false }
   return {
     pooled: all,
@@ -106,6 +106,7 @@ function subjectOf(
         untreated: unitsWithin(basis.sample.untreated, donuts, bandwidths),
         treated: unitsWithin(basis.sample.treated, donuts, bandwidths),
       },
+      centre: sample.centre,
       cells: cellsOf(sample, bandwidths),
     }
   }
@@ -150,7 +151,7 @@ function variationsOf(donuts: readonly number[], isFull: boolean): WhatIfSubject
 /** Half the numbers given about a side's cell: a unit has a distance and an outcome, so as many can't be solved for. */
 function fewestUnits(from: WhatIfSubject['from'], isFull: boolean): number {
   const donuts = isFull ? 3 : 1
-  if (from === 'sides') return Math.ceil((36 * donuts + 5) / 2)
+  if (from === 'sides') return Math.ceil((45 * donuts + 5) / 2)
   return Math.ceil((36 * (isFull ? donuts + 2 : 1) + 10) / 4)
 }
 

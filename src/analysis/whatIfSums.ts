@@ -26,21 +26,26 @@ export function sumsOfSides(
   bandwidths: readonly number[],
   variance: Variance,
 ): Float64Array {
-  const sums = new Float64Array(donuts.length * bandwidths.length * 72).fill(Number.NaN)
+  const sums = new Float64Array(donuts.length * bandwidths.length * 90).fill(Number.NaN)
   donuts.forEach((donut, d) => {
     const open = outsideDonut(sample, donut)
     const neighbours = variance === 'neighbours' ? neighbourResidualsOf(open) : undefined
     const varies = firstDifference(open)
     bandwidths.forEach((h, b) => {
       if (!(h >= varies)) return
-      let at = (d * bandwidths.length + b) * 72
+      let at = (d * bandwidths.length + b) * 90
       for (const side of sides) {
         for (const kernel of kernels) {
-          for (const order of [1, 2, 3]) {
-            const made = sideSums(open[side], { order, kernel, h, variance }, neighbours?.[side])
-            if (made) sums.set([made.level, made.variance, made.squares, made.fourths], at)
-            at += 4
-          }
+          const fits = [1, 2, 3].map((order) =>
+            sideSums(open[side], { order, kernel, h, variance }, neighbours?.[side]),
+          )
+          fits.forEach((made, i) => {
+            if (!made) return
+            sums.set([made.level, made.variance, made.squares, made.fourths], at + 4 * i)
+            // of the curves of order 1 and 2, after the sums of all three
+            if (i < 2) sums.set(made.slopes, at + 12 + i)
+          })
+          at += 15
         }
       }
     })

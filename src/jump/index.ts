@@ -38,7 +38,7 @@ export {
   withinBandwidth,
   withOutcomes,
 } from './sample.js'
-export { jumpOfSides, type SideChoices, type SideSums, sideSums } from './sideSums.js'
+export { jumpOfSides, type SideChoices, type SideFit, type SideSums, sideSums } from './sideSums.js'
 export { eachNeighbourhood, type SpatialPlaces, spatialPlaces } from './spatialPairs.js'
 export { type TakeUpRatio, takeUpRatio } from './takeUp.js'
 export {

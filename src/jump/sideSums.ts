@@ -6,7 +6,7 @@
  */
 import { type Inference, infer } from './inference.js'
 import type { Kernel } from './kernel.js'
-import { addWeights, fitLocal, functional } from './localPolynomial.js'
+import { addWeights, coefficientOf, fitLocal, functional } from './localPolynomial.js'
 import type { Side } from './sample.js'
 import { scaledResiduals, type Variance } from './variance.js'
 
@@ -18,6 +18,11 @@ export interface SideSums {
   /** Σ a_i² and Σ a_i⁴ */
   readonly squares: number
   readonly fourths: number
+}
+
+export interface SideFit extends SideSums {
+  /** Coefficients of t, t², … of the fitted curve, t = |x|. */
+  readonly slopes: readonly number[]
 }
 
 export interface SideChoices {
@@ -33,7 +38,7 @@ export function sideSums(
   side: Side,
   { order, kernel, h, variance }: SideChoices,
   neighbours?: Float64Array,
-): SideSums | undefined {
+): SideFit | undefined {
   if (side.t.length === 0) return undefined
   const fitted = fitLocal(side, order, h, kernel)
   if (!fitted.ok) return undefined
@@ -57,7 +62,8 @@ export function sideSums(
     sums.squares += squares
     sums.fourths += fourths
   }
-  return sums
+  const slopes = Array.from({ length: order }, (_, power) => coefficientOf(fit, power + 1))
+  return { ...sums, slopes }
 }
 
 /** The jump, treated less untreated, of two sides. */

@@ -1,10 +1,18 @@
 /** What the page re-estimates is what the program gives at that fixed bandwidth: an identity, so no outside value is needed. */
 import { describe, expect, it } from 'vitest'
 import { sumsOfSides, unitsWithin } from '../../src/analysis/whatIfSums.js'
-import { buildSample, type Entries, type Inference, jumpAt, outsideDonut, type Variance } from '../../src/jump/index.js'
+import {
+  buildSample,
+  type Entries,
+  fittedAt,
+  type Inference,
+  jumpAt,
+  outsideDonut,
+  type Variance,
+} from '../../src/jump/index.js'
 import { base64OfNumbers, numbersOfBase64, seededRandom } from '../../src/math/index.js'
 import { addressOf, type State, stateOf } from '../../src/report/client/address.js'
-import { estimateAt, kernels } from '../../src/report/client/again.js'
+import { curveOf, estimateAt, kernels } from '../../src/report/client/again.js'
 import { settled } from '../../src/report/client/model.js'
 import type { BySide, Estimate, Jump } from '../../src/results.js'
 import type { Study } from '../../src/study/index.js'
@@ -50,6 +58,7 @@ describe('sums of each side', () => {
           untreated: unitsWithin(sample.untreated, donuts, bandwidths),
           treated: unitsWithin(sample.treated, donuts, bandwidths),
         },
+        centre: sample.centre,
         cells: undefined as never,
       }
       const own = { untreated: bandwidths[2], treated: bandwidths[1] }
@@ -68,6 +77,15 @@ describe('sums of each side', () => {
                 const wanted = jumpAt(outsideDonut(sample, hole), { h, b: h }, options)
                 if (!wanted.ok || !made) throw new Error('no estimate')
                 expect(made.units).toEqual(wanted.jump.unitsInBandwidth)
+                for (const name of ['untreated', 'treated'] as const) {
+                  const curve = curveOf(subject, name, bandwidths.indexOf(h[name]), { kernel, order, donut })
+                  for (const t of [0, h[name] / 2, h[name]])
+                    close(
+                      curve?.(t) ?? Number.NaN,
+                      fittedAt(wanted.jump.fits[name], t) + sample.centre,
+                      `curve at ${t}`,
+                    )
+                }
                 for (const kind of ['plain', 'corrected'] as const)
                   for (const key of [
                     'estimate',
@@ -89,8 +107,8 @@ describe('sums of each side', () => {
     const entries = randomEntries(3, 0)
     const y = entries.y.map((value, i) => (Math.abs(entries.x[i]) < 0.2 ? 5 : value))
     const sums = sumsOfSides(buildSample({ ...entries, y }), [0], [0.15, 0.4], 'hc2')
-    expect([...sums.subarray(0, 72)].every(Number.isNaN)).toBe(true)
-    expect([...sums.subarray(72)].some(Number.isNaN)).toBe(false)
+    expect([...sums.subarray(0, 90)].every(Number.isNaN)).toBe(true)
+    expect([...sums.subarray(90)].some(Number.isNaN)).toBe(false)
   })
 })
 
@@ -186,7 +204,7 @@ describe('the address', () => {
     const states: State[] = [
       { outcome: 'log rent', side: 'both' },
       { outcome: 'y', side: 'both', line: lines[0], bandwidth: 812.5, kernel: 'uniform', order: 2, donut: 30 },
-      { outcome: 'y', side: 'treated', bandwidth: 0.1 + 0.2 },
+      { outcome: 'y', side: 'treated', bandwidth: 0.1 + 0.2, fit: 'plain' },
     ]
     for (const state of states) expect(stateOf(addressOf(state), ['y', 'log rent'], lines)).toEqual(state)
   })

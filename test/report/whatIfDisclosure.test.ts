@@ -120,6 +120,6 @@ it('decodes what it encodes', () => {
   const study = studyOf('')
   const { pooled } = analysisOf(study, inputsOf(inventUnits(2000, 1, 4))).exhibits.outcomes[0].whatIf ?? {}
   const subject = subjectOf(pooled as WhatIfSubject)
-  expect(subject.sums.length).toBe(72 * subject.bandwidths.length * subject.donuts.length)
+  expect(subject.sums.length).toBe(90 * subject.bandwidths.length * subject.donuts.length)
   expect(subject.cells.treated.mean.length).toBe(subject.bandwidths.length)
 })

@@ -142,6 +142,14 @@ describe.each([
       await page.getByLabel('Of', { exact: true }).selectOption({ index: 1 })
       expect(await answer(page)).not.toBe(pooled)
       expect(await answer(page)).toContain(analysis.results.lines[0].label)
+      const curves = () => page.locator('#what-if-panel figure path[stroke-width="2.2"]').count()
+      expect(await curves()).toBe(0)
+      const tick = page.getByLabel('Draw the plain curves')
+      // clusters tie the sides of this study's lines together
+      if (name === 'quillhaven') return expect(await tick.isDisabled()).toBe(true)
+      await tick.check()
+      expect(await curves()).toBe(2)
+      expect(await hash(page)).toMatch(/&fit=plain$/)
     })
   })
 

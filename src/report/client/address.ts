@@ -13,15 +13,17 @@ export interface State {
   readonly kernel?: Kernel
   readonly order?: 1 | 2
   readonly donut?: number
+  /** Whether the plain curves are drawn; of no estimate. */
+  readonly fit?: 'plain'
 }
 
 const place = '#what-if'
 
 /** Keys in this order; nothing of what is the study's own. */
 export function addressOf(state: State): string {
-  const { outcome, line, bandwidth, side, kernel, order, donut } = state
+  const { outcome, line, bandwidth, side, kernel, order, donut, fit } = state
   const width = side === 'both' ? 'bandwidth' : `bandwidth.${side}`
-  const pairs = { outcome, line, [width]: bandwidth, kernel, order, donut }
+  const pairs = { outcome, line, [width]: bandwidth, kernel, order, donut, fit }
   const words = new URLSearchParams()
   for (const [key, value] of Object.entries(pairs)) if (value !== undefined) words.set(key, String(value))
   return `${place}?${words}`
@@ -43,6 +45,7 @@ export function stateOf(address: string, outcomes: readonly string[], lines: rea
     kernel: kernels.find((name) => name === kernel),
     order: ([1, 2] as const).find((one) => String(one) === order),
     donut: number('donut'),
+    fit: words.get('fit') === 'plain' ? ('plain' as const) : undefined,
   }
   const known = Object.fromEntries(Object.entries(pairs).filter(([, value]) => value !== undefined))
   return { ...known, outcome: outcomes.find((name) => name === outcome) ?? outcomes[0], side }

@@ -96,7 +96,7 @@ function ofSides(
   const jump = (fitOrder: number): Inference | undefined => {
     const [untreated, treated] = [places.untreated, places.treated].map((place, side): SideSums => {
       const fits = (donut * bandwidths.length + place) * 2 + side
-      const at = ((fits * kernels.length + kernels.indexOf(kernel)) * 3 + fitOrder - 1) * 4
+      const at = (fits * kernels.length + kernels.indexOf(kernel)) * 15 + 4 * (fitOrder - 1)
       return { level: sums[at], variance: sums[at + 1], squares: sums[at + 2], fourths: sums[at + 3] }
     })
     return untreated.fourths + treated.fourths > 0 ? jumpOfSides(untreated, treated, settings) : undefined
@@ -104,6 +104,21 @@ function ofSides(
   const plain = jump(order)
   const corrected = jump(order + 1)
   return plain && corrected && { plain, corrected }
+}
+
+/** The plain curve of one side as a function of |x|; undefined where there is none or the sides are not apart. */
+export function curveOf(
+  { from, bandwidths, sums, centre }: Subject,
+  side: 'untreated' | 'treated',
+  place: number,
+  { kernel, order, donut }: Omit<Choices, 'side'>,
+): ((t: number) => number) | undefined {
+  if (from !== 'sides') return undefined
+  const fits = (donut * bandwidths.length + place) * 2 + (side === 'treated' ? 1 : 0)
+  const at = (fits * kernels.length + kernels.indexOf(kernel)) * 15
+  const level = centre + sums[at + 4 * (order - 1)]
+  const [slope, bend] = order === 1 ? [sums[at + 12], 0] : [sums[at + 13], sums[at + 14]]
+  return Number.isNaN(level) ? undefined : (t) => level + t * (slope + t * bend)
 }
 
 function ofTable(

@@ -35,6 +35,8 @@ export function controlsOf(model: Model, change: (state: State) => void): Contro
     if (bandwidth !== undefined) change(settled(model, { ...state, bandwidth }))
   })
   const width = make('output', { id: 'what-if-width', for: 'what-if-bandwidth' })
+  const fit = make('input', { id: 'what-if-fit', type: 'checkbox' })
+  fit.addEventListener('change', () => change({ ...state, fit: fit.checked ? 'plain' : undefined }))
   const reset = make('button', { type: 'button' }, 'Back to the study’s choice')
   reset.addEventListener('click', () => change({ outcome: state.outcome, line: state.line, side: 'both' }))
   const ready = () => model.readyOf(model.panelOf(state))
@@ -54,6 +56,7 @@ export function controlsOf(model: Model, change: (state: State) => void): Contro
       field('Bandwidth that moves', side),
     ),
     make('p', { class: 'slide' }, make('label', { for: slider.id }, 'Bandwidth'), slider, width),
+    make('p', { class: 'tick' }, fit, make('label', { for: fit.id }, 'Draw the plain curves')),
     reset,
   )
   root.addEventListener('submit', (event) => event.preventDefault())
@@ -79,6 +82,8 @@ export function controlsOf(model: Model, change: (state: State) => void): Contro
     offer(side, sidesFor(state), state.side)
     places = model.placesOf(state)
     showSlider()
+    fit.checked = state.fit === 'plain'
+    fit.disabled = now?.subject.from !== 'sides'
     reset.disabled = isStudyChoice(state)
   }
 

@@ -2,12 +2,13 @@
 import { significant } from '../numbers.js'
 import type { PanelSubject } from '../whatIfData.js'
 import { addressOf, type State, stateOf } from './address.js'
+import { curveOf } from './again.js'
 import { controlsOf } from './controls.js'
 import { curveFigure } from './curve.js'
 import { make } from './dom.js'
 import { forestIn } from './forest.js'
-import { isStudyChoice, kernelOf, type Model, orderOf, settled } from './model.js'
-import { scatterFigure } from './scatter.js'
+import { isStudyChoice, kernelOf, type Model, orderOf, type Ready, type Shown, settled } from './model.js'
+import { type ScatterCurve, scatterFigure } from './scatter.js'
 import { answerParts, detailWords, routeWords } from './words.js'
 
 /** Fills the panel and keeps panel and address the same. */
@@ -118,13 +119,33 @@ export function startPanel(root: HTMLElement, model: Model): void {
       if (made.length > 0)
         curve.box.innerHTML = curveFigure({ points: made, shown, at, own, outcome, unit, xUnit, levelWords, places })
       const donut = state.donut ?? data.donut
-      scatter.box.innerHTML = scatterFigure({ subject: ready.subject, shown, donut, outcome, axis, unit, places })
+      scatter.box.innerHTML = scatterFigure({
+        subject: ready.subject,
+        shown,
+        donut,
+        outcome,
+        axis,
+        unit,
+        places,
+        curves: state.fit && shown ? curvesOf(state, ready, shown) : [],
+      })
     }
     if (data.all.length === 0) return
     const rows = data.all.map(({ label }, i) => ({ label, shown: model.shown(state, lines[i]) }))
     const together = { label: 'pooled', shown: model.shown(state, pooled) }
     const { levelWords, lines: name } = data
     drawForest({ rows: [...rows, together], outcome, lines: name, levelWords, places })
+  }
+
+  function curvesOf(state: State, { subject }: Ready, shown: Shown): ScatterCurve[] {
+    const isOther = isStudyChoice(state) && data.order !== orderOf(data, state)
+    const choices = isOther ? undefined : model.choicesOf(state, subject)
+    return (['untreated', 'treated'] as const).flatMap((side) => {
+      const to = shown.bandwidth[side]
+      const place = subject.bandwidths.indexOf(to)
+      const at = choices && place >= 0 ? curveOf(subject, side, place, choices) : undefined
+      return at ? [{ side, to, at }] : []
+    })
   }
 
   const start: State = { outcome: names[0], side: 'both' }

@@ -13,6 +13,14 @@ export interface Scatter {
   readonly axis: string
   readonly unit: string
   readonly places: Places
+  /** Curves to draw, by side, from the hole to the bandwidth. */
+  readonly curves: readonly ScatterCurve[]
+}
+
+export interface ScatterCurve {
+  readonly side: 'untreated' | 'treated'
+  readonly to: number
+  readonly at: (t: number) => number
 }
 
 interface Dot {
@@ -58,6 +66,12 @@ export function scatterFigure(scatter: Scatter): string {
     ...(shown ? [-shown.bandwidth.untreated, shown.bandwidth.treated] : []).map((at) =>
       element('path', { d: upright(at), ...stroked('muted', 1), 'stroke-dasharray': '5 4' }),
     ),
+    ...scatter.curves.map(({ side, to, at }) => {
+      const sign = side === 'treated' ? 1 : -1
+      const points = Array.from({ length: 33 }, (_, i) => (to * i) / 32)
+      const path = points.map((t) => `${x(sign * t).toFixed(1)} ${y(at(t)).toFixed(1)}`).join('L')
+      return element('path', { d: `M${path}`, ...stroked(side, 2.2) })
+    }),
     ...dots.flatMap(({ side, x: at, mean, bar }) => [
       element('path', {
         d: `M${x(at).toFixed(1)} ${y(mean - bar).toFixed(1)}V${y(mean + bar).toFixed(1)}`,

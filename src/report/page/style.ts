@@ -114,7 +114,9 @@ footer { margin-top: 3rem; padding-top: 1rem; border-top: 1px solid var(--rule);
 .choices button { cursor: pointer; }
 .choices button:disabled, .choices select:disabled { color: var(--muted); border-color: var(--rule); cursor: default; }
 .choices .slide { max-width: none; display: grid; grid-template-columns: auto minmax(8rem, 1fr) auto; align-items: center; gap: .2rem .9rem; margin: 1rem 0; }
-.choices input { width: 100%; height: 2rem; margin: 0; accent-color: var(--accent); }
+.choices .tick { flex-direction: row; align-items: center; gap: .5rem; margin: 0 0 1rem; }
+.choices .tick input { accent-color: var(--accent); width: 1.2rem; height: 1.2rem; margin: 0; }
+.choices .slide input { width: 100%; height: 2rem; margin: 0; accent-color: var(--accent); }
 .choices output { font-variant-numeric: tabular-nums; min-width: 6em; }
 .now { font-size: 1.25rem; line-height: 1.4; min-height: 2.8em; max-width: 40em; }
 .pair figure { margin: 0; }
