@@ -19,7 +19,7 @@ import { type Placed, placeStudy } from './analysis/placing.js'
 import { sharedUnits } from './analysis/sharedUnits.js'
 import { attributeOfLines, doubtfulShares, sharesOfLines } from './analysis/shares.js'
 import { borderResult, lineSummaries, outcomeResult } from './analysis/summaries.js'
-import { unitCells } from './analysis/unitCells.js'
+import { unitCells, unitPoints } from './analysis/unitCells.js'
 import { placeVariants, variantResults } from './analysis/variants.js'
 import { whatIfOf } from './analysis/whatIf.js'
 import { linesOfLayer, readLineLayer } from './borders/index.js'
@@ -195,12 +195,16 @@ function exhibitsOf(study: Study, inputs: AnalysisInputs, placed: Placed, outcom
     xUnit: spread ? `standard deviations of ${xUnit}` : xUnit,
     isBorder: line.kind === 'border',
     outcomes,
-    ...(border ? { map: { ...mapOf(border, ids, barrierShapes(inputs)), ...cellsOf(study, inputs, placed) } } : {}),
+    ...(border ? { map: { ...mapOf(border, ids, barrierShapes(inputs)), ...unitsOnMap(study, inputs, placed) } } : {}),
   }
 }
 
-/** Units placed, counted on a grid; nothing where no cell is large enough to be shown. */
-function cellsOf(study: Study, { table }: AnalysisInputs, { placement, border }: Placed): Pick<MapExhibit, 'cells'> {
+/** Units placed, counted on a grid where a cell is large enough to be shown; and one by one where the study asks. */
+function unitsOnMap(
+  study: Study,
+  { table }: AnalysisInputs,
+  { placement, border }: Placed,
+): Pick<MapExhibit, 'cells' | 'points'> {
   const near = border?.pieces[0]?.coordinates[0]
   if (study.line.kind !== 'border' || !near) return {}
   const [lon, lat] = positionColumns(study).map((name) => {
@@ -208,7 +212,7 @@ function cellsOf(study: Study, { table }: AnalysisInputs, { placement, border }:
     return Float64Array.from(placement.unit, (unit) => values[unit])
   })
   const cells = unitCells(lon, lat, near, study.disclosure.smallestCell)
-  return cells ? { cells } : {}
+  return { ...(cells ? { cells } : {}), ...(study.disclosure.coordinates ? { points: unitPoints(lon, lat) } : {}) }
 }
 
 function barrierShapes(inputs: AnalysisInputs): MapExhibit['barriers'] {

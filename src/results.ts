@@ -675,6 +675,8 @@ export interface MapExhibit {
   }[]
   /** Units placed, counted in squares of a grid that no unit's place decides; absent where none is drawn. */
   readonly cells?: UnitCells
+  /** Positions of single units, in degrees, in order of longitude: only where the study asks for coordinates. */
+  readonly points?: readonly (readonly [number, number])[]
 }
 
 export interface UnitCells {

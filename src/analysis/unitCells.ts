@@ -38,6 +38,12 @@ export function unitCells(
   return best && best.cells.length > 0 ? best : undefined
 }
 
+/** Each place once, in an order that says nothing of rows. */
+export function unitPoints(lon: Float64Array, lat: Float64Array): (readonly [number, number])[] {
+  const places = Array.from(lon, (value, i) => [value, lat[i]] as const).sort((a, b) => a[0] - b[0] || a[1] - b[1])
+  return places.filter(([x, y], i) => i === 0 || x !== places[i - 1][0] || y !== places[i - 1][1])
+}
+
 function ends(values: Float64Array): [number, number] {
   let [low, high] = [Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY]
   for (const value of values) {

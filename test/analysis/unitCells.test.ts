@@ -1,6 +1,6 @@
 /** Counts of units on a grid: whole, without small squares, and the same whatever the order and across 180°. */
 import { describe, expect, it } from 'vitest'
-import { unitCells } from '../../src/analysis/unitCells.js'
+import { unitCells, unitPoints } from '../../src/analysis/unitCells.js'
 import { seededRandom } from '../../src/math/index.js'
 
 function town(count: number, lon0: number, lat0: number): { lon: Float64Array; lat: Float64Array } {
@@ -44,5 +44,18 @@ describe('units on a grid', () => {
   it('are not drawn where no square has enough', () => {
     expect(unitCells(lon.slice(0, 5), lat.slice(0, 5), [12.4, 51.3], 10)).toBe(undefined)
     expect(unitCells(new Float64Array(0), new Float64Array(0), [12.4, 51.3], 10)).toBe(undefined)
+  })
+})
+
+describe('units one by one', () => {
+  it('are each place once, in an order that says nothing of rows', () => {
+    const lon = Float64Array.of(3, 1, 3, 2, 1)
+    const lat = Float64Array.of(5, 4, 5, 6, 3)
+    expect(unitPoints(lon, lat)).toEqual([
+      [1, 3],
+      [1, 4],
+      [2, 6],
+      [3, 5],
+    ])
   })
 })

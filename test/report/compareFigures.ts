@@ -112,6 +112,17 @@ function compareOutcome(outcome: OutcomeResult, rowsOf: (kind: string) => Rows):
     same(rows[curve.length], { smoothness: pooled.bias_aware?.smoothness, estimate: pooled.bias_aware?.estimate })
     compared++
   }
+  const slope = outcome.comparison?.slope
+  if (slope && !('not_estimated' in slope) && slope.attribute === 'cutoff') {
+    const rows = rowsOf('slope')
+    same(rows.at(-2), { estimate: slope.estimate, low: slope.low, high: slope.high })
+    same(rows.at(-1), { estimate: slope.intercept })
+    for (const line of outcome.lines) {
+      const row = rows.find((one) => one.line === line.line)
+      if (!('not_estimated' in line)) same(row, { estimate: line.corrected.estimate, high: line.corrected.high })
+    }
+    compared++
+  }
   if (along) {
     const rows = rowsOf('along')
     expect(Object.keys(rows[0])).not.toContain('lon')

@@ -170,4 +170,23 @@ describe('a map', () => {
     expect(svg.match(/stroke-dasharray="6 5"/g)?.length).toBe(aside + 1)
     expect(/(?<![\d.])(?:12\.4\d|51\.3\d)/.test(svg)).toBe(false)
   })
+
+  it('shows single units where the study has asked for their places, and warns of it', () => {
+    const study = borderStudy()
+    const { exhibits } = study.analysis
+    const points = [
+      [12.5, 51.34],
+      [12.45, 51.33],
+      [12.45, 51.33000001],
+    ] as const
+    const map = exhibits.map && { ...exhibits.map, points }
+    const files = drawReport({ ...study, analysis: { ...study.analysis, exhibits: { ...exhibits, map } } })
+    const svg = files.get('figures/points-map.svg') as string
+    // two of the three fall on one pixel
+    expect(/<path d="((?:M\d+ \d+h0)+)"/.exec(svg)?.[1].match(/M/g)?.length).toBe(2)
+    expect(files.get('report.html')).toContain('This report shows where single units are')
+    const before = drawReport(study)
+    expect(before.has('figures/points-map.svg')).toBe(false)
+    expect(before.get('report.html')).not.toContain('where single units are')
+  })
 })

@@ -34,17 +34,18 @@ let browser: Browser
 beforeAll(async () => {
   for (const [name, texts] of Object.entries(files))
     writeFileSync(join(folder, `${name}.html`), texts.get('report.html') as string)
-  for (const name of examples) {
+  const runs = examples.map(async (name) => {
     cpSync(resolve('boundaries', name), join(folder, 'studies', name), { recursive: true })
     const file = join(folder, 'studies', name, 'study.yaml')
     const asked = readFileSync(file, 'utf8')
-      .replace('  barriers:', '  along: 400\n  barriers:')
+      .replace('  barriers:', '  along: 800\n  barriers:')
       .replace('checks:', name === 'quillhaven' ? 'predetermined: [beds, built]\nchecks:' : 'checks:')
     writeFileSync(file, asked)
     const said = await scarp(['run', file, '--out', name, '--quiet'], { cwd: folder })
     expect(said).toEqual({ code: 0, stdout: '', stderr: '' })
     copyFileSync(join(folder, name, 'report.html'), join(folder, `${name}.html`))
-  }
+  })
+  await Promise.all(runs)
   browser = await launch()
 })
 

@@ -14,9 +14,10 @@ import { laddersFigure } from './ladders.js'
 import { mapFigure } from './map.js'
 import { placeboBordersFigure, placeboLinesFigure } from './placebos.js'
 import { scatterFigure } from './scatter.js'
+import { slopeFigure } from './slope.js'
 import { smoothnessFigure } from './smoothness.js'
 import { takeUpFigures } from './takeUp.js'
-import { unitsMapFigure } from './unitsMap.js'
+import { pointsMapFigure, unitsMapFigure } from './unitsMap.js'
 import { ledgerFigure, waterfallFigure } from './waterfall.js'
 
 export interface ReportFigures {
@@ -43,7 +44,7 @@ export function reportFigures(view: View): ReportFigures {
   return {
     effects: view.outcomes.map((outcome) => effectFigures(view, outcome)),
     checks: view.outcomes.map((outcome) => checkFigures(view, outcome)),
-    ground: present([mapFigure(view), unitsMapFigure(view)]),
+    ground: present([mapFigure(view), unitsMapFigure(view), pointsMapFigure(view)]),
     shared: present([densityFigure(view), balanceFigure(view)]),
     waterfall: present([waterfallFigure(view)]),
     ledger: present([ledgerFigure(view)]),
@@ -66,6 +67,7 @@ function effectFigures(view: View, outcome: OutcomeView): Figure[] {
     ...takeUpFigures(view, outcome),
     pooledFigure(view, outcome),
     forestFigure(view, outcome),
+    slopeFigure(view, outcome),
     alongFigure(view, outcome),
   ])
 }

@@ -114,7 +114,7 @@ function titleOf(view: View, outcome: OutcomeView, page: Page | undefined): stri
 }
 
 /** With take-up, lines are compared by their effects per unit of it. */
-function effectWords({ result }: OutcomeView): string {
+export function effectWords({ result }: OutcomeView): string {
   const isRatio = [...result.lines, result.pooled].some((jump) => 'take_up' in jump)
   return isRatio ? `Effect on ${result.outcome} per unit of take-up` : `Jump in ${result.outcome}`
 }

@@ -75,6 +75,55 @@ function pieceMarks(d: string, isUsed: boolean): string[] {
   ]
 }
 
+/** Single units, where the study asks for their coordinates; nothing else shows one. */
+export function pointsMapFigure(view: View): Figure | undefined {
+  const map = view.exhibits.map
+  if (!map?.points || map.points.length === 0) return undefined
+  const { points } = map
+  const frame = frameAround(
+    map.pieces.flatMap((piece) => piece.coordinates),
+    width,
+    [300, 620],
+  )
+  const shown = pixelsOf(points, frame)
+  return figureOf({
+    name: 'points-map',
+    width,
+    title: `Units stand at ${count(points.length)} places; the study asks that they be shown`,
+    lines: ['Dots: places of units. Whoever sees this map can find them.'],
+    description: `A map of the zones and the border with a dot for each of ${points.length} places of units.`,
+    caption: `Places of the units placed against the border, drawn because the study sets disclosure.coordinates. Solid line: border in use; dashes: border set aside. N = ${count(points.length)} places. Leave this figure and its numbers out of what others see.`,
+    data: { columns: ['lon', 'lat'], rows: points.map(([lon, lat]) => [lon, lat]) },
+    draw: (top, id) => {
+      const d = shown.map(([x, y]) => `M${x} ${y}h0`).join('')
+      const inside = [
+        ...zoneMarks(map, frame).fills,
+        element('path', { d, ...stroked('untreated', 2.4), 'stroke-linecap': 'round' }),
+        ...map.pieces.flatMap((piece) => pieceMarks(piecePath(piece, frame), piece.line !== null)),
+      ]
+      const below = top + frame.height + 22
+      return {
+        marks: [
+          ...framed(frame, top + 8, `${id}-frame`, [], inside),
+          ...scaleBar(frame.metresPerPixel, view.exhibits.xUnit, width - 34, below),
+          ...northArrow(width - 10, below),
+        ],
+        end: below + 42,
+      }
+    },
+  })
+}
+
+/** Each pixel of the map that has a unit, once. */
+function pixelsOf(points: readonly (readonly [number, number])[], frame: MapFrame): [number, number][] {
+  const found = new Map<number, [number, number]>()
+  for (const point of points) {
+    const [x, y] = frame.project(point).map(Math.round)
+    if (x >= 0 && x <= frame.width && y >= 0 && y <= frame.height) found.set(y * (width + 1) + x, [x, y])
+  }
+  return [...found.values()]
+}
+
 /** Upper ends of all classes but the last: fifths of the squares. */
 function limitsOf({ cells }: UnitCells): number[] {
   const sorted = cells.map(({ units }) => units).sort(ascending)

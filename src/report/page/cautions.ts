@@ -18,6 +18,7 @@ export function cautionsOf(view: View): Caution[] {
   return [
     local(view),
     ...onGround(view),
+    ...shownUnits(view),
     ...bundle(view),
     ...corners(view),
     ...smallSamples(view),
@@ -65,6 +66,16 @@ function onGround(view: View): Caution[] {
           },
         ]
       : []),
+  ]
+}
+
+function shownUnits(view: View): Caution[] {
+  if (!view.exhibits.map?.points) return []
+  return [
+    {
+      head: 'This report shows where single units are',
+      text: 'The study sets disclosure.coordinates: a map of this page and its numbers have every unit’s place. Do not pass them on.',
+    },
   ]
 }
 
