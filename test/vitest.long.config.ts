@@ -6,5 +6,6 @@ export default defineConfig({
     include: ['test/long/**/*.test.ts'],
     exclude: ['node_modules/**'],
     testTimeout: 3_600_000,
+    hookTimeout: 3_600_000,
   },
 })
