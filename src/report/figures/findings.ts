@@ -1,5 +1,5 @@
 /** What figures show, said in words: sentences made of the results' own numbers. */
-import type { BySide, Interval, Jump } from '../../results.js'
+import type { BySide, Comparison, Interval, Jump } from '../../results.js'
 import { intervalText } from '../lineTable.js'
 import { cell, fixed, type Places, pWords } from '../numbers.js'
 import type { View } from '../view.js'
@@ -37,8 +37,9 @@ export function unitsWords(view: View, units: BySide): string {
   return `${cell(units.untreated, view.smallestCell)} untreated and ${cell(units.treated, view.smallestCell)} treated units`
 }
 
-/** "differ by more than chance (Wald p < 0.001)". */
-export function differenceWords(view: View, p: number): string {
+/** "differ by more than chance (Welch p < 0.001)": Welch's test where it was made, which few units in each line do not mislead. */
+export function differenceWords(view: View, { wald, welch }: Comparison): string {
+  const { p } = welch ?? wald
   const isBeyond = p < 1 - view.choices.level
-  return `${isBeyond ? 'differ by more than chance' : 'differ by no more than chance'} (Wald ${pWords(p)})`
+  return `${isBeyond ? 'differ by more than chance' : 'differ by no more than chance'} (${welch ? 'Welch' : 'Wald'} ${pWords(p)})`
 }

@@ -109,7 +109,7 @@ function titleOf(view: View, outcome: OutcomeView, page: Page | undefined): stri
   const clear = lines.filter(({ corrected }) => excludesZero(corrected)).length
   const part = page ? `, page ${page.page} of ${page.of}` : ''
   if (lines.length === 0) return `${outcome.result.outcome}: no ${view.words.line} could be estimated${part}`
-  const differ = comparison ? `; they ${differenceWords(view, comparison.wald.p)}` : ''
+  const differ = comparison ? `; they ${differenceWords(view, comparison)}` : ''
   return `${outcome.result.outcome} rises at ${above} of ${howMany(view, lines.length)} and falls at ${lines.length - above}; ${clearWords(clear)}${differ}${part}`
 }
 
