@@ -69,7 +69,8 @@ function withGeometry(results: Results, geometry: Results['geometry']): Results 
 export async function writeDrawn(write: WriteFile, { study }: StudyFile, analysis: Drawable): Promise<void> {
   const { resolvedStudy } = await import('../study/index.js')
   const { drawReport, pdfPath, reportTables } = await import('../report/index.js')
-  const { docxOf, xlsxOf } = await import('./documents.js')
+  const { docxOf } = await import('./documents.js')
+  const { xlsxOf } = await import('./workbook.js')
   const resolved = resolvedStudy(study)
   await write('results.json', [resultsJson(analysis.results)])
   await write('study.resolved.yaml', [resolved])

@@ -1,5 +1,6 @@
 /** Lines at which the audited column breaks elsewhere. */
-import { count, p, significant } from './numbers.js'
+import { count, significant } from './numbers.js'
+import { pCell, severalCell, significantCell } from './tableCells.js'
 import type { TextTable } from './tables.js'
 import { howMany, labelOf, type View } from './view.js'
 
@@ -13,7 +14,7 @@ export function auditTable(view: View): TextTable | undefined {
     caption: `Does ${audit.column} jump where the lines are said to be?`,
     columns: [
       { head: 'Line', isText: true },
-      { head: 'Its break, from the line' },
+      { head: 'Its break, from the line', parts: ['at', 'within'] },
       { head: 'Jump there' },
       { head: 'p, Holm' },
       { head: 'Jump at the line' },
@@ -21,11 +22,14 @@ export function auditTable(view: View): TextTable | undefined {
     ],
     rows: audit.elsewhere.map((found) => [
       labelOf(view, found.line),
-      `${significant(found.at)} ± ${significant(found.within)}`,
-      significant(found.jump),
-      p(found.p_holm),
-      significant(found.jump_at_line),
-      p(found.p_at_line),
+      severalCell(`${significant(found.at)} ± ${significant(found.within)}`, [
+        significantCell(found.at),
+        significantCell(found.within),
+      ]),
+      significantCell(found.jump),
+      pCell(found.p_holm),
+      significantCell(found.jump_at_line),
+      pCell(found.p_at_line),
     ]),
     notes: [
       `${howMany(view, audit.audited)} audited.${none}${skipped} The place is looked for in one half of the units and tested in the other. Nothing is changed: ask who keeps the schedule.`,

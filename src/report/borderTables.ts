@@ -1,6 +1,7 @@
 /** What the rules of a border study cost and found: the waterfall, what else changes here, record against map. */
 import { capital } from './lineTable.js'
-import { cell, count, missing, significant } from './numbers.js'
+import { missing } from './numbers.js'
+import { type Cell, countCell, numberCell, significantCell, unitsCell } from './tableCells.js'
 import type { TextTable } from './tables.js'
 import type { View } from './view.js'
 
@@ -19,10 +20,10 @@ export function waterfallTable(view: View): TextTable | undefined {
     ],
     rows: border.waterfall.map(({ rule, pieces, km, pairs, units }) => [
       capital(rule),
-      count(pieces),
-      significant(km),
-      count(pairs),
-      count(units),
+      countCell(pieces),
+      significantCell(km),
+      countCell(pairs),
+      countCell(units),
     ]),
     notes: ['Rules apply in this order; units are those that would be placed under the rules so far.'],
   }
@@ -34,7 +35,7 @@ export function whatElseTable(view: View): TextTable | undefined {
   if (!found) return undefined
   const row = (name: string, km: number, shares: readonly (number | null)[]) => [
     name,
-    significant(km),
+    significantCell(km),
     ...shares.map(percent),
   ]
   return {
@@ -52,9 +53,9 @@ export function whatElseTable(view: View): TextTable | undefined {
   }
 }
 
-function percent(share: number | null): string {
+function percent(share: number | null): Cell {
   if (share === null) return missing
-  return share > 0 && share < 0.005 ? '<1%' : `${Math.round(share * 100)}%`
+  return numberCell(share, share > 0 && share < 0.005 ? '<1%' : `${Math.round(share * 100)}%`)
 }
 
 /** Units whose zone by the record is not that of the map; nothing where the study has no such column. */
@@ -64,7 +65,7 @@ export function conflictTable(view: View): TextTable | undefined {
   return {
     caption: 'Zone by the record against zone by the map',
     columns: [{ head: 'Record', isText: true }, { head: 'Map', isText: true }, { head: 'Units' }],
-    rows: conflicts.map(({ record, map, units }) => [record, map, cell(units, view.smallestCell)]),
+    rows: conflicts.map(({ record, map, units }) => [record, map, unitsCell(units, view.smallestCell)]),
     notes: [conflicts.length === 0 ? 'They agree for every unit.' : 'Units that agree are not listed.'],
   }
 }

@@ -1,7 +1,8 @@
 /** The pooled estimate made again with one choice changed, and at lines and borders that change nothing. */
 import type { Jump, Rung } from '../results.js'
-import { intervalText } from './lineTable.js'
-import { cell, fixed, missing, type Places, p, sharedPlaces, significant } from './numbers.js'
+import { intervalCell, intervalParts, sideParts } from './lineTable.js'
+import { missing, type Places, p, sharedPlaces, significant } from './numbers.js'
+import { type Cell, fixedCell, pCell, severalCell, significantCell, unitsCell } from './tableCells.js'
 import type { TableRow, TextTable } from './tables.js'
 import { isEstimated, type OutcomeView, reasonText, type View, widthText } from './view.js'
 
@@ -48,10 +49,10 @@ export function ladderTable(view: View, outcome: OutcomeView): TextTable | undef
       { head: 'Change', isText: true },
       { head: 'N untreated' },
       { head: 'N treated' },
-      { head: 'Bandwidth' },
+      { head: 'Bandwidth', parts: sideParts },
       { head: 'Estimate' },
       { head: 'Standard error' },
-      { head: `${view.words.level} interval` },
+      { head: `${view.words.level} interval`, parts: intervalParts },
       { head: 'p' },
     ],
     rows: rungs.map(([head, rung]) => rungRow(view, head, rung, places)),
@@ -65,14 +66,18 @@ function rungRow(view: View, head: string, rung: Rung, places: Places): TableRow
   if ('not_estimated' in rung) return { head, across: `not estimated: ${reasonText(view, rung.not_estimated)}` }
   return [
     head,
-    cell(rung.units.untreated, view.smallestCell),
-    cell(rung.units.treated, view.smallestCell),
-    widthText(view, rung.bandwidth),
-    fixed(rung.estimate, places),
-    fixed(rung.standard_error, places),
-    intervalText(rung, places),
-    p(rung.p),
+    unitsCell(rung.units.untreated, view.smallestCell),
+    unitsCell(rung.units.treated, view.smallestCell),
+    widthWithUnit(view, rung.bandwidth),
+    fixedCell(rung.estimate, places),
+    fixedCell(rung.standard_error, places),
+    intervalCell(rung, places),
+    pCell(rung.p),
   ]
+}
+
+function widthWithUnit(view: View, width: Jump['bandwidth']): Cell {
+  return severalCell(widthText(view, width), [significantCell(width.untreated), significantCell(width.treated)])
 }
 
 const placebosShown = 30
@@ -101,18 +106,18 @@ export function placeboTable(view: View, { result }: OutcomeView): TextTable | u
       { head: 'Units' },
       { head: 'Effect' },
       { head: 'Standard error' },
-      { head: `${view.words.level} interval` },
+      { head: `${view.words.level} interval`, parts: intervalParts },
       { head: 'p' },
     ],
     rows: sorted
       .slice(0, placebosShown)
       .map((effect) => [
         effect.pair.join(' | '),
-        cell(effect.units, view.smallestCell),
-        fixed(effect.estimate, places),
-        fixed(effect.standard_error, places),
-        intervalText(effect, places),
-        p(effect.p),
+        unitsCell(effect.units, view.smallestCell),
+        fixedCell(effect.estimate, places),
+        fixedCell(effect.standard_error, places),
+        intervalCell(effect, places),
+        pCell(effect.p),
       ]),
     notes: [
       `${rank} Both zones of a pair have the same status; which counts as treated is arbitrary, so read sizes and not signs.${more}`,

@@ -1,6 +1,7 @@
 /** From rows read to units used: what left at each step and why, and what border was set aside. */
 import { capital } from './lineTable.js'
-import { count, missing, p, significant } from './numbers.js'
+import { count, missing } from './numbers.js'
+import { countCell, pCell, significantCell } from './tableCells.js'
 import type { TextTable } from './tables.js'
 import type { View } from './view.js'
 
@@ -8,8 +9,8 @@ export function ledgerTable(view: View): TextTable {
   const { ledger, placement } = view.results
   const onGround = ledger.some((step) => step.km !== undefined || step.pairs !== undefined)
   const border = (step: (typeof ledger)[number]) => [
-    step.km === undefined ? missing : significant(step.km),
-    step.pairs === undefined ? missing : count(step.pairs),
+    step.km === undefined ? missing : significantCell(step.km),
+    step.pairs === undefined ? missing : countCell(step.pairs),
   ]
   return {
     caption: 'From rows read to units used',
@@ -23,9 +24,9 @@ export function ledgerTable(view: View): TextTable {
     ],
     rows: ledger.map((step) => [
       capital(step.step),
-      count(step.in),
-      count(step.in - step.out),
-      count(step.out),
+      countCell(step.in),
+      countCell(step.in - step.out),
+      countCell(step.out),
       ...(onGround ? border(step) : []),
       Object.entries(step.reasons)
         .map(([reason, units]) => `${reason}: ${count(units)}`)
@@ -50,7 +51,11 @@ export function setAsideTable(view: View): TextTable | undefined {
   return {
     caption: 'Border set aside',
     columns: [{ head: 'Reason', isText: true }, { head: 'Pieces' }, { head: 'Length, km' }],
-    rows: [...reasons].map(([reason, sum]) => [capital(reason), count(sum.pieces), significant(sum.metres / 1000)]),
+    rows: [...reasons].map(([reason, sum]) => [
+      capital(reason),
+      countCell(sum.pieces),
+      significantCell(sum.metres / 1000),
+    ]),
     notes: ['Units whose nearest piece was set aside were set aside with it.'],
   }
 }
@@ -76,9 +81,9 @@ export function checksTable(view: View): TextTable | undefined {
       outcome,
       check.line === undefined ? 'all' : (view.lineOf.get(check.line)?.label ?? check.line),
       check.verdict,
-      significant(check.statistic),
-      p(check.p),
-      p(check.p_holm),
+      significantCell(check.statistic),
+      pCell(check.p),
+      pCell(check.p_holm),
       check.says,
     ]),
     notes: [],

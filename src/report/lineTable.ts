@@ -1,6 +1,7 @@
 /** Every line's estimate as rows, for a paper and for the page. */
 import type { Jump } from '../results.js'
-import { cell, count, fixed, missing, type Places, p, percent, sharedPlaces, wholeNumber } from './numbers.js'
+import { fixed, missing, type Places, sharedPlaces } from './numbers.js'
+import { type Cell, countCell, fixedCell, pCell, percentCell, severalCell, unitsCell, wholeCell } from './tableCells.js'
 import type { TableRow, TextTable } from './tables.js'
 import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, reasonText, type View } from './view.js'
 
@@ -18,6 +19,16 @@ export function intervalText(interval: { readonly low: number; readonly high: nu
   return `${fixed(interval.low, places)} to ${fixed(interval.high, places)}`
 }
 
+/** The same, with both ends in full; its column has the parts `intervalParts`. */
+export function intervalCell(interval: { readonly low: number; readonly high: number }, places: Places): Cell {
+  return severalCell(intervalText(interval, places), [
+    fixedCell(interval.low, places),
+    fixedCell(interval.high, places),
+  ])
+}
+
+export const intervalParts = ['low', 'high'] as const
+
 /** Places that the bandwidths of a column share. */
 export function widthPlaces(jumps: readonly Jump[]): Places {
   return sharedPlaces(
@@ -26,10 +37,19 @@ export function widthPlaces(jumps: readonly Jump[]): Places {
   )
 }
 
-export function widthCell(width: Jump['bandwidth'], places: Places): string {
+/** One number, or both sides' where they differ. */
+export function widthWords(width: Jump['bandwidth'], places: Places): string {
   const [left, right] = [fixed(width.untreated, places), fixed(width.treated, places)]
   return width.untreated === width.treated ? left : `${left} / ${right}`
 }
+
+/** The same, with both sides in full; its column has the parts `sideParts`. */
+export function widthCell(width: Jump['bandwidth'], places: Places): Cell {
+  const sides = [fixedCell(width.untreated, places), fixedCell(width.treated, places)]
+  return severalCell(widthWords(width, places), sides)
+}
+
+export const sideParts = ['untreated', 'treated'] as const
 
 /** The table for a paper: what each line rests on, then what it says; files break it after the first half. */
 export function paperLineTable(view: View, outcome: OutcomeView): TextTable {
@@ -47,14 +67,14 @@ export function paperLineTable(view: View, outcome: OutcomeView): TextTable {
       { head: view.words.isBorder ? 'Length, km' : 'Cutoff at' },
       { head: 'N untreated' },
       { head: 'N treated' },
-      { head: bandwidthHead(view) },
+      { head: bandwidthHead(view), parts: sideParts },
       ...(hasClusters ? [{ head: 'Clusters' }] : []),
       { head: 'Pooled weight' },
       { head: 'Target weight' },
       { head: 'Untreated mean' },
       { head: 'Estimate' },
       { head: 'Standard error' },
-      { head: `${view.words.level} interval` },
+      { head: `${view.words.level} interval`, parts: intervalParts },
       { head: 'p' },
     ],
     rows: outcome.result.lines.map((line): TableRow => {
@@ -63,17 +83,17 @@ export function paperLineTable(view: View, outcome: OutcomeView): TextTable {
       const { length_m: metres, cutoff } = view.lineOf.get(line.line) ?? {}
       return [
         head,
-        view.words.isBorder ? fixed(metres === undefined ? undefined : metres / 1000, 3) : wholeNumber(cutoff),
+        view.words.isBorder ? fixedCell(metres === undefined ? undefined : metres / 1000, 3) : wholeCell(cutoff),
         ...unitCells(view, line),
         widthCell(line.bandwidth, widths),
-        ...(hasClusters ? [line.clusters === undefined ? missing : count(line.clusters)] : []),
-        percent(pooledShare[line.line]),
-        percent(targetShare[line.line]),
-        fixed(line.at_line.untreated, places),
-        fixed(line.corrected.estimate, places),
-        fixed(line.corrected.standard_error, places),
-        intervalText(line.corrected, places),
-        p(line.corrected.p),
+        ...(hasClusters ? [line.clusters === undefined ? missing : countCell(line.clusters)] : []),
+        percentCell(pooledShare[line.line]),
+        percentCell(targetShare[line.line]),
+        fixedCell(line.at_line.untreated, places),
+        fixedCell(line.corrected.estimate, places),
+        fixedCell(line.corrected.standard_error, places),
+        intervalCell(line.corrected, places),
+        pCell(line.corrected.p),
       ]
     }),
     notes: lineNotes(view, outcome),
@@ -97,13 +117,13 @@ export function pageLineTable(view: View, outcome: OutcomeView): TextTable {
       { head: view.words.isBorder ? 'Length, m' : 'Cutoff at' },
       { head: 'N untreated' },
       { head: 'N treated' },
-      { head: bandwidthHead(view) },
+      { head: bandwidthHead(view), parts: sideParts },
       { head: 'Pooled weight' },
       { head: 'Untreated mean' },
       { head: 'Plain' },
       { head: 'Corrected' },
       { head: 'Standard error' },
-      { head: `${view.words.level} interval` },
+      { head: `${view.words.level} interval`, parts: intervalParts },
       { head: 'p' },
       { head: 'Shrunken' },
     ],
@@ -111,20 +131,20 @@ export function pageLineTable(view: View, outcome: OutcomeView): TextTable {
       const head = labelOf(view, line.line)
       if (!isEstimated<Jump>(line)) return { head, across: notEstimated(view, line.not_estimated) }
       const summary = view.lineOf.get(line.line)
-      const place = view.words.isBorder ? fixed(summary?.length_m, 0) : wholeNumber(summary?.cutoff)
+      const place = view.words.isBorder ? fixedCell(summary?.length_m, 0) : wholeCell(summary?.cutoff)
       return [
         head,
         place,
         ...unitCells(view, line),
         widthCell(line.bandwidth, widths),
-        percent(weights[line.line]),
-        fixed(line.at_line.untreated, places),
-        fixed(line.plain.estimate, places),
-        fixed(line.corrected.estimate, places),
-        fixed(line.corrected.standard_error, places),
-        intervalText(line.corrected, places),
-        p(line.corrected.p),
-        fixed(shrunken.get(line.line)?.estimate, places),
+        percentCell(weights[line.line]),
+        fixedCell(line.at_line.untreated, places),
+        fixedCell(line.plain.estimate, places),
+        fixedCell(line.corrected.estimate, places),
+        fixedCell(line.corrected.standard_error, places),
+        intervalCell(line.corrected, places),
+        pCell(line.corrected.p),
+        fixedCell(shrunken.get(line.line)?.estimate, places),
       ]
     }),
     notes: [
@@ -155,9 +175,9 @@ function quotedNotes(view: View, outcome: OutcomeView): string[] {
   ]
 }
 
-function unitCells(view: View, jump: Jump): string[] {
+function unitCells(view: View, jump: Jump): Cell[] {
   const units = jump.units_in_bandwidth
-  return [cell(units.untreated, view.smallestCell), cell(units.treated, view.smallestCell)]
+  return [unitsCell(units.untreated, view.smallestCell), unitsCell(units.treated, view.smallestCell)]
 }
 
 export function bandwidthHead(view: View): string {

@@ -1,7 +1,8 @@
 /** Jumps at cutoffs that moved, before and after. */
 import type { Estimate, NotEstimated } from '../results.js'
-import { intervalText } from './lineTable.js'
-import { fixed, p, sharedPlaces, significant, wholeNumber } from './numbers.js'
+import { intervalCell, intervalParts, intervalText } from './lineTable.js'
+import { fixed, p, sharedPlaces, significant } from './numbers.js'
+import { fixedCell, severalCell, significantCell, wholeCell } from './tableCells.js'
 import type { TextTable } from './tables.js'
 import { isEstimated, type OutcomeView, reasonText, type View } from './view.js'
 
@@ -17,8 +18,12 @@ export function movedTable(view: View, { result }: OutcomeView): TextTable | und
   )
   const cell = (one: Estimate | NotEstimated) =>
     isEstimated<Estimate>(one)
-      ? `${fixed(one.estimate, places)} (${intervalText(one, places)})`
+      ? severalCell(`${fixed(one.estimate, places)} (${intervalText(one, places)})`, [
+          fixedCell(one.estimate, places),
+          intervalCell(one, places),
+        ])
       : reasonText(view, one.not_estimated)
+  const parts = ['estimate', ...intervalParts]
   const { difference, old_cutoff: old } = found.pooled
   const pooled = isEstimated(difference)
     ? `By precision the differences average ${fixed(difference.estimate, places)} (${intervalText(difference, places)}, p = ${p(difference.p)})`
@@ -32,15 +37,15 @@ export function movedTable(view: View, { result }: OutcomeView): TextTable | und
       { head: 'Move', isText: true },
       { head: 'From' },
       { head: 'To' },
-      { head: 'Jump after' },
-      { head: 'Jump there before' },
-      { head: 'Difference' },
-      { head: 'Old cutoff, after' },
+      { head: 'Jump after', parts },
+      { head: 'Jump there before', parts },
+      { head: 'Difference', parts },
+      { head: 'Old cutoff, after', parts },
     ],
     rows: found.moves.map((move) => [
       move.line,
-      wholeNumber(move.from),
-      wholeNumber(move.to),
+      wholeCell(move.from),
+      wholeCell(move.to),
       cell(move.after),
       cell(move.before),
       cell(move.difference),
@@ -59,7 +64,7 @@ export function awayTable(view: View, { result }: OutcomeView): TextTable | unde
     { head: 'Score' },
     { head: 'Effect' },
     { head: 'Standard error' },
-    { head: `${view.words.level} band over all points` },
+    { head: `${view.words.level} band over all points`, parts: intervalParts },
   ]
   if ('not_estimated' in found) {
     return { caption, columns, rows: [], notes: [`Not estimated: ${reasonText(view, found.not_estimated)}.`] }
@@ -76,10 +81,10 @@ export function awayTable(view: View, { result }: OutcomeView): TextTable | unde
     caption,
     columns,
     rows: points.map(({ score, estimate, standard_error: error, uniform_low: low, uniform_high: high }) => [
-      significant(score),
-      fixed(estimate, places),
-      fixed(error, places),
-      intervalText({ low, high }, places),
+      significantCell(score),
+      fixedCell(estimate, places),
+      fixedCell(error, places),
+      intervalCell({ low, high }, places),
     ]),
     notes: [
       `They hold if the untreated curves of the two lines are parallel between the cutoffs, as they can be seen to be or not below the low one: ${test}. Local lines with bandwidth ${significant(found.bandwidth)}.`,

@@ -1,11 +1,12 @@
 /** Every table of tables/, by the name of its files; the page has some of them too. */
 import { auditTable } from './auditTable.js'
 import { conflictTable, waterfallTable, whatElseTable } from './borderTables.js'
+import { comparisonTable, contrastTable } from './comparisonTable.js'
 import { ladderTable, placeboTable, standardsTable } from './ladderTable.js'
 import { checksTable, ledgerTable } from './ledgerTable.js'
 import { paperLineTable } from './lineTable.js'
 import { awayTable, movedTable } from './movedTable.js'
-import { comparisonTable, contrastTable, pooledTable } from './pooledTable.js'
+import { paperPooledTable } from './pooledTable.js'
 import { sharedTable } from './sharedTable.js'
 import type { TextTable } from './tables.js'
 import { variantTable } from './variantTable.js'
@@ -20,7 +21,7 @@ export interface NamedTable {
 export function paperTables(view: View): NamedTable[] {
   const { outcomes } = view
   const all: (readonly [string, TextTable | undefined])[] = [
-    ['pooled', pooledTable(view)],
+    ['pooled', paperPooledTable(view)],
     ...outcomes.map((outcome) => [`lines-${outcome.slug}`, paperLineTable(view, outcome)] as const),
     ['comparison', view.results.lines.length > 1 ? comparisonTable(view) : undefined],
     ...outcomes.flatMap((outcome) => [

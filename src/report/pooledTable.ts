@@ -1,9 +1,28 @@
 /** What all lines say together, by outcome: pooled plain and corrected, the stated target, the random-effects mean. */
-import type { Comparison, Jump, TakeUp } from '../results.js'
-import { bandwidthHead, capital, intervalText, widthCell, widthPlaces } from './lineTable.js'
-import { cell, count, fixed, missing, type Places, p, sharedPlaces, significant } from './numbers.js'
-import type { TableRow, TextTable } from './tables.js'
-import { estimatedLines, howMany, isEstimated, labelOf, type OutcomeView, reasonText, type View } from './view.js'
+import type { Jump, TakeUp } from '../results.js'
+import {
+  bandwidthHead,
+  capital,
+  intervalCell,
+  intervalParts,
+  sideParts,
+  widthCell,
+  widthPlaces,
+  widthWords,
+} from './lineTable.js'
+import { count, fixed, missing, type Places, sharedPlaces, significant } from './numbers.js'
+import {
+  type Cell,
+  countCell,
+  fixedCell,
+  pCell,
+  percentCell,
+  severalCell,
+  significantCell,
+  unitsCell,
+} from './tableCells.js'
+import { type TableRow, type TextTable, withColumns } from './tables.js'
+import { estimatedLines, howMany, isEstimated, type OutcomeView, reasonText, type View } from './view.js'
 
 /** Places shared by the numbers that stand for all lines of an outcome. */
 export function pooledPlaces(outcome: OutcomeView): Places {
@@ -26,19 +45,43 @@ export function targetWords(kind: string): string {
   return known[kind] ?? `weighted by ${kind}`
 }
 
-/** Nine columns, four rows an outcome. */
+type Shared = readonly [lines: Cell, km: Cell, untreated: Cell, treated: Cell, bandwidth: Cell, clusters: Cell]
+
+/** What the numbers rest on, then the numbers; files break it between. Up to seven rows an outcome. */
+export function paperPooledTable(view: View): TextTable {
+  const hasClusters = view.outcomes.some(
+    ({ result: { pooled } }) => isEstimated<Jump>(pooled) && pooled.clusters !== undefined,
+  )
+  const left = new Set<number>([...(view.words.isBorder ? [] : [at.km]), ...(hasClusters ? [] : [at.clusters])])
+  return withColumns(wholePooledTable(view), (column) => !left.has(column))
+}
+
+/** The same in nine columns, for the page, whose notes say what is left out. */
 export function pooledTable(view: View): TextTable {
+  const left = new Set<number>(Object.values(at))
+  return withColumns(wholePooledTable(view), (column) => !left.has(column))
+}
+
+/** Columns that not every table of pooled numbers has. */
+const at = { lines: 2, km: 3, clusters: 7, weight: 8, mean: 9 } as const
+
+function wholePooledTable(view: View): TextTable {
   return {
     caption: `All ${view.words.lines} together`,
     columns: [
       { head: 'Outcome', isText: true },
       { head: 'Number', isText: true },
+      { head: capital(view.words.lines) },
+      { head: 'Border, km' },
       { head: 'N untreated' },
       { head: 'N treated' },
-      { head: bandwidthHead(view) },
+      { head: bandwidthHead(view), parts: sideParts },
+      { head: 'Clusters' },
+      { head: 'Largest weight' },
+      { head: 'Untreated mean' },
       { head: 'Estimate' },
       { head: 'Standard error' },
-      { head: `${view.words.level} interval` },
+      { head: `${view.words.level} interval`, parts: intervalParts },
       { head: 'p' },
     ],
     rows: view.outcomes.flatMap((outcome) => outcomeRows(view, outcome)),
@@ -50,38 +93,65 @@ function outcomeRows(view: View, outcome: OutcomeView): TableRow[] {
   const { pooled, target, comparison } = outcome.result
   const head = outcome.result.outcome
   const places = pooledPlaces(outcome)
+  const lines = countCell(estimatedLines(outcome.result).length)
+  const km = kmCell(view, outcome)
+  const none: Shared = [lines, km, missing, missing, missing, missing]
   const rows: TableRow[] = []
-  if (isEstimated<Jump & { weights: unknown }>(pooled)) {
-    const shared = [
-      cell(pooled.units_in_bandwidth.untreated, view.smallestCell),
-      cell(pooled.units_in_bandwidth.treated, view.smallestCell),
+  if (isEstimated(pooled)) {
+    const shared: Shared = [
+      lines,
+      km,
+      unitsCell(pooled.units_in_bandwidth.untreated, view.smallestCell),
+      unitsCell(pooled.units_in_bandwidth.treated, view.smallestCell),
       widthCell(pooled.bandwidth, widthPlaces([pooled])),
+      pooled.clusters === undefined ? missing : countCell(pooled.clusters),
     ]
-    if (pooled.take_up) rows.push(...firstStageRows(head, pooled.take_up, shared, places))
+    const weight = largest(pooled.weights)
+    const mean = fixedCell(pooled.at_line.untreated, places)
+    if (pooled.take_up) rows.push(...firstStageRows(head, pooled.take_up, [...shared, weight, missing], places))
     for (const name of ['plain', 'corrected'] as const) {
       const estimate = pooled[name]
       const what = pooled.take_up ? `pooled per unit of take-up, ${name}` : `pooled, ${name}`
-      rows.push([head, what, ...shared, ...estimateCells(estimate, places), p(estimate.p)])
+      rows.push([head, what, ...shared, weight, mean, ...estimateCells(estimate, places), pCell(estimate.p)])
     }
-    if (pooled.bias_aware) rows.push(biasAwareRow(head, pooled.bias_aware, pooled.quoted, places))
+    if (pooled.bias_aware) rows.push(biasAwareRow(head, pooled.bias_aware, pooled.quoted, { lines, km, places }))
   } else {
     rows.push({ head, across: `pooled: not estimated: ${reasonText(view, pooled.not_estimated)}` })
-    if (pooled.take_up) rows.push(...firstStageRows(head, pooled.take_up, [missing, missing, missing], places))
+    if (pooled.take_up) rows.push(...firstStageRows(head, pooled.take_up, [...none, missing, missing], places))
   }
-  const none = [missing, missing, missing]
   if (isEstimated(target)) {
-    rows.push([head, `target, ${targetWords(target.kind)}`, ...none, ...estimateCells(target, places), p(target.p)])
+    const what = `target, ${targetWords(target.kind)}`
+    const cells = [largest(target.weights), missing, ...estimateCells(target, places), pCell(target.p)]
+    rows.push([head, what, ...none, ...cells])
   } else {
     rows.push({ head, across: `target: not estimated: ${reasonText(view, target.not_estimated)}` })
   }
   if (comparison) {
-    rows.push([head, 'random-effects mean', ...none, ...estimateCells(comparison.random_effects, places), missing])
+    const mean = [...estimateCells(comparison.random_effects, places), missing]
+    rows.push([head, 'random-effects mean', ...none, missing, missing, ...mean])
   }
   return rows
 }
 
-/** Take-up first, then the effect of being eligible, which needs no first stage. */
-function firstStageRows(head: string, takeUp: TakeUp, shared: readonly string[], places: Places): TableRow[] {
+type Shares = Readonly<Record<string, number>>
+
+/** The part of the line that counts most. */
+function largest(weights: Shares): Cell {
+  return percentCell(Object.values(weights).reduce((most, share) => Math.max(most, share), 0))
+}
+
+/** Border along the lines that have an estimate. */
+function kmCell(view: View, outcome: OutcomeView): Cell {
+  const metres = estimatedMetres(view, outcome)
+  return metres > 0 ? significantCell(metres / 1000) : missing
+}
+
+function estimatedMetres(view: View, { result }: OutcomeView): number {
+  return estimatedLines(result).reduce((sum, { line }) => sum + (view.lineOf.get(line)?.length_m ?? 0), 0)
+}
+
+/** Take-up first, then the effect of being eligible, which needs no first stage. `shared`: all cells before the estimate. */
+function firstStageRows(head: string, takeUp: TakeUp, shared: readonly Cell[], places: Places): TableRow[] {
   const { eligibility } = takeUp
   const set = takeUp.anderson_rubin.map(([low, high]) => `${end(low, '−∞', places)} to ${end(high, '∞', places)}`)
   return [
@@ -89,8 +159,8 @@ function firstStageRows(head: string, takeUp: TakeUp, shared: readonly string[],
       head,
       'jump in take-up',
       ...shared,
-      significant(takeUp.jump),
-      significant(takeUp.standard_error),
+      significantCell(takeUp.jump),
+      significantCell(takeUp.standard_error),
       takeUp.f === null ? 'F –' : `F ${fixed(takeUp.f, 1)}`,
       missing,
     ],
@@ -99,7 +169,7 @@ function firstStageRows(head: string, takeUp: TakeUp, shared: readonly string[],
       'eligibility, corrected',
       ...shared,
       ...estimateCells(eligibility.corrected, places),
-      p(eligibility.corrected.p),
+      pCell(eligibility.corrected.p),
     ],
     { head, across: `per unit of take-up, the Anderson–Rubin set: ${set.length > 0 ? set.join(' and ') : 'empty'}` },
   ]
@@ -114,14 +184,20 @@ function biasAwareRow(
   head: string,
   found: NonNullable<Jump['bias_aware']>,
   quoted: Jump['quoted'],
-  places: Places,
+  { lines, km, places }: { readonly lines: Cell; readonly km: Cell; readonly places: Places },
 ): TableRow {
+  const { untreated, treated } = found.bandwidth
   return [
     head,
     `pooled, bias-aware (curvature up to ${significant(found.smoothness)})${quoted === 'bias-aware' ? ', quoted' : ''}`,
+    lines,
+    km,
     missing,
     missing,
-    significant(found.bandwidth.treated),
+    severalCell(significant(treated), [significantCell(untreated), significantCell(treated)]),
+    missing,
+    missing,
+    missing,
     ...estimateCells(found, places),
     missing,
   ]
@@ -130,21 +206,24 @@ function biasAwareRow(
 function estimateCells(
   estimate: { readonly estimate: number; readonly standard_error: number; readonly low: number; readonly high: number },
   places: Places,
-): string[] {
-  return [fixed(estimate.estimate, places), fixed(estimate.standard_error, places), intervalText(estimate, places)]
+): Cell[] {
+  return [
+    fixedCell(estimate.estimate, places),
+    fixedCell(estimate.standard_error, places),
+    intervalCell(estimate, places),
+  ]
 }
 
 function pooledNote(view: View, outcome: OutcomeView): string {
   const pooled = outcome.result.pooled
   const lines = howMany(view, estimatedLines(outcome.result).length)
   if (!isEstimated<Jump & { weights: unknown }>(pooled)) return `${outcome.result.outcome}: ${lines} estimated.`
-  const lengths = estimatedLines(outcome.result).map((line) => view.lineOf.get(line.line)?.length_m ?? 0)
-  const metres = lengths.reduce((sum, length) => sum + length, 0)
+  const metres = estimatedMetres(view, outcome)
   const parts = [
     `${outcome.result.outcome}: ${lines} estimated`,
     ...(metres > 0 ? [`${significant(metres / 1000)} km of border`] : []),
     `untreated mean at ${view.words.theLine} ${fixed(pooled.at_line.untreated, pooledPlaces(outcome))}`,
-    `order ${pooled.order}, ${pooled.kernel} kernel, bias bandwidth ${widthCell(pooled.bias_bandwidth, widthPlaces([pooled]))}`,
+    `order ${pooled.order}, ${pooled.kernel} kernel, bias bandwidth ${widthWords(pooled.bias_bandwidth, widthPlaces([pooled]))}`,
     `variance ${pooled.variance}${pooled.clusters === undefined ? '' : `, ${count(pooled.clusters)} clusters`}`,
     view.choices.fixedEffects ? `with a fixed effect for each ${view.words.line}` : 'without fixed effects',
   ]
@@ -159,100 +238,4 @@ function covariateWords({ covariates: found }: Jump, places: Places): string {
       ? ''
       : ` They move the estimate by ${fixed(found.moved, places)} and make its standard error ${fixed(found.standard_error_ratio, 2)} times what it is without them.`
   return ` Covariates: ${Object.keys(found.coefficients).join(', ') || 'none'}${out}.${effect}`
-}
-
-/** How far the lines differ, one row an outcome. */
-export function comparisonTable(view: View): TextTable {
-  const hasWelch = view.outcomes.some(({ result }) => result.comparison?.welch)
-  return {
-    caption: `Do the ${view.words.lines} differ?`,
-    columns: [
-      { head: 'Outcome', isText: true },
-      { head: capital(view.words.lines) },
-      { head: 'Wald test of equal effects' },
-      { head: hasWelch ? 'p (Welch’s)' : 'p' },
-      { head: 'Q' },
-      { head: 'I²' },
-      { head: 'τ, three ways' },
-      { head: 'Random-effects mean' },
-      { head: `${view.words.level} prediction` },
-    ],
-    rows: view.outcomes.map((outcome): TableRow => {
-      const { comparison, comparison_reason: reason } = outcome.result
-      const head = outcome.result.outcome
-      if (!comparison)
-        return { head, across: `not compared: ${reasonText(view, reason ?? 'fewer than two lines have an estimate')}` }
-      const places = pooledPlaces(outcome)
-      return [
-        head,
-        count(estimatedLines(outcome.result).length),
-        `${fixed(comparison.wald.statistic, 2)} on ${count(comparison.wald.df)} df`,
-        `${p(comparison.wald.p)}${comparison.welch ? ` (${p(comparison.welch.p)})` : ''}`,
-        fixed(comparison.q, 2),
-        `${fixed(comparison.i_squared, 1)}%`,
-        tauText(comparison),
-        `${fixed(comparison.random_effects.estimate, places)} (${intervalText(comparison.random_effects, places)})`,
-        comparison.prediction ? intervalText(comparison.prediction, places) : missing,
-      ]
-    }),
-    notes: [
-      `All on the corrected estimates. ${hasWelch ? 'Welch’s p asks the same as the Wald test and allows for standard errors estimated from few units (Welch 1951), where lines share no unit or cluster. ' : ''}Q is Cochran’s, on the degrees of freedom of the Wald test; τ is the standard deviation of true effects between lines by DerSimonian–Laird, REML and Paule–Mandel; the mean has the Knapp–Hartung interval.`,
-      ...view.outcomes.flatMap((outcome) => slopeNote(view, outcome)),
-      ...view.outcomes.flatMap(({ result }) =>
-        result.comparison && !result.comparison.prediction && result.comparison.prediction_reason
-          ? [`${result.outcome}: no prediction interval: ${result.comparison.prediction_reason}.`]
-          : [],
-      ),
-    ],
-  }
-}
-
-function slopeNote(view: View, { result }: OutcomeView): string[] {
-  const slope = result.comparison?.slope
-  if (!slope || 'not_estimated' in slope) return []
-  const places = sharedPlaces([slope.standard_error], [slope.estimate])
-  return [
-    `${result.outcome}: effects change by ${fixed(slope.estimate, places)} (${view.words.level} interval ${intervalText(slope, places)}, p = ${p(slope.p)}) for each unit of ${slope.attribute}, over ${count(slope.lines)} ${view.words.lines}.`,
-  ]
-}
-
-function tauText({ tau_squared: tau }: Comparison): string {
-  return [tau.dl, tau.reml, tau.pm].map((squared) => significant(Math.sqrt(squared))).join(', ')
-}
-
-const contrastsOnPage = 10
-
-/** The pairs of lines that differ most clearly; nothing where there is no pair. */
-export function contrastTable(view: View, outcome: OutcomeView): TextTable | undefined {
-  const comparison = outcome.result.comparison
-  if (!comparison || comparison.contrasts.length === 0) return undefined
-  const shown = comparison.contrasts.slice(0, contrastsOnPage)
-  const places = sharedPlaces(
-    shown.map((contrast) => contrast.standard_error),
-    shown.map((contrast) => contrast.estimate),
-  )
-  return {
-    caption: `${outcome.result.outcome}: pairs of ${view.words.lines} that differ most clearly`,
-    columns: [
-      { head: 'First', isText: true },
-      { head: 'Second', isText: true },
-      { head: 'Difference' },
-      { head: 'Standard error' },
-      { head: `Simultaneous ${view.words.level} interval` },
-      { head: 'p' },
-      { head: 'p, Holm' },
-    ],
-    rows: shown.map((contrast) => [
-      labelOf(view, contrast.lines[0]),
-      labelOf(view, contrast.lines[1]),
-      fixed(contrast.estimate, places),
-      fixed(contrast.standard_error, places),
-      intervalText(contrast, places),
-      p(contrast.p),
-      p(contrast.p_holm),
-    ]),
-    notes: [
-      `First minus second; ${count(shown.length)} of ${count(comparison.contrasts_of)} pairs. The Holm p and the interval allow for all ${count(comparison.contrasts_of)}.`,
-    ],
-  }
 }

@@ -1,5 +1,6 @@
 /** Lines that share units. */
 import { cell, count } from './numbers.js'
+import { unitsCell } from './tableCells.js'
 import type { TextTable } from './tables.js'
 import { howMany, labelOf, type View } from './view.js'
 
@@ -23,7 +24,7 @@ export function sharedTable(view: View): TextTable | undefined {
       .map(({ lines, count: shares }) => [
         labelOf(view, lines[0]),
         labelOf(view, lines[1]),
-        cell(shares, view.smallestCell),
+        unitsCell(shares, view.smallestCell),
       ]),
     notes: [
       `${cell(shared.serving_several, view.smallestCell)} ${what} serve more than one of ${howMany(view, view.results.lines.length)}. ${accounted}${rest > 0 ? ` ${count(rest)} more pairs are in results.json.` : ''}`,

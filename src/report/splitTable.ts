@@ -1,23 +1,26 @@
 /** A table too wide for a page, in parts of nine columns at most. */
-import type { TableRow, TextTable } from './tables.js'
+import { type TableRow, type TextTable, withColumns } from './tables.js'
 
 const mostColumns = 9
+const mostHeads = 2
 
-/** The first column stands at the head of every part; rows that run across are in the first part alone. */
+/** The first columns of text stand at the head of every part; rows that run across are in the first part alone. */
 export function splitTable(table: TextTable): TextTable[] {
-  const { columns, rows, notes, caption } = table
+  const { columns, notes, caption } = table
   if (columns.length <= mostColumns) return [table]
-  const others = columns.length - 1
-  const count = Math.ceil(others / (mostColumns - 1))
+  const firstNumbers = columns.findIndex(({ isText }) => !isText)
+  const heads = Math.min(mostHeads, Math.max(1, firstNumbers === -1 ? 1 : firstNumbers))
+  const others = columns.length - heads
+  const count = Math.ceil(others / (mostColumns - heads))
   const each = Math.ceil(others / count)
   return Array.from({ length: count }, (_, part) => {
-    const from = 1 + part * each
-    const pick = <T>(all: readonly T[]): T[] => [all[0], ...all.slice(from, from + each)]
+    const from = heads + part * each
+    const picked = withColumns(table, (column) => column < heads || (column >= from && column < from + each))
     const of = `Part ${part + 1} of ${count}: ${columns.length} columns are too many for one page.`
     return {
+      ...picked,
       caption: `${caption} (part ${part + 1} of ${count})`,
-      columns: pick(columns),
-      rows: rows.flatMap((row): TableRow[] => ('across' in row ? (part === 0 ? [row] : []) : [pick(row)])),
+      rows: part === 0 ? picked.rows : picked.rows.filter((row: TableRow) => !('across' in row)),
       notes: part === count - 1 ? [...notes, of] : [of],
     }
   })

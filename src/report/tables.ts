@@ -1,11 +1,14 @@
-/** A table as plain text cells, and its languages: Markdown, LaTeX (booktabs), HTML and CSV. */
+/** A table as cells, and its languages: Markdown, LaTeX (booktabs), HTML and CSV. */
 import { csvField, escapeHtml, escapeLatex, escapeMarkdown } from './escape.js'
+import { machineTable } from './machineTable.js'
 import { missing } from './numbers.js'
-import { plainCell } from './tableCells.js'
+import { type Cell, shownText } from './tableCells.js'
 
 export interface TableColumn {
   readonly head: string
   readonly isText?: boolean
+  /** Names of the numbers in each cell, where a cell has several. */
+  readonly parts?: readonly string[]
 }
 
 export interface TextTable {
@@ -16,15 +19,22 @@ export interface TextTable {
 }
 
 /** One cell per column; or the first cell and, across the rest of the row, why there are no numbers. */
-export type TableRow = readonly string[] | { readonly head: string; readonly across: string }
+export type TableRow = readonly Cell[] | { readonly head: string; readonly across: string }
 
 const isAcross = (row: TableRow): row is { readonly head: string; readonly across: string } => 'across' in row
+
+/** The table with those of its columns for which `isKept` holds. */
+export function withColumns(table: TextTable, isKept: (column: number) => boolean): TextTable {
+  const pick = <T>(all: readonly T[]): T[] => all.filter((_, column) => isKept(column))
+  const rows = table.rows.map((row): TableRow => (isAcross(row) ? row : pick(row)))
+  return { ...table, columns: pick(table.columns), rows }
+}
 
 export function toMarkdown(table: TextTable): string {
   const line = (cells: readonly string[]) => `| ${cells.join(' | ')} |`
   const notes = [...table.notes]
   const rows = table.rows.map((row) => {
-    if (!isAcross(row)) return line(row.map(escapeMarkdown))
+    if (!isAcross(row)) return line(row.map((cell) => escapeMarkdown(shownText(cell))))
     notes.push(`${row.head}: ${row.across}`)
     return line([escapeMarkdown(row.head), ...table.columns.slice(1).map(() => missing)])
   })
@@ -39,11 +49,14 @@ export function toMarkdown(table: TextTable): string {
   ].join('\n')
 }
 
-/** The columns and rows of the paper, numbers as a program reads them; notes are left to the others. */
-export function toCsv({ columns, rows }: TextTable): string {
-  const line = (cells: readonly string[]) => cells.map((text) => csvField(text)).join(',')
-  const body = rows.map((row) => line(isAcross(row) ? [row.head, row.across] : row.map(plainCell)))
-  return `${[line(columns.map(({ head }) => head)), ...body].join('\n')}\n`
+/** Every number as its double, those of a cell with several in columns of their own; notes are left to the others. */
+export function toCsv(table: TextTable): string {
+  const { columns, rows } = machineTable(table)
+  const lines = [
+    columns.map(({ head }) => csvField(head)),
+    ...rows.map((row) => row.map((cell) => csvField(typeof cell === 'object' ? cell.value : cell))),
+  ]
+  return `${lines.map((fields) => fields.join(',')).join('\n')}\n`
 }
 
 const rowsOnOnePage = 40
@@ -55,7 +68,7 @@ export function toLatex(table: TextTable): string {
   const body = table.rows.map((row) =>
     isAcross(row)
       ? `${escapeLatex(row.head)} & \\multicolumn{${width - 1}}{l}{${escapeLatex(row.across)}} \\\\`
-      : `${row.map(escapeLatex).join(' & ')} \\\\`,
+      : `${row.map((cell) => escapeLatex(shownText(cell))).join(' & ')} \\\\`,
   )
   const notes = table.notes.map((note) => `${escapeLatex(note)}\\par`)
   const caption = `\\caption{${escapeLatex(table.caption)}}`
@@ -114,8 +127,8 @@ export function toHtml(table: TextTable, className = ''): string {
     if (isAcross(row)) {
       return `<tr class="across"><th scope="row">${escapeHtml(row.head)}</th><td class="words" colspan="${table.columns.length - 1}">${escapeHtml(row.across)}</td></tr>`
     }
-    const cells = row.slice(1).map((text, index) => `<td${classOf(index + 1)}>${escapeHtml(text)}</td>`)
-    return `<tr><th scope="row">${escapeHtml(row[0])}</th>${cells.join('')}</tr>`
+    const cells = row.slice(1).map((cell, index) => `<td${classOf(index + 1)}>${escapeHtml(shownText(cell))}</td>`)
+    return `<tr><th scope="row">${escapeHtml(shownText(row[0]))}</th>${cells.join('')}</tr>`
   })
   const notes = table.notes.map((note) => `<p class="note">${escapeHtml(note)}</p>`).join('\n')
   return `<div class="scroll ${className}" tabindex="0" role="region" aria-label="${escapeHtml(table.caption)}">

@@ -1,7 +1,8 @@
 /** The study and its variants side by side: the pooled estimate of each, and how far it lies from the study's own. */
 import type { Jump, PooledJump, VariantResult } from '../results.js'
-import { bandwidthHead, intervalText, widthCell, widthPlaces } from './lineTable.js'
-import { cell, fixed, missing, p, sharedPlaces } from './numbers.js'
+import { bandwidthHead, intervalCell, intervalParts, sideParts, widthCell, widthPlaces } from './lineTable.js'
+import { missing, sharedPlaces } from './numbers.js'
+import { fixedCell, pCell, unitsCell } from './tableCells.js'
 import type { TableRow, TextTable } from './tables.js'
 import { isEstimated, type OutcomeView, reasonText, type View } from './view.js'
 
@@ -21,14 +22,14 @@ export function variantTable(view: View, { result }: OutcomeView): TextTable | u
     const { corrected, units_in_bandwidth: units } = pooled
     return [
       head,
-      cell(units.untreated, view.smallestCell),
-      cell(units.treated, view.smallestCell),
+      unitsCell(units.untreated, view.smallestCell),
+      unitsCell(units.treated, view.smallestCell),
       widthCell(pooled.bandwidth, widthPlaces(estimated)),
-      fixed(corrected.estimate, places),
-      intervalText(corrected, places),
-      p(corrected.p),
-      difference ? fixed(difference.estimate, places) : missing,
-      difference?.p === undefined ? missing : p(difference.p),
+      fixedCell(corrected.estimate, places),
+      intervalCell(corrected, places),
+      pCell(corrected.p),
+      difference ? fixedCell(difference.estimate, places) : missing,
+      difference?.p === undefined ? missing : pCell(difference.p),
     ]
   }
   return {
@@ -37,9 +38,9 @@ export function variantTable(view: View, { result }: OutcomeView): TextTable | u
       { head: 'Run', isText: true },
       { head: 'N untreated' },
       { head: 'N treated' },
-      { head: bandwidthHead(view) },
+      { head: bandwidthHead(view), parts: sideParts },
       { head: 'Pooled, corrected' },
-      { head: `${view.words.level} interval` },
+      { head: `${view.words.level} interval`, parts: intervalParts },
       { head: 'p' },
       { head: 'Less the study’s' },
       { head: 'p, no difference' },

@@ -5,7 +5,8 @@ import { DOMParser, type Element } from '@xmldom/xmldom'
 import { csvParseRows } from 'd3-dsv'
 import { strFromU8, unzipSync } from 'fflate'
 import { afterAll, beforeAll, describe, expect, it, vi } from 'vitest'
-import { docxOf, xlsxOf } from '../../src/cli/documents.js'
+import { docxOf } from '../../src/cli/documents.js'
+import { xlsxOf } from '../../src/cli/workbook.js'
 import type { NamedTable } from '../../src/report/index.js'
 import type { Results } from '../../src/results.js'
 import { newRoom, scarp } from './studies.js'
@@ -31,17 +32,58 @@ const docxTables = (archive: Uint8Array) =>
     ),
   )
 
-/** Cells of one sheet, row by row, numbers as numbers. */
-function sheetRows(archive: Uint8Array, number: number): (string | number)[][] {
+interface SheetCell {
+  readonly value: string | number
+  /** The display format of a number. */
+  readonly format: string
+}
+
+/** Cells of one sheet, row by row, numbers as numbers, each under its column letter. */
+function sheetRows(archive: Uint8Array, number: number): Map<string, SheetCell>[] {
   const shared = all(part(archive, 'xl/sharedStrings.xml'), 'si').map((one) => one.textContent ?? '')
-  return all(part(archive, `xl/worksheets/sheet${number}.xml`), 'row').map((row) =>
-    all(row, 'c').map((cell) => {
-      const value = all(cell, 'v')[0]?.textContent ?? cell.textContent ?? ''
-      if (cell.getAttribute('t') === 's') return shared[Number(value)]
-      return cell.getAttribute('t') === 'inlineStr' || value === '' ? value : Number(value)
-    }),
+  const styles = part(archive, 'xl/styles.xml')
+  const formats = new Map(
+    all(styles, 'numFmt').map((one) => [one.getAttribute('numFmtId'), one.getAttribute('formatCode') ?? '']),
+  )
+  // built-in formats of ECMA-376, part 1, 18.8.30
+  for (const [id, format] of [
+    ['1', '0'],
+    ['2', '0.00'],
+    ['3', '#,##0'],
+    ['4', '#,##0.00'],
+    ['9', '0%'],
+    ['10', '0.00%'],
+  ])
+    formats.set(id, format)
+  const used = all(all(styles, 'cellXfs')[0], 'xf').map((one) => formats.get(one.getAttribute('numFmtId')) ?? '')
+  return all(part(archive, `xl/worksheets/sheet${number}.xml`), 'row').map(
+    (row) =>
+      new Map(
+        all(row, 'c').map((cell) => {
+          const value = all(cell, 'v')[0]?.textContent ?? ''
+          const isShared = cell.getAttribute('t') === 's'
+          const column = (cell.getAttribute('r') ?? '').replace(/\d/g, '')
+          const format = used[Number(cell.getAttribute('s') ?? 0)]
+          return [column, { value: isShared ? shared[Number(value)] : Number(value), format }]
+        }),
+      ),
   )
 }
+
+const letterOf = (column: number) => String.fromCharCode(65 + column)
+
+/** What a spreadsheet shows of a number, in the marks of the paper. */
+function display(value: number, format: string): string {
+  const words = /^"(.*)"$/.exec(format)
+  if (words) return words[1]
+  const [, grouped, decimals = '', power, percent] = /^(#,##)?0(?:\.(0+))?(E\+0)?(%)?$/.exec(format) as RegExpExecArray
+  const size = Math.abs(percent ? 100 * value : value)
+  const digits = power ? size.toExponential(decimals.length) : size.toFixed(decimals.length)
+  const text = grouped ? digits.replace(/\B(?=(\d{3})+(?!\d))(?<!\.\d*)/g, ',') : digits
+  return `${value < 0 && Number(digits) !== 0 ? '−' : ''}${text}${percent ?? ''}`
+}
+
+const numbersIn = (text: string) => text.match(/[<>]?−?\d+(?:,\d{3})*(?:\.\d+)?(?:e-?\d+)?%?/g) ?? []
 
 const markdownTables = (text: string) =>
   text
@@ -64,35 +106,52 @@ describe.each(['hedgerows', 'quillhaven'])('%s', (name) => {
     for (const file of names()) {
       const text = readFileSync(join(tables, `${file}.md`), 'utf8')
       for (const row of markdownTables(text)) expect(row.length).toBeLessThanOrEqual(9)
-      expect(text.includes('too many for one page')).toBe(csv(file)[0].length > 9)
+      const parts = text.match(/^\*\*/gm)?.length ?? 0
+      expect(text.match(/too many for one page/g)?.length ?? 0).toBe(parts > 1 ? parts : 0)
     }
-    expect(csv(`lines-${results.outcomes[0].outcome}`)[0].length).toBeGreaterThan(9)
+    const lines = readFileSync(join(tables, `lines-${results.outcomes[0].outcome}.md`), 'utf8')
+    expect(lines).toContain('(part 2 of 2)')
   })
 
-  it('tells of every line its units, bandwidth, weights and control mean, in the digits of results.json', () => {
+  it('tells of every line its units, bandwidth, weights and control mean: in CSV the doubles of results.json', () => {
     const [outcome] = results.outcomes
     const [head, ...rows] = csv(`lines-${outcome.outcome}`)
     const at = (column: string) => head.indexOf(column)
     const pooled = outcome.pooled as { weights: Record<string, number> }
+    const unit = name === 'quillhaven' ? 'Bandwidth, m' : 'Bandwidth'
     outcome.lines.forEach((line, i) => {
       if ('not_estimated' in line) return
-      const places = rows[i][at('Estimate')].split('.')[1]?.length ?? 0
-      expect(rows[i][at('Estimate')]).toBe(line.corrected.estimate.toFixed(places))
-      expect(rows[i][at('Untreated mean')]).toBe(line.at_line.untreated.toFixed(places))
-      expect(Number(rows[i][at('N treated')])).toBe(line.units_in_bandwidth.treated)
-      expect(rows[i][at('Pooled weight')]).toBe(`${(100 * pooled.weights[line.line]).toFixed(1)}%`)
+      const length = results.lines[i].length_m
+      const wanted: Record<string, number | undefined> = {
+        [name === 'quillhaven' ? 'Length, km' : 'Cutoff at']:
+          length === undefined ? results.lines[i].cutoff : length / 1000,
+        'N untreated': line.units_in_bandwidth.untreated,
+        'N treated': line.units_in_bandwidth.treated,
+        [`${unit}: untreated`]: line.bandwidth.untreated,
+        [`${unit}: treated`]: line.bandwidth.treated,
+        'Pooled weight': pooled.weights[line.line],
+        'Target weight': (outcome.target as typeof pooled).weights[line.line],
+        'Untreated mean': line.at_line.untreated,
+        Estimate: line.corrected.estimate,
+        'Standard error': line.corrected.standard_error,
+        '95% interval: low': line.corrected.low,
+        '95% interval: high': line.corrected.high,
+        p: line.corrected.p,
+      }
+      for (const [column, value] of Object.entries(wanted)) expect(Number(rows[i][at(column)]), column).toBe(value)
+      if (name === 'quillhaven') expect(Number(rows[i][at('Clusters')])).toBe(line.clusters)
     })
-    for (const column of ['N untreated', name === 'quillhaven' ? 'Length, km' : 'Cutoff at', 'Target weight', 'p'])
-      expect(at(column)).toBeGreaterThan(0)
-    if (name === 'quillhaven') expect(at('Clusters')).toBeGreaterThan(0)
   })
 
-  it('has the cells of the paper in the document, and of the CSV in the workbook', () => {
+  it('has the cells of the paper in the document, and in the workbook the doubles of the CSV, shown as on paper', () => {
     const document = docxTables(readFileSync(join(tables, 'tables.docx')))
     const workbook = readFileSync(join(tables, 'tables.xlsx'))
-    const sheets = all(part(workbook, 'xl/workbook.xml'), 'sheet').map((sheet) => sheet.getAttribute('name'))
+    const book = part(workbook, 'xl/workbook.xml')
+    const sheets = all(book, 'sheet').map((sheet) => sheet.getAttribute('name'))
     expect([...sheets].sort()).toEqual(names().sort())
+    expect(all(book, 'definedName').map((one) => one.textContent)).toEqual(sheets.map((sheet) => `'${sheet}'!$1:$2`))
     let drawn = 0
+    let numbers = 0
     for (const [i, file] of (sheets as string[]).entries()) {
       const paper = readFileSync(join(tables, `${file}.md`), 'utf8')
       const parts = paper.split('too many for one page').length - 1 || 1
@@ -104,17 +163,29 @@ describe.each(['hedgerows', 'quillhaven'])('%s', (name) => {
       expect(cells.filter((row) => row.length > 2)).toEqual(
         wanted.filter((row) => !row.slice(1).every((c) => c === '–')),
       )
-      const rows = sheetRows(workbook, i + 1).slice(1)
-      csv(file).forEach((row, r) => {
-        row.forEach((text, c) => {
-          const shown = rows[r][c] ?? ''
-          const number = text.endsWith('%') ? Number(text.slice(0, -1)) / 100 : Number(text)
-          if (typeof shown === 'number') expect(shown).toBeCloseTo(number, 12)
-          else expect(shown.replaceAll('−', '-').replace('–', '')).toBe(text.replace('–', ''))
+      const [, ...rows] = sheetRows(workbook, i + 1)
+      const [heads, ...lines] = csv(file)
+      expect(heads.map((_, c) => rows[0].get(letterOf(c))?.value)).toEqual(heads)
+      // the cells of the paper in one row each, under their heads
+      const each = wanted.length / parts
+      const shownAs = (r: number, head: string) =>
+        Array.from({ length: parts }, (_, k) => {
+          const column = wanted[k * each].findIndex((one) => head === one || head.startsWith(`${one}: `))
+          return column === -1 ? undefined : wanted[k * each + r + 1][column]
+        }).find((text) => text !== undefined) as string
+      lines.forEach((line, r) => {
+        line.forEach((text, c) => {
+          const cell = rows[r + 1].get(letterOf(c))
+          if (typeof cell?.value === 'number') {
+            expect(cell.value, heads[c]).toBe(Number(text))
+            expect(numbersIn(shownAs(r, heads[c]))).toContain(display(cell.value, cell.format))
+            numbers++
+          } else expect(cell?.value ?? '').toBe(text)
         })
       })
     }
     expect(drawn).toBe(document.length)
+    expect(numbers).toBeGreaterThan(300)
   })
 })
 
@@ -126,7 +197,13 @@ it('has the same bytes whenever and wherever it is made, sheets of names that ag
       caption: 'Ärmel & <Söhne>',
       columns: [{ head: 'Line', isText: true }, ...Array.from({ length: 17 }, (_, c) => ({ head: `c${c}` }))],
       rows: [
-        ['Pauhl | "Zwei"', ...Array.from({ length: 17 }, (_, c) => `−1,234.${c}0`)],
+        [
+          'Pauhl | "Zwei"',
+          ...Array.from({ length: 17 }, (_, c) => {
+            const text = c === 0 ? '<0.001' : `−1,234.${c}0`
+            return { text, numbers: [{ value: -1234 - c / 10 - 1e-9, text }] }
+          }),
+        ],
         { head: 'x', across: 'none' },
       ],
       notes: ['note'],
@@ -149,5 +226,10 @@ it('has the same bytes whenever and wherever it is made, sheets of names that ag
   const sheets = all(part(book, 'xl/workbook.xml'), 'sheet').map((sheet) => sheet.getAttribute('name') ?? '')
   expect(new Set(sheets).size).toBe(2)
   expect(sheets.every((name) => name.length <= 31)).toBe(true)
-  expect(sheetRows(book, 1)[2].slice(0, 3)).toEqual(['Pauhl | "Zwei"', -1234, -1234.1])
+  const row = sheetRows(book, 1)[2]
+  expect(['A', 'B', 'C'].map((letter) => row.get(letter))).toEqual([
+    { value: 'Pauhl | "Zwei"', format: '' },
+    { value: -1234 - 1e-9, format: '"<0.001"' },
+    { value: -1234.1 - 1e-9, format: '#,##0.00' },
+  ])
 })

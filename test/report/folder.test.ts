@@ -188,18 +188,60 @@ describe('tables for a paper', () => {
     }
   })
 
-  it('have the pooled, target and random-effects rows of each outcome', () => {
-    const rows = readMarkdown(borderFiles.get('tables/pooled.md') as string)
+  it('have the pooled, target and random-effects rows of each outcome, and what they rest on', () => {
+    const [facts, numbers] = readMarkdownParts(borderFiles.get('tables/pooled.md') as string)
+    const csv = readCsv(borderFiles.get('tables/pooled.csv') as string)
+    expect(csv.length).toBe(numbers.length)
     border.analysis.results.outcomes.forEach((outcome, index) => {
-      const [plain, corrected, target, mean] = rows.slice(4 * index, 4 * index + 4)
-      if (!isJump(outcome.pooled) || !('estimate' in outcome.target) || !outcome.comparison)
+      const [plain, corrected, target, mean] = numbers.slice(4 * index, 4 * index + 4)
+      const { pooled } = outcome
+      if (!isJump(pooled) || !('estimate' in outcome.target) || !outcome.comparison)
         throw new Error('the fixture lacks a part')
-      agrees(plain[5], outcome.pooled.plain.estimate)
-      agrees(corrected[5], outcome.pooled.corrected.estimate)
-      intervalAgrees(corrected[7], outcome.pooled.corrected)
-      agrees(target[5], outcome.target.estimate)
-      intervalAgrees(mean[7], outcome.comparison.random_effects)
+      agrees(plain[4], pooled.plain.estimate)
+      agrees(corrected[4], pooled.corrected.estimate)
+      intervalAgrees(corrected[6], pooled.corrected)
+      agrees(target[4], outcome.target.estimate)
+      intervalAgrees(mean[6], outcome.comparison.random_effects)
+      agrees(corrected[3], pooled.at_line.untreated)
+      const estimated = outcome.lines.filter(isJump)
+      const lengthOf = new Map(border.analysis.results.lines.map((line) => [line.line, line.length_m ?? 0]))
+      const km = estimated.reduce((sum, { line }) => sum + (lengthOf.get(line) as number), 0) / 1000
+      const [, , lines, length, untreated, treated, bandwidth] = facts[4 * index + 1]
+      agrees(lines, estimated.length)
+      agrees(length, km)
+      agrees(untreated, pooled.units_in_bandwidth.untreated)
+      agrees(treated, pooled.units_in_bandwidth.treated)
+      agrees(bandwidth, pooled.bandwidth.treated)
+      const row = csv[4 * index + 1]
+      expect(Number(row['95% interval: high'])).toBe(pooled.corrected.high)
+      expect(Number(row['Largest weight'])).toBe(Math.max(...Object.values(pooled.weights)))
+      expect(Number(row['Border, km'])).toBe(km)
     })
+  })
+
+  it('name a row in both of its columns of text wherever a wide table is split', () => {
+    const parts = readMarkdownParts(borderFiles.get('tables/pooled.md') as string)
+    expect(parts.length).toBe(2)
+    expect(parts[1].map((row) => row.slice(0, 2))).toEqual(parts[0].map((row) => row.slice(0, 2)))
+  })
+
+  it('are split as often as they must be, and say so', () => {
+    const layers = Array.from({ length: 20 }, (_, layer) => `layer ${layer}`)
+    const shares = layers.map((_, layer) => layer / 7)
+    const found = { layers, whole: { km: 1.5, shares }, pairs: [{ zones: ['a', 'b'] as const, km: 1.5, shares }] }
+    const { results } = border.analysis
+    const wide = { ...results, border: { waterfall: [], what_else_changes: found } } as unknown as Results
+    const files = drawReport({ ...border, analysis: { ...border.analysis, results: wide } })
+    const text = files.get('tables/what-else.md') as string
+    const parts = readMarkdownParts(text)
+    expect(parts.map(([row]) => row.length)).toEqual([8, 8, 8])
+    expect(text.match(/22 columns are too many for one page/g)?.length).toBe(3)
+    const tex = files.get('tables/what-else.tex') as string
+    expect([...tex.matchAll(/\\begin\{tabular\}\{([lr]+)\}/g)].map(([, spec]) => spec)).toEqual(
+      Array(3).fill('lrrrrrrr'),
+    )
+    const [all] = readCsv(files.get('tables/what-else.csv') as string)
+    expect(layers.map((layer) => Number(all[layer]))).toEqual(shares)
   })
 
   it('have at most nine columns, and the same cells in LaTeX', () => {

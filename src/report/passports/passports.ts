@@ -1,7 +1,7 @@
 /** A passport for every line: where it is, what else changes there, who is near it, what was estimated and what its checks say. */
 import type { CheckResult, Jump, LineSummary } from '../../results.js'
 import { escapeHtml } from '../escape.js'
-import { capital, intervalText, linePlaces, widthCell, widthPlaces } from '../lineTable.js'
+import { capital, intervalText, linePlaces, widthPlaces, widthWords } from '../lineTable.js'
 import { cell, count, fixed, missing, p, percent, significant, wholeNumber } from '../numbers.js'
 import { isEstimated, type OutcomeView, reasonText, type View } from '../view.js'
 import { type Ground, groundOf, pieceMap, smallScatter } from './drawings.js'
@@ -140,7 +140,7 @@ function rowOf(view: View, outcome: OutcomeView, index: number, id: string): str
   const cells = [
     cell(units.untreated, view.smallestCell),
     cell(units.treated, view.smallestCell),
-    widthCell(jump.bandwidth, widthPlaces([jump])),
+    widthWords(jump.bandwidth, widthPlaces([jump])),
     fixed(jump.at_line.untreated, places),
     fixed(jump.plain.estimate, places),
     fixed(corrected.estimate, places),
