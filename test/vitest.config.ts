@@ -7,5 +7,6 @@ export default defineConfig({
     exclude: ['test/long/**', 'node_modules/**'],
     testTimeout: 120_000,
     hookTimeout: 120_000,
+    maxWorkers: 2,
   },
 })

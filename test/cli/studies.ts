@@ -1,5 +1,5 @@
 /** Small invented studies, written to a folder of their own, and the built command to run on them. */
-import { type ChildProcess, spawn } from 'node:child_process'
+import { type ChildProcess, fork, spawn } from 'node:child_process'
 import { createHash } from 'node:crypto'
 import { existsSync, mkdirSync, mkdtempSync, readdirSync, readFileSync, realpathSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
@@ -20,9 +20,39 @@ export interface SpawnOptions {
   readonly watch?: (child: ChildProcess) => () => void
 }
 
-/** Runs the built command as a user would. */
+const server = new URL('commandServer.mjs', import.meta.url).pathname
+/** Processes that have the command loaded and are free. */
+const free: ChildProcess[] = []
+
+/**
+ * Runs the built command on a command line: in a process that may have run others before, or, with `env` or `watch`, in one of its
+ * own as a user would.
+ */
 export function scarp(words: readonly string[], options: SpawnOptions): Promise<Said> {
   if (!existsSync(command)) throw new Error('dist/ is missing: npm run build')
+  return options.env || options.watch ? scarpAlone(words, options) : scarpAgain(words, options)
+}
+
+function scarpAgain(words: readonly string[], { cwd }: SpawnOptions): Promise<Said> {
+  const child = free.pop() ?? fork(server, { stdio: ['ignore', 'ignore', 'inherit', 'ipc'] })
+  child.ref()
+  return new Promise((done, fail) => {
+    const ended = (code: number | null) => fail(new Error(`scarp ${words.join(' ')}: ended with ${code}`))
+    child.once('exit', ended)
+    child.once('message', (said: Said) => {
+      child.off('exit', ended)
+      child.unref()
+      child.channel?.unref()
+      free.push(child)
+      done(said)
+    })
+    child.channel?.ref()
+    child.send({ words, cwd })
+  })
+}
+
+/** Runs the built command in a process of its own. */
+export function scarpAlone(words: readonly string[], options: SpawnOptions): Promise<Said> {
   return new Promise((done, fail) => {
     const child = spawn(process.execPath, [command, ...words], {
       cwd: options.cwd,
