@@ -13,6 +13,7 @@ import { toCsv, toLatex, toMarkdown } from './tables.js'
 import { viewOf } from './view.js'
 
 export { comparedLines } from './comparedText.js'
+export { escapeHtml } from './escape.js'
 export { exhibitsOf } from './exhibitList.js'
 export type { ReportInput } from './input.js'
 export { machineTable } from './machineTable.js'

@@ -233,3 +233,17 @@ it('has the same bytes whenever and wherever it is made, sheets of names that ag
     { value: -1234.1 - 1e-9, format: '#,##0.00' },
   ])
 })
+
+it('ends a table of the document at a thousand rows and says where the rest is; the head is repeated, a mark in the text stays text', async () => {
+  const columns = [{ head: 'Line', isText: true }, { head: 'N' }]
+  const rows = Array.from({ length: 1002 }, (_, row) => [`line ${row}`, `${row}`])
+  const long: NamedTable = { name: 'lines-y', table: { caption: '\ue0000', columns, rows, notes: ['\ue0000'] } }
+  const document = await docxOf('\ue0000', [long])
+  const [drawn] = docxTables(document)
+  expect(drawn.length).toBe(1001)
+  expect(drawn[1000]).toEqual(['line 999', '999'])
+  const text = part(document, 'word/document.xml').documentElement?.textContent ?? ''
+  expect(text).toContain('2 more rows are in lines-y.csv.')
+  expect(text.match(/\ue0000/g)?.length).toBe(3)
+  expect(all(part(document, 'word/document.xml'), 'w:tblHeader').length).toBe(1)
+})
